@@ -1,0 +1,80 @@
+"""Every advisory an answer can carry: what is said, and when; no switch removes one."""
+
+from dataclasses import dataclass
+from string import Formatter
+
+from models.registry import Registry
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Advisory:
+    """A sentence that belongs to an answer where its condition holds."""
+
+    key: str
+    condition: str
+    text: str
+    """With the places in braces filled in."""
+
+    @property
+    def places(self) -> tuple[str, ...]:
+        """Names of what must be filled in."""
+        return tuple(name for _, name, _, _ in Formatter().parse(self.text) if name)
+
+
+@dataclass(frozen=True, slots=True)
+class Advice:
+    """One advisory of one answer."""
+
+    code: str
+    text: str
+
+
+ADVISORIES: Registry[Advisory] = Registry(
+    "advisory",
+    Advisory(key="indirect-measurement", condition="Always.",
+             text="Estimate from an indirect measurement. The band covers the stated inputs and "
+             "model only; installation, air gaps and soil variability may add more."),
+    Advisory(key="numbers-not-verdicts", condition="Always.",
+             text="Numbers, not verdicts: water content alone does not give pore pressure, "
+             "strength, seepage or the need to irrigate. Local codes, the site's own limits and a "
+             "licensed engineer or qualified agronomist who knows the site decide."),
+    Advisory(key="generic-equation", condition="The mixing model was not fitted to this soil.",
+             text="No soil-specific calibration was supplied; organic, saline, high-clay or stony "
+             "soils may differ by more than the band."),
+    Advisory(key="model-chosen", condition="No mixing model was named.",
+             text="{model} was chosen: {why}"),
+    Advisory(key="texture-defaults", condition="The texture class filled in soil properties.",
+             text="{names} came from the texture class {texture}: a default, never a field "
+             "value; a measured one narrows the band."),
+    Advisory(key="no-uncertainty-stated",
+             condition="A value that enters the estimate came without a standard uncertainty.",
+             text="No standard uncertainty was stated for {names}: their share is not in the "
+             "band. Give {example} beside the value."),
+    Advisory(key="frequency-assumed",
+             condition="The model depends on frequency and none was given.",
+             text="No frequency was given: {frequency} GHz was assumed. Give probe.frequency or a "
+             "frequency column; below 0.3 GHz it matters."),
+    Advisory(key="temperature-assumed", condition="The caller said assume.temperature.",
+             text="Temperature was assumed to be {temperature} Cel where the reading has none."),
+    Advisory(key="model-range", condition="A soil property or the frequency is outside the "
+             "model's declared range.",
+             text="Outside the conditions in which {model} was established: {names}. The band is "
+             "widened."),
+    Advisory(key="porosity-disagrees", condition="Porosity and densities are all given and "
+             "contradict by more than 0.05.",
+             text="porosity {porosity} and 1 - bulk_density/particle_density = {derived} "
+             "contradict; the porosity as given was used."),
+    Advisory(key="unit-suspected", condition="Values of one quantity are impossible as sent and "
+             "would be possible in a unit often sent by mistake.",
+             text="{count} values of {name} are impossible in {unit} and possible in {other}, "
+             'such as {value}: name the unit, for example "units": {{"{name}": "{other}"}}.'),
+    Advisory(key="frozen", condition="A reading is at or below 0 Cel.",
+             text="{count} readings were taken at or below 0 Cel: unfrozen water only."),
+    Advisory(key="permittivities-beside", condition="More than one kind of permittivity came.",
+             text="Several kinds of permittivity came ({names}); {used} was used."),
+)  # fmt: skip
+
+
+def advise(code: str, **places: object) -> Advice:
+    """One advisory with its places filled in."""
+    return Advice(code, ADVISORIES[code].text.format(**places))

@@ -1,0 +1,8 @@
+"""Estimates: readings in, values with uncertainty out; the only place where the two meet."""
+
+from models.estimate.basis import Basis, Query, prepare
+from models.estimate.choice import choose
+from models.estimate.estimates import Estimates
+from models.estimate.pipeline import columns_of, estimate
+
+__all__ = ["Basis", "Estimates", "Query", "choose", "columns_of", "estimate", "prepare"]

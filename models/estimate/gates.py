@@ -1,0 +1,136 @@
+"""What an estimate must say about itself: flags from values, ranges and bounds."""
+
+from functools import lru_cache
+
+import numpy as np
+from numpy.typing import NDArray
+
+from models.estimate.basis import Basis
+from models.estimate.discrepancy import Setting, lean_down
+from models.estimate.permittivity import Permittivity
+from models.estimate.surroundings import Surroundings
+from models.estimate.water_content import CONSISTENT, WaterContent
+from models.flags import BIT, Flags
+from models.mixing.physical.bounds import hashin_shtrikman
+from models.relation import Array
+from models.uncertainty.coverage import coverage_factor
+from models.water.kaatze_1989 import static_permittivity
+
+CORRECTED = 0.01  # m3/m3 of correction for loss that is worth a flag
+SUSPECT = 55.0  # permittivity from which a comparison with water is worth its cost
+NONE = np.uint64(0)
+AIR, COLD_WATER = 1.0, 88.0
+SOLID, SOLID_U = 4.7, 0.6  # permittivity of mineral solids, where none is given
+
+
+def flag_inputs(found: Permittivity, around: Surroundings, basis: Basis, flags: Flags) -> None:
+    """Flag readings that hold no permittivity, or an impossible one."""
+    unseen = found.uncorrected if found.uncorrected is not None else found.value
+    _set(flags, np.isnan(unseen) & ~_spoiled(flags), "no-permittivity")
+    _set(flags, np.isnan(found.value) & ~np.isnan(unseen), "too-lossy")
+    if "loss" in basis.takes:
+        lossless = np.ones(flags.shape, bool) if found.loss is None else np.isnan(found.loss)
+        _set(flags, lossless & ~np.isnan(unseen), "loss-missing")
+    spread = np.sqrt(np.square(found.per_reading) + np.square(found.shared))
+    reach = coverage_factor(basis.query.probability) * spread
+    with np.errstate(invalid="ignore"):
+        high = np.flatnonzero(found.value - reach > SUSPECT)
+    if high.size:
+        warmth = 0.0 if around.temperature is None else around.temperature
+        water = static_permittivity(np.broadcast_to(np.nan_to_num(warmth), flags.shape)[high])
+        flags[high[found.value[high] - reach[high] > water]] |= BIT["permittivity-above-water"]
+    _flag_bounds(found, reach, basis, flags)
+
+
+def flag_results(
+    content: WaterContent, found: Permittivity, around: Surroundings, basis: Basis, flags: Flags
+) -> None:
+    """Flag what the equation answered: no answer, outside its range, outside the pores."""
+    computed = content.computed
+    unanswered = np.isnan(computed) & ~np.isnan(found.value)
+    known = ~np.isnan(_temperature(around, flags)) if basis.needs_temperature else True
+    slug = "too-lossy" if "loss" in basis.takes else "no-solution"
+    _set(flags, unanswered & known & ~_spoiled(flags), slug)
+    _set(flags, computed < 0.0, "drier-than-dry")
+    _set(flags, computed > content.ceiling, "wetter-than-pores")
+    astray = (computed < -CONSISTENT * content.scale_above) | (
+        computed - content.ceiling > CONSISTENT * content.scale_below
+    )
+    _set(flags, astray, "inconsistent")
+    if content.correction is not None:
+        _set(flags, content.correction > CORRECTED, "lossy")
+    _flag_ranges(computed, found, around, basis, flags)
+
+
+def _flag_ranges(
+    computed: Array, found: Permittivity, around: Surroundings, basis: Basis, flags: Flags
+) -> None:
+    model = basis.model
+    at = {
+        f"{model.permittivity}_permittivity": found.value,
+        "water_content": computed,
+        "frequency": around.frequency,
+        "temperature": around.temperature,
+    }
+    outside = np.full(flags.shape, bool(basis.outside))
+    for name, known in model.validity.items():
+        value = at.get(name)
+        if value is None or (name == "frequency" and not basis.frequency_known):
+            continue
+        outside |= known.excludes(value) & ~np.isnan(value)
+    _set(flags, outside & ~np.isnan(computed), "outside-model-range")
+    soil = basis.query.soil.values
+    setting = Setting(found.value, computed, around.frequency, None, None, soil.get("clay"), None)
+    lean = lean_down(model, setting)
+    if lean is not None:
+        _set(flags, np.broadcast_to(lean > 0.0, flags.shape), "low-frequency")
+
+
+def _flag_bounds(found: Permittivity, reach: Array, basis: Basis, flags: Flags) -> None:
+    """Outside Hashin-Shtrikman for dry and saturated soil, at the far ends of what is known."""
+    soil = basis.query.soil
+    if "porosity" not in soil.values:
+        return
+    k = coverage_factor(basis.query.probability)
+    driest, wettest = _bounds(
+        min(soil.values["porosity"] + k * soil.uncertainties["porosity"], 0.99),
+        soil.values.get("solid_permittivity", SOLID),
+        k * soil.uncertainties.get("solid_permittivity", SOLID_U),
+    )
+    outside = (found.value + reach < driest) | (found.value - reach > wettest)
+    _set(flags, outside, "outside-bounds")
+
+
+@lru_cache(maxsize=64)
+def _bounds(porosity: float, solid: float, spread: float) -> tuple[float, float]:
+    """Lower bound of dry soil and upper bound of saturated soil."""
+    low, high = max(solid - spread, 1.5), solid + spread
+    driest = hashin_shtrikman(((1.0 - porosity, low), (porosity, AIR)))[0]
+    wettest = hashin_shtrikman(((1.0 - porosity, high), (porosity, COLD_WATER)))[1]
+    return float(driest), float(wettest)
+
+
+def _temperature(around: Surroundings, flags: Flags) -> Array:
+    if around.temperature is None:
+        return np.full(flags.shape, np.nan)
+    return np.broadcast_to(around.temperature, flags.shape)
+
+
+_SPOILING = np.bitwise_or.reduce(
+    [
+        bit
+        for slug, bit in BIT.items()
+        if slug.partition(":")[0]
+        in {"unreadable", "out-of-gate", "unreadable-row", "outside-water-range", "loss-missing"}
+    ]
+)
+
+
+def _spoiled(flags: Flags) -> NDArray[np.bool_]:
+    """Rows whose lack of a number is already explained."""
+    return (flags & _SPOILING) != 0
+
+
+def _set(flags: Flags, where: NDArray[np.bool_], slug: str) -> None:
+    if where.any():
+        flags |= np.where(where, BIT[slug], NONE)

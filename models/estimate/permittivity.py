@@ -1,0 +1,148 @@
+"""From what a reading carries to the one permittivity its mixing model speaks of."""
+
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from scipy.constants import speed_of_light
+
+from models.mixing.apparent import conduction_loss, to_apparent, to_real
+from models.readings import Readings
+from models.relation import Array
+
+KINDS = ("apparent_permittivity", "real_permittivity", "travel_time")
+
+
+@dataclass(frozen=True, slots=True)
+class Permittivity:
+    """Values with the two parts of their standard uncertainty, shape (n,); NaN: none."""
+
+    value: Array
+    per_reading: Array
+    shared: Array
+    loss: Array | None
+    """Total eps'' where it is known, from the reading or from its bulk conductivity."""
+    uncorrected: Array | None = None
+    """Apparent permittivity before its correction for loss, where one was made."""
+
+
+def kinds_in(names: Iterable[str]) -> tuple[str, ...]:
+    """Which kinds of permittivity the columns hold."""
+    held = set(names)
+    return tuple(kind for kind in KINDS if kind in held)
+
+
+def permittivity_of(
+    readings: Readings,
+    kind: str,
+    frequency: Array,
+    probe: Mapping[str, float],
+    *,
+    correct: bool,
+) -> Permittivity:
+    """The ``kind`` ("apparent" or "real") of permittivity of each reading.
+
+    frequency: shape (n,), Hz. probe: values and ``_u`` of the probe, SI.
+    correct: whether the frequency is known well enough to take the loss out of an apparent
+    permittivity; a model that takes the loss itself needs none of this.
+
+    A row's own column of that kind comes first, then the other kind, converted with the row's
+    loss (exact; with no loss known the two are equal). A curve of Ka was made in soils of little
+    loss: it gets eps' = Ka - eps''^2 / (4 Ka), the Ka that this soil would have without loss.
+    """
+    loss, loss_u = _loss(readings, frequency, probe)
+    apparent = _apparent(readings, probe)
+    real = readings.columns.get("real_permittivity")
+    if apparent is None:
+        apparent = _Part.nothing(readings.count)
+    if kind == "apparent" and not correct:
+        if real is not None:
+            known = np.zeros(readings.count) if loss is None else np.nan_to_num(loss)
+            u = _noise(readings, "real_permittivity", probe)
+            apparent = apparent.or_else(_Part(to_apparent(real, known), u, 0.0 * u))
+        return Permittivity(apparent.value, apparent.per_reading, apparent.shared, loss)
+    uncorrected = None
+    if loss is not None:
+        uncorrected = apparent.value
+        apparent = _without_loss(apparent, np.nan_to_num(loss), np.nan_to_num(loss_u))
+    if real is not None:
+        u = _noise(readings, "real_permittivity", probe)
+        apparent = _Part(real, u, 0.0 * u).or_else(apparent)
+        if uncorrected is not None:
+            uncorrected = np.where(np.isnan(real), uncorrected, real)
+    return Permittivity(apparent.value, apparent.per_reading, apparent.shared, loss, uncorrected)
+
+
+@dataclass(frozen=True, slots=True)
+class _Part:
+    """A column and the two parts of its standard uncertainty."""
+
+    value: Array
+    per_reading: Array
+    shared: Array
+
+    @classmethod
+    def nothing(cls, count: int) -> "_Part":
+        return cls(np.full(count, np.nan), np.zeros(count), np.zeros(count))
+
+    def or_else(self, other: "_Part") -> "_Part":
+        """The other's rows where this one has no number."""
+        lacking = np.isnan(self.value)
+        return _Part(
+            np.where(lacking, other.value, self.value),
+            np.where(lacking, other.per_reading, self.per_reading),
+            np.where(lacking, other.shared, self.shared),
+        )
+
+
+def _without_loss(apparent: _Part, loss: Array, loss_u: Array) -> _Part:
+    """Real part: eps' = Ka - eps''^2 / (4 Ka), with the uncertainty that Ka and the loss bring."""
+    ratio = loss / (2.0 * apparent.value)
+    gain = 1.0 + np.square(ratio)
+    return _Part(
+        to_real(apparent.value, loss),
+        np.hypot(gain * apparent.per_reading, ratio * loss_u),
+        gain * apparent.shared,
+    )
+
+
+def _noise(readings: Readings, name: str, probe: Mapping[str, float]) -> Array:
+    """Per-reading standard uncertainty: the row's own, else the probe's, else zero."""
+    stated = probe.get(f"{name}_u", 0.0)
+    own = readings.columns.get(f"{name}_u")
+    if own is None:
+        return np.full(readings.count, stated)
+    return np.where(np.isnan(own), stated, own)
+
+
+def _apparent(readings: Readings, probe: Mapping[str, float]) -> _Part | None:
+    """Apparent permittivity as given, else from the travel time along the rods."""
+    direct = None
+    if "apparent_permittivity" in readings.columns:
+        u = _noise(readings, "apparent_permittivity", probe)
+        direct = _Part(readings.columns["apparent_permittivity"], u, 0.0 * u)
+    time, length = readings.columns.get("travel_time"), probe.get("probe_length")
+    if time is None or length is None:
+        return direct
+    index = speed_of_light * time / (2.0 * length)
+    index_u = speed_of_light * _noise(readings, "travel_time", probe) / (2.0 * length)
+    shared = 2.0 * np.square(index) * probe.get("probe_length_u", 0.0) / length
+    timed = _Part(np.square(index), 2.0 * index * index_u, shared)
+    return timed if direct is None else direct.or_else(timed)
+
+
+def _loss(
+    readings: Readings, frequency: Array, probe: Mapping[str, float]
+) -> tuple[Array | None, Array | None]:
+    """Total eps'' as measured, else what the bulk conductivity makes of it; and its u."""
+    measured = readings.columns.get("imaginary_permittivity")
+    conductivity = readings.columns.get("bulk_conductivity")
+    measured_u = _noise(readings, "imaginary_permittivity", probe)
+    if conductivity is None:
+        return measured, None if measured is None else measured_u
+    conducted = conduction_loss(conductivity, frequency)
+    conducted_u = conduction_loss(_noise(readings, "bulk_conductivity", probe), frequency)
+    if measured is None:
+        return conducted, conducted_u
+    lacking = np.isnan(measured)
+    return np.where(lacking, conducted, measured), np.where(lacking, conducted_u, measured_u)

@@ -1,0 +1,144 @@
+"""Water content of each reading, with its band."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+
+from models.estimate.basis import Basis
+from models.estimate.discrepancy import Setting, lean_down, model_uncertainty
+from models.estimate.permittivity import Permittivity
+from models.estimate.surroundings import Surroundings
+from models.readings import Readings
+from models.relation import Array
+from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval
+from models.uncertainty.first_order import Input, propagate
+
+UNEXPLAINED_CORRECTION = 0.3
+"""Share of a correction for loss that counts as its own standard uncertainty."""
+CONSISTENT = 3.0
+"""Standard uncertainties beyond the physical range at which reading and soil contradict."""
+
+
+@dataclass(frozen=True, slots=True)
+class WaterContent:
+    """Water content as the equation gives it, and what is known around it; shape (n,)."""
+
+    computed: Array
+    scale_below: Array
+    scale_above: Array
+    standard_uncertainty: Array
+    """Root of the second moment of the two-piece distribution about the computed value."""
+    shared: Array
+    """The part of it that all readings of this soil and probe share."""
+    interval: Interval
+    correction: Array | None
+    """By how much correcting for loss lowered the value."""
+    ceiling: float
+    """Porosity, or 1 where it is not known."""
+
+
+def water_content_of(
+    readings: Readings,
+    basis: Basis,
+    found: Permittivity,
+    around: Surroundings,
+    water: Mapping[str, Input],
+) -> WaterContent:
+    """Invert the mixing model at each reading and carry every uncertainty through it.
+
+    The interval is the shortest one of what the equation and the physical range together allow:
+    see ``models.uncertainty.coverage``. The range is 0 to the upper end of the porosity's own
+    coverage interval, or to 1 where the porosity is not known.
+    """
+    inputs = _inputs(basis, found, around, water)
+    at = {given.name: given.value for given in inputs if given.name != "permittivity"}
+
+    def measurand(**named: Array) -> Array:
+        permittivity = named.pop("permittivity")
+        return basis.model.to_water_content(permittivity, **basis.values | named)
+
+    computed = measurand(permittivity=found.value, **at)
+    spread = propagate(measurand, inputs, computed)
+    setting = _setting(readings, basis, found, around, computed)
+    own, lean = _own_uncertainty(basis, setting)
+    shared = spread.shared + np.square(own)
+    correction = None
+    if found.uncorrected is not None:
+        correction = measurand(permittivity=found.uncorrected, **at) - computed
+        shared = shared + np.square(UNEXPLAINED_CORRECTION * correction)
+    variance = spread.per_reading + shared
+    above = np.sqrt(variance)
+    below = above if lean is None else np.sqrt(variance + np.square(lean))
+    ceiling, ceiling_u = _ceiling(basis)
+    probability = basis.query.probability
+    high = min(1.0, ceiling + coverage_factor(probability) * ceiling_u)
+    interval = shortest_interval(
+        computed, below, above, low=0.0, high=high, probability=probability
+    )
+    moment = variance if lean is None else np.square(below) - below * above + np.square(above)
+    return WaterContent(
+        computed=computed,
+        scale_below=below,
+        scale_above=above,
+        standard_uncertainty=np.sqrt(moment),
+        shared=np.sqrt(shared + moment - variance),
+        interval=interval,
+        correction=correction,
+        ceiling=ceiling,
+    )
+
+
+def _inputs(
+    basis: Basis, found: Permittivity, around: Surroundings, water: Mapping[str, Input]
+) -> list[Input]:
+    inputs = [Input("permittivity", found.value, found.per_reading, found.shared)]
+    inputs.extend(water.values())
+    if "frequency" in basis.takes:
+        inputs.append(Input("frequency", around.frequency))
+    if "loss" in basis.takes:
+        unknown = np.full(found.value.shape, np.nan)
+        inputs.append(Input("loss", unknown if found.loss is None else found.loss))
+    inputs.extend(
+        Input(name, basis.values[name], shared=u)
+        for name, u in basis.uncertainties.items()
+        if name in basis.values
+    )
+    return inputs
+
+
+def _setting(
+    readings: Readings,
+    basis: Basis,
+    found: Permittivity,
+    around: Surroundings,
+    computed: Array,
+) -> Setting:
+    soil = basis.query.soil.values
+    return Setting(
+        permittivity=found.value,
+        water_content=computed,
+        frequency=around.frequency,
+        temperature=around.temperature,
+        conductivity=readings.columns.get("bulk_conductivity"),
+        clay=soil.get("clay"),
+        organic_matter=soil.get("organic_matter"),
+    )
+
+
+def _own_uncertainty(basis: Basis, at: Setting) -> tuple[Array, Array | None]:
+    """The model's own: the caller's figure as it stands, or ours, which knows where it is."""
+    stated = basis.query.standard_error
+    if stated is not None:
+        return np.full(at.permittivity.shape, stated), None
+    return model_uncertainty(basis.model, at), lean_down(basis.model, at)
+
+
+def _ceiling(basis: Basis) -> tuple[float, float]:
+    """Porosity and its standard uncertainty: the caller's for the model, else the soil's."""
+    if "porosity" in basis.values:
+        return float(basis.values["porosity"]), basis.uncertainties.get("porosity", 0.0)
+    soil = basis.query.soil
+    if "porosity" in soil.values:
+        return soil.values["porosity"], soil.uncertainties["porosity"]
+    return 1.0, 0.0

@@ -1,0 +1,156 @@
+"""Every flag a row can carry: its slug, its condition, what it says, and whether a number remains.
+
+A column of flags is a column of uint64, one bit a slug, so that a million rows are flagged by a
+few array operations. ``unreadable``, ``missing`` and ``out-of-gate`` name the quantity they are
+about: ``missing:temperature``.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from types import MappingProxyType
+
+import numpy as np
+from numpy.typing import NDArray
+
+from models.quantity import READING
+from models.registry import Registry
+
+Flags = NDArray[np.uint64]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Flag:
+    """One thing that can be said about a row."""
+
+    key: str
+    condition: str
+    text: str
+    reason: str
+    keeps_number: bool
+    """False: the row has no number because of it."""
+    names_quantity: bool = False
+
+
+FLAGS: Registry[Flag] = Registry(
+    "flag",
+    Flag(key="unreadable", condition="A cell holds text that is neither a number nor a usual way "
+         "to write that there is none.",
+         text="The cell cannot be read as a number.",
+         reason="A guess at what was meant would look like a measurement.",
+         keeps_number=False, names_quantity=True),
+    Flag(key="missing", condition="The cell is empty, null, or one of NaN, NA, N/A, null, none, "
+         "INF, -INF, M, -, --, --- in any case.",
+         text="The logger gave no value.",
+         reason="The row has no number where the chosen model needs the value, and keeps it "
+         "where the model does not.",
+         keeps_number=True, names_quantity=True),
+    Flag(key="out-of-gate", condition="The value is physically impossible: outside the gate of "
+         "the quantity, or an uncertainty below zero.",
+         text="The value is physically impossible and was not used.",
+         reason="Numeric sentinels such as -9999, a broken probe, or a unit that was not named. "
+         "The row has no number where the chosen model needs the value, and keeps it where the "
+         "model does not.",
+         keeps_number=True, names_quantity=True),
+    Flag(key="unreadable-row", condition="A CSV row has more or fewer cells than the header, or an "
+         "NDJSON line is not a JSON object.",
+         text="The row cannot be taken apart into cells.",
+         reason="Which cell belongs to which column would be a guess.", keeps_number=False),
+    Flag(key="no-permittivity", condition="The row holds none of apparent_permittivity, "
+         "real_permittivity, travel_time.",
+         text="There is nothing to convert.",
+         reason="Water content follows from a permittivity.", keeps_number=False),
+    Flag(key="permittivity-above-water", condition="The permittivity exceeds that of water at "
+         "the row's temperature (at 0 Cel where none is given) by more than its own coverage "
+         "interval.",
+         text="The permittivity is higher than that of water.",
+         reason="No mixture of soil and water is above water itself: conduction, a fault, or a "
+         "reading that is not a permittivity.", keeps_number=False),
+    Flag(key="outside-bounds", condition="The permittivity lies outside the Hashin-Shtrikman "
+         "bounds of any water content between dry and saturated, for the stated porosity and "
+         "solids with their uncertainties.",
+         text="No arrangement of these solids, air and water has this permittivity.",
+         reason="Wrong porosity, an air gap along the rods, or conduction that raises the "
+         "apparent permittivity.", keeps_number=True),
+    Flag(key="outside-model-range", condition="Permittivity, water content, temperature, "
+         "frequency or a soil property is outside the range the model's source vouches for.",
+         text="Outside the conditions in which the equation was established.",
+         reason="The band is widened with the distance from the range.", keeps_number=True),
+    Flag(key="low-frequency", condition="The frequency is below the model's range in a soil "
+         "whose clay content is above 0.05, or not known.",
+         text="At this frequency clay raises the permittivity: the equation reads too wet. The "
+         "band reaches further down than up.",
+         reason="Published laboratory pairs at 50 MHz in clay: curves made at 0.5 to 1 GHz read "
+         "0.07 to 0.17 m3/m3 too wet.", keeps_number=True),
+    Flag(key="lossy", condition="Correcting the apparent permittivity for conduction lowers the "
+         "water content by more than 0.01 m3/m3.",
+         text="Conduction made the soil look wetter than it is; the correction is in the answer "
+         "and three tenths of it in the band.",
+         reason="Ka = eps'/2 (1 + sqrt(1 + tan^2 delta)): loss raises Ka above eps'.",
+         keeps_number=True),
+    Flag(key="loss-missing", condition="The model needs the loss of the soil, and the row holds "
+         "neither imaginary_permittivity nor bulk_conductivity with a frequency.",
+         text="Give imaginary_permittivity or bulk_conductivity for this model.",
+         reason="Water content and pore-water conductivity are found together from a complex "
+         "permittivity.", keeps_number=False),
+    Flag(key="too-lossy", condition="The loss is so large that no real permittivity is left: "
+         "eps'' > 2 Ka, or the model has no physical root.",
+         text="Too lossy for this model at this frequency.",
+         reason="Above this loss the reading no longer holds the water content.",
+         keeps_number=False),
+    Flag(key="no-solution", condition="The model has no water content for this permittivity.",
+         text="The equation has no answer here.",
+         reason="The permittivity is outside the domain of the equation.", keeps_number=False),
+    Flag(key="drier-than-dry", condition="The equation alone gives less than zero, by no more "
+         "than the band explains.",
+         text="Cannot be told from dry: the most probable value is 0.",
+         reason="The band is that of the equation, restricted to what is physically possible.",
+         keeps_number=True),
+    Flag(key="wetter-than-pores", condition="The equation alone gives more than the porosity.",
+         text="Saturated as far as can be told: the value is the porosity, or lies within the "
+         "coverage interval of the porosity.",
+         reason="Water content cannot exceed the pores; how many there are is itself uncertain.",
+         keeps_number=True),
+    Flag(key="inconsistent", condition="The equation gives less than zero or more than the "
+         "porosity by more than three times its standard uncertainty.",
+         text="Reading and soil description cannot both be right.",
+         reason="A wrong porosity, an air gap, a sensor out of the ground, or another model's "
+         "permittivity.", keeps_number=False),
+    Flag(key="frozen", condition="The temperature is at or below 0 Cel.",
+         text="Unfrozen water only: ice is not seen as water.",
+         reason="The permittivity of ice is 3.2, that of water 88.", keeps_number=True),
+    Flag(key="near-freezing", condition="The temperature is above 0 and at most 1 Cel.",
+         text="Some of the water may be ice.",
+         reason="A probe and its soil are rarely at one temperature.", keeps_number=True),
+    Flag(key="outside-water-range", condition="The temperature or frequency is outside the range "
+         "of the water model.",
+         text="The permittivity of water is not known here.",
+         reason="Kaatze (1989) holds from -4.1 to 60 Cel.", keeps_number=False),
+)  # fmt: skip
+
+_NAMING = tuple(key for key, flag in FLAGS.items() if flag.names_quantity)
+_NAMED = tuple(name for name in READING if name != "time")
+
+SLUGS: tuple[str, ...] = (
+    *(f"{key}:{name}" for key in _NAMING for name in _NAMED),
+    *(key for key in FLAGS if key not in _NAMING),
+)
+"""Every slug a row can carry, in the order they are written."""
+
+BIT: Mapping[str, np.uint64] = MappingProxyType(
+    {slug: np.uint64(1) << np.uint64(place) for place, slug in enumerate(SLUGS)}
+)
+
+
+def slugs_of(mask: int) -> tuple[str, ...]:
+    """The slugs of one row's bits."""
+    return tuple(slug for place, slug in enumerate(SLUGS) if mask >> place & 1)
+
+
+def withheld(flags: Flags) -> NDArray[np.bool_]:
+    """Rows that must not have a number, whatever the model could say."""
+    return (flags & _WITHHOLD) != 0
+
+
+_WITHHOLD = np.bitwise_or.reduce(
+    [BIT[slug] for slug in SLUGS if not FLAGS[slug.partition(":")[0]].keeps_number]
+)

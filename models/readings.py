@@ -1,0 +1,93 @@
+"""Readings as columns: SI numbers, NaN where there is none, and the reason in the flags."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from models.errors import ReadingError
+from models.flags import BIT, Flags
+from models.quantity import QUANTITIES
+from models.relation import Array
+from models.units import UNITS
+
+
+@dataclass(frozen=True, slots=True)
+class Readings:
+    """One row per reading; only the columns that came."""
+
+    count: int
+    columns: Mapping[str, Array]
+    """By quantity name or name_u; shape (count,), SI and Cel."""
+    flags: Flags
+
+    def rows(self, start: int, stop: int) -> "Readings":
+        """A block of rows, without copying."""
+        return Readings(
+            min(stop, self.count) - start,
+            {name: values[start:stop] for name, values in self.columns.items()},
+            self.flags[start:stop],
+        )
+
+
+def quantity_of(name: str) -> tuple[str, bool]:
+    """The quantity a column is about, and whether the column is its uncertainty."""
+    if name not in QUANTITIES and name.endswith("_u"):
+        return name.removesuffix("_u"), True
+    return name, False
+
+
+def read(
+    columns: Mapping[str, Array],
+    units: Mapping[str, str],
+    unreadable: Mapping[str, NDArray[np.bool_]],
+) -> Readings:
+    """Bring columns to SI and gate them.
+
+    columns: by quantity name or name_u, shape (n,), in ``units`` or else the unit of the API;
+    NaN where there was no number.
+    units: UCUM codes by quantity name.
+    unreadable: by column name, where NaN stands for text that is no number.
+    Raises ReadingError when the columns differ in length.
+    """
+    counts = {name: len(values) for name, values in columns.items()}
+    if len(set(counts.values())) > 1:
+        told = ", ".join(f"{name} {n}" for name, n in counts.items())
+        raise ReadingError(f"columns must be of equal length, found {told}")
+    count = next(iter(counts.values()), 0)
+    flags = np.zeros(count, dtype=np.uint64)
+    gated = {
+        name: _gate(name, values, units, unreadable.get(name), flags)
+        for name, values in columns.items()
+    }
+    return Readings(count, gated, flags)
+
+
+def _gate(
+    name: str,
+    values: Array,
+    units: Mapping[str, str],
+    unreadable: NDArray[np.bool_] | None,
+    flags: Flags,
+) -> Array:
+    """One column in SI, NaN where impossible; its flags are set in place."""
+    about, is_width = quantity_of(name)
+    quantity = QUANTITIES[about]
+    unit = UNITS[units.get(about, quantity.unit)]
+    absent = np.isnan(values)
+    if unreadable is not None:
+        flags[unreadable] |= BIT[f"unreadable:{about}"]
+        absent &= ~unreadable
+    if not is_width:
+        flags[absent] |= BIT[f"missing:{about}"]
+    si = unit.width_to_si(values) if is_width else unit.to_si(values)
+    if is_width:
+        impossible = (si < 0) | np.isinf(si)
+    else:
+        gate = quantity.gate_si
+        impossible = (si < gate.low) | (si > gate.high)
+    if impossible.any():
+        flags[impossible] |= BIT[f"out-of-gate:{about}"]
+        si = np.where(impossible, np.nan, si)
+    return si

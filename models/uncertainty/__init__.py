@@ -1,0 +1,1 @@
+"""Uncertainty of any measurand: this room knows no soil."""

@@ -1,0 +1,84 @@
+"""JCGM 100 (GUM): first-order propagation, by half-differences over one standard uncertainty."""
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from models.relation import Array, column
+
+
+@dataclass(frozen=True, slots=True)
+class Input:
+    """One input of a measurand: a value and what is not known of it.
+
+    value, per_reading, shared: scalars or columns that broadcast; ``per_reading`` and ``shared``
+    are standard uncertainties (k = 1), the second of an error all readings have in common.
+    """
+
+    name: str
+    value: Any
+    per_reading: Any = 0.0
+    shared: Any = 0.0
+
+    @property
+    def total(self) -> Array:
+        """Standard uncertainty, both parts together."""
+        if not np.any(self.shared):
+            return np.abs(column(self.per_reading))
+        if not np.any(self.per_reading):
+            return np.abs(column(self.shared))
+        return np.sqrt(np.square(column(self.per_reading)) + np.square(column(self.shared)))
+
+
+@dataclass(frozen=True, slots=True)
+class Propagated:
+    """Variance of a measurand, in its two parts, and each input's contribution."""
+
+    per_reading: Array
+    shared: Array
+    contributions: Mapping[str, Array]
+    """Signed, one standard uncertainty of each input: its size is that input's share."""
+
+
+def propagate(measurand: Callable[..., Array], inputs: Sequence[Input], value: Array) -> Propagated:
+    """Variances of ``measurand(**inputs)`` around ``value``, elementwise.
+
+    value: shape (n,), the measurand at the inputs' values.
+
+    A contribution is half the difference over plus and minus one standard uncertainty (JCGM 100,
+    5.1.3, note 2), which also carries the odd part of a curved measurand; where one of the two is
+    outside the domain (NaN), the difference to the other. Inputs are uncorrelated.
+    """
+    at = {given.name: given.value for given in inputs}
+    per_reading, shared = np.zeros_like(value), np.zeros_like(value)
+    contributions: dict[str, Array] = {}
+    for given in inputs:
+        width = given.total
+        if not np.any(width > 0):
+            continue
+        above = measurand(**{**at, given.name: given.value + width})
+        below = measurand(**{**at, given.name: given.value - width})
+        contribution = 0.5 * (above - below)
+        astray = np.isnan(contribution)
+        if astray.any():
+            one_sided = np.where(np.isnan(above), value - below, above - value)
+            contribution = np.where(astray, one_sided, contribution)
+        contributions[given.name] = contribution
+        variance = np.square(contribution)
+        if not np.any(given.shared):
+            per_reading += variance
+        elif not np.any(given.per_reading):
+            shared += variance
+        else:
+            common = _share(given.shared, width)
+            shared += variance * common
+            per_reading += variance * (1.0 - common)
+    return Propagated(per_reading, shared, contributions)
+
+
+def _share(part: Any, width: Array) -> Array:
+    """Share of the variance that the part makes up; 0 where there is no variance."""
+    square = np.square(width)
+    return np.divide(np.square(column(part)), square, out=np.zeros_like(square), where=square > 0)

@@ -1,0 +1,112 @@
+"""Assemble the application: routes, errors, layers, what happens at start and stop."""
+
+import asyncio
+import signal
+import threading
+from collections.abc import AsyncIterator, Callable, Iterator
+from contextlib import AbstractAsyncContextManager, asynccontextmanager, contextmanager
+from types import FrameType
+
+from fastapi import FastAPI
+from starlette.types import ASGIApp
+
+from service import __version__
+from service.access import RequireKey, keys_of
+from service.errors import add_error_handlers
+from service.limits import LimitBody
+from service.observe import Observe
+from service.openapi import Api, operation_id
+from service.routes import catalogues, health, pages, problems
+from service.settings import Settings, read_settings
+
+DESCRIPTION = """
+Readings of dielectric soil probes in, volumetric water content with its band out.
+
+Names and meanings do not change within /v1; new keys may appear, so read past those you do not
+know. A changed coefficient is a new model name or a new `revision`. Every 4xx and 5xx answer is
+`application/problem+json`. HEAD is taken wherever GET is; `X-Request-Id` is echoed, or made.
+"""
+TAGS = [
+    {"name": "estimates", "description": "Readings to water content."},
+    {"name": "catalogues", "description": "Models, textures, flags and words, with their sources."},
+    {"name": "service", "description": "Health, versions, limits, problems."},
+]
+
+WARMING: tuple[Callable[[FastAPI], object], ...] = (lambda api: api.openapi(),)
+"""Called before the first request, so that no request waits for them."""
+
+
+def create_app(settings: Settings | None = None) -> ASGIApp:
+    """The service as it is served; settings from the environment unless given.
+
+    Raises SettingsError when it may not start as set.
+    """
+    settings = settings or read_settings()
+    return surrounded(create_api(settings), settings)
+
+
+def create_api(settings: Settings) -> Api:
+    """Routes and error answers, without the layers around them."""
+    api = Api(
+        title="Gleyline",
+        summary="Soil water content and its band from dielectric probe readings",
+        description=DESCRIPTION,
+        version=__version__,
+        openapi_tags=TAGS,
+        docs_url=None,
+        redoc_url=None,
+        redirect_slashes=False,
+        generate_unique_id_function=operation_id,
+        lifespan=_lifespan,
+    )
+    api.state.settings = settings
+    api.state.draining = False
+    for router in (health.router, problems.router, pages.router, *catalogues.routers):
+        api.include_router(router)
+    add_error_handlers(api)
+    return api
+
+
+def surrounded(api: Api, settings: Settings) -> ASGIApp:
+    """The layers of every request, outermost last to be added."""
+    keys = keys_of(settings)
+    limited = LimitBody(api, settings)
+    return Observe(RequireKey(limited, keys, on_loopback=settings.on_loopback))
+
+
+def _lifespan(api: FastAPI) -> AbstractAsyncContextManager[None]:
+    @asynccontextmanager
+    async def life() -> AsyncIterator[None]:
+        for warm in WARMING:
+            warm(api)
+        with _drained(api):
+            yield
+
+    return life()
+
+
+@contextmanager
+def _drained(api: FastAPI) -> Iterator[None]:
+    """Between the stop signal and the server's own stop, let /readyz tell it for a while.
+
+    The server stops listening as soon as it hears the signal; whoever balances the load would
+    find out by failing requests. A second signal stops at once.
+    """
+    seconds = api.state.settings.drain_seconds
+    stop = signal.getsignal(signal.SIGTERM)
+    if not seconds or not callable(stop) or threading.current_thread() != threading.main_thread():
+        yield
+        return
+    loop = asyncio.get_running_loop()
+
+    def drain(number: int, frame: FrameType | None) -> None:
+        if api.state.draining:
+            stop(number, frame)
+        api.state.draining = True
+        loop.call_soon_threadsafe(loop.call_later, seconds, stop, number, None)
+
+    signal.signal(signal.SIGTERM, drain)
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGTERM, stop)

@@ -1,0 +1,243 @@
+"""Everything HTTP can refuse, one table from exceptions to it, one body for all (RFC 9457).
+
+Problem
+    Malformed  Unauthenticated  Forbidden  NotFound  MethodNotAllowed  NotAcceptable  Stalled
+    TooLarge  UnsupportedMediaType  Unprocessable  HeadersTooLarge  InternalError  Unavailable
+"""
+
+import json
+from collections.abc import Callable, Mapping, Sequence
+from types import MappingProxyType
+from typing import Any, ClassVar
+
+from fastapi import FastAPI, Request
+from fastapi.exceptions import RequestValidationError
+from fastapi.responses import Response
+from starlette.exceptions import HTTPException
+from starlette.requests import ClientDisconnect
+from starlette.types import Scope
+
+from models.errors import ModelError, ParameterError
+from service.faults import Fault, faults_of
+
+MEDIA_TYPE = "application/problem+json"
+MOST_FAULTS = 20
+"""Items that an answer lists; of the others it says how many there are."""
+
+
+class Problem(HTTPException):
+    """A request that is not answered as asked; ``detail`` says what to change."""
+
+    status: ClassVar[int]
+    slug: ClassVar[str]
+
+    def __init_subclass__(cls, *, status: int, slug: str) -> None:
+        cls.status, cls.slug = status, slug
+
+    def __init__(
+        self,
+        detail: str,
+        errors: Sequence[Fault] = (),
+        headers: Mapping[str, str] | None = None,
+    ) -> None:
+        super().__init__(self.status, detail, dict(headers or {}))
+        self.errors = tuple(errors)
+
+    @classmethod
+    def title(cls) -> str:
+        """What all problems of this kind have in common."""
+        return (cls.__doc__ or "").partition("\n")[0].rstrip(".")
+
+    @classmethod
+    def meaning(cls) -> str:
+        """What the caller can do about it."""
+        return " ".join((cls.__doc__ or "").partition("\n")[2].split())
+
+    def document(self, request_id: str) -> dict[str, Any]:
+        """The body of the answer, without empty members."""
+        body: dict[str, Any] = {
+            "type": f"/problems/{self.slug}",
+            "title": self.title(),
+            "status": self.status,
+            "detail": self.detail,
+            "request_id": request_id,
+        }
+        if self.errors:
+            body["errors"] = [fault.as_json() for fault in self.errors[:MOST_FAULTS]]
+        if len(self.errors) > MOST_FAULTS:
+            body["errors_not_shown"] = len(self.errors) - MOST_FAULTS
+        return body
+
+
+class Malformed(Problem, status=400, slug="malformed"):
+    """The request cannot be read.
+
+    The body is not what its media type or its encoding promises. Look at the place the detail
+    names; nothing of the request was used.
+    """
+
+
+class Unauthenticated(Problem, status=401, slug="key-needed"):
+    """A key is needed.
+
+    Send `Authorization: Bearer <key>` with a key made by `gleyline key add`. Keys are never taken
+    from the query.
+    """
+
+
+class Forbidden(Problem, status=403, slug="scope-needed"):
+    """The key does not reach that far.
+
+    The key is known, but lacks the scope that the detail names.
+    """
+
+
+class NotFound(Problem, status=404, slug="not-found"):
+    """There is nothing at this address.
+
+    Addresses have no trailing slash; `/openapi.json` lists them all.
+    """
+
+
+class MethodNotAllowed(Problem, status=405, slug="method-not-allowed"):
+    """The address does not take that method.
+
+    The `Allow` header lists the methods it takes.
+    """
+
+
+class NotAcceptable(Problem, status=406, slug="not-acceptable"):
+    """None of the accepted media types is offered.
+
+    Name one of the offered types in `Accept`, or with `?format=`.
+    """
+
+
+class Stalled(Problem, status=408, slug="body-stalled"):
+    """The body did not arrive in time.
+
+    The connection was idle, or the whole transfer took too long; `/v1/limits` shows both times.
+    """
+
+
+class TooLarge(Problem, status=413, slug="too-large"):
+    """The body is larger than this service takes.
+
+    `/v1/limits` shows how much it takes. Bodies are counted after decompression. Long tables
+    belong into a CSV or NDJSON body.
+    """
+
+
+class UnsupportedMediaType(Problem, status=415, slug="unsupported-media-type"):
+    """The body has a media type or an encoding that is not read here.
+
+    The `Accept` or `Accept-Encoding` header of the answer lists what is.
+    """
+
+
+class Unprocessable(Problem, status=422, slug="unprocessable"):
+    """The request can be read, but not computed as asked.
+
+    Each item of `errors` names a place in the request as a JSON pointer and says what to change
+    there.
+    """
+
+
+class HeadersTooLarge(Problem, status=431, slug="headers-too-large"):
+    """The headers are larger than this service takes."""
+
+
+class InternalError(Problem, status=500, slug="internal-error"):
+    """The service failed.
+
+    It is not the fault of the request. The log of the service has the cause under the
+    `request_id`.
+    """
+
+
+class Unavailable(Problem, status=503, slug="unavailable"):
+    """The service cannot take this request now.
+
+    It is stopping, or has as much to do as it takes on. Ask again after the seconds named by
+    `Retry-After`.
+    """
+
+    def __init__(self, detail: str, retry_after: int = 1) -> None:
+        super().__init__(detail, headers={"Retry-After": str(retry_after)})
+
+
+PROBLEMS: Mapping[str, type[Problem]] = MappingProxyType(
+    {kind.slug: kind for kind in Problem.__subclasses__()}
+)
+"""Every kind of problem by its slug."""
+
+_BY_STATUS = MappingProxyType({kind.status: kind for kind in PROBLEMS.values()})
+
+
+def _of_http(error: HTTPException) -> Problem:
+    """What routing itself refuses."""
+    headers = dict(error.headers or {})
+    if error.status_code == NotFound.status:
+        return NotFound("no operation has this address", headers=headers)
+    if error.status_code == MethodNotAllowed.status:
+        methods = headers.get("Allow", "").split(", ")
+        headers["Allow"] = ", ".join([*methods, "HEAD"] if "GET" in methods else methods)
+        return MethodNotAllowed(f"this address takes {headers['Allow']}", headers=headers)
+    return _BY_STATUS.get(error.status_code, InternalError)(str(error.detail), headers=headers)
+
+
+def _of_request(error: RequestValidationError) -> Problem:
+    items = [{**item, "loc": item["loc"][1:]} for item in error.errors()]
+    if any(item["type"] == "json_invalid" for item in items):
+        return Malformed("the body is not JSON")
+    return Unprocessable("the request holds values that cannot be used", faults_of(items))
+
+
+def _of_disconnect(_: ClientDisconnect) -> Problem:
+    return Malformed("the connection ended before the body did")
+
+
+def _of_parameters(error: ParameterError) -> Problem:
+    return Unprocessable(str(error), [Fault(c.detail, "#") for c in error.complaints])
+
+
+def _of_model(error: ModelError) -> Problem:
+    return Unprocessable(str(error))
+
+
+TRANSLATIONS: Mapping[type[Exception], Callable[[Any], Problem]] = MappingProxyType({
+    HTTPException: _of_http,
+    RequestValidationError: _of_request,
+    ClientDisconnect: _of_disconnect,
+    ParameterError: _of_parameters,
+    ModelError: _of_model,
+})  # fmt: skip
+"""What the layers below raise, as problems; the most derived class decides."""
+
+
+def as_problem(error: Exception) -> Problem:
+    """The problem that an exception is; what nobody expected is an internal error."""
+    if isinstance(error, Problem):
+        return error
+    for kind in type(error).__mro__:
+        if kind in TRANSLATIONS:
+            return TRANSLATIONS[kind](error)
+    return InternalError("the service failed; its log has the cause under this request_id")
+
+
+def answer(scope: Scope, error: Exception) -> Response:
+    """``error`` as application/problem+json."""
+    problem = as_problem(error)
+    body = problem.document(scope.get("state", {}).get("request_id", ""))
+    headers = {**(problem.headers or {}), "Cache-Control": "no-store"}
+    return Response(json.dumps(body), problem.status, headers, MEDIA_TYPE)
+
+
+def add_error_handlers(api: FastAPI) -> None:
+    """Let routes raise what the layers below raise."""
+
+    async def handle(request: Request, error: Exception) -> Response:
+        return answer(request.scope, error)
+
+    for kind in (*TRANSLATIONS, Exception):
+        api.add_exception_handler(kind, handle)

@@ -1,0 +1,204 @@
+"""A stream of bytes cut into whole records: the same records however the stream arrived.
+
+A window of a fixed number of bytes is cut after the last record that ends in it, and the next
+window begins there. Where windows begin depends on the bytes alone, never on the pieces they
+came in.
+"""
+
+import codecs
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+
+import numpy as np
+import polars as pl
+from numpy.typing import NDArray
+
+from service.formats.errors import FormatError, RecordTooLong
+
+BLOCK_BYTES = 1 << 20
+LINE_BYTES = 1 << 20
+
+Places = NDArray[np.int64]
+LF, CR = 10, 13
+BLANKS = np.frombuffer(b" \t\r\n", np.uint8)
+
+
+@dataclass(frozen=True, slots=True)
+class Ends:
+    """Where the records of a window end."""
+
+    places: Places
+    """Of their line feeds; the window begins with a record."""
+    regular: bool = True
+    """A fast reader takes these records apart without doubt."""
+    opened: int | None = None
+    """Where a cell begins that the end of the window leaves open, if no record ends before."""
+
+
+def line_ends(window: bytes) -> Ends:
+    """Every line is a record."""
+    return Ends(np.flatnonzero(np.frombuffer(window, np.uint8) == LF))
+
+
+@dataclass(frozen=True, slots=True)
+class Records:
+    """Whole records, in order, without the blank ones."""
+
+    text: bytes
+    starts: Places
+    ends: Places
+    """Without the line end."""
+    lines: Places
+    """The line each record begins at, counted from 1."""
+    regular: bool
+    """A fast reader finds these records, and no others, in the text."""
+    dense: bool
+    """Each line of the text is one of the records."""
+
+    def __len__(self) -> int:
+        return len(self.starts)
+
+    def without_first(self) -> "Records":
+        """All but the first record."""
+        begin = int(self.starts[1]) if len(self) > 1 else len(self.text)
+        return Records(
+            self.text[begin:],
+            self.starts[1:] - begin,
+            self.ends[1:] - begin,
+            self.lines[1:],
+            self.regular,
+            self.dense,
+        )
+
+    def pieces(self) -> list[bytes]:
+        """The records one by one, to the letter."""
+        places = zip(self.starts.tolist(), self.ends.tolist(), strict=True)
+        return [self.text[start:end] for start, end in places]
+
+    def series(self) -> pl.Series:
+        """The records as a column of text, to the letter."""
+        if not self.dense:
+            return pl.Series(self.pieces(), dtype=pl.Binary).cast(pl.String)
+        lines = pl.Series([self.text.decode()]).str.split("\n").explode().head(len(self))
+        return lines.str.strip_suffix("\r") if b"\r" in self.text else lines
+
+
+class RecordCutter:
+    """Takes bytes as they come, gives records block by block.
+
+    find: where records end in a window that begins with a record.
+    block_bytes: size of a window; one without a whole record is widened once, to the longest
+    record that is taken (line_bytes).
+    """
+
+    def __init__(
+        self,
+        find: Callable[[bytes], Ends],
+        *,
+        block_bytes: int = BLOCK_BYTES,
+        line_bytes: int = LINE_BYTES,
+    ) -> None:
+        self._find = find
+        self._line_bytes = line_bytes
+        self._sizes = (block_bytes, max(block_bytes, line_bytes + len(b"\r\n")))
+        self._waiting = bytearray()
+        self._line = 1
+        self._begun = False
+
+    def feed(self, piece: bytes) -> Iterator[Records]:
+        """The blocks that this piece completes.
+
+        Raises FormatError where the bytes are not UTF-8, RecordTooLong.
+        """
+        self._waiting += piece
+        return self._blocks(last=False)
+
+    def close(self) -> Iterator[Records]:
+        """What is left when nothing more comes; the last record may lack its line end.
+
+        Raises FormatError where the bytes are not UTF-8 or a quoted cell is still open,
+        RecordTooLong.
+        """
+        if self._waiting and not self._waiting.endswith(b"\n"):
+            self._waiting += b"\n"
+        return self._blocks(last=True)
+
+    def _blocks(self, *, last: bool) -> Iterator[Records]:
+        while self._waiting and (last or len(self._waiting) >= self._sizes[0]):
+            if not self._begun:
+                self._begun = True
+                if self._waiting.startswith(codecs.BOM_UTF8):
+                    del self._waiting[: len(codecs.BOM_UTF8)]
+                    continue
+            records = self._next(last=last)
+            if records is None:
+                return
+            if len(records):
+                yield records
+
+    def _next(self, *, last: bool) -> Records | None:
+        """The records of the next window; None while it takes more bytes to tell."""
+        window, ends = b"", Ends(np.zeros(0, np.int64))
+        for size in self._sizes:
+            if len(self._waiting) < size and not last:
+                return None
+            window = bytes(self._waiting[:size])
+            ends = self._find(window)
+            if len(ends.places):
+                return self._cut(window, ends)
+        self._check_utf8(window)
+        line = self._line + window.count(b"\n", 0, ends.opened or 0)
+        never = "" if ends.opened is None else "the quoted cell that begins here is never closed"
+        if last and len(window) == len(self._waiting):
+            raise FormatError("a closing quote", "the end of the body", line=line, mend=never)
+        raise self._too_long(line, never)
+
+    def _cut(self, window: bytes, ends: Ends) -> Records:
+        text = window[: int(ends.places[-1]) + 1]
+        self._check_utf8(text)
+        del self._waiting[: len(text)]
+        codes = np.frombuffer(text, np.uint8)
+        starts = np.concatenate((np.zeros(1, np.int64), ends.places[:-1] + 1))
+        stops = ends.places - ((codes[ends.places - 1] == CR) & (ends.places > starts))
+        feeds = ends.places
+        if text.count(b"\n") != len(feeds):
+            feeds = np.flatnonzero(codes == LF)
+        lines = self._line + np.searchsorted(feeds, starts)
+        self._line += len(feeds)
+        longest = int(np.argmax(stops - starts))
+        if stops[longest] - starts[longest] > self._line_bytes:
+            raise self._too_long(int(lines[longest]))
+        blank = _blank(text, codes, starts, stops)
+        whole = not blank.any()
+        if not whole:
+            starts, stops, lines = starts[~blank], stops[~blank], lines[~blank]
+        return Records(
+            text, starts, stops, lines, ends.regular and whole, whole and len(feeds) == len(starts)
+        )
+
+    def _check_utf8(self, text: bytes) -> None:
+        try:
+            text.decode()
+        except UnicodeDecodeError as error:
+            at = error.start
+            if error.end == len(text) and "unexpected end" in error.reason:
+                return
+            raise FormatError(
+                "UTF-8",
+                f"the byte 0x{text[at]:02x}",
+                line=self._line + text.count(b"\n", 0, at),
+                mend="save the table as UTF-8",
+            ) from None
+
+    def _too_long(self, line: int, mend: str = "") -> RecordTooLong:
+        return RecordTooLong(
+            f"at most {self._line_bytes} bytes in a record", "more", line=line, mend=mend
+        )
+
+
+def _blank(text: bytes, codes: NDArray[np.uint8], starts: Places, stops: Places) -> NDArray[np.bool_]:
+    """Records of nothing but blanks; only those that begin with one are looked at."""
+    blank = np.isin(codes[starts], BLANKS)
+    for place in np.flatnonzero(blank):
+        blank[place] = not text[starts[place] : stops[place]].strip()
+    return blank

@@ -1,0 +1,1 @@
+"""The pages for a browser, and what they are made of."""

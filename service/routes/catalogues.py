@@ -1,0 +1,108 @@
+"""GET /v1/<catalogue> and /v1/<catalogue>/{name}: what the science knows, and who says so."""
+
+import json
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
+from typing import Annotated, Any
+
+from fastapi import APIRouter, Path, Request, Response
+
+from models.advisories import ADVISORIES
+from models.conductivity import TEMPERATURE_COMPENSATIONS
+from models.flags import FLAGS
+from models.mixing import MIXING_MODELS
+from models.quantity import QUANTITIES
+from models.soil import TEXTURES
+from models.water import WATER_MODELS
+from service.errors import NotFound
+from service.faults import nearest, shortened
+from service.negotiate import VARY, choose
+from service.routes.etag import tagged
+from service.schemas.catalogue import entry_of
+
+OFFERED: Mapping[str, str] = {"json": "application/json"}
+
+
+@dataclass(frozen=True, slots=True)
+class Catalogue:
+    """The members of one registry, or of several; then each tells its ``kind``."""
+
+    path: str
+    what: str
+    members: Mapping[str, Any] = field(repr=False)
+    kinds: bool = False
+
+    @property
+    def noun(self) -> str:
+        """The key of the list in an answer, and the end of the operations' names."""
+        return self.path.replace("-", "_")
+
+    def entries(self) -> dict[str, dict[str, Any]]:
+        """Every entry by its name."""
+        return {
+            name: entry_of(member) | ({"kind": type(member).__name__.lower()} if self.kinds else {})
+            for name, member in self.members.items()
+        }
+
+
+CATALOGUES = (
+    Catalogue("mixing-models", "Dielectric mixing models", MIXING_MODELS),
+    Catalogue("water-models", "Models of the permittivity of water", WATER_MODELS),
+    Catalogue("temperature-compensations", "Temperature compensations of conductivity",
+              TEMPERATURE_COMPENSATIONS),
+    Catalogue("soil-textures", "Texture classes and what they stand for", TEXTURES),
+    Catalogue("flags", "Flags of rows and advisories of answers", {**FLAGS, **ADVISORIES},
+              kinds=True),
+    Catalogue("quantities", "The vocabulary: names, units, gates", QUANTITIES),
+)  # fmt: skip
+
+
+def router_of(catalogue: Catalogue) -> APIRouter:
+    """The two routes of a catalogue."""
+    entries = catalogue.entries()
+    whole = _bytes({catalogue.noun: list(entries.values())})
+    single = {name: _bytes(entry) for name, entry in entries.items()}
+    first = next(iter(entries.values()))
+    router = APIRouter(prefix=f"/v1/{catalogue.path}", tags=["catalogues"])
+
+    async def list_all(request: Request) -> Response:
+        return _answer(request, whole)
+
+    async def show_one(request: Request, name: Name) -> Response:
+        if name not in single:
+            meant = nearest(name, single)
+            raise NotFound(
+                f"/v1/{catalogue.path} has no {shortened(name)}"
+                + (f"; did you mean {meant}?" if meant else "")
+            )
+        return _answer(request, single[name])
+
+    def add(path: str, route: Callable[..., Any], prefix: str, summary: str, example: Any) -> None:
+        router.add_api_route(
+            path,
+            route,
+            name=f"{prefix}_{catalogue.noun}",
+            summary=summary,
+            responses={200: {"content": {OFFERED["json"]: {"example": example}}}},
+            response_class=Response,
+        )
+
+    add("", list_all, "list", catalogue.what, {catalogue.noun: [first]})
+    add("/{name}", show_one, "show", f"{catalogue.what}: one entry", first)
+    return router
+
+
+Name = Annotated[str, Path(description="name of an entry, as the whole catalogue lists it")]
+
+
+def _bytes(document: Any) -> bytes:
+    return json.dumps(document, ensure_ascii=False, allow_nan=False).encode()
+
+
+def _answer(request: Request, body: bytes) -> Response:
+    accept = ", ".join(request.headers.getlist("accept"))
+    media_type = choose(accept, request.query_params.get("format"), OFFERED)
+    return tagged(request, body, media_type, VARY)
+
+
+routers = tuple(router_of(catalogue) for catalogue in CATALOGUES)

@@ -1,0 +1,129 @@
+"""What POST /v1/estimates takes beside its readings, and the example of what it answers."""
+
+from collections.abc import Mapping
+from typing import Annotated, Any, Literal
+
+from pydantic import ConfigDict, Field, TypeAdapter, WithJsonSchema
+
+from models.mixing import MIXING_MODELS
+from models.quantity import NOISE, PROBE, QUANTITIES, READING, SOIL
+from models.soil import TEXTURES
+from service.schemas.words import Body, Number, body_of, described, quantity_fields
+
+ModelKey = Annotated[str, WithJsonSchema({"type": "string", "enum": list(MIXING_MODELS)})]
+TextureKey = Annotated[
+    str, WithJsonSchema({"type": "string", "examples": ["loam"], "enum": list(TEXTURES)})
+]
+ECHOED = ("revision", "water_model", "sources", "model_uncertainty")
+"""What an answer adds to the model and soil it echoes; sent back, it is read past."""
+
+
+class ModelChoice(Body):
+    """A mixing model with parameters of the caller's own.
+
+    Parameters stand beside the name, in the unit of the API, each with its `<name>_u`; which
+    there are is at /v1/mixing-models/{name}.
+    """
+
+    model_config = ConfigDict(extra="allow", frozen=True, hide_input_in_errors=True)
+
+    name: ModelKey
+    standard_error: Annotated[Number, Field(ge=0)] | None = Field(
+        None,
+        description="Replaces the model's own uncertainty [m3/m3]: a site's own figure, or 0 to "
+        "see the share of the inputs alone.",
+    )
+
+
+SoilBody = body_of(
+    "Soil",
+    "A soil. What is not given, the texture class fills in, and the answer says so.",
+    {
+        "texture": (TextureKey | None, Field(None, description="USDA texture class, or peat")),
+        **quantity_fields(SOIL),
+        "sources": (dict[str, str] | None, Field(None, description="as echoed; read past")),
+    },
+)
+
+ProbeBody = body_of(
+    "Probe",
+    "A probe, and the standard uncertainty of what it reads.",
+    {
+        **quantity_fields(PROBE),
+        **{
+            f"{name}_u": (
+                Annotated[Number, Field(ge=0)] | None,
+                Field(None, description=f"of every {name} that states none of its own "
+                      f"[{QUANTITIES[name].unit}]"),
+            )
+            for name in NOISE
+        },
+    },
+)  # fmt: skip
+
+
+class Assume(Body):
+    """What may be assumed where a reading does not say."""
+
+    temperature: Number | None = Field(None, description=described("temperature"))
+
+
+class Propagation(Body):
+    """How uncertainty is carried to the answer."""
+
+    method: Literal["first-order"] = "first-order"
+
+
+class EstimatesSettings(Body):
+    """Everything of a request but its readings."""
+
+    mixing_model: ModelKey | ModelChoice | None = Field(
+        None, description="Left out, the service chooses by declared ranges and says why."
+    )
+    soil: SoilBody = Field(  # type: ignore[valid-type]
+        default_factory=SoilBody, description="Inline description of the soil."
+    )
+    probe: ProbeBody = Field(  # type: ignore[valid-type]
+        default_factory=ProbeBody, description="Inline description of the probe."
+    )
+    coverage_probability: Annotated[Number, Field(ge=0.5, le=0.999)] = 0.95
+    propagation: Propagation = Propagation()
+    assume: Assume = Assume()
+    units: dict[str, str] = Field(
+        default_factory=dict,
+        description="UCUM codes by quantity, where they differ from the API's own unit.",
+        examples=[{"bulk_conductivity": "mS/m"}],
+    )
+
+
+SETTINGS = TypeAdapter(EstimatesSettings)
+
+
+def reading_schema() -> Mapping[str, Any]:
+    """JSON schema of the readings: a list of objects, or one object of arrays."""
+    number = {"type": ["number", "null"]}
+    text = {"type": ["string", "null"]}
+    cells: dict[str, Any] = {}
+    for name in READING:
+        kind = number if QUANTITIES[name].unit else text
+        cells[name] = {**kind, "description": described(name)}
+        if name in NOISE:
+            cells[f"{name}_u"] = {**number, "description": f"standard uncertainty of {name}"}
+    row = {"type": "object", "properties": cells, "additionalProperties": False}
+    columns = {
+        "type": "object",
+        "properties": {
+            name: {"type": "array", "items": {"type": cell["type"]}} for name, cell in cells.items()
+        },
+        "additionalProperties": False,
+    }
+    return {"oneOf": [{"type": "array", "items": row, "minItems": 1}, columns]}
+
+
+def request_schema() -> dict[str, Any]:
+    """JSON schema of the whole JSON body."""
+    schema = SETTINGS.json_schema(ref_template="#/components/schemas/{model}")
+    schema.pop("$defs", None)
+    schema["properties"] = {**schema["properties"], "readings": reading_schema()}
+    schema["required"] = ["readings"]
+    return schema
