@@ -133,5 +133,6 @@ def _misfit(parameter: Parameter, value: Any) -> list[Complaint]:
         known = column(value)
         if np.any(parameter.range.excludes(known[~np.isnan(known)])):
             worst = known[parameter.range.excludes(known)].flat[0]
-            return [Complaint(name, f"takes {name} in {parameter.range}, found {worst:g}")]
+            detail = f"takes {name} in {parameter.range}, found {worst:g}"
+            return [Complaint(name, detail, ("mixing_model", name))]
     return []

@@ -7,8 +7,8 @@ from starlette.datastructures import Headers
 from starlette.types import ASGIApp, Receive, Scope, Send
 
 from service.errors import Forbidden, Unauthenticated
-from service.keys import KeyFile, Reach
 from service.settings import Settings, SettingsError
+from service.store.keys import KeyFile, Reach
 
 GUARDED = "/v1/"
 """What lies elsewhere says nothing about anyone's soil: health, documentation, problem types."""

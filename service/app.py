@@ -15,8 +15,8 @@ from service.access import RequireKey, keys_of
 from service.errors import add_error_handlers
 from service.limits import LimitBody
 from service.observe import Observe
-from service.openapi import Api, operation_id
-from service.routes import catalogues, health, pages, problems
+from service.routes import catalogues, estimates, health, pages, problems
+from service.schemas.openapi import Api, operation_id
 from service.settings import Settings, read_settings
 
 DESCRIPTION = """
@@ -61,7 +61,8 @@ def create_api(settings: Settings) -> Api:
     )
     api.state.settings = settings
     api.state.draining = False
-    for router in (health.router, problems.router, pages.router, *catalogues.routers):
+    main = (estimates.router, health.router, problems.router, pages.router)
+    for router in (*main, *catalogues.routers):
         api.include_router(router)
     add_error_handlers(api)
     return api

@@ -1,4 +1,4 @@
-"""The command gleyline: serve, key, openapi."""
+"""The command gleyline: serve, convert, demo, key, openapi."""
 
 import errno
 import json
@@ -16,9 +16,11 @@ from uvicorn.supervisors import Multiprocess
 
 from service import __version__
 from service.access import keys_of
-from service.keys import SCOPES, KeyFile, KeyFileError, Reach
+from service.convert import convert
+from service.demo.run import demo
 from service.logs import logging_config
 from service.settings import Settings, SettingsError, data_folder, misspelt, read_settings, variable
+from service.store.keys import SCOPES, KeyFile, KeyFileError, Reach
 
 log = logging.getLogger("gleyline")
 
@@ -64,6 +66,7 @@ def serve(**given: str | None) -> None:
         workers=settings.workers,
         access_log=False,
         server_header=False,
+        ws="none",
         log_config=logging_config(settings.log_format),
         timeout_graceful_shutdown=int(settings.request_seconds) + 1,
     )
@@ -71,7 +74,9 @@ def serve(**given: str | None) -> None:
         log.warning("%s", sentence)
     listener = _listen(settings)
     host, port = listener.getsockname()[:2]
-    log.info("gleyline %s serves http://%s:%d", __version__, f"[{host}]" if ":" in host else host, port)
+    log.info(
+        "gleyline %s serves http://%s:%d", __version__, f"[{host}]" if ":" in host else host, port
+    )
     server = uvicorn.Server(config)
     try:
         if settings.workers > 1:
@@ -159,6 +164,10 @@ def openapi() -> None:
     click.echo(
         json.dumps(create_api(Settings.model_construct()).openapi(), indent=2, ensure_ascii=False)
     )
+
+
+main.add_command(convert)
+main.add_command(demo)
 
 
 if __name__ == "__main__":

@@ -18,7 +18,8 @@ from starlette.requests import ClientDisconnect
 from starlette.types import Scope
 
 from models.errors import ModelError, ParameterError
-from service.faults import Fault, faults_of
+from service.faults import Fault, faults_of, pointer
+from service.formats.errors import CellError, FormatError, HeaderError, RecordTooLong, SpoolFull
 
 MEDIA_TYPE = "application/problem+json"
 MOST_FAULTS = 20
@@ -36,11 +37,11 @@ class Problem(HTTPException):
 
     def __init__(
         self,
-        detail: str,
+        detail: object,
         errors: Sequence[Fault] = (),
         headers: Mapping[str, str] | None = None,
     ) -> None:
-        super().__init__(self.status, detail, dict(headers or {}))
+        super().__init__(self.status, str(detail) or self.title(), dict(headers or {}))
         self.errors = tuple(errors)
 
     @classmethod
@@ -193,24 +194,34 @@ def _of_request(error: RequestValidationError) -> Problem:
     return Unprocessable("the request holds values that cannot be used", faults_of(items))
 
 
-def _of_disconnect(_: ClientDisconnect) -> Problem:
-    return Malformed("the connection ended before the body did")
-
-
 def _of_parameters(error: ParameterError) -> Problem:
-    return Unprocessable(str(error), [Fault(c.detail, "#") for c in error.complaints])
+    faults = [Fault(c.detail, pointer(c.place)) for c in error.complaints]
+    return Unprocessable(str(error), faults)
 
 
-def _of_model(error: ModelError) -> Problem:
-    return Unprocessable(str(error))
+def _of_table(error: FormatError) -> Problem:
+    """What a table holds that it should not; strict reading and headers are the caller's words."""
+    if isinstance(error, RecordTooLong):
+        return TooLarge(str(error))
+    place = f"line {error.line}" if error.column is None else f"line {error.line}, {error.column}"
+    faults = [Fault(str(error), place)]
+    if isinstance(error, HeaderError | CellError):
+        return Unprocessable(str(error), faults)
+    return Malformed(str(error), faults)
+
+
+def _of_spool(error: SpoolFull) -> Problem:
+    return Unavailable(f"{error}; ask again later, or send the table in parts", retry_after=60)
 
 
 TRANSLATIONS: Mapping[type[Exception], Callable[[Any], Problem]] = MappingProxyType({
     HTTPException: _of_http,
     RequestValidationError: _of_request,
-    ClientDisconnect: _of_disconnect,
+    ClientDisconnect: Malformed,
     ParameterError: _of_parameters,
-    ModelError: _of_model,
+    ModelError: Unprocessable,
+    FormatError: _of_table,
+    SpoolFull: _of_spool,
 })  # fmt: skip
 """What the layers below raise, as problems; the most derived class decides."""
 

@@ -76,6 +76,12 @@ def nearest(name: str, known: Iterable[str]) -> str | None:
     return close[0] if close else None
 
 
+def hint(name: str, known: Iterable[str]) -> str:
+    """The end of a sentence about an unknown name."""
+    meant = nearest(name, known)
+    return f"; did you mean {meant}?" if meant else ""
+
+
 def shown(value: Any) -> str:
     """A value as a sentence can hold it; of a whole list or object only what it is."""
     if isinstance(value, str):
@@ -164,18 +170,15 @@ def _detail(place: Location, item: Mapping[str, Any], schema: Mapping[str, Any])
         return f"expected {EXPECTED[kind].format_map(context)}, found {context['actual_length']}"
     if kind in EXPECTED:
         choices = re.findall("'([^']*)'", context.get("expected", ""))
-        meant = nearest(str(given), choices) if choices else None
-        hint = f"; did you mean {meant}?" if meant else ""
-        return f"expected {EXPECTED[kind].format_map(context)}, found {shown(given)}{hint}"
+        meant = hint(str(given), choices) if choices else ""
+        return f"expected {EXPECTED[kind].format_map(context)}, found {shown(given)}{meant}"
     message = re.sub(r"^(Input|Value) should be ", "expected ", str(item["msg"]))
     return f"{message[:1].lower()}{message[1:]}, found {shown(given)}"
 
 
 def _unknown(name: str, known: Sequence[str]) -> str:
-    meant = nearest(name, known)
-    if meant:
-        return f"unknown key {shown(name)}; did you mean {meant}?"
-    return f"unknown key {shown(name)}" + (f"; known are {', '.join(known)}" if known else "")
+    listed = f"; known are {', '.join(known)}" if known else ""
+    return f"unknown key {shown(name)}{hint(name, known) or listed}"
 
 
 def _keys(node: Any, root: Mapping[str, Any], place: Location) -> Iterator[str]:

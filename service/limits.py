@@ -14,6 +14,7 @@ from service.settings import Settings
 
 BATCH_PATHS = ("/v1/estimates",)
 """Paths that take a table of any length as their body."""
+JSON = "JSON"
 JSON_SUFFIXES = ("/json", "+json")
 
 PIECE = 64 * 1024
@@ -31,10 +32,8 @@ class BodyLimit:
 
     def refusal(self, counted: str, most: int) -> TooLarge:
         """The answer to a body above it."""
-        return TooLarge(
-            f"the {self.kind} body has more than {most} bytes {counted}; /v1/limits shows what is "
-            "taken, and a long table belongs in a CSV or NDJSON body of POST /v1/estimates"
-        )
+        way = "send a long table as CSV or NDJSON" if self.kind == JSON else "send it in parts"
+        return TooLarge(f"the {self.kind} body has more than {most} bytes {counted}; {way}")
 
 
 def limit_of(path: str, media_type: str, settings: Settings) -> BodyLimit:
@@ -42,7 +41,7 @@ def limit_of(path: str, media_type: str, settings: Settings) -> BodyLimit:
     kind = media_type.partition(";")[0].strip().lower()
     if path.startswith(BATCH_PATHS) and kind and not kind.endswith(JSON_SUFFIXES):
         return BodyLimit(settings.wire_body_bytes, settings.batch_body_bytes, kind)
-    return BodyLimit(settings.json_body_bytes, settings.json_body_bytes, "JSON")
+    return BodyLimit(settings.json_body_bytes, settings.json_body_bytes, JSON)
 
 
 class LimitBody:
@@ -172,6 +171,7 @@ class Body:
         """
         if self._over:
             return await self._receive()
+        await asyncio.sleep(0)  # what was decoded is there at once: let others have their turn
         while not (piece := self._decoder.take()) and not self._arrived:
             message = await self._next()
             if message["type"] != "http.request":

@@ -90,7 +90,7 @@ class Observe:
         outwards = _sender(exchange, send)
         try:
             await self.app(scope, receive, outwards)
-        except Exception as error:  # noqa: BLE001: what nobody expected ends here
+        except Exception as error:  # what nobody expected ends here
             problem = as_problem(error)
             if problem.status == InternalError.status:
                 _log_failure(exchange, error)

@@ -1,8 +1,8 @@
 """How far a mixing model itself may be from this soil, here, at this reading.
 
 A model's declared uncertainty holds well inside its range. Outside, terms are added in
-quadrature, each with the observation it rests on. Clay at low frequency only ever makes a soil look wetter than it is:
-that term reaches down, not up.
+quadrature, each with the observation it rests on. Clay at low frequency only ever makes a soil
+look wetter than it is: that term reaches down, not up.
 """
 
 from dataclasses import dataclass

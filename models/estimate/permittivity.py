@@ -62,7 +62,7 @@ def permittivity_of(
             apparent = apparent.or_else(_Part(to_apparent(real, known), u, 0.0 * u))
         return Permittivity(apparent.value, apparent.per_reading, apparent.shared, loss)
     uncorrected = None
-    if loss is not None:
+    if loss is not None and loss_u is not None:
         uncorrected = apparent.value
         apparent = _without_loss(apparent, np.nan_to_num(loss), np.nan_to_num(loss_u))
     if real is not None:

@@ -56,7 +56,7 @@ def water_content_of(
 
     def measurand(**named: Array) -> Array:
         permittivity = named.pop("permittivity")
-        return basis.model.to_water_content(permittivity, **basis.values | named)
+        return basis.model.to_water_content(permittivity, **{**basis.values, **named})
 
     computed = measurand(permittivity=found.value, **at)
     spread = propagate(measurand, inputs, computed)

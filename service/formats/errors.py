@@ -4,6 +4,7 @@ FormatError          the body is not what its media type promises
     HeaderError      its columns do not fit the request
     CellError        a cell is refused, where the caller asked for strictness
     RecordTooLong    one record exceeds what is taken
+SpoolFull            there is no room for the answer
 """
 
 SHOWN = 60
@@ -44,3 +45,7 @@ class CellError(FormatError):
 
 class RecordTooLong(FormatError):
     """One record of the table is longer than this service takes."""
+
+
+class SpoolFull(Exception):
+    """There is no room for the answer on this machine."""

@@ -43,6 +43,14 @@ def encode(frame: pl.DataFrame, shape: str, rest: Mapping[str, Any]) -> bytes:
     return b'{"estimates":' + body + b"," + orjson.dumps(rest)[1:]
 
 
+def tabulate(frame: pl.DataFrame, media_type: str) -> bytes:
+    """The estimates alone, as a table."""
+    if media_type == "text/csv":
+        flat = frame.with_columns(pl.col("flags").list.join(";"))
+        return flat.write_csv().encode()
+    return frame.write_ndjson().encode()
+
+
 def flag_lists(flags: Flags) -> pl.Series:
     """Flags as a column of lists of slugs; each combination is spelt out once."""
     masks, place = np.unique(flags, return_inverse=True)

@@ -58,6 +58,12 @@ class Records:
     def __len__(self) -> int:
         return len(self.starts)
 
+    @classmethod
+    def none(cls) -> "Records":
+        """No records."""
+        places = np.zeros(0, np.int64)
+        return cls(b"", places, places, places, regular=False, dense=False)
+
     def without_first(self) -> "Records":
         """All but the first record."""
         begin = int(self.starts[1]) if len(self) > 1 else len(self.text)
@@ -196,7 +202,9 @@ class RecordCutter:
         )
 
 
-def _blank(text: bytes, codes: NDArray[np.uint8], starts: Places, stops: Places) -> NDArray[np.bool_]:
+def _blank(
+    text: bytes, codes: NDArray[np.uint8], starts: Places, stops: Places
+) -> NDArray[np.bool_]:
     """Records of nothing but blanks; only those that begin with one are looked at."""
     blank = np.isin(codes[starts], BLANKS)
     for place in np.flatnonzero(blank):

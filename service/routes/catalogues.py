@@ -15,11 +15,15 @@ from models.quantity import QUANTITIES
 from models.soil import TEXTURES
 from models.water import WATER_MODELS
 from service.errors import NotFound
-from service.faults import nearest, shortened
+from service.faults import hint, shortened
 from service.negotiate import VARY, choose
 from service.routes.etag import tagged
 from service.schemas.catalogue import entry_of
 
+MANNERS = (
+    "Ranges and defaults are in the unit that stands beside them; errors and uncertainties of "
+    "water content in m3/m3, k = 1. Strong `ETag`; `If-None-Match` is answered with 304."
+)
 OFFERED: Mapping[str, str] = {"json": "application/json"}
 
 
@@ -29,40 +33,38 @@ class Catalogue:
 
     path: str
     what: str
-    members: Mapping[str, Any] = field(repr=False)
-    kinds: bool = False
+    registries: tuple[Mapping[str, Any], ...] = field(repr=False)
 
     @property
     def noun(self) -> str:
         """The key of the list in an answer, and the end of the operations' names."""
         return self.path.replace("-", "_")
 
-    def entries(self) -> dict[str, dict[str, Any]]:
-        """Every entry by its name."""
-        return {
-            name: entry_of(member) | ({"kind": type(member).__name__.lower()} if self.kinds else {})
-            for name, member in self.members.items()
-        }
+    def entries(self) -> list[dict[str, Any]]:
+        """Every entry, in the order of declaration."""
+        members = [member for registry in self.registries for member in registry.values()]
+        if len(self.registries) == 1:
+            return [entry_of(member) for member in members]
+        return [{**entry_of(member), "kind": type(member).__name__.lower()} for member in members]
 
 
 CATALOGUES = (
-    Catalogue("mixing-models", "Dielectric mixing models", MIXING_MODELS),
-    Catalogue("water-models", "Models of the permittivity of water", WATER_MODELS),
+    Catalogue("mixing-models", "Dielectric mixing models", (MIXING_MODELS,)),
+    Catalogue("water-models", "Models of the permittivity of water", (WATER_MODELS,)),
     Catalogue("temperature-compensations", "Temperature compensations of conductivity",
-              TEMPERATURE_COMPENSATIONS),
-    Catalogue("soil-textures", "Texture classes and what they stand for", TEXTURES),
-    Catalogue("flags", "Flags of rows and advisories of answers", {**FLAGS, **ADVISORIES},
-              kinds=True),
-    Catalogue("quantities", "The vocabulary: names, units, gates", QUANTITIES),
+              (TEMPERATURE_COMPENSATIONS,)),
+    Catalogue("soil-textures", "Texture classes and what they stand for", (TEXTURES,)),
+    Catalogue("flags", "Flags of rows and advisories of answers", (FLAGS, ADVISORIES)),
+    Catalogue("quantities", "The vocabulary: names, units, gates", (QUANTITIES,)),
 )  # fmt: skip
 
 
 def router_of(catalogue: Catalogue) -> APIRouter:
     """The two routes of a catalogue."""
     entries = catalogue.entries()
-    whole = _bytes({catalogue.noun: list(entries.values())})
-    single = {name: _bytes(entry) for name, entry in entries.items()}
-    first = next(iter(entries.values()))
+    whole = _bytes({catalogue.noun: entries})
+    single = {entry["name"]: _bytes(entry) for entry in reversed(entries)}  # a flag before advice
+    first = entries[0]
     router = APIRouter(prefix=f"/v1/{catalogue.path}", tags=["catalogues"])
 
     async def list_all(request: Request) -> Response:
@@ -70,20 +72,18 @@ def router_of(catalogue: Catalogue) -> APIRouter:
 
     async def show_one(request: Request, name: Name) -> Response:
         if name not in single:
-            meant = nearest(name, single)
-            raise NotFound(
-                f"/v1/{catalogue.path} has no {shortened(name)}"
-                + (f"; did you mean {meant}?" if meant else "")
-            )
+            raise NotFound(f"/v1/{catalogue.path} has no {shortened(name)}{hint(name, single)}")
         return _answer(request, single[name])
 
     def add(path: str, route: Callable[..., Any], prefix: str, summary: str, example: Any) -> None:
+        content = {OFFERED["json"]: {"schema": {"type": "object"}, "example": example}}
         router.add_api_route(
             path,
             route,
             name=f"{prefix}_{catalogue.noun}",
             summary=summary,
-            responses={200: {"content": {OFFERED["json"]: {"example": example}}}},
+            description=MANNERS,
+            responses={200: {"content": content}},
             response_class=Response,
         )
 

@@ -1,5 +1,6 @@
 """POST /v1/estimates: readings in, water content with its band out."""
 
+import tempfile
 from collections.abc import Mapping
 from typing import Any
 
@@ -7,65 +8,121 @@ import anyio.to_thread
 import orjson
 from fastapi import APIRouter, Request
 from fastapi.responses import Response
-from pydantic import ValidationError
 
-from models.estimate import Estimates, estimate
+from models.estimate import Remarks, estimate
 from models.readings import read
-from service.errors import Malformed, Unprocessable
-from service.faults import Fault, problems_of
-from service.formats.json_estimates import encode, frame_of
+from service.batch import IN_MEMORY, Conversion, SpooledResponse, convert_stream
+from service.batch_estimates import APPENDED, TableEstimates
+from service.errors import Malformed, Unprocessable, UnsupportedMediaType
+from service.faults import Fault
+from service.formats import FORMATS, MEDIA_TYPES, Format, format_of
+from service.formats.json_estimates import encode, frame_of, tabulate
 from service.formats.json_readings import decode
-from service.schemas.estimates import SETTINGS, EstimatesSettings, request_schema
-from service.schemas.query import basis_of, echo_of, units_of_answer
+from service.negotiate import VARY, choose
+from service.routes.estimates_description import DESCRIPTION
+from service.schemas.batch_query import ASIDE, document_of
+from service.schemas.query import basis_of, echo_of, settings_of, units_of_answer
 
 router = APIRouter(tags=["estimates"])
 
+JSON = "application/json"
 INLINE = 2000
-"""Readings up to which the answer is worked out at once; longer ones go to a thread."""
+"""Readings up to which the answer is worked out at once; more of them go to a thread."""
 
 
-@router.post("/v1/estimates", summary="Water content with its band", openapi_extra={})
+@router.post("/v1/estimates", summary="Water content with its band", openapi_extra=DESCRIPTION)
 async def post_estimates(request: Request) -> Response:
-    """Water content of each reading, with standard uncertainty, interval and flags."""
-    body = await request.body()
-    document = _parsed(body)
-    readings = document.pop("readings")
-    few = isinstance(readings, list) and len(readings) <= INLINE
+    """Water content of each reading, with its standard uncertainty, interval and flags."""
+    media_type = request.headers.get("content-type", "")
+    table = format_of(media_type)
+    if table is not None:
+        return await _table(request, table)
+    if media_type.partition(";")[0].strip().lower() != JSON:
+        accepted = ", ".join((JSON, *MEDIA_TYPES.values()))
+        raise UnsupportedMediaType(
+            f"expected a Content-Type of {accepted}, found {media_type[:80] or 'none'}",
+            headers={"Accept": accepted},
+        )
+    offered = {"json": JSON, **MEDIA_TYPES}
+    answered = choose(request.headers.get("accept"), request.query_params.get("format"), offered)
+    _refuse_query(request)
+    document = _parsed(await request.body())
+    few = len(document["readings"]) <= INLINE if isinstance(document["readings"], list) else False
+    most = request.app.state.settings.json_readings
     if few:
-        return _answer(readings, document)
-    return await anyio.to_thread.run_sync(_answer, readings, document)
+        return _answer(document, answered, most)
+    return await anyio.to_thread.run_sync(_answer, document, answered, most)
+
+
+def _refuse_query(request: Request) -> None:
+    stray = [name for name in request.query_params if name not in ASIDE]
+    if stray:
+        detail = "a JSON request says everything in its body; the query holds only format"
+        raise Unprocessable(detail, [Fault(detail, f"?{name[:80]}") for name in stray])
 
 
 def _parsed(body: bytes) -> dict[str, Any]:
     try:
         document = orjson.loads(body)
     except orjson.JSONDecodeError as error:
-        raise Malformed(f"the body is not JSON: {error}") from None
+        hint = ""
+        if any(word in body[max(0, error.pos - 2) : error.pos + 10] for word in (b"NaN", b"Inf")):
+            hint = "; JSON has no NaN and no Infinity: send null where there is no number"
+        raise Malformed(f"the body is not JSON: {error}{hint}") from None
     if not isinstance(document, dict):
         raise Unprocessable("expected an object", [Fault("expected an object", "#")])
     if "readings" not in document:
-        raise Unprocessable("readings are missing", [Fault("readings is missing", "#/readings")])
+        raise Unprocessable("readings is missing", [Fault("readings is missing", "#/readings")])
     return document
 
 
-def _settings(document: Mapping[str, Any]) -> EstimatesSettings:
-    try:
-        return SETTINGS.validate_python(document)
-    except ValidationError as error:
-        raise Unprocessable(
-            "the request holds what cannot be used", problems_of(error, document, SETTINGS)
-        ) from None
-
-
-def _answer(readings: Any, document: Mapping[str, Any]) -> Response:
-    settings = _settings(document)
-    sent = decode(readings, most=20_000)
+def _answer(document: dict[str, Any], answered: str, most: int) -> Response:
+    sent = decode(document.pop("readings"), most=most)
+    settings = settings_of(document)
     basis = basis_of(settings, (*sent.numbers, *sent.texts))
-    result: Estimates = estimate(read(sent.numbers, settings.units, {}), basis)
+    result = estimate(read(sent.numbers, settings.units, {}), basis)
     frame = frame_of(result, sent, settings.units)
-    units = units_of_answer((*sent.numbers, *result.columns), settings.units)
-    rest = {"units": units, **echo_of(basis, settings)}
-    return Response(encode(frame, sent.shape, rest), media_type="application/json")
+    if answered != JSON:
+        return Response(tabulate(frame, answered), media_type=answered, headers=VARY)
+    units = units_of_answer(frame.columns[:-1], settings.units)
+    remarks = Remarks()
+    remarks.note(sent.numbers, settings.units, result.flags)
+    rest = {"units": units, **echo_of(basis, settings, remarks.advice(settings.units))}
+    return Response(encode(frame, sent.shape, rest), media_type=JSON, headers=VARY)
 
 
-SCHEMA = request_schema()
+async def _table(request: Request, sent: Format) -> Response:
+    """Stream a table in, spool its answer, send it after the last byte."""
+    limits = request.app.state.settings
+    preferred = {sent.key: sent.media_type, **MEDIA_TYPES}
+    asked = request.query_params.get("format")
+    answered = choose(request.headers.get("accept"), asked, preferred)
+    table = TableEstimates(settings_of(document_of(request.query_params.multi_items())))
+    target = next(f for f in FORMATS.values() if f.media_type == answered)
+    conversion = Conversion(
+        sent.decoder(APPENDED, block_bytes=limits.block_bytes, line_bytes=limits.line_bytes),
+        target.encoder(),
+        table,
+        strict=_is_true(request.query_params.get("strict")),
+    )
+    spool = tempfile.SpooledTemporaryFile(IN_MEMORY)  # noqa: SIM115 - the response closes it
+    try:
+        counts = await convert_stream(request.stream(), conversion, spool)
+        headers: Mapping[str, str] = {
+            **VARY,
+            **table.headers(),
+            "Row-Count": str(counts.rows),
+            "Flagged-Count": str(counts.flagged),
+        }
+        return SpooledResponse(spool, answered, headers)
+    except BaseException:
+        spool.close()
+        raise
+
+
+def _is_true(text: str | None) -> bool:
+    if text is None or text == "false":
+        return False
+    if text == "true":
+        return True
+    raise Unprocessable("strict is true or false", [Fault("strict is true or false", "?strict")])

@@ -15,7 +15,7 @@ PAGE = files("service.page")
 SWAGGER = files("fastapi_offline").joinpath("static")
 
 START_POLICY = {
-    "Content-Security-Policy": "default-src 'none'; style-src 'unsafe-inline'; img-src data:; "
+    "Content-Security-Policy": "default-src 'none'; style-src 'unsafe-inline'; img-src 'self'; "
     "base-uri 'none'; form-action 'none'; frame-ancestors 'none'"
 }
 DOCS_POLICY = {
@@ -43,6 +43,12 @@ async def start_page(request: Request) -> Response:
     page = _read("start.html").decode()
     page = page.replace("{{base}}", base).replace("{{version}}", __version__)
     return tagged(request, page.encode(), "text/html", START_POLICY)
+
+
+@router.get("/favicon.ico")
+async def icon(request: Request) -> Response:
+    """What a browser asks for beside any page or document."""
+    return tagged(request, _read("icon.svg"), "image/svg+xml")
 
 
 @router.get("/docs")

@@ -5,7 +5,7 @@ from typing import Any
 from fastapi import APIRouter
 
 from service.errors import PROBLEMS, NotFound, Problem, Unprocessable
-from service.faults import nearest, shortened
+from service.faults import hint, shortened
 
 router = APIRouter(prefix="/problems", tags=["service"])
 
@@ -37,7 +37,6 @@ async def list_problems() -> dict[str, Any]:
 async def show_problem(slug: str) -> dict[str, Any]:
     """What a `type` stands for, and what the caller can do."""
     if slug not in PROBLEMS:
-        meant = nearest(slug, PROBLEMS)
-        hint = f"; did you mean {meant}?" if meant else ""
-        raise NotFound(f"no kind of problem is called {shortened(slug)}{hint}")
+        called = f"{shortened(slug)}{hint(slug, PROBLEMS)}"
+        raise NotFound(f"no kind of problem is called {called}")
     return _described(PROBLEMS[slug])

@@ -101,9 +101,11 @@ def _(value: Parameter) -> dict[str, Any]:
 def converted(value: Any, name: str) -> Any:
     """``value`` as JSON, from SI to the API's unit where ``name`` is a quantity's or its ``_u``."""
     if isinstance(value, Range):
-        return {"low": converted(value.low, name), "high": converted(value.high, name)}
+        unit = unit_of(name)
+        ends = {"low": converted(value.low, name), "high": converted(value.high, name)}
+        return {**ends, "unit": unit.code} if unit else ends
     if isinstance(value, Mapping):
-        return {key: converted(member, key) | _unit_member(key) for key, member in value.items()}
+        return {key: converted(member, key) for key, member in value.items()}
     if isinstance(value, Sequence) and not isinstance(value, str):
         return [converted(member, name) for member in value]
     if not isinstance(value, float):
@@ -120,11 +122,6 @@ def unit_of(name: str) -> Unit | None:
     """The API's unit of a quantity of the vocabulary; None for any other name."""
     quantity = QUANTITIES.get(name)
     return UNITS[quantity.unit] if quantity and quantity.unit else None
-
-
-def _unit_member(name: str) -> dict[str, str]:
-    unit = unit_of(name)
-    return {"unit": unit.code} if unit else {}
 
 
 def _must_be_given(parameter: Parameter) -> bool:

@@ -5,6 +5,7 @@ from typing import Annotated, Any, Literal
 
 from pydantic import ConfigDict, Field, TypeAdapter, WithJsonSchema
 
+from models.estimate.estimates import band_names
 from models.mixing import MIXING_MODELS
 from models.quantity import NOISE, PROBE, QUANTITIES, READING, SOIL
 from models.soil import TEXTURES
@@ -127,3 +128,36 @@ def request_schema() -> dict[str, Any]:
     schema["properties"] = {**schema["properties"], "readings": reading_schema()}
     schema["required"] = ["readings"]
     return schema
+
+
+def answer_schema() -> dict[str, Any]:
+    """JSON schema of the JSON answer."""
+    row = {
+        "type": "object",
+        "properties": {
+            **{name: {"type": ["number", "null"]} for name in band_names("water_content")},
+            "flags": {"type": "array", "items": {"type": "string"}},
+        },
+    }
+    advisory = {
+        "type": "object",
+        "properties": {"code": {"type": "string"}, "text": {"type": "string"}},
+    }
+    return {
+        "type": "object",
+        "required": ["estimates", "units", "mixing_model", "soil", "advisories"],
+        "properties": {
+            "estimates": {
+                "description": "rows, or columns of equal length: as the readings came",
+                "oneOf": [{"type": "array", "items": row}, {"type": "object"}],
+            },
+            "units": {"type": "object", "additionalProperties": {"type": "string"}},
+            "mixing_model": {"type": "object"},
+            "soil": {"type": "object"},
+            "probe": {"type": "object"},
+            "assume": {"type": "object"},
+            "coverage_probability": {"type": "number"},
+            "propagation": {"type": "object"},
+            "advisories": {"type": "array", "items": advisory},
+        },
+    }

@@ -3,6 +3,9 @@
 from collections.abc import Iterable, Mapping
 from typing import Any
 
+from pydantic import ValidationError
+
+from models.advisories import Advice
 from models.conversion import Units, from_si, refuse_units, to_si
 from models.errors import Complaint, ParameterError
 from models.estimate import Basis, Query, choose, prepare
@@ -10,7 +13,21 @@ from models.mixing import MIXING_MODELS
 from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from models.soil.description import Soil, describe
-from service.schemas.estimates import ECHOED, EstimatesSettings, ModelChoice
+from service.errors import Unprocessable
+from service.faults import problems_of
+from service.schemas.estimates import ECHOED, SETTINGS, EstimatesSettings, ModelChoice
+
+
+def settings_of(document: Mapping[str, Any]) -> EstimatesSettings:
+    """The checked settings of a request without its readings.
+
+    Raises Unprocessable with a pointer to every fault.
+    """
+    try:
+        return SETTINGS.validate_python(document)
+    except ValidationError as error:
+        faults = problems_of(error, document, SETTINGS)
+        raise Unprocessable("the request holds what cannot be used", faults) from None
 
 
 def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis:
@@ -39,8 +56,11 @@ def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis:
     return prepare(query) if name else choose(query)
 
 
-def echo_of(basis: Basis, settings: EstimatesSettings) -> dict[str, Any]:
-    """Every constant that was used, so that the answer can be had again from itself."""
+def echo_of(basis: Basis, settings: EstimatesSettings, remarks: Iterable[Advice]) -> dict[str, Any]:
+    """Every constant that was used, so that the answer can be had again from itself.
+
+    remarks: advisories that the readings themselves gave rise to.
+    """
     query, units = basis.query, settings.units
     return {
         "mixing_model": _model_echo(basis, units),
@@ -52,7 +72,9 @@ def echo_of(basis: Basis, settings: EstimatesSettings) -> dict[str, Any]:
         ),
         "coverage_probability": query.probability,
         "propagation": {"method": "first-order", "interval": "shortest"},
-        "advisories": [{"code": said.code, "text": said.text} for said in basis.advice],
+        "advisories": [
+            {"code": said.code, "text": said.text} for said in (*basis.advice, *remarks)
+        ],
     }
 
 

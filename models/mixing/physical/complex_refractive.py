@@ -8,7 +8,7 @@ permittivity of the water; its real part is known, which leaves a quadratic equa
 """
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import ArrayLike, NDArray
 
 from models.conductivity.loss import conduction_loss
 from models.mixing.family import Discrepancy, MixingModel
@@ -90,15 +90,15 @@ def to_water_content_and_conductivity(
 
 @np.errstate(all="ignore")
 def to_water_content(
-    permittivity: Numbers,
+    permittivity: ArrayLike,
     /,
     *,
-    water_permittivity: Numbers,
-    water_loss: Numbers,
-    porosity: Numbers,
-    solid_permittivity: Numbers,
-    solid_loss: Numbers,
-    loss: Numbers | None = None,
+    water_permittivity: ArrayLike,
+    water_loss: ArrayLike,
+    porosity: ArrayLike,
+    solid_permittivity: ArrayLike,
+    solid_loss: ArrayLike,
+    loss: ArrayLike | None = None,
 ) -> Array:
     """Water content of a soil of known porosity, elementwise, m3/m3.
 
@@ -109,28 +109,29 @@ def to_water_content(
     NaN as in ``to_water_content_and_conductivity``. Without it, the water is taken to lose no more
     than ``water_loss``.
     """
-    ka, solid = column(permittivity), np.sqrt(solid_permittivity - 1j * column(solid_loss))
+    ka, solid = column(permittivity), _index(solid_permittivity, solid_loss)
     if loss is None:
-        water = np.sqrt(water_permittivity - 1j * column(water_loss)).real
-        return np.asarray(crim.to_water_content(
-            ka, water_permittivity=water**2, porosity=porosity, solid_permittivity=solid.real**2,
-        ))  # fmt: skip
-    index = np.sqrt(ka)
-    excess = index - 1j * column(loss) / (2 * index) - ((1 - porosity) * solid + porosity)
+        water = _index(water_permittivity, water_loss)
+        return crim.to_water_content(
+            ka, water_permittivity=water.real**2, porosity=porosity,
+            solid_permittivity=solid.real**2,
+        )  # fmt: skip
+    dry, index = _dry(solid, porosity), np.sqrt(ka)
+    excess = index - 1j * column(loss) / (2 * index) - dry
     return _from_index(np.where(2 * ka > column(loss), excess, np.nan), column(water_permittivity))
 
 
 @np.errstate(all="ignore")
 def to_permittivity(
-    water_content: Numbers,
+    water_content: ArrayLike,
     /,
     *,
-    water_permittivity: Numbers,
-    water_loss: Numbers,
-    porosity: Numbers,
-    solid_permittivity: Numbers,
-    solid_loss: Numbers,
-    loss: Numbers | None = None,
+    water_permittivity: ArrayLike,
+    water_loss: ArrayLike,
+    porosity: ArrayLike,
+    solid_permittivity: ArrayLike,
+    solid_loss: ArrayLike,
+    loss: ArrayLike | None = None,
 ) -> Array:
     """Apparent permittivity of a wet soil, elementwise; arguments as in ``to_water_content``.
 
@@ -138,14 +139,14 @@ def to_permittivity(
     all; NaN where ``to_water_content`` would not find the way back. To start from a conductivity
     instead, see ``to_complex_permittivity``.
     """
-    theta, solid = column(water_content), np.sqrt(solid_permittivity - 1j * column(solid_loss))
+    theta, solid = column(water_content), _index(solid_permittivity, solid_loss)
     if loss is None:
-        water = np.sqrt(water_permittivity - 1j * column(water_loss)).real
-        return np.asarray(crim.to_permittivity(
-            theta, water_permittivity=water**2, porosity=porosity,
+        water = _index(water_permittivity, water_loss)
+        return crim.to_permittivity(
+            theta, water_permittivity=water.real**2, porosity=porosity,
             solid_permittivity=solid.real**2,
-        ))  # fmt: skip
-    dry = (1 - porosity) * solid + porosity
+        )  # fmt: skip
+    dry = _dry(solid, porosity)
     shift, half_loss = dry.real - theta, column(loss) / 2
     known = column(water_permittivity) * theta**2
 
@@ -157,7 +158,17 @@ def to_permittivity(
     most = shift + np.hypot(np.sqrt(known), half_loss / least - dry.imag)
     index = increasing_inverse(surplus, 0.0, least * (1 - WIDER), most * (1 + WIDER))
     excess = index - 1j * half_loss / index - dry
-    return np.where(_one_answer(excess, INDEX) & (index > half_loss / index), index**2, np.nan)
+    known_way_back = (theta > 0) & _one_answer(excess, INDEX) & (index > half_loss / index)
+    return np.where(known_way_back, index**2, np.nan)
+
+
+def _index(real: ArrayLike, loss: ArrayLike) -> ComplexArray:
+    return np.sqrt(column(real) - 1j * column(loss))
+
+
+def _dry(solid: ComplexArray, porosity: ArrayLike) -> ComplexArray:
+    """Index of the soil with its pores full of air."""
+    return solid - column(porosity) * (solid - 1)
 
 
 def _power(permittivity: Numbers, exponent: float) -> ComplexArray:

@@ -7,6 +7,9 @@ from fastapi import FastAPI
 from fastapi.routing import APIRoute
 
 from service.errors import MEDIA_TYPE, PROBLEMS
+from service.schemas.estimates import SETTINGS
+
+REFERENCE = "#/components/schemas/{model}"
 
 PROBLEM: dict[str, Any] = {
     "title": "Problem",
@@ -61,6 +64,7 @@ class Api(FastAPI):
             for unused in ("HTTPValidationError", "ValidationError"):
                 schemas.pop(unused, None)
             schemas["Problem"] = PROBLEM
+            schemas |= SETTINGS.json_schema(ref_template=REFERENCE)["$defs"]
             document["components"]["securitySchemes"] = {
                 "key": {"type": "http", "scheme": "bearer",
                         "description": "a key made by `gleyline key add`"},
@@ -92,6 +96,6 @@ def _complete(path: str, operation: dict[str, Any]) -> None:
     if "application/json" in responses.get("422", {}).get("content", ()):
         del responses["422"]  # FastAPI's own, which is never answered
     for kind in sorted((PROBLEMS[slug] for slug in slugs), key=lambda kind: kind.status):
-        content = {MEDIA_TYPE: {"schema": {"$ref": "#/components/schemas/Problem"}}}
+        content = {MEDIA_TYPE: {"schema": {"$ref": REFERENCE.format(model="Problem")}}}
         responses.setdefault(str(kind.status), {"description": kind.title(), "content": content})
     operation["security"] = [{}, {"key": []}] if path.startswith("/v1/") else []

@@ -1,0 +1,1 @@
+"""The demonstration: an invented farm and an invented embankment, over real HTTP."""

@@ -1,0 +1,159 @@
+"""What travels between a decoder, the estimates and an encoder: a block of rows at a time."""
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from typing import Protocol
+
+import numpy as np
+import polars as pl
+from numpy.typing import NDArray
+
+from models.flags import BIT, Flags, slugs_of, withheld
+from models.readings import Readings, quantity_of, read
+from models.relation import Array
+from service.formats.errors import CellError, FormatError, HeaderError, RecordTooLong, shown
+from service.formats.header import folded
+
+__all__ = [
+    "Answer", "Block", "CellError", "Decoder", "Encoder", "FormatError", "Header", "HeaderError",
+    "RecordTooLong",
+]  # fmt: skip
+
+Marks = NDArray[np.bool_]
+
+UNREADABLE_ROW = "unreadable_row"
+"""The key under which JSON shows a row that could not be taken apart."""
+
+
+@dataclass(frozen=True, slots=True)
+class Header:
+    """What is known of a table before its rows."""
+
+    names: tuple[str, ...]
+    """Its columns, as they are written there. NDJSON: the keys of the first block."""
+    form: str
+    """The short name of its format."""
+    text: str = ""
+    """Of the header record, to the letter."""
+    line_end: str = "\n"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Block:
+    """Rows of a table, in order."""
+
+    header: Header
+    lines: NDArray[np.int64]
+    """The line each row begins at, shape (n,)."""
+    records: pl.Series
+    """The rows as they were sent, without their line ends."""
+    values: Mapping[str, Array]
+    """Numbers by quantity name or name_u, shape (n,), in the unit of the table; NaN: none."""
+    unreadable: Mapping[str, Marks]
+    """Where NaN stands for what is no number, for columns that have such cells."""
+    absent: Mapping[str, Marks]
+    """Where the row does not have the column at all, for columns that have such rows."""
+    broken: Marks
+    """Rows that could not be taken apart; they have no number in any column."""
+    cells: Callable[[], list[pl.Series]]
+    """Every column of the table as text under its name; null: the row does not have it."""
+
+    def __len__(self) -> int:
+        return len(self.lines)
+
+    def readings(self, units: Mapping[str, str]) -> Readings:
+        """The rows in SI, gated and flagged.
+
+        units: UCUM codes by quantity name, where they are not those of the API.
+
+        A row is flagged by what it holds itself: a column that only its neighbours have is not
+        missing from it, and a row that could not be taken apart is said to be that alone.
+        """
+        found = read(self.values, units, self.unreadable)
+        flags = found.flags if self.values else np.zeros(len(self), np.uint64)
+        for name, rows in self.absent.items():
+            about, is_width = quantity_of(name)
+            if not is_width:
+                flags[rows] &= ~BIT[f"missing:{about}"]
+        flags[self.broken] = BIT["unreadable-row"]
+        return Readings(len(self), found.columns, flags)
+
+
+@dataclass(frozen=True, slots=True)
+class Answer:
+    """What is appended to the rows of a block."""
+
+    columns: Mapping[str, Array]
+    """In the unit of the answer, shape (n,), NaN: no number. The first is what was asked for;
+    every block of a table has the same columns."""
+    flags: Flags
+
+
+class Decoder(Protocol):
+    """Bytes in, blocks of rows out; one for each table."""
+
+    def feed(self, piece: bytes) -> list[Block]:
+        """The blocks that this piece completes. Raises FormatError."""
+        ...
+
+    def close(self) -> list[Block]:
+        """The blocks that are left at the end; of a table without rows, one without rows.
+
+        Raises FormatError.
+        """
+        ...
+
+
+class Encoder(Protocol):
+    """Blocks and their answers in, bytes out; one for each table."""
+
+    def start(self, header: Header, names: tuple[str, ...]) -> bytes:
+        """What stands before the rows.
+
+        names: of the columns that are appended, without the flags.
+        Raises HeaderError when the columns cannot be told in this format.
+        """
+        ...
+
+    def block(self, block: Block, answer: Answer) -> bytes:
+        """The rows, in order, answers appended."""
+        ...
+
+    def end(self) -> bytes:
+        """What stands behind the rows."""
+        ...
+
+
+def refuse_first(block: Block, answer: Answer) -> None:
+    """Raise CellError for the first cell that cannot be read, or is missing and needed.
+
+    A missing value was needed where the row has no number and no other flag says why.
+    """
+    unread = block.broken.copy()
+    for odd in block.unreadable.values():
+        unread |= odd
+    numbers = next(iter(answer.columns.values()), np.zeros(len(block)))
+    missing = np.isnan(numbers) & ((answer.flags & _MISSING) != 0)
+    missing &= ~withheld(answer.flags & ~_FROM_MISSING)
+    refused = np.flatnonzero(unread | missing)
+    if not refused.size:
+        return
+    row = int(refused[0])
+    line = int(block.lines[row])
+    if block.broken[row]:
+        raise CellError("a row that fits the table", shown(block.records[row]), line=line)
+    for name, odd in block.unreadable.items():
+        if odd[row]:
+            raise CellError("a number", _shown_cell(block, name, row), line=line, column=name)
+    slugs = slugs_of(int(answer.flags[row] & _MISSING))
+    name = slugs[0].partition(":")[2]
+    raise CellError("a number", "none", line=line, column=name, mend="the model needs it")
+
+
+def _shown_cell(block: Block, name: str, row: int) -> str:
+    cells = (column[row] for column in block.cells() if folded(column.name) == name)
+    return shown(next(cells))
+
+
+_MISSING = np.bitwise_or.reduce([BIT[slug] for slug in BIT if slug.startswith("missing:")])
+_FROM_MISSING = BIT["no-permittivity"] | BIT["loss-missing"]

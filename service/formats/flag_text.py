@@ -1,0 +1,28 @@
+"""Flags as text: one bit a slug becomes slugs, each combination spelt once."""
+
+from collections.abc import Callable
+
+import numpy as np
+import orjson
+import polars as pl
+
+from models.flags import Flags, slugs_of
+
+
+def flags_as_csv(flags: Flags) -> pl.Series:
+    """Slugs joined by semicolons; empty where there is nothing to say."""
+    return _spelt(flags, ";".join)
+
+
+def flags_as_json(flags: Flags) -> pl.Series:
+    """Lists of slugs, as JSON text."""
+    return _spelt(flags, lambda slugs: orjson.dumps(slugs).decode())
+
+
+def _spelt(flags: Flags, spell: Callable[[tuple[str, ...]], str]) -> pl.Series:
+    """As many pieces of text as rows, by as many calls as there are combinations."""
+    if not flags.any():
+        return pl.repeat(spell(()), len(flags), dtype=pl.String, eager=True)
+    masks, places = np.unique(flags, return_inverse=True)
+    words = [spell(slugs_of(mask)) for mask in masks.tolist()]
+    return pl.Series(words, dtype=pl.String).gather(places)

@@ -1,0 +1,106 @@
+"""Which columns of a table are ours, and what a caller should know before the first row."""
+
+from collections.abc import Collection, Iterable, Mapping, Sequence
+from difflib import get_close_matches
+from types import MappingProxyType
+
+from models.quantity import PROBE, QUANTITIES, READING, SOIL
+from service.formats.errors import HeaderError, shown
+
+NUMBERS = tuple(name for name in READING if QUANTITIES[name].unit)
+RECOGNISED = frozenset((*NUMBERS, *(f"{name}_u" for name in NUMBERS)))
+"""Columns that are read as numbers; every other one passes through."""
+
+NEEDED = ("apparent_permittivity", "real_permittivity", "travel_time")
+"""One of these makes a row a reading."""
+
+FLAGS = "flags"
+MOST_COLUMNS = 1000
+
+_DESCRIBES: Mapping[str, str] = MappingProxyType(
+    {
+        **dict.fromkeys(("texture", *SOIL, *(f"{name}_u" for name in SOIL)), "soil"),
+        **{
+            spelling: "probe"
+            for name in PROBE
+            if name not in READING
+            for spelling in (name, f"{name}_u")
+        },
+    }
+)
+_SYMBOLS = MappingProxyType({QUANTITIES[name].symbol.lower(): name for name in NUMBERS})
+
+
+def folded(name: str) -> str:
+    """A column name as it is compared: without blanks around it, in lower case."""
+    return name.strip().casefold()
+
+
+def recognised(names: Sequence[str], appends: Collection[str], line: int) -> dict[str, int]:
+    """The place of every column that is read, by quantity name or name_u.
+
+    names: as they stand in the table. appends: what the answer adds, besides its flags.
+    Raises HeaderError where a column is named twice, describes the soil or the probe, or has the
+    name of a column of the answer.
+    """
+    found: dict[str, int] = {}
+    for place, written in enumerate(names):
+        name = folded(written)
+        if name == FLAGS or name in appends:
+            raise HeaderError(
+                "names that the answer does not use", shown(written), line=line, column=written,
+                mend="the answer appends a column of this name: rename yours, or leave it out",
+            )  # fmt: skip
+        if name in _DESCRIBES:
+            raise HeaderError(
+                "what varies from reading to reading", shown(written), line=line, column=written,
+                mend=f"it describes the {_DESCRIBES[name]}: give it in the query, or rename the "
+                "column",
+            )  # fmt: skip
+        if name in found:
+            raise HeaderError(
+                "each column once", f"{shown(names[found[name]])} and {shown(written)}",
+                line=line, column=written, mend="rename one of them, or leave it out",
+            )  # fmt: skip
+        if name in RECOGNISED:
+            found[name] = place
+    return found
+
+
+def check_width(names: Sequence[str], line: int) -> None:
+    """Raise HeaderError for more columns than are taken."""
+    if len(names) > MOST_COLUMNS:
+        raise HeaderError(f"at most {MOST_COLUMNS} columns", str(len(names)), line=line)
+
+
+def check_separator(text: str, names: Sequence[str], line: int) -> None:
+    """Raise HeaderError where a header is written with another separator than the comma."""
+    for separator, spelt in ((";", "semicolons"), ("\t", "tabs")):
+        if text.count(separator) >= len(names) and not any(
+            folded(name) in RECOGNISED for name in names
+        ):
+            raise HeaderError(
+                "commas between the cells", spelt, line=line,
+                mend="save the table with commas between the cells and points in the numbers",
+            )  # fmt: skip
+
+
+def check_permittivity(names: Sequence[str], found: Iterable[str], line: int) -> None:
+    """Raise HeaderError unless there is something to convert, with the column perhaps meant."""
+    if not any(name in NEEDED for name in found):
+        listed = ", ".join(shown(name) for name in names[:20]) + (", ..." if names[20:] else "")
+        raise HeaderError(
+            f"a column {' or '.join(NEEDED)}", f"the columns {listed}", line=line,
+            mend=_likely(names),
+        )  # fmt: skip
+
+
+def _likely(names: Sequence[str]) -> str:
+    for written in names:
+        name = folded(written)
+        meant = _SYMBOLS.get(name) or next(iter(get_close_matches(name[:80], NEEDED, n=1)), None)
+        if meant in NEEDED:
+            return f"is {shown(written)} the {meant}? then name it so"
+    if any(name.strip()[:1].isdigit() for name in names):
+        return "the first line must name the columns"
+    return "name the column that holds the permittivity so"

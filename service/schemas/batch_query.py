@@ -1,0 +1,141 @@
+"""The query of a batch, in the flat words of the vocabulary, as the body of a JSON request."""
+
+import re
+from collections.abc import Callable, Iterable, Mapping
+from types import MappingProxyType
+from typing import Any
+
+from models.mixing import MIXING_MODELS
+from models.quantity import NOISE, PROBE, SOIL
+from service.errors import Unprocessable
+from service.faults import Fault, nearest, shown
+from service.schemas.words import described
+
+_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?")
+Place = tuple[str, str, Callable[[str, str], Any]]
+ASIDE = ("format", "strict")
+"""Parameters of the answer rather than of the estimate."""
+
+
+def document_of(pairs: Iterable[tuple[str, str]]) -> dict[str, Any]:
+    """A JSON request without readings, from the parameters of a query.
+
+    Raises Unprocessable with every parameter that is unknown, repeated, or not a number.
+    """
+    faults: list[Fault] = []
+    given: dict[str, str] = {}
+    for name, text in pairs:
+        if name in given:
+            faults.append(Fault(f"{name} is given twice", f"?{name}"))
+        given[name] = text
+    places = {**PLACES, **_model_places(given.get("mixing_model"))}
+    document: dict[str, Any] = {}
+    for name, text in given.items():
+        if name not in ASIDE:
+            faults += _put(document, places, name, text)
+    if faults:
+        raise Unprocessable("the query holds what cannot be used", faults)
+    if "model" in document:
+        document["mixing_model"] = {"name": given.get("mixing_model"), **document.pop("model")}
+    return document
+
+
+def _put(
+    document: dict[str, Any], places: Mapping[str, Place], name: str, text: str
+) -> list[Fault]:
+    """Put one parameter where it stands in a JSON request, or say what is wrong with it."""
+    if name not in places:
+        return [_stranger(name, [*places, *ASIDE])]
+    section, key, reader = places[name]
+    try:
+        value = reader(name, text)
+    except ValueError as error:
+        return [Fault(str(error), f"?{name}")]
+    (document.setdefault(section, {}) if section else document)[key] = value
+    return []
+
+
+def _model_places(name: str | None) -> dict[str, Place]:
+    """Parameters that are the mixing model's own and nothing else's."""
+    if name is None or name not in MIXING_MODELS:
+        return {}
+    own = [p for p in MIXING_MODELS[name].parameters if p.name not in PLACES]
+    words: dict[str, Place] = {
+        p.name: ("model", p.name, _text if p.choices else _number) for p in own
+    }
+    return words | {f"{p.name}_u": ("model", f"{p.name}_u", _number) for p in own}
+
+
+def _text(_: str, text: str) -> str:
+    return text
+
+
+def _with_u(names: Iterable[str], spread: Iterable[str]) -> list[str]:
+    return [*names, *(f"{name}_u" for name in spread)]
+
+
+def _number(name: str, text: str) -> float:
+    if not _NUMBER.fullmatch(text.strip()):
+        comma = " with a point, not a comma" if "," in text else ""
+        raise ValueError(f"{name}: expected a number{comma}, found {shown(text)}")
+    return float(text)
+
+
+def _units(_: str, text: str) -> Mapping[str, str]:
+    units: dict[str, str] = {}
+    for pair in text.split(","):
+        name, colon, code = pair.partition(":")
+        if not colon:
+            raise ValueError(
+                f"units: expected quantity:unit pairs such as bulk_conductivity:mS/m, "
+                f"found {shown(pair)}"
+            )
+        units[name.strip()] = code.strip()
+    return units
+
+
+def _stranger(name: str, known: Iterable[str]) -> Fault:
+    meant = nearest(name, known)
+    hint = f"did you mean {meant}?" if meant else "the description at /docs lists what is known"
+    return Fault(f"unknown parameter {shown(name)}; {hint}", f"?{name[:80]}")
+
+
+PLACES: Mapping[str, Place] = MappingProxyType(
+    {name: ("soil", name, _number) for name in _with_u(SOIL, SOIL)}
+    | {name: ("probe", name, _number) for name in _with_u(PROBE, (*PROBE, *NOISE))}
+    | {
+        "texture": ("soil", "texture", _text),
+        "mixing_model": ("", "mixing_model", _text),
+        "standard_error": ("model", "standard_error", _number),
+        "coverage_probability": ("", "coverage_probability", _number),
+        "propagation": ("propagation", "method", _text),
+        "assume_temperature": ("assume", "temperature", _number),
+        "units": ("", "units", _units),
+    }
+)
+"""Where each parameter stands in a JSON request: section, key, and how its text is read."""
+
+TEXTS = frozenset(n for n, (_, _, reader) in PLACES.items() if reader is not _number) | {*ASIDE}
+"""Parameters that are no numbers."""
+
+_MEANINGS: Mapping[str, str] = MappingProxyType(
+    {
+        "mixing_model": "name of a mixing model; left out, the service chooses and says why",
+        "texture": "USDA texture class of the soil, or peat",
+        "standard_error": "replaces the model's own uncertainty [m3/m3]",
+        "coverage_probability": "of the interval; 0.95 unless given",
+        "propagation": "first-order",
+        "assume_temperature": "temperature where a row has none [Cel]",
+        "units": "quantity:unit pairs, comma-separated: bulk_conductivity:mS/m",
+        "format": "json, csv or ndjson; beats Accept",
+        "strict": "true: the first cell that cannot be read ends the batch with 422",
+    }
+)
+
+
+def meaning(name: str) -> str:
+    """What a parameter says, in a line."""
+    if name in _MEANINGS:
+        return _MEANINGS[name]
+    about = name.removesuffix("_u")
+    return described(name) if about == name else f"standard uncertainty of {about}"
