@@ -73,8 +73,7 @@ class Problem(HTTPException):
 class Malformed(Problem, status=400, slug="malformed"):
     """The request cannot be read.
 
-    The body is not what its media type or its encoding promises. Look at the place the detail
-    names; nothing of the request was used.
+    Its media type or encoding promises something else. Nothing of the request was used.
     """
 
 
@@ -124,8 +123,7 @@ class Stalled(Problem, status=408, slug="body-stalled"):
 class TooLarge(Problem, status=413, slug="too-large"):
     """The body is larger than this service takes.
 
-    `/v1/limits` shows how much it takes. Bodies are counted after decompression. Long tables
-    belong into a CSV or NDJSON body.
+    `/v1/limits` shows how much, after decompression. Send a long table as CSV or NDJSON.
     """
 
 
@@ -139,8 +137,7 @@ class UnsupportedMediaType(Problem, status=415, slug="unsupported-media-type"):
 class Unprocessable(Problem, status=422, slug="unprocessable"):
     """The request can be read, but not computed as asked.
 
-    Each item of `errors` names a place in the request as a JSON pointer and says what to change
-    there.
+    Each item of `errors` names a place in the request and says what to change there.
     """
 
 
@@ -151,16 +148,14 @@ class HeadersTooLarge(Problem, status=431, slug="headers-too-large"):
 class InternalError(Problem, status=500, slug="internal-error"):
     """The service failed.
 
-    It is not the fault of the request. The log of the service has the cause under the
-    `request_id`.
+    The cause is in the log of the service, under the `request_id`.
     """
 
 
 class Unavailable(Problem, status=503, slug="unavailable"):
     """The service cannot take this request now.
 
-    It is stopping, or has as much to do as it takes on. Ask again after the seconds named by
-    `Retry-After`.
+    It is stopping, or has as much to do as it takes on. Ask again after `Retry-After` seconds.
     """
 
     def __init__(self, detail: str, retry_after: int = 1) -> None:
@@ -188,30 +183,28 @@ def _of_http(error: HTTPException) -> Problem:
 
 
 def _of_request(error: RequestValidationError) -> Problem:
-    items = [{**item, "loc": item["loc"][1:]} for item in error.errors()]
+    """What FastAPI refuses; a query parameter is shown as ?name."""
+    items = error.errors()
     if any(item["type"] == "json_invalid" for item in items):
         return Malformed("the body is not JSON")
-    return Unprocessable("the request holds values that cannot be used", faults_of(items))
+    faults = [
+        Fault(fault.detail, fault.pointer.replace("#/body", "#").replace("#/query/", "?"))
+        for fault in faults_of(items)
+    ]
+    return Unprocessable("the request holds values that cannot be used", faults)
 
 
 def _of_parameters(error: ParameterError) -> Problem:
-    faults = [Fault(c.detail, pointer(c.place)) for c in error.complaints]
-    return Unprocessable(str(error), faults)
+    return Unprocessable(str(error), [Fault(c.detail, pointer(c.place)) for c in error.complaints])
 
 
 def _of_table(error: FormatError) -> Problem:
     """What a table holds that it should not; strict reading and headers are the caller's words."""
-    if isinstance(error, RecordTooLong):
-        return TooLarge(str(error))
     place = f"line {error.line}" if error.column is None else f"line {error.line}, {error.column}"
     faults = [Fault(str(error), place)]
     if isinstance(error, HeaderError | CellError):
         return Unprocessable(str(error), faults)
     return Malformed(str(error), faults)
-
-
-def _of_spool(error: SpoolFull) -> Problem:
-    return Unavailable(f"{error}; ask again later, or send the table in parts", retry_after=60)
 
 
 TRANSLATIONS: Mapping[type[Exception], Callable[[Any], Problem]] = MappingProxyType({
@@ -221,7 +214,8 @@ TRANSLATIONS: Mapping[type[Exception], Callable[[Any], Problem]] = MappingProxyT
     ParameterError: _of_parameters,
     ModelError: Unprocessable,
     FormatError: _of_table,
-    SpoolFull: _of_spool,
+    RecordTooLong: TooLarge,
+    SpoolFull: lambda error: Unavailable(f"{error}; ask later, or send the table in parts", 60),
 })  # fmt: skip
 """What the layers below raise, as problems; the most derived class decides."""
 

@@ -1,7 +1,5 @@
 """Rhoades, Raats and Prather (1976): water conducts along a path that thins as the soil dries."""
 
-from typing import Any
-
 import numpy as np
 from numpy.typing import ArrayLike
 
@@ -54,7 +52,7 @@ def to_bulk(
 
 
 def _transmitting(water_content: ArrayLike, slope: ArrayLike, intercept: ArrayLike) -> Array:
-    """theta (a theta + b), the water content times its transmission coefficient."""
+    """The product theta (a theta + b): the water content times its transmission coefficient."""
     theta = above_zero(water_content)
     return theta * above_zero(column(slope) * theta + column(intercept))
 
@@ -70,9 +68,10 @@ def gates(
     surface_conductivity: ArrayLike,
 ) -> Marks:
     """Water content up to minus intercept over slope, or below 0.05; no more than the surface."""
-    theta, threshold = column(water_content), -column(transmission_intercept) / transmission_slope
+    theta = column(water_content)
+    transmission = column(transmission_slope) * theta + column(transmission_intercept)
     return marks(bulk_conductivity, {
-        TOO_DRY: (theta <= threshold) | (theta < DRIEST),
+        TOO_DRY: (transmission <= 0) | (theta < DRIEST),
         BELOW_SURFACE: column(bulk_conductivity) <= column(surface_conductivity),
     })  # fmt: skip
 

@@ -12,7 +12,6 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from models.relation import Array, Citation, Parameter, Range, column, ranges
-from models.salinity import texture_defaults
 from models.salinity.family import (
     DRIEST,
     TOO_DRY,
@@ -29,6 +28,7 @@ from models.salinity.inputs import (
     SURFACE,
     WATER_CONTENT,
 )
+from models.salinity.texture_defaults import surface_conductivity as of_clay
 
 IMMOBILE_SLOPE, IMMOBILE_INTERCEPT = 0.639, 0.011
 """Immobile water content from water content; all of the water is immobile below 0.0305."""
@@ -97,7 +97,7 @@ def _paths(
     else:
         immobile = column(immobile_share) * theta
     if surface_conductivity is None:
-        surface_conductivity = texture_defaults.surface_conductivity(clay)
+        surface_conductivity = of_clay(clay)
     return _Paths(
         column(solid_content), immobile, theta - immobile, above_zero(surface_conductivity)
     )

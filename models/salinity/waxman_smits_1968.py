@@ -69,13 +69,14 @@ def to_pore_water(bulk_conductivity: ArrayLike, /, **soil: Any) -> Array:
 
 @np.errstate(all="ignore")
 def to_bulk(pore_water_conductivity: ArrayLike, /, **soil: Any) -> Array:
-    """Conductivity of the soil at 25 Cel, elementwise, S/m.
+    """Conductivity of the soil at 25 Cel, elementwise, S/m; NaN for water below zero.
 
     water_content, porosity: m3/m3; NaN at and below zero. particle_density: kg/m3.
     cation_exchange_capacity: cmol/kg. cementation_exponent, saturation_exponent: m and n.
     """
-    clay, sigma = _shaly(**soil), above_zero(column(pore_water_conductivity) + _TINY) - _TINY
-    return clay.share * (sigma + clay.charge * equivalent_conductance(sigma))
+    clay, sigma = _shaly(**soil), column(pore_water_conductivity)
+    bulk = clay.share * (sigma + clay.charge * equivalent_conductance(sigma))
+    return np.where(sigma >= 0, bulk, np.nan)
 
 
 @dataclass(frozen=True, slots=True)

@@ -12,7 +12,7 @@ from typing import Any, Self
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.special import erf, lambertw, ndtr, ndtri, stdtr, stdtrit
+from scipy.special import erf, lambertw, ndtr, ndtri, stdtrit
 
 from models.errors import Complaint, ParameterError
 from models.relation import Array, column
@@ -21,10 +21,10 @@ from models.uncertainty.first_order import Input
 
 @dataclass(frozen=True, slots=True)
 class Distribution(ABC):
-    """One column of inputs, all of one shape: mean + width x a standard deviate.
+    """A column of inputs, all of one shape.
 
-    mean, width: scalars or shape (n,); NaN is allowed in ``mean`` alone: that row has no number.
-    Raises ParameterError when a width is negative, infinite or NaN.
+    mean, width: scalars or shape (n,); what the width is, each shape says.
+    Raises ParameterError when a width is negative, infinite or NaN. A mean may be NaN: no number.
     """
 
     mean: Any
@@ -34,8 +34,8 @@ class Distribution(ABC):
         self._refuse_unless(np.isfinite(self.width) & (column(self.width) >= 0), "width")
 
     @abstractmethod
-    def deviate(self, z: ArrayLike) -> Array:
-        """The map of a standard-normal z for mean 0 and width 1, elementwise."""
+    def from_normal(self, z: ArrayLike) -> Array:
+        """The input where a standard-normal variable is z, elementwise."""
 
     @property
     @abstractmethod
@@ -52,10 +52,6 @@ class Distribution(ABC):
         """Whether nothing is uncertain in any row."""
         return not np.any(self.width)
 
-    def from_normal(self, z: ArrayLike) -> Array:
-        """The input where a standard-normal variable is z, elementwise."""
-        return column(self.mean + self.width * self.deviate(z))
-
     def quantile(self, probability: ArrayLike) -> Array:
         """The value not exceeded with that probability, elementwise."""
         return self.from_normal(ndtri(column(probability)))
@@ -63,32 +59,31 @@ class Distribution(ABC):
     def take(self, index: Any) -> Self:
         """Some of the rows; ``np.s_[:, None]`` sets them up against draws along the last axis."""
         columns = {field.name: getattr(self, field.name) for field in fields(self)}
-        if all(np.size(values) == 1 for values in columns.values()):
-            return self
-        return replace(
-            self,
-            **{
-                name: np.reshape(values, ())[()] if np.size(values) == 1 else column(values)[index]
-                for name, values in columns.items()
-            },
-        )
+        some = {name: column(c)[index] for name, c in columns.items() if np.size(c) > 1}
+        same = {name: np.reshape(c, ())[()] for name, c in columns.items() if np.size(c) == 1}
+        return replace(self, **some, **same)
 
     def _refuse_unless(self, holds: Any, name: str, meaning: str = "finite and >= 0") -> None:
         if not np.all(holds):
-            shape = type(self).__name__.lower()
             found = np.broadcast_to(column(getattr(self, name)), np.shape(holds))
             worst = found[~np.asarray(holds)].flat[0]
-            detail = f"{name} of a {shape} distribution is {meaning}, found {worst:g}"
+            shape = type(self).__name__
+            detail = f"{name} of {shape} must be {meaning}, found {worst:g}"
             raise ParameterError("uncertainty", [Complaint(name, detail)])
 
 
 @dataclass(frozen=True, slots=True)
-class Normal(Distribution):
-    """Width: the standard uncertainty."""
+class Lognormal(Distribution):
+    """Of a positive quantity known by a factor; mean and width are its own, not its logarithm's.
 
-    def deviate(self, z: ArrayLike) -> Array:
-        """z itself."""
-        return column(z)
+    Width: the standard uncertainty. Rows whose mean is not above 0 have no number.
+    """
+
+    def from_normal(self, z: ArrayLike) -> Array:
+        """Normal in the logarithm."""
+        mean = np.where(column(self.mean) > 0, self.mean, np.nan)
+        variance = np.log1p(np.square(self.width / mean))
+        return mean * np.exp(np.sqrt(variance) * column(z) - 0.5 * variance)
 
     @property
     def standard_uncertainty(self) -> Array:
@@ -97,12 +92,39 @@ class Normal(Distribution):
 
 
 @dataclass(frozen=True, slots=True)
-class Rectangular(Distribution):
+class Symmetric(Distribution):
+    """The mean, and the width times a deviate that is as likely above 0 as below."""
+
+    def from_normal(self, z: ArrayLike) -> Array:
+        """The mean and so many widths."""
+        return self.mean + self.width * self.deviate(column(z))
+
+    @abstractmethod
+    def deviate(self, z: Array) -> Array:
+        """The map for mean 0 and width 1, elementwise."""
+
+
+@dataclass(frozen=True, slots=True)
+class Normal(Symmetric):
+    """Width: the standard uncertainty."""
+
+    def deviate(self, z: Array) -> Array:
+        """z itself."""
+        return z
+
+    @property
+    def standard_uncertainty(self) -> Array:
+        """The width."""
+        return column(self.width)
+
+
+@dataclass(frozen=True, slots=True)
+class Rectangular(Symmetric):
     """Anything within mean -+ width, all equally likely."""
 
-    def deviate(self, z: ArrayLike) -> Array:
+    def deviate(self, z: Array) -> Array:
         """From -1 to 1."""
-        return column(erf(column(z) / np.sqrt(2.0)))
+        return column(erf(z / np.sqrt(2.0)))
 
     @property
     def standard_uncertainty(self) -> Array:
@@ -111,12 +133,11 @@ class Rectangular(Distribution):
 
 
 @dataclass(frozen=True, slots=True)
-class Triangular(Distribution):
+class Triangular(Symmetric):
     """Within mean -+ width, likeliest in the middle."""
 
-    def deviate(self, z: ArrayLike) -> Array:
+    def deviate(self, z: Array) -> Array:
         """From -1 to 1."""
-        z = column(z)
         return np.copysign(1.0 - np.sqrt(2.0 * ndtr(-np.abs(z))), z)
 
     @property
@@ -126,12 +147,12 @@ class Triangular(Distribution):
 
 
 @dataclass(frozen=True, slots=True)
-class UShaped(Distribution):
-    """Within mean -+ width, likeliest at the ends: a sine at an unknown phase (arcsine)."""
+class UShaped(Symmetric):
+    """Within mean -+ width, likeliest at the ends: a sine wave met at an unknown phase."""
 
-    def deviate(self, z: ArrayLike) -> Array:
+    def deviate(self, z: Array) -> Array:
         """From -1 to 1."""
-        return np.sin(0.5 * np.pi * erf(column(z) / np.sqrt(2.0)))
+        return np.sin(0.5 * np.pi * erf(z / np.sqrt(2.0)))
 
     @property
     def standard_uncertainty(self) -> Array:
@@ -140,10 +161,10 @@ class UShaped(Distribution):
 
 
 @dataclass(frozen=True, slots=True)
-class CurvilinearTrapezoid(Distribution):
-    """Within limits that are themselves known to -+ blur only (JCGM 101, 6.4.3).
+class CurvilinearTrapezoid(Symmetric):
+    """Within mean -+ width, the limits themselves known to -+ blur width (JCGM 101, 6.4.3).
 
-    width: from the mean to the middle of a limit; blur: scalar or shape (n,), at most the width.
+    blur: scalar or shape (n,), share of the width, 0 (a rectangle) to 1.
     """
 
     blur: Any
@@ -151,39 +172,29 @@ class CurvilinearTrapezoid(Distribution):
     def __post_init__(self) -> None:
         Distribution.__post_init__(self)
         blur = column(self.blur)
-        self._refuse_unless((blur >= 0) & (blur <= self.width), "blur", ">= 0 and <= width")
+        self._refuse_unless((blur >= 0) & (blur <= 1), "blur", "0 to 1")
 
-    def deviate(self, z: ArrayLike) -> Array:
-        """Closed form: flat within width - blur, and beyond it the tail 1 - q + q ln q inverted."""
-        z = column(z)
-        blur = np.divide(
-            self.blur, self.width, out=np.zeros(self.rows_shape), where=column(self.width) > 0
-        )
-        blur = np.maximum(blur, 1e-9)  # a rectangle, to nine digits
-        tail, reach = ndtr(-np.abs(z)), 1.0 + blur
-        share = np.minimum(4.0 * blur * tail / reach, 1.0)
+    def deviate(self, z: Array) -> Array:
+        """In closed form: flat in the middle, then 1 - q + q ln q of probability is left."""
+        blur = np.clip(self.blur, 1e-9, 1.0 - 1e-9)  # the two limits, to nine digits
+        left, reach = ndtr(-np.abs(z)), 1.0 + blur
+        share = np.minimum(4.0 * blur * left / reach, 1.0)
         q = np.exp(1.0 + np.real(lambertw((share - 1.0) / np.e, -1)))
-        flat = np.log1p(2.0 * blur / (1.0 - blur + 1e-300)) / (4.0 * blur)
-        inner = (0.5 - tail) / flat
-        return np.copysign(np.where(inner < 1.0 - blur, inner, reach * q), z)
-
-    @property
-    def rows_shape(self) -> tuple[int, ...]:
-        """Common shape of width and blur."""
-        return np.broadcast_shapes(np.shape(self.width), np.shape(self.blur))
+        middle = (0.5 - left) * 4.0 * blur / np.log((1.0 + blur) / (1.0 - blur))
+        return np.copysign(np.where(middle < 1.0 - blur, middle, reach * q), z)
 
     @property
     def standard_uncertainty(self) -> Array:
-        """Root of a third of width squared and a ninth of blur squared."""
-        return np.sqrt(np.square(column(self.width)) / 3.0 + np.square(column(self.blur)) / 9.0)
+        """Of a rectangle, and a little more."""
+        return self.width * np.sqrt(1.0 / 3.0 + np.square(column(self.blur)) / 9.0)
 
 
 @dataclass(frozen=True, slots=True)
-class StudentT(Distribution):
-    """Of a mean of few observations. Width: its standard deviation of the mean, s / root n.
+class StudentT(Symmetric):
+    """Of the mean of a few observations. Width: their standard deviation over root n.
 
-    degrees_of_freedom: scalar or shape (n,), > 2: at 2 and below the variance is infinite, and
-    Monte Carlo would report a standard uncertainty that depends on the draws alone.
+    degrees_of_freedom: scalar or shape (n,), > 2. At 2 and below the variance is infinite, and
+    draws would report whatever standard uncertainty their number happens to give.
     """
 
     degrees_of_freedom: Any
@@ -191,49 +202,17 @@ class StudentT(Distribution):
     def __post_init__(self) -> None:
         Distribution.__post_init__(self)
         enough = column(self.degrees_of_freedom) > 2
-        self._refuse_unless(enough, "degrees_of_freedom", "above 2 (else it has no variance)")
+        self._refuse_unless(enough, "degrees_of_freedom", "above 2 (else there is no variance)")
 
-    def deviate(self, z: ArrayLike) -> Array:
-        """Of Student's t, from the lower tail on both sides: no digits lost in the upper one."""
-        z = column(z)
-        tail = stdtrit(column(self.degrees_of_freedom), ndtr(-np.abs(z)))
-        return np.copysign(tail, z)
+    def deviate(self, z: Array) -> Array:
+        """Student's t; always from the lower tail, where no digits are lost."""
+        return np.copysign(stdtrit(column(self.degrees_of_freedom), ndtr(-np.abs(z))), z)
 
     @property
     def standard_uncertainty(self) -> Array:
-        """Larger than the width, by root of nu / (nu - 2)."""
+        """Larger than the width, by the root of nu / (nu - 2)."""
         nu = column(self.degrees_of_freedom)
         return self.width * np.sqrt(nu / (nu - 2.0))
-
-
-@dataclass(frozen=True, slots=True)
-class Lognormal(Distribution):
-    """Of a quantity that is positive and known by a factor. Mean and width are its own, not the log's.
-
-    Width: the standard uncertainty. Rows whose mean is not above 0 have no number.
-    """
-
-    def deviate(self, z: ArrayLike) -> Array:
-        """In standard uncertainties from the mean."""
-        spread = np.divide(
-            self.from_normal(z) - self.mean,
-            self.width,
-            out=np.zeros(np.broadcast_shapes(np.shape(z), np.shape(self.mean), np.shape(self.width))),
-            where=column(self.width) > 0,
-        )
-        return column(spread)
-
-    def from_normal(self, z: ArrayLike) -> Array:
-        """Exact in both tails."""
-        mean = column(self.mean)
-        mean = np.where(mean > 0, mean, np.nan)
-        variance = np.log1p(np.square(self.width / mean))
-        return mean * np.exp(np.sqrt(variance) * column(z) - 0.5 * variance)
-
-    @property
-    def standard_uncertainty(self) -> Array:
-        """The width."""
-        return column(self.width)
 
 
 def rows_of(inputs: Iterable[Distribution]) -> int:

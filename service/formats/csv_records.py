@@ -19,6 +19,8 @@ from service.formats.records import CR, LF, Ends, Places, Records
 
 COMMA, QUOTE = 44, 34
 
+csv.field_size_limit(2**31 - 1)  # the length of a record has its own limit
+
 _CELL = re.compile(rb'(?:"(?:[^"]++|"")*+"[^,\n]*+|(?!")[^,\n]*+)([,\n])')
 
 
@@ -44,16 +46,21 @@ def cells_of(records: Records, width: int) -> tuple[list[pl.Series], Marks]:
     A record with too many cells or too few has empty ones; so has one with a carriage return
     outside quotes, where other readers would see a row end.
     """
-    if records.regular and _has_width(records, width):
-        frame = pl.read_csv(
-            records.text,
-            has_header=False,
-            infer_schema=False,
-            new_columns=[str(place) for place in range(width)],
-        )
-        if frame.shape == (len(records), width):
-            return frame.get_columns(), np.zeros(len(records), dtype=np.bool_)
-    return _cells_row_by_row(records, width)
+    if not records.regular or records.text.startswith(codecs.BOM_UTF8):
+        return _cells_row_by_row(records, width)
+    broken = _widths(records) != width
+    text = records.text
+    if broken.any():
+        nothing = b'""' + b"," * (width - 1)
+        pairs = zip(records.pieces(), broken.tolist(), strict=True)
+        text = b"\n".join(nothing if odd else piece for piece, odd in pairs)
+    frame = pl.read_csv(
+        text,
+        has_header=False,
+        infer_schema=False,
+        new_columns=[str(place) for place in range(width)],
+    )
+    return frame.get_columns(), broken
 
 
 def cells_in(text: str) -> list[str]:
@@ -92,19 +99,14 @@ def _ends_cell_by_cell(window: bytes) -> Ends:
     return Ends(np.array(ends, np.int64), regular=False, opened=opened)
 
 
-def _has_width(records: Records, width: int) -> bool:
-    """Whether each of some regular records has that many cells."""
+def _widths(records: Records) -> Places:
+    """How many cells each of some regular records has."""
     codes = np.frombuffer(records.text, np.uint8)
     outside = codes == COMMA
     if b'"' in records.text:
         outside &= np.cumsum(codes == QUOTE, dtype=np.uint8) % 2 == 0
     commas = np.flatnonzero(outside)
-    if commas.size != len(records) * (width - 1) or records.text.startswith(codecs.BOM_UTF8):
-        return False
-    between = commas.reshape(len(records), width - 1)
-    return width == 1 or bool(
-        (between[:, 0] >= records.starts).all() and (between[:, -1] < records.ends).all()
-    )
+    return np.searchsorted(commas, records.ends) - np.searchsorted(commas, records.starts) + 1
 
 
 def _cells_row_by_row(records: Records, width: int) -> tuple[list[pl.Series], Marks]:

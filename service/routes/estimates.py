@@ -84,7 +84,7 @@ def _answer(document: dict[str, Any], answered: str, most: int) -> Response:
     frame = frame_of(result, sent, settings.units)
     if answered != JSON:
         return Response(tabulate(frame, answered), media_type=answered, headers=VARY)
-    units = units_of_answer(frame.columns[:-1], settings.units)
+    units = {**units_of_answer(frame.columns[:-1], settings.units), **settings.units}
     remarks = Remarks()
     remarks.note(sent.numbers, settings.units, result.flags)
     rest = {"units": units, **echo_of(basis, settings, remarks.advice(settings.units))}

@@ -7,6 +7,7 @@ from fastapi import FastAPI
 from fastapi.routing import APIRoute
 
 from service.errors import MEDIA_TYPE, PROBLEMS
+from service.examples import examples, show
 from service.schemas.estimates import SETTINGS
 
 REFERENCE = "#/components/schemas/{model}"
@@ -71,6 +72,9 @@ class Api(FastAPI):
             }  # fmt: skip
             for path, operation in _operations(document):
                 _complete(path, operation)
+            by_id = {operation["operationId"]: operation for _, operation in _operations(document)}
+            for owner, name, example in examples():
+                show(by_id[owner], name, example)
         return self.openapi_schema or {}
 
 
