@@ -68,7 +68,7 @@ ADVISORIES: Registry[Advisory] = Registry(
              "would be possible in a unit often sent by mistake.",
              text="{count} values of {name} are impossible in {unit} and possible in {other}, "
              'such as {value}: name the unit, for example "units": {{"{name}": "{other}"}}.'),
-    Advisory(key="frozen", condition="A reading is at or below 0 Cel.",
+    Advisory(key="frozen-readings", condition="A reading is at or below 0 Cel.",
              text="{count} readings were taken at or below 0 Cel: unfrozen water only."),
     Advisory(key="permittivities-beside", condition="More than one kind of permittivity came.",
              text="Several kinds of permittivity came ({names}); {used} was used."),

@@ -61,6 +61,7 @@ def create_api(settings: Settings) -> Api:
     )
     api.state.settings = settings
     api.state.draining = False
+    api.state.tables = 0
     main = (estimates.router, health.router, problems.router, pages.router)
     for router in (*main, *catalogues.routers):
         api.include_router(router)

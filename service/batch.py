@@ -7,7 +7,6 @@ would wait for ever, and a server that looks for a disconnect swallows what is s
 
 import errno
 import io
-import tempfile
 from collections.abc import AsyncIterator, Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 from typing import IO
@@ -51,7 +50,7 @@ class Conversion:
     answer: Callable[[Block], Answer]
     strict: bool = False
     counts: Counts = field(default=Counts(), init=False)
-    _started: bool = field(default=False, init=False)
+    _names: tuple[str, ...] | None = field(default=None, init=False)
 
     def feed(self, piece: bytes) -> Iterator[bytes]:
         """The answer as far as this piece completes it. Raises FormatError."""
@@ -67,9 +66,11 @@ class Conversion:
             answer = self.answer(block)
             if self.strict:
                 refuse_first(block, answer)
-            if not self._started:
-                self._started = True
-                yield self.encoder.start(block.header, tuple(answer.columns))
+            if self._names is None:
+                self._names = tuple(answer.columns)
+                yield self.encoder.start(block.header, self._names)
+            if self._names != tuple(answer.columns):
+                raise ValueError("every block of a table is answered with the same columns")
             if len(block):
                 yield self.encoder.block(block, answer)
                 flagged = int(np.count_nonzero(answer.flags))
@@ -112,30 +113,6 @@ def convert_file(
         progress(len(piece))
     _write(target, conversion.close())
     return conversion.counts
-
-
-async def respond(
-    chunks: AsyncIterator[bytes],
-    conversion: Conversion,
-    media_type: str,
-    *,
-    headers: Mapping[str, str] | None = None,
-    directory: str | None = None,
-) -> "SpooledResponse":
-    """Convert a body and answer with the outcome, its rows counted in the headers.
-
-    media_type: of the encoder. directory: where a long answer is kept until it is sent; the
-    system's folder for such files where None.
-    Raises as convert_stream does; nothing is left behind then.
-    """
-    spool = tempfile.SpooledTemporaryFile(IN_MEMORY, dir=directory)  # noqa: SIM115 - the response closes it
-    try:
-        counts = await convert_stream(chunks, conversion, spool)
-        told = {"Row-Count": str(counts.rows), "Flagged-Count": str(counts.flagged)}
-        return SpooledResponse(spool, media_type, {**(headers or {}), **told})
-    except BaseException:
-        spool.close()
-        raise
 
 
 class SpooledResponse(Response):

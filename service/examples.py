@@ -25,17 +25,19 @@ def first_lines(name: str, count: int = 4) -> str:
 def show(operation: dict[str, Any], name: str, example: dict[str, Any]) -> None:
     """Put one example where the description of its operation shows it."""
     request, answer = example["request"], example["response"]
-    shown = {"summary": example["summary"]}
     if "json" in request:
-        content = operation["requestBody"]["content"]["application/json"]
-        content.setdefault("examples", {})[name] = {**shown, "value": request["json"]}
+        body = operation["requestBody"]["content"]["application/json"]
+        _add(body, name, example["summary"], request["json"])
     elif "file" in request:
         media_type = request["headers"]["Content-Type"]
-        content = operation["requestBody"]["content"][media_type] = dict(
-            operation["requestBody"]["content"][media_type]
-        )
-        content["examples"] = {name: {**shown, "value": first_lines(request["file"])}}
-    elif answer.get("json"):
+        content = operation["requestBody"]["content"]
+        content[media_type] = dict(content[media_type])
+        _add(content[media_type], name, example["summary"], first_lines(request["file"]))
+    if answer.get("json") and answer["status"] == 200:
         content = operation["responses"]["200"].setdefault("content", {})
-        json_content = content.setdefault("application/json", {})
-        json_content["examples"] = {name: {**shown, "value": answer["json"]}}
+        body = content.setdefault("application/json", {})
+        _add(body, name, f"{example['summary']} (in part)", answer["json"])
+
+
+def _add(content: dict[str, Any], name: str, summary: str, value: Any) -> None:
+    content.setdefault("examples", {})[name] = {"summary": summary, "value": value}

@@ -46,7 +46,7 @@ class Remarks:
             for name, found in self._suspicions.items()
         ]  # fmt: skip
         if self._frozen:
-            said.append(advise("frozen", count=self._frozen))
+            said.append(advise("frozen-readings", count=self._frozen))
         return tuple(said)
 
     def _suspect(self, name: str, impossible: Array, units: Units) -> None:

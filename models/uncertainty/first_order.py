@@ -5,7 +5,10 @@ from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
+from numpy.typing import ArrayLike
+from scipy.special import stdtrit
 
+from models.errors import Complaint, ParameterError
 from models.relation import Array, column
 
 
@@ -82,3 +85,35 @@ def _share(part: Any, width: Array) -> Array:
     """Share of the variance that the part makes up; 0 where there is no variance."""
     square = np.square(width)
     return np.divide(np.square(column(part)), square, out=np.zeros_like(square), where=square > 0)
+
+
+def effective_degrees_of_freedom(
+    contributions: Mapping[str, Array], degrees_of_freedom: Mapping[str, ArrayLike]
+) -> Array:
+    """Of the combined standard uncertainty: Welch-Satterthwaite (JCGM 100, G.4.1), elementwise.
+
+    contributions: of uncorrelated inputs, as ``propagate`` gives them, in no way rounded: with the
+        combined uncertainty rounded to two digits, the sum of its parts is no longer the whole.
+    degrees_of_freedom: by input, > 0; infinite for those left out.
+    Raises ParameterError for degrees of freedom that are not positive. Infinite where nothing is
+    uncertain.
+    """
+    total, weighed = np.zeros(1), np.zeros(1)
+    for name, contribution in contributions.items():
+        variance = np.square(column(contribution))
+        total = total + variance
+        if name in degrees_of_freedom:
+            known = column(degrees_of_freedom[name])
+            if not np.all(known > 0):
+                detail = f"degrees of freedom of {name} must be positive"
+                raise ParameterError("uncertainty", [Complaint(name, detail)])
+            weighed = weighed + np.square(variance) / known
+    return np.divide(
+        np.square(total), weighed, out=np.full(np.shape(total + weighed), np.inf), where=weighed > 0
+    )
+
+
+def expanded_factor(probability: float, degrees_of_freedom: ArrayLike) -> Array:
+    """Half-width in standard uncertainties of Student's t, at the whole number below (G.4.1)."""
+    whole = np.maximum(np.floor(np.minimum(column(degrees_of_freedom), 1e9)), 1.0)
+    return column(stdtrit(whole, 0.5 * (1.0 + probability)))

@@ -1,13 +1,13 @@
 """JCGM 101 and 102: the distribution of a measurand by draws, whatever its shape.
 
-A measurand is called as ``measurand(**columns)`` with arrays that broadcast to (rows, draws): rows
-first, one draw after the other along the last axis. Whatever differs from row to row must be
-among the inputs (with width 0 where it is exact); scalars may be held by the measurand itself.
-Draws outside its domain give NaN, are left out, and are counted: they are never moved inside.
+A measurand is called as ``measurand(**columns)`` with arrays that broadcast to (rows, draws): one
+draw after the other along the last axis. Whatever differs from row to row must be among the
+inputs, with width 0 where it is exact; scalars may be held by the measurand itself. Draws outside
+its domain give NaN, are left out, and are counted: they are never moved inside.
 """
 
 from collections.abc import Callable, Iterator, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 from typing import Any
 
 import numpy as np
@@ -16,8 +16,15 @@ from numpy.typing import ArrayLike
 from models.relation import Array, column
 from models.uncertainty.correlation import correlation_matrix, triangular
 from models.uncertainty.distributions import Distribution, rows_of
+from models.uncertainty.draw_statistics import (
+    Counts,
+    Kind,
+    interval_of,
+    moments_of,
+    numerical_tolerance,
+)
 from models.uncertainty.draws import Draws
-from models.uncertainty.order_statistics import Counts, Kind, interval_of, moments_of
+from models.uncertainty.joint import outputs_of
 
 BLOCK = 2**16
 """Values a measurand gives per call: its working columns stay near the processor."""
@@ -25,10 +32,10 @@ BLOCK = 2**16
 
 @dataclass(frozen=True, slots=True)
 class Simulated:
-    """What the draws say, shape (n,); NaN where too few of a row's draws are in the domain."""
+    """What the draws say, shape (n,); NaN where too few draws are in the domain."""
 
     value: Array
-    """Mean of the draws, which for a curved measurand is not the measurand of the means."""
+    """Mean of the draws: for a curved measurand not the measurand of the means."""
     standard_uncertainty: Array
     lower: Array
     upper: Array
@@ -46,11 +53,6 @@ class JointlySimulated:
     covariance: Array
     outside: Counts
 
-    @property
-    def standard_uncertainty(self) -> Array:
-        """Shape (n, p)."""
-        return np.sqrt(np.diagonal(self.covariance, axis1=-2, axis2=-1))
-
 
 def simulate(
     measurand: Callable[..., Array],
@@ -61,18 +63,47 @@ def simulate(
     probability: float = 0.95,
     interval: Kind = "symmetric",
 ) -> Simulated:
-    """Mean, standard uncertainty and coverage interval of each row by a fixed number of draws.
+    """Mean, standard uncertainty and coverage interval of each row from its draws.
 
-    correlation: of the inputs' normal scores, in the order of ``inputs``: for normal inputs their
-        own correlation matrix.
-    Raises ParameterError when the correlation matrix is none.
+    correlation: of the inputs' normal scores, in the order of ``inputs``; of normal inputs it is
+        their own correlation matrix. Raises ParameterError when it is none.
     """
     draws = draws or Draws()
-    normal = _scores(draws, len(inputs), correlation, batch=0)
-    parts = [
-        _summary(_values(measurand, inputs, rows, [normal]), probability, interval)
-        for rows in _blocks(rows_of(inputs.values()), draws.count)
-    ]
+    scores = _scores(draws, len(inputs), correlation)
+    return _stacked(
+        [
+            _summary(_values(measurand, inputs, rows, scores)[0], probability, interval)
+            for rows in _blocks(inputs, draws.count)
+        ]
+    )
+
+
+def simulate_jointly(
+    measurand: Callable[..., Any],
+    inputs: Mapping[str, Distribution],
+    *,
+    draws: Draws | None = None,
+    correlation: ArrayLike | None = None,
+) -> JointlySimulated:
+    """Means and covariance of several outputs (JCGM 102, 7).
+
+    measurand: returns a sequence of columns; a complex one counts as its real and imaginary part.
+    A draw counts where all outputs are numbers.
+    """
+    draws = draws or Draws()
+    scores = _scores(draws, len(inputs), correlation)
+    parts = []
+    for rows in _blocks(inputs, draws.count):
+        outputs = np.stack(_values(measurand, inputs, rows, scores), axis=1)
+        known = np.isfinite(outputs).all(axis=1)
+        count = known.sum(axis=1)
+        outputs = np.where(known[:, None, :], outputs, 0.0)
+        with np.errstate(invalid="ignore", divide="ignore"):
+            mean = outputs.sum(axis=2) / count[:, None]
+            away = np.where(known[:, None, :], outputs - mean[:, :, None], 0.0)
+            products = (away[:, :, None, :] * away[:, None, :, :]).sum(axis=3)
+            covariance = products / (count - 1.0)[:, None, None]
+        parts.append(JointlySimulated(mean, covariance, draws.count - count))
     return _stacked(parts)
 
 
@@ -87,16 +118,116 @@ def simulate_until_stable(
     probability: float = 0.95,
     interval: Kind = "symmetric",
 ) -> Simulated:
-    """Batches of draws until every figure of a row stands to so many digits (JCGM 101, 7.9).
+    """Batches of draws until every figure of a row is stable to so many digits (JCGM 101, 7.9).
 
-    draws: of one batch, at least 10 000 and 100 / (1 - probability).
-    digits: significant ones of the standard uncertainty; figures are stable when twice the
-        standard deviation of their mean over the batches is below half a unit of the last.
-    A row stops for good once it is stable, or when one batch more would exceed ``most``.
+    draws: of one batch; 10 000 pseudo-random ones, or 100 / (1 - probability) where that is more.
+    digits: significant ones, of the standard uncertainty. Stable: twice the standard deviation
+        of each figure's mean over the batches is below half a unit of the last digit.
+    most: draws per row at which a row stops unstable; its ``draws`` then says so.
     """
-    draws = draws or Draws(10_000, kind="pseudo-random")
-    done = _Batches(measurand, inputs, draws, correlation)
+    batch = max(10_000, int(np.ceil(100.0 / (1.0 - probability))))
+    draws = draws or Draws(batch, kind="pseudo-random")
     parts = []
-    for rows in _blocks(rows_of(inputs.values()), draws.count):
-        parts.append(done.run(rows, digits, max(most // draws.count, 2), probability, interval))
+    for rows in _blocks(inputs, draws.count):
+        run = _Run(np.arange(rows.start, rows.stop), probability, interval)
+        for number in range(max(2, most // draws.count)):
+            scores = _scores(draws, len(inputs), correlation, number)
+            run.add(_values(measurand, inputs, run.going, scores)[0])
+            run.retire(run.stable(digits))
+            if not run.going.size:
+                break
+        run.retire(np.ones(run.going.size, dtype=bool))
+        parts.append(run.result())
     return _stacked(parts)
+
+
+class _Run:
+    """The rows of one block that are still going, their batches, and the figures of each."""
+
+    def __init__(self, rows: Counts, probability: float, interval: Kind) -> None:
+        self.going = rows
+        self._how: tuple[float, Kind] = (probability, interval)
+        self._batches: list[Array] = []
+        self._figures: list[Array] = []
+        self._retired: list[tuple[Counts, Simulated]] = []
+
+    def add(self, values: Array) -> None:
+        """One batch more, shape (rows still going, draws of a batch)."""
+        found = _summary(values, *self._how)
+        self._batches.append(values)
+        self._figures.append(
+            np.stack([found.value, found.standard_uncertainty, found.lower, found.upper])
+        )
+
+    def stable(self, digits: int) -> Any:
+        """Which rows are; a row without any number is."""
+        if len(self._figures) < 2:
+            return np.zeros(self.going.size, dtype=bool)
+        values = np.concatenate(self._batches, axis=1)
+        u = moments_of(values, np.isfinite(values).sum(axis=1))[1]
+        spread = np.std(self._figures, axis=0, ddof=1) / np.sqrt(len(self._figures))
+        return (2.0 * spread.max(axis=0) < numerical_tolerance(u, digits)) | ~(u > 0)
+
+    def retire(self, rows: Any) -> None:
+        """Take rows out of the run, with all their draws."""
+        if np.any(rows):
+            values = np.concatenate([batch[rows] for batch in self._batches], axis=1)
+            self._retired.append((self.going[rows], _summary(values, *self._how)))
+            self.going = self.going[~rows]
+            self._batches = [batch[~rows] for batch in self._batches]
+            self._figures = [figures[:, ~rows] for figures in self._figures]
+
+    def result(self) -> Simulated:
+        """In the order of the rows."""
+        order = np.argsort(np.concatenate([rows for rows, _ in self._retired]))
+        together = _stacked([found for _, found in self._retired])
+        return Simulated(*(getattr(together, each.name)[order] for each in fields(together)))
+
+
+def _scores(draws: Draws, inputs: int, correlation: ArrayLike | None, batch: int = 0) -> Array:
+    normal = draws.normal(inputs, batch)
+    if correlation is None:
+        return normal
+    return column(triangular(correlation_matrix(correlation, inputs)) @ normal)
+
+
+def _blocks(inputs: Mapping[str, Distribution], draws: int) -> Iterator[slice]:
+    count, step = rows_of(inputs.values()), max(1, BLOCK // draws)
+    return (slice(start, min(start + step, count)) for start in range(0, count, step))
+
+
+def _values(
+    measurand: Callable[..., Any], inputs: Mapping[str, Distribution], rows: Any, scores: Array
+) -> list[Array]:
+    """Every output of the measurand at every draw, shape (rows, draws) each."""
+    some = {name: given.take((rows, None)) for name, given in inputs.items()}
+    count = rows.stop - rows.start if isinstance(rows, slice) else rows.size
+    parts = []
+    for start in range(0, scores.shape[1], BLOCK):
+        now = scores[:, start : start + BLOCK]
+        at = {
+            name: given.from_normal(0.0 if given.exact else z)
+            for (name, given), z in zip(some.items(), now, strict=True)
+        }
+        with np.errstate(all="ignore"):
+            outputs = outputs_of(measurand(**at))
+        parts.append([np.broadcast_to(one, (count, now.shape[1])) for one in outputs])
+    together = (np.concatenate(chunks, axis=1) for chunks in zip(*parts, strict=True))
+    return [np.where(np.isfinite(values), values, np.nan) for values in together]
+
+
+def _summary(values: Array, probability: float, interval: Kind) -> Simulated:
+    count = np.isfinite(values).sum(axis=1)
+    value, u = moments_of(values, count)
+    lower, upper = interval_of(
+        np.sort(values, axis=1), count, probability=probability, kind=interval
+    )
+    made = np.full(count.shape, values.shape[1], dtype=np.intp)
+    return Simulated(value, u, lower, upper, made - count, made)
+
+
+def _stacked(parts: Sequence[Any]) -> Any:
+    kind = type(parts[0])
+    return kind(
+        *(np.concatenate([getattr(part, each.name) for part in parts]) for each in fields(kind))
+    )

@@ -11,13 +11,8 @@ from numpy.typing import NDArray
 from models.flags import BIT, Flags, slugs_of, withheld
 from models.readings import Readings, quantity_of, read
 from models.relation import Array
-from service.formats.errors import CellError, FormatError, HeaderError, RecordTooLong, shown
+from service.formats.errors import CellError, shown
 from service.formats.header import folded
-
-__all__ = [
-    "Answer", "Block", "CellError", "Decoder", "Encoder", "FormatError", "Header", "HeaderError",
-    "RecordTooLong",
-]  # fmt: skip
 
 Marks = NDArray[np.bool_]
 

@@ -1,11 +1,13 @@
 """application/json estimates, as rows or as columns: NaN becomes null, flags become lists."""
 
 from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 import orjson
 import polars as pl
+from numpy.typing import NDArray
 
 from models.conversion import Units, from_si
 from models.estimate import Estimates
@@ -17,52 +19,75 @@ PASSED = ("time", "depth")
 """What of a reading an estimate repeats, so that it can be told whose it is."""
 
 
-def frame_of(estimates: Estimates, readings: JsonReadings, units: Units) -> pl.DataFrame:
-    """One row per reading: what tells it apart, the estimates in the caller's units, flags."""
-    columns: dict[str, Any] = {}
-    for name in PASSED:
-        if name in readings.texts:
-            columns[name] = pl.Series(name, readings.texts[name], dtype=pl.String)
-        elif name in readings.numbers:
-            columns[name] = _series(name, readings.numbers[name])
+@dataclass(frozen=True, slots=True)
+class JsonEstimates:
+    """Columns of an answer in the caller's units, in order; the flags come last."""
+
+    texts: Mapping[str, Sequence[str | None]]
+    numbers: Mapping[str, Array]
+    flags: Flags
+
+    @property
+    def names(self) -> tuple[str, ...]:
+        """All columns but the flags."""
+        return (*self.texts, *self.numbers)
+
+
+def laid_out(estimates: Estimates, readings: JsonReadings, units: Units) -> JsonEstimates:
+    """What tells each reading apart, and its estimates in the caller's units."""
+    numbers = {name: readings.numbers[name] for name in PASSED if name in readings.numbers}
     for name, values in estimates.columns.items():
-        columns[name] = _series(name, from_si(name, values, units))
-    columns["flags"] = flag_lists(estimates.flags)
-    return pl.DataFrame(columns)
+        numbers[name] = np.ascontiguousarray(from_si(name, values, units))
+    texts = {name: readings.texts[name] for name in PASSED if name in readings.texts}
+    return JsonEstimates(texts, numbers, estimates.flags)
 
 
-def encode(frame: pl.DataFrame, shape: str, rest: Mapping[str, Any]) -> bytes:
+def encode(answer: JsonEstimates, shape: str, rest: Mapping[str, Any]) -> bytes:
     """The whole answer: ``estimates`` in the shape of the readings, then ``rest``."""
-    if shape == "rows":
-        body = frame.write_json().encode()
-    else:
-        body = orjson.dumps(
-            {name: _cells(frame[name]) for name in frame.columns},
-            option=orjson.OPT_SERIALIZE_NUMPY,
-        )
+    body = _rows(answer) if shape == "rows" else _columns(answer)
     return b'{"estimates":' + body + b"," + orjson.dumps(rest)[1:]
 
 
-def tabulate(frame: pl.DataFrame, media_type: str) -> bytes:
+def tabulate(answer: JsonEstimates, media_type: str) -> bytes:
     """The estimates alone, as a table."""
     if media_type == "text/csv":
-        flat = frame.with_columns(pl.col("flags").list.join(";"))
+        flat = _frame(answer).with_columns(pl.col("flags").list.join(";"))
         return flat.write_csv().encode()
-    return frame.write_ndjson().encode()
+    return _frame(answer).write_ndjson().encode()
 
 
-def flag_lists(flags: Flags) -> pl.Series:
-    """Flags as a column of lists of slugs; each combination is spelt out once."""
-    masks, place = np.unique(flags, return_inverse=True)
-    spelt: Sequence[list[str]] = [list(slugs_of(int(mask))) for mask in masks]
-    return pl.Series("flags", spelt, dtype=pl.List(pl.String)).gather(place)
+def _rows(answer: JsonEstimates) -> bytes:
+    return _frame(answer).write_json().encode()
 
 
-def _series(name: str, values: Array) -> pl.Series:
-    return pl.Series(name, np.ascontiguousarray(values)).fill_nan(None)
+def _columns(answer: JsonEstimates) -> bytes:
+    """Column by column: orjson writes NaN as null, each combination of flags is spelt once."""
+    combinations, places = _combinations(answer.flags)
+    spelt = [orjson.dumps(slugs) for slugs in combinations]
+    parts = [
+        orjson.dumps({**answer.texts, **answer.numbers}, option=orjson.OPT_SERIALIZE_NUMPY)[:-1],
+        b',"flags":[',
+        b",".join([spelt[place] for place in places.tolist()]),
+        b"]}",
+    ]
+    return b"".join(parts)
 
 
-def _cells(series: pl.Series) -> Any:
-    if series.dtype == pl.Float64:
-        return np.ascontiguousarray(series.fill_null(np.nan).to_numpy())
-    return series.to_list()
+def _frame(answer: JsonEstimates) -> pl.DataFrame:
+    columns: dict[str, Any] = {
+        name: pl.Series(name, values, dtype=pl.String) for name, values in answer.texts.items()
+    }
+    for name, values in answer.numbers.items():
+        columns[name] = pl.Series(name, values).fill_nan(None)
+    combinations, places = _combinations(answer.flags)
+    spelt = pl.Series("flags", combinations, dtype=pl.List(pl.String))
+    columns["flags"] = spelt.gather(places)
+    return pl.DataFrame(columns)
+
+
+def _combinations(flags: Flags) -> tuple[list[list[str]], NDArray[np.intp]]:
+    """Every combination of flags there is, spelt out, and which of them each row has."""
+    if not flags.any():
+        return [[]], np.zeros(flags.size, dtype=np.intp)
+    masks, places = np.unique(flags, return_inverse=True)
+    return [list(slugs_of(mask)) for mask in masks.tolist()], places

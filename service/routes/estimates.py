@@ -1,22 +1,23 @@
 """POST /v1/estimates: readings in, water content with its band out."""
 
 import tempfile
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
+from contextlib import contextmanager
 from typing import Any
 
 import anyio.to_thread
 import orjson
-from fastapi import APIRouter, Request
+from fastapi import APIRouter, FastAPI, Request
 from fastapi.responses import Response
 
 from models.estimate import Remarks, estimate
 from models.readings import read
 from service.batch import IN_MEMORY, Conversion, SpooledResponse, convert_stream
 from service.batch_estimates import APPENDED, TableEstimates
-from service.errors import Malformed, Unprocessable, UnsupportedMediaType
+from service.errors import Malformed, Unavailable, Unprocessable, UnsupportedMediaType
 from service.faults import Fault
 from service.formats import FORMATS, MEDIA_TYPES, Format, format_of
-from service.formats.json_estimates import encode, frame_of, tabulate
+from service.formats.json_estimates import encode, laid_out, tabulate
 from service.formats.json_readings import decode
 from service.negotiate import VARY, choose
 from service.routes.estimates_description import DESCRIPTION
@@ -26,7 +27,7 @@ from service.schemas.query import basis_of, echo_of, settings_of, units_of_answe
 router = APIRouter(tags=["estimates"])
 
 JSON = "application/json"
-INLINE = 2000
+INLINE = 10_000
 """Readings up to which the answer is worked out at once; more of them go to a thread."""
 
 
@@ -47,11 +48,17 @@ async def post_estimates(request: Request) -> Response:
     answered = choose(request.headers.get("accept"), request.query_params.get("format"), offered)
     _refuse_query(request)
     document = _parsed(await request.body())
-    few = len(document["readings"]) <= INLINE if isinstance(document["readings"], list) else False
     most = request.app.state.settings.json_readings
-    if few:
+    if _count(document["readings"]) <= INLINE:
         return _answer(document, answered, most)
     return await anyio.to_thread.run_sync(_answer, document, answered, most)
+
+
+def _count(readings: Any) -> int:
+    """How many readings there are, as far as can be told at a glance."""
+    if isinstance(readings, dict):
+        readings = next(iter(readings.values()), ())
+    return len(readings) if isinstance(readings, list) else 0
 
 
 def _refuse_query(request: Request) -> None:
@@ -81,14 +88,14 @@ def _answer(document: dict[str, Any], answered: str, most: int) -> Response:
     settings = settings_of(document)
     basis = basis_of(settings, (*sent.numbers, *sent.texts))
     result = estimate(read(sent.numbers, settings.units, {}), basis)
-    frame = frame_of(result, sent, settings.units)
+    answer = laid_out(result, sent, settings.units)
     if answered != JSON:
-        return Response(tabulate(frame, answered), media_type=answered, headers=VARY)
-    units = {**units_of_answer(frame.columns[:-1], settings.units), **settings.units}
+        return Response(tabulate(answer, answered), media_type=answered, headers=VARY)
+    units = {**units_of_answer(answer.names, settings.units), **settings.units}
     remarks = Remarks()
     remarks.note(sent.numbers, settings.units, result.flags)
     rest = {"units": units, **echo_of(basis, settings, remarks.advice(settings.units))}
-    return Response(encode(frame, sent.shape, rest), media_type=JSON, headers=VARY)
+    return Response(encode(answer, sent.shape, rest), media_type=JSON, headers=VARY)
 
 
 async def _table(request: Request, sent: Format) -> Response:
@@ -105,6 +112,27 @@ async def _table(request: Request, sent: Format) -> Response:
         table,
         strict=_is_true(request.query_params.get("strict")),
     )
+    with _place_for(request.app):
+        return await _converted(request, conversion, table, answered)
+
+
+@contextmanager
+def _place_for(app: FastAPI) -> Iterator[None]:
+    """One of the tables this process takes on at a time. Raises Unavailable when it has enough."""
+    most = app.state.settings.queued_batches
+    if app.state.tables >= most:
+        detail = f"{most} tables are being worked on, which is as many as are taken on at a time"
+        raise Unavailable(detail, retry_after=5)
+    app.state.tables += 1
+    try:
+        yield
+    finally:
+        app.state.tables -= 1
+
+
+async def _converted(
+    request: Request, conversion: Conversion, table: TableEstimates, answered: str
+) -> Response:
     spool = tempfile.SpooledTemporaryFile(IN_MEMORY)  # noqa: SIM115 - the response closes it
     try:
         counts = await convert_stream(request.stream(), conversion, spool)

@@ -1,4 +1,4 @@
-"""Coverage intervals from the draws of each row: JCGM 101, 7.7, with draws that gave no number."""
+"""What the draws of each row establish: JCGM 101, 7.6, 7.7 and 7.9, some of them no number."""
 
 from typing import Literal
 
@@ -54,3 +54,14 @@ def moments_of(values: Array, count: Counts) -> tuple[Array, Array]:
     away = away if all_known else np.where(known, away, 0.0)
     variance = np.square(away).sum(axis=1) / np.maximum(number - 1.0, 1.0)
     return np.where(count > 0, mean, np.nan), np.where(count > 1, np.sqrt(variance), np.nan)
+
+
+def numerical_tolerance(standard_uncertainty: Array, digits: int) -> Array:
+    """Half a unit in the last of so many significant digits, elementwise (JCGM 101, 7.9.2).
+
+    0.35 to two digits is 35 x 10^-2, so its tolerance is 0.005. NaN where there is no uncertainty.
+    """
+    u = np.where(standard_uncertainty > 0, standard_uncertainty, np.nan)
+    unit = np.floor(np.log10(u)) - (digits - 1)
+    carried = np.rint(u / 10.0**unit) >= 10.0**digits  # 0.0996 is 10 x 10^-2, not 100 x 10^-3
+    return column(0.5 * 10.0 ** (unit + carried))
