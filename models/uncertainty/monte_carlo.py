@@ -16,14 +16,14 @@ from numpy.typing import ArrayLike
 from models.relation import Array, column
 from models.uncertainty.correlation import correlation_matrix, triangular
 from models.uncertainty.distributions import Distribution, rows_of
-from models.uncertainty.draw_statistics import (
+from models.uncertainty.draws import (
     Counts,
-    Kind,
+    Draws,
+    Interval,
     interval_of,
     moments_of,
     numerical_tolerance,
 )
-from models.uncertainty.draws import Draws
 from models.uncertainty.joint import outputs_of
 
 BLOCK = 2**16
@@ -61,7 +61,7 @@ def simulate(
     draws: Draws | None = None,
     correlation: ArrayLike | None = None,
     probability: float = 0.95,
-    interval: Kind = "symmetric",
+    interval: Interval = "symmetric",
 ) -> Simulated:
     """Mean, standard uncertainty and coverage interval of each row from its draws.
 
@@ -116,7 +116,7 @@ def simulate_until_stable(
     most: int = 1_000_000,
     correlation: ArrayLike | None = None,
     probability: float = 0.95,
-    interval: Kind = "symmetric",
+    interval: Interval = "symmetric",
 ) -> Simulated:
     """Batches of draws until every figure of a row is stable to so many digits (JCGM 101, 7.9).
 
@@ -144,9 +144,9 @@ def simulate_until_stable(
 class _Run:
     """The rows of one block that are still going, their batches, and the figures of each."""
 
-    def __init__(self, rows: Counts, probability: float, interval: Kind) -> None:
+    def __init__(self, rows: Counts, probability: float, interval: Interval) -> None:
         self.going = rows
-        self._how: tuple[float, Kind] = (probability, interval)
+        self._how: tuple[float, Interval] = (probability, interval)
         self._batches: list[Array] = []
         self._figures: list[Array] = []
         self._retired: list[tuple[Counts, Simulated]] = []
@@ -216,7 +216,7 @@ def _values(
     return [np.where(np.isfinite(values), values, np.nan) for values in together]
 
 
-def _summary(values: Array, probability: float, interval: Kind) -> Simulated:
+def _summary(values: Array, probability: float, interval: Interval) -> Simulated:
     count = np.isfinite(values).sum(axis=1)
     value, u = moments_of(values, count)
     lower, upper = interval_of(

@@ -17,7 +17,7 @@ LOAM = {
     "transmission_slope": 1.35,
     "transmission_intercept": -0.085,
     "surface_conductivity": 0.04391,
-    "cation_exchange_capacity": 8.0,
+    "cation_exchange_capacity": 3.0,
 }
 OPTIONAL = {"rhoades-1989": {"surface_conductivity"}}
 """What a model works out by itself."""

@@ -152,7 +152,7 @@ def test_a_soil_that_conducts_less_than_its_surfaces_says_so(model, soil):
 
 
 def test_what_is_not_known_is_marked_by_no_gate(model, soil):
-    unknown = {name: np.nan for name in soil | {"water_content": 0.3}}
+    unknown = dict.fromkeys(soil | {"water_content": 0.3}, np.nan)
     for marked in model.gates(np.nan, **unknown).values():
         assert not marked
 

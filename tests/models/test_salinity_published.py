@@ -4,13 +4,8 @@ import numpy as np
 import pytest
 from numpy.testing import assert_allclose, assert_array_less
 
-from models.conductivity.loss import conduction_loss
 from models.mixing.physical import hanai_bruggeman
-from models.mixing.physical.complex_refractive import (
-    to_complex_permittivity,
-    to_water_content_and_conductivity,
-)
-from models.salinity import PORE_WATER_MODELS, complex_refractive
+from models.salinity import PORE_WATER_MODELS
 from models.salinity.hilhorst_2000 import water_permittivity
 from models.salinity.waxman_smits_1968 import charge_of_pores, equivalent_conductance
 from tests.models.pore_water_soils import loam
@@ -186,51 +181,6 @@ def test_waxman_smits_1968_has_no_water_where_the_charges_alone_conduct_better()
     assert_allclose(model.to_pore_water(alone * 1.001, **soil), 0.0, atol=1e-3)
     marked = model.gates(alone * np.array([0.999, 1.001]), **soil)["below-surface-conduction"]
     assert list(marked) == [True, False]
-
-
-def test_complex_refractive_continues_the_joint_inversion():
-    printed = table("complex_refractive_inverse")
-    row = {name: column.values for name, column in printed.items()}
-    water = 4.9 + (row["static"] - 4.9) / (1 + 1j * row["frequency"] * row["two_pi_tau"])
-    soil = {
-        "frequency": row["frequency"], "porosity": row["porosity"],
-        "water_permittivity": water.real, "water_loss": -water.imag,
-        "solid_permittivity": row["solid_real"] - 1j * row["solid_loss"],
-    }  # fmt: skip
-    soil["water_content"], conductivity = to_water_content_and_conductivity(
-        row["real"] - 1j * row["loss"], row["frequency"], water_permittivity=water,
-        porosity=soil["porosity"], solid_permittivity=soil["solid_permittivity"],
-    )  # fmt: skip
-    bulk = complex_refractive.bulk_of_loss(row["loss"], **soil)
-    pore_water = complex_refractive.to_pore_water(bulk, **soil)
-    assert_allclose(pore_water, conductivity, rtol=1e-12)
-    agrees(pore_water, printed["pore_water_conductivity"])
-
-
-def test_complex_refractive_continues_the_joint_inversion_of_any_soil():
-    random = np.random.default_rng(21)
-    rows_ = 3000
-    frequency = 10 ** random.uniform(7.7, 9.5, rows_)
-    phi = random.uniform(0.3, 0.7, rows_)
-    theta, conductivity = random.uniform(0.05, phi), random.uniform(0.01, 1, rows_)
-    water = random.uniform(70, 87, rows_) - 1j * random.uniform(0, 12, rows_)
-    known = {"porosity": phi, "solid_permittivity": random.uniform(3, 8, rows_)}
-    eps = to_complex_permittivity(theta, conductivity, frequency, water_permittivity=water, **known)
-    soil = known | {
-        "water_content": theta, "frequency": frequency,
-        "water_permittivity": water.real, "water_loss": -water.imag,
-    }  # fmt: skip
-    bulk = complex_refractive.bulk_of_loss(-eps.imag, **soil)
-    assert_allclose(complex_refractive.to_bulk(conductivity, **soil), bulk, rtol=1e-9, atol=1e-12)
-    assert_allclose(complex_refractive.to_pore_water(bulk, **soil), conductivity, rtol=1e-9)
-
-
-def test_complex_refractive_pure_water_adds_no_bulk_conductivity():
-    soil = loam("complex-refractive")
-    assert_allclose(complex_refractive.to_bulk(0.0, **soil), 0.0, atol=1e-15)
-    assert_allclose(complex_refractive.to_pore_water(0.0, **soil), 0.0, atol=1e-12)
-    lossless = -0.5 * soil["water_loss"] / conduction_loss(1.0, soil["frequency"])
-    assert complex_refractive.to_pore_water(lossless / 10, **soil) < 0, "not clipped"
 
 
 def test_one_reading_in_a_loam_by_every_model():

@@ -1,0 +1,119 @@
+"""Means over time and sums over depth: what averages out, and what all readings share.
+
+The part of an uncertainty that readings do not share is independent from one to the next and
+shrinks in a mean; the shared part (calibration, model, properties of the site) does not shrink,
+and in a sum it adds up in full.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from models.errors import Complaint, ParameterError
+from models.relation import Array, column
+
+Labels = NDArray[np.intp]
+
+
+@dataclass(frozen=True, slots=True)
+class Aggregate:
+    """One row per group, shape (g,)."""
+
+    value: Array
+    standard_uncertainty: Array
+    shared: Array
+    """The part of it that is shared, so that aggregates can be aggregated again."""
+    count: Labels
+    """How many estimates went in."""
+
+
+def weighted_sum(
+    value: ArrayLike,
+    standard_uncertainty: ArrayLike,
+    shared: ArrayLike,
+    *,
+    weights: ArrayLike = 1.0,
+    groups: ArrayLike | None = None,
+    sources: ArrayLike | None = None,
+) -> Aggregate:
+    """Sum of weight x estimate in each group: a profile's water, layer by layer.
+
+    value: shape (n,); one that is no number leaves its whole group without a number.
+    standard_uncertainty: both parts together; shared: that part of it. Scalars or shape (n,).
+    groups: shape (n,), 0, 1, 2, ...; None: all are one group.
+    sources: shape (n,), who shares an error with whom, 0, 1, 2, ...; None: all do, which is the
+        cautious answer where one calibration or one model served for all.
+    Raises ParameterError when a shared part exceeds the whole, or labels do not fit.
+    """
+    known = column(value)
+    weight = np.broadcast_to(column(weights), known.shape)
+    return _summed(known, (standard_uncertainty, shared), weight, groups, sources)
+
+
+def weighted_mean(
+    value: ArrayLike,
+    standard_uncertainty: ArrayLike,
+    shared: ArrayLike,
+    *,
+    weights: ArrayLike = 1.0,
+    groups: ArrayLike | None = None,
+    sources: ArrayLike | None = None,
+) -> Aggregate:
+    """Mean of the estimates in each group that are numbers: a day's readings.
+
+    weights: for instance the time each reading stands for; positive. Else as ``weighted_sum``.
+    NaN for a group without any number; ``count`` says how many there were.
+    """
+    known = column(value)
+    present = np.isfinite(known)
+    weight = np.where(present, column(weights), 0.0)
+    labels = _labels(groups, known.shape)
+    whole = np.bincount(labels, weight)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        weight = np.where(present, weight / whole[labels], 0.0)
+    u, common = (np.where(present, column(part), 0.0) for part in (standard_uncertainty, shared))
+    found = _summed(np.where(present, known, 0.0), (u, common), weight, labels, sources)
+    empty = whole == 0
+    return Aggregate(
+        np.where(empty, np.nan, found.value),
+        np.where(empty, np.nan, found.standard_uncertainty),
+        np.where(empty, np.nan, found.shared),
+        np.bincount(labels, present).astype(np.intp),
+    )
+
+
+def _summed(
+    value: Array,
+    uncertainty: tuple[ArrayLike, ArrayLike],
+    weight: Array,
+    groups: ArrayLike | None,
+    sources: ArrayLike | None,
+) -> Aggregate:
+    whole, shared = (np.broadcast_to(column(part), value.shape) for part in uncertainty)
+    own = np.square(whole) - np.square(shared)
+    if np.any((shared < 0) | (own < -1e-9 * np.square(whole))):
+        detail = "shared must be between 0 and standard_uncertainty, of which it is a part"
+        raise ParameterError("uncertainty", [Complaint("shared", detail)])
+    labels, source = _labels(groups, value.shape), _labels(sources, value.shape)
+    number = labels.max(initial=-1) + 1
+    pairs, pair = np.unique(np.stack([labels, source]), axis=1, return_inverse=True)
+    common = np.square(np.bincount(pair.ravel(), weight * shared))
+    common = np.bincount(pairs[0], common, minlength=number)
+    alone = np.bincount(labels, np.square(weight) * np.maximum(own, 0.0), minlength=number)
+    return Aggregate(
+        np.bincount(labels, weight * value, minlength=number),
+        np.sqrt(common + alone),
+        np.sqrt(common),
+        np.bincount(labels, minlength=number),
+    )
+
+
+def _labels(given: ArrayLike | None, shape: tuple[int, ...]) -> Labels:
+    if given is None:
+        return np.zeros(shape, dtype=np.intp)
+    labels = np.asarray(given)
+    if labels.shape != shape or labels.dtype.kind not in "iu" or labels.min(initial=0) < 0:
+        detail = "labels must be whole numbers from 0, one per estimate"
+        raise ParameterError("uncertainty", [Complaint("groups", detail)])
+    return labels.astype(np.intp)

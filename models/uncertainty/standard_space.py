@@ -1,0 +1,82 @@
+"""A measurand as a function of independent standard-normal variables, one per input."""
+
+from collections.abc import Callable, Mapping
+from typing import Any, Self
+
+import numpy as np
+
+from models.relation import Array
+from models.uncertainty.distributions import Distribution
+
+STEP = 0.1
+"""Of differences: wide enough for second ones."""
+Point = Mapping[int, Any]
+"""Variables by number, as columns or scalars; those left out are 0."""
+
+
+class StandardSpace:
+    """The measurand of some rows around the medians of its inputs.
+
+    factor: lower triangular, of the correlation of the inputs' normal scores; None: independent.
+    """
+
+    def __init__(
+        self,
+        measurand: Callable[..., Array],
+        inputs: Mapping[str, Distribution],
+        factor: Array | None,
+        rows: int,
+    ) -> None:
+        self.measurand, self.inputs, self.factor, self.rows = measurand, inputs, factor, rows
+        self._medians = {name: given.from_normal(0.0) for name, given in inputs.items()}
+        self._names = tuple(inputs)
+
+    def take(self, index: Any, rows: int) -> Self:
+        """So many of the rows."""
+        some = {name: given.take(index) for name, given in self.inputs.items()}
+        return type(self)(self.measurand, some, self.factor, rows)
+
+    def __call__(self, point: Point) -> Array:
+        """The measurand at a point, shape (rows,); NaN outside its domain, never a warning."""
+        with np.errstate(all="ignore"):
+            result = self.measurand(**{**self._medians, **self._moved(point)})
+        return np.broadcast_to(result, (self.rows,))
+
+    def differences(self, point: Point, value: Array) -> tuple[dict[int, Array], Array]:
+        """Slope along each variable, and the sum of the second derivatives (tr H).
+
+        value: the measurand at the point.
+        """
+        slopes: dict[int, Array] = {}
+        total = -2.0 * len(self._names) * value
+        for j in range(len(self._names)):
+            at = point.get(j, 0.0)
+            above, below = self({**point, j: at + STEP}), self({**point, j: at - STEP})
+            slopes[j] = (above - below) / (2.0 * STEP)
+            total += above + below
+        return slopes, total / STEP**2
+
+    def _moved(self, point: Point) -> dict[str, Array]:
+        """The inputs that are not at their medians."""
+        names = self._names
+        if self.factor is None:
+            return {names[j]: self.inputs[names[j]].from_normal(u) for j, u in point.items()}
+        scores = {
+            name: sum(weight * point[j] for j, weight in enumerate(row) if j in point)
+            for name, row in zip(names, self.factor, strict=True)
+        }
+        return {name: self.inputs[name].from_normal(z) for name, z in scores.items()}
+
+
+def direction_of(slopes: Mapping[int, Array]) -> tuple[dict[int, Array], Array]:
+    """Unit vector along a gradient, and the gradient's length; NaN where that is 0."""
+    length = np.sqrt(sum(np.square(slope) for slope in slopes.values()))
+    with np.errstate(invalid="ignore", divide="ignore"):
+        return {j: slope / length for j, slope in slopes.items()}, length
+
+
+def along(direction: Mapping[int, Array], distance: float, start: Point | None = None) -> Point:
+    """The point so far from the start (the medians) in a direction."""
+    if start is None:
+        return {j: distance * part for j, part in direction.items()}
+    return {j: start[j] + distance * part for j, part in direction.items()}
