@@ -50,6 +50,22 @@ ADVISORIES: Registry[Advisory] = Registry(
              condition="A value that enters the estimate came without a standard uncertainty.",
              text="No standard uncertainty was stated for {names}: their share is not in the "
              "band. Give {example} beside the value."),
+    Advisory(key="pore-water-model-chosen",
+             condition="Bulk conductivity came and no pore-water model was named.",
+             text="{model} gives the conductivity of the pore water: {why}"),
+    Advisory(key="pore-water-estimates",
+             condition="Coefficients of the pore-water model were estimated from texture.",
+             text="{names} were estimated from the texture class {texture}, from memory of what is "
+             "commonly held: coefficients fitted at the site narrow the band."),
+    Advisory(key="salinity-limits", condition="The answer holds conductivities of pore water.",
+             text="Bulk, pore-water and extract conductivity are three numbers; each is named and "
+             "at 25 Cel where it says so. Conductivity does not show sodium, boron, chloride or "
+             "pH, and low salinity does not rule out a sodium problem: obtain a laboratory "
+             "analysis before leaching, amending or changing crop."),
+    Advisory(key="extract-assumptions",
+             condition="The answer holds the conductivity of the saturation extract.",
+             text="The extract follows from a balance of salt (saturation percentage: {origin}): "
+             "nothing dissolves or settles as water is added. Gypsum adds up to about 2 dS/m."),
     Advisory(key="frequency-assumed",
              condition="The model depends on frequency and none was given.",
              text="No frequency was given: {frequency} GHz was assumed. Give probe.frequency or a "

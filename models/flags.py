@@ -5,7 +5,7 @@ few array operations. ``unreadable``, ``missing`` and ``out-of-gate`` name the q
 about: ``missing:temperature``.
 """
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from types import MappingProxyType
 
@@ -28,6 +28,8 @@ class Flag:
     reason: str
     keeps_number: bool
     """False: the row has no number because of it."""
+    keeps_pore_water: bool = True
+    """False: the row has no conductivity of pore water or extract because of it."""
     names_quantity: bool = False
 
 
@@ -117,10 +119,36 @@ FLAGS: Registry[Flag] = Registry(
          "permittivity.", keeps_number=False),
     Flag(key="frozen", condition="The temperature is at or below 0 Cel.",
          text="Unfrozen water only: ice is not seen as water.",
-         reason="The permittivity of ice is 3.2, that of water 88.", keeps_number=True),
+         reason="The permittivity of ice is 3.2, that of water 88; salt is driven out of ice into "
+         "what is left of the water.", keeps_number=True, keeps_pore_water=False),
     Flag(key="near-freezing", condition="The temperature is above 0 and at most 1 Cel.",
          text="Some of the water may be ice.",
          reason="A probe and its soil are rarely at one temperature.", keeps_number=True),
+    Flag(key="too-dry-for-pore-water", condition="The water content is below what the pore-water "
+         "model needs for a path: 0.10 for hilhorst-2000, 0.12 for malicki-walczak-1999, its own "
+         "threshold for rhoades-1976, 0.05 for the others.",
+         text="Too dry to tell the conductivity of the pore water.",
+         reason="Water that is not continuous does not conduct as the equation says.",
+         keeps_number=True, keeps_pore_water=False),
+    Flag(key="offset-too-close", condition="The real permittivity is less than 3 above the offset "
+         "of hilhorst-2000.",
+         text="The permittivity is too near the offset of the pore-water model.",
+         reason="The offset alone leaves half of the answer open.",
+         keeps_number=True, keeps_pore_water=False),
+    Flag(key="below-surface-conduction", condition="The soil conducts no better than its surfaces "
+         "would alone, or the pore water would conduct less than nothing.",
+         text="The bulk conductivity leaves nothing for the pore water.",
+         reason="Surface conduction estimated too high, a broken conductivity reading, or very "
+         "fresh water.", keeps_number=True, keeps_pore_water=False),
+    Flag(key="outside-pore-water-range", condition="Water content, bulk conductivity, temperature, "
+         "frequency or a soil property is outside the range of the pore-water model.",
+         text="Outside the conditions in which the pore-water equation was established.",
+         reason="Its stated error need not hold here.", keeps_number=True),
+    Flag(key="no-pore-water", condition="The pore-water model has no answer for this row, or lacks "
+         "its temperature.",
+         text="There is no number for the conductivity of the pore water.",
+         reason="Outside the domain of the equation.",
+         keeps_number=True, keeps_pore_water=False),
     Flag(key="outside-water-range", condition="The temperature or frequency is outside the range "
          "of the water model.",
          text="The permittivity of water is not known here.",
@@ -151,6 +179,15 @@ def withheld(flags: Flags) -> NDArray[np.bool_]:
     return (flags & _WITHHOLD) != 0
 
 
-_WITHHOLD = np.bitwise_or.reduce(
-    [BIT[slug] for slug in SLUGS if not FLAGS[slug.partition(":")[0]].keeps_number]
-)
+def without_pore_water(flags: Flags) -> NDArray[np.bool_]:
+    """Rows that must not have a conductivity of their pore water."""
+    return (flags & (_WITHHOLD | _NO_PORE_WATER)) != 0
+
+
+def _bits(keeps: Callable[[Flag], bool]) -> np.uint64:
+    kept_back = [BIT[slug] for slug in SLUGS if not keeps(FLAGS[slug.partition(":")[0]])]
+    return np.uint64(np.bitwise_or.reduce(kept_back))
+
+
+_WITHHOLD = _bits(lambda flag: flag.keeps_number)
+_NO_PORE_WATER = _bits(lambda flag: flag.keeps_pore_water)

@@ -119,6 +119,8 @@ QUANTITIES: Mapping[str, Quantity] = MappingProxyType({q.name: q for q in (
              Range(0.0, 1000.0), ("m2/kg",)),
     Quantity("saturation_percentage", "SP", "kg/kg",
              "water content of the saturated paste: 0.45, not 45", Range(0.05, 10.0), ("%",)),
+    Quantity("surface_conductivity", "sigma_s", "dS/m", "of the soil along the surfaces of its "
+             "solids alone, at 25 Cel", Range(0.0, 3.0), _CONDUCTIVITY),
     Quantity("field_capacity", "theta_fc", "m3/m3", "water content at field capacity",
              _FRACTION, ("%",)),
     Quantity("wilting_point", "theta_wp", "m3/m3", "water content at the wilting point",

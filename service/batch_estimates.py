@@ -8,10 +8,17 @@ from models.estimate import Basis, Remarks, columns_of, estimate
 from models.estimate.estimates import band_names
 from models.readings import Readings
 from service.formats.block import Answer, Block
+from service.schemas.echo import units_of_answer
 from service.schemas.estimates import EstimatesSettings
-from service.schemas.query import basis_of, units_of_answer
+from service.schemas.query import basis_of
 
-APPENDED = frozenset((*band_names("water_content"), "conduction_correction"))
+APPENDED = frozenset({
+    "conduction_correction",
+    *band_names("water_content"),
+    *band_names("bulk_conductivity_25"),
+    *band_names("pore_water_conductivity"),
+    *band_names("saturation_extract_conductivity"),
+})  # fmt: skip
 """Every column an answer may append, so that no table already has one of the name."""
 
 
@@ -52,6 +59,7 @@ class TableEstimates:
         units = units_of_answer(columns_of(basis), self.settings.units)
         return {
             "Mixing-Model": basis.model.key,
+            **({"Pore-Water-Model": basis.salinity.model.key} if basis.salinity else {}),
             "Units": ", ".join(f"{name}={unit}" for name, unit in units.items()),
             "Advisories": ", ".join(said.code for said in self.advice),
         }

@@ -4,6 +4,17 @@ from models.estimate.basis import Basis, Query, prepare
 from models.estimate.choice import choose
 from models.estimate.estimates import Estimates
 from models.estimate.pipeline import columns_of, estimate
-from models.estimate.remarks import Remarks
+from models.estimate.salinity import SalinityQuery
+from models.remarks import Remarks
 
-__all__ = ["Basis", "Estimates", "Query", "Remarks", "choose", "columns_of", "estimate", "prepare"]
+__all__ = [
+    "Basis",
+    "Estimates",
+    "Query",
+    "Remarks",
+    "SalinityQuery",
+    "choose",
+    "columns_of",
+    "estimate",
+    "prepare",
+]

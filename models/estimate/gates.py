@@ -1,5 +1,6 @@
 """What an estimate must say about itself: flags from values, ranges and bounds."""
 
+from collections.abc import Mapping
 from functools import lru_cache
 
 import numpy as np
@@ -8,9 +9,10 @@ from numpy.typing import NDArray
 from models.estimate.basis import Basis
 from models.estimate.discrepancy import Setting, lean_down
 from models.estimate.permittivity import Permittivity
+from models.estimate.pore_water import PoreWater
 from models.estimate.surroundings import Surroundings
 from models.estimate.water_content import CONSISTENT, WaterContent
-from models.flags import BIT, Flags
+from models.flags import BIT, Flags, without_pore_water
 from models.mixing.physical.bounds import hashin_shtrikman
 from models.relation import Array
 from models.uncertainty.coverage import coverage_factor
@@ -31,7 +33,7 @@ def flag_inputs(found: Permittivity, around: Surroundings, basis: Basis, flags: 
     if "loss" in basis.takes:
         lossless = np.ones(flags.shape, bool) if found.loss is None else np.isnan(found.loss)
         _set(flags, lossless & ~np.isnan(unseen), "loss-missing")
-    spread = np.sqrt(np.square(found.per_reading) + np.square(found.shared))
+    spread = np.sqrt(np.square(found.of_reading) + np.square(found.shared))
     reach = coverage_factor(basis.query.probability) * spread
     with np.errstate(invalid="ignore"):
         high = np.flatnonzero(found.value - reach > SUSPECT)
@@ -60,6 +62,32 @@ def flag_results(
     if content.correction is not None:
         _set(flags, content.correction > CORRECTED, "lossy")
     _flag_ranges(computed, found, around, basis, flags)
+
+
+def flag_pore_water(
+    pore: PoreWater,
+    salt: Mapping[str, Array],
+    content: WaterContent,
+    basis: Basis,
+    flags: Flags,
+) -> None:
+    """Flag where the pore-water model means nothing, has no answer, or is outside its range."""
+    for slug, where in pore.gates().items():
+        _set(flags, where, slug)
+    bulk = pore.inputs["bulk_conductivity"]
+    value = salt["pore_water_conductivity"]
+    asked = ~np.isnan(content.computed) & ~(np.isnan(bulk) & (not pore.by_loss))
+    explained = without_pore_water(flags)
+    _set(flags, asked & np.isnan(value) & ~explained, "no-pore-water")
+    if basis.salinity is None:
+        return
+    soil = basis.query.soil.values
+    outside = np.zeros(flags.shape, dtype=bool)
+    for name, known in basis.salinity.model.validity.items():
+        at = pore.inputs.get(name, soil.get(name))
+        if at is not None and (name != "frequency" or basis.frequency_known):
+            outside |= known.excludes(at) & ~np.isnan(at)
+    _set(flags, outside & ~np.isnan(value), "outside-pore-water-range")
 
 
 def _flag_ranges(

@@ -1,7 +1,7 @@
 """From what a reading carries to the one permittivity its mixing model speaks of."""
 
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from scipy.constants import speed_of_light
@@ -22,8 +22,19 @@ class Permittivity:
     shared: Array
     loss: Array | None
     """Total eps'' where it is known, from the reading or from its bulk conductivity."""
+    loss_u: Array | None = None
+    """Standard uncertainty of the loss, per reading."""
+    from_loss: Array | None = None
+    """By how much one standard uncertainty of the loss moves the value; None: not at all."""
     uncorrected: Array | None = None
     """Apparent permittivity before its correction for loss, where one was made."""
+
+    @property
+    def of_reading(self) -> Array:
+        """Per-reading standard uncertainty, that of the loss included."""
+        if self.from_loss is None:
+            return self.per_reading
+        return np.sqrt(np.square(self.per_reading) + np.square(self.from_loss))
 
 
 def kinds_in(names: Iterable[str]) -> tuple[str, ...]:
@@ -52,25 +63,27 @@ def permittivity_of(
     """
     loss, loss_u = _loss(readings, frequency, probe)
     apparent = _apparent(readings, probe)
-    real = readings.columns.get("real_permittivity")
+    real = _real(readings, probe)
     if apparent is None:
         apparent = _Part.nothing(readings.count)
     if kind == "apparent" and not correct:
         if real is not None:
             known = np.zeros(readings.count) if loss is None else np.nan_to_num(loss)
-            u = _noise(readings, "real_permittivity", probe)
-            apparent = apparent.or_else(_Part(to_apparent(real, known), u, 0.0 * u))
-        return Permittivity(apparent.value, apparent.per_reading, apparent.shared, loss)
-    uncorrected = None
+            apparent = apparent.or_else(replace(real, value=to_apparent(real.value, known)))
+        return Permittivity(apparent.value, apparent.per_reading, apparent.shared, loss, loss_u)
+    uncorrected = from_loss = None
     if loss is not None and loss_u is not None:
         uncorrected = apparent.value
-        apparent = _without_loss(apparent, np.nan_to_num(loss), np.nan_to_num(loss_u))
+        apparent, from_loss = _without_loss(apparent, np.nan_to_num(loss), np.nan_to_num(loss_u))
     if real is not None:
-        u = _noise(readings, "real_permittivity", probe)
-        apparent = _Part(real, u, 0.0 * u).or_else(apparent)
-        if uncorrected is not None:
-            uncorrected = np.where(np.isnan(real), uncorrected, real)
-    return Permittivity(apparent.value, apparent.per_reading, apparent.shared, loss, uncorrected)
+        own = ~np.isnan(real.value)
+        apparent = real.or_else(apparent)
+        if uncorrected is not None and from_loss is not None:
+            uncorrected = np.where(own, real.value, uncorrected)
+            from_loss = np.where(own, 0.0, from_loss)
+    return Permittivity(
+        apparent.value, apparent.per_reading, apparent.shared, loss, loss_u, from_loss, uncorrected
+    )
 
 
 @dataclass(frozen=True, slots=True)
@@ -95,18 +108,23 @@ class _Part:
         )
 
 
-def _without_loss(apparent: _Part, loss: Array, loss_u: Array) -> _Part:
-    """Real part: eps' = Ka - eps''^2 / (4 Ka), with the uncertainty that Ka and the loss bring."""
+def _without_loss(apparent: _Part, loss: Array, loss_u: Array) -> tuple[_Part, Array]:
+    """Real part: eps' = Ka - eps''^2 / (4 Ka), and what one u of the loss does to it."""
     ratio = loss / (2.0 * apparent.value)
     gain = 1.0 + np.square(ratio)
-    return _Part(
-        to_real(apparent.value, loss),
-        np.hypot(gain * apparent.per_reading, ratio * loss_u),
-        gain * apparent.shared,
-    )
+    part = _Part(to_real(apparent.value, loss), gain * apparent.per_reading, gain * apparent.shared)
+    return part, -ratio * loss_u
 
 
-def _noise(readings: Readings, name: str, probe: Mapping[str, float]) -> Array:
+def _real(readings: Readings, probe: Mapping[str, float]) -> _Part | None:
+    """Real part as given."""
+    if "real_permittivity" not in readings.columns:
+        return None
+    u = noise_of(readings, "real_permittivity", probe)
+    return _Part(readings.columns["real_permittivity"], u, 0.0 * u)
+
+
+def noise_of(readings: Readings, name: str, probe: Mapping[str, float]) -> Array:
     """Per-reading standard uncertainty: the row's own, else the probe's, else zero."""
     stated = probe.get(f"{name}_u", 0.0)
     own = readings.columns.get(f"{name}_u")
@@ -119,13 +137,13 @@ def _apparent(readings: Readings, probe: Mapping[str, float]) -> _Part | None:
     """Apparent permittivity as given, else from the travel time along the rods."""
     direct = None
     if "apparent_permittivity" in readings.columns:
-        u = _noise(readings, "apparent_permittivity", probe)
+        u = noise_of(readings, "apparent_permittivity", probe)
         direct = _Part(readings.columns["apparent_permittivity"], u, 0.0 * u)
     time, length = readings.columns.get("travel_time"), probe.get("probe_length")
     if time is None or length is None:
         return direct
     index = speed_of_light * time / (2.0 * length)
-    index_u = speed_of_light * _noise(readings, "travel_time", probe) / (2.0 * length)
+    index_u = speed_of_light * noise_of(readings, "travel_time", probe) / (2.0 * length)
     shared = 2.0 * np.square(index) * probe.get("probe_length_u", 0.0) / length
     timed = _Part(np.square(index), 2.0 * index * index_u, shared)
     return timed if direct is None else direct.or_else(timed)
@@ -137,11 +155,11 @@ def _loss(
     """Total eps'' as measured, else what the bulk conductivity makes of it; and its u."""
     measured = readings.columns.get("imaginary_permittivity")
     conductivity = readings.columns.get("bulk_conductivity")
-    measured_u = _noise(readings, "imaginary_permittivity", probe)
+    measured_u = noise_of(readings, "imaginary_permittivity", probe)
     if conductivity is None:
         return measured, None if measured is None else measured_u
     conducted = conduction_loss(conductivity, frequency)
-    conducted_u = conduction_loss(_noise(readings, "bulk_conductivity", probe), frequency)
+    conducted_u = conduction_loss(noise_of(readings, "bulk_conductivity", probe), frequency)
     if measured is None:
         return conducted, conducted_u
     lacking = np.isnan(measured)

@@ -1,17 +1,23 @@
 """The way of a reading: permittivity, water content, flags; in blocks that fit the cache."""
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
+from models.estimate.conductivities import conductivities_of
 from models.estimate.estimates import Estimates, band_names
-from models.estimate.gates import flag_inputs, flag_results
-from models.estimate.permittivity import permittivity_of
-from models.estimate.surroundings import frost, surroundings_of, water_inputs
+from models.estimate.gates import flag_inputs, flag_pore_water, flag_results
+from models.estimate.permittivity import Permittivity, permittivity_of
+from models.estimate.pore_water import PoreWater
+from models.estimate.sources import of_water_content
+from models.estimate.surroundings import Surroundings, frost, surroundings_of, water_inputs
 from models.estimate.water_content import water_content_of
-from models.flags import withheld
+from models.flags import BIT, withheld, without_pore_water
 from models.readings import Readings
 from models.relation import Array
 
+LOSS = frozenset({"bulk_conductivity", "imaginary_permittivity"})
+"""Columns that tell the loss of the soil."""
 BLOCK = 16_384
 """Rows computed at a time: the working columns stay in the processor's cache."""
 
@@ -36,30 +42,24 @@ def estimate(readings: Readings, basis: Basis) -> Estimates:
 def columns_of(basis: Basis) -> tuple[str, ...]:
     """The columns an answer has, in order: they depend on the basis, never on the readings."""
     names = list(band_names("water_content"))
-    if basis.corrects_loss and basis.query.columns & {
-        "bulk_conductivity",
-        "imaginary_permittivity",
-    }:
+    if basis.corrects_loss and basis.query.columns & LOSS:
         names.append("conduction_correction")
+    if basis.salinity is not None:
+        names += [*band_names("bulk_conductivity_25"), *band_names("pore_water_conductivity")]
+        if basis.salinity.paste is not None and basis.salinity.density is not None:
+            names += band_names("saturation_extract_conductivity")
     return tuple(names)
 
 
 def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
     flags = readings.flags.copy()
     around = surroundings_of(readings, basis)
-    found = permittivity_of(
-        readings,
-        basis.model.permittivity,
-        around.frequency,
-        basis.query.probe,
-        correct=basis.corrects_loss,
-    )
+    found = _permittivity(readings, basis, around, basis.model.permittivity)
     flag_inputs(found, around, basis, flags)
     water = water_inputs(basis, around, readings.count, flags)
     content = water_content_of(readings, basis, found, around, water)
     flag_results(content, found, around, basis, flags)
     frost(around.temperature, flags)
-    nothing = withheld(flags) | np.isnan(content.computed)
     columns: dict[str, Array] = {
         "water_content": content.interval.peak,
         "water_content_u": content.standard_uncertainty,
@@ -70,6 +70,36 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
         if content.correction is None
         else content.correction,
     }
-    if nothing.any():
-        columns = {name: np.where(nothing, np.nan, values) for name, values in columns.items()}
+    columns = _without(columns, withheld(flags) | np.isnan(content.computed))
+    if basis.salinity is not None:
+        real = found
+        if basis.model.permittivity == "apparent" and not basis.corrects_loss:
+            real = _permittivity(readings, basis, around, "real")
+        pore = PoreWater(readings, basis, basis.salinity, real, around, content)
+        through = of_water_content(found, water, content)
+        salt = conductivities_of(pore, basis.salinity, through, content, basis.query.probability)
+        flag_pore_water(pore, salt, content, basis, flags)
+        bulk = {n: v for n, v in salt.items() if n.startswith("bulk_conductivity_25")}
+        columns |= salt | _without(bulk, (flags & BIT["unreadable-row"]) != 0)
+        rest = {n: v for n, v in salt.items() if n not in bulk}
+        columns |= _without(rest, without_pore_water(flags))
     return Estimates(columns, flags)
+
+
+def _permittivity(
+    readings: Readings, basis: Basis, around: Surroundings, kind: str
+) -> Permittivity:
+    return permittivity_of(
+        readings,
+        kind,
+        around.frequency,
+        basis.query.probe,
+        correct=basis.corrects_loss or kind == "real",
+    )
+
+
+def _without(columns: dict[str, Array], nothing: NDArray[np.bool_]) -> dict[str, Array]:
+    """The columns, NaN in the rows that must have no number."""
+    if not nothing.any():
+        return columns
+    return {name: np.where(nothing, np.nan, values) for name, values in columns.items()}

@@ -59,7 +59,7 @@ def water_inputs(
         warmer = here
     own = {"water_permittivity": basis.water.static_uncertainty, "water_loss": 0.0}
     return {
-        name: Input(name, here[name], np.abs(warmer[name] - here[name]), own[name])
+        name: Input(name, here[name], warmer[name] - here[name], own[name])
         for name in basis.takes
         if name in here
     }

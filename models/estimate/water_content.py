@@ -36,6 +36,10 @@ class WaterContent:
     """By how much correcting for loss lowered the value."""
     ceiling: float
     """Porosity, or 1 where it is not known."""
+    contributions: Mapping[str, Array]
+    """What one standard uncertainty of each input of the equation does to the value, signed."""
+    of_model: Array
+    """Standard uncertainty that is the mixing model's own, what it leaves of loss included."""
 
 
 def water_content_of(
@@ -86,19 +90,22 @@ def water_content_of(
         interval=interval,
         correction=correction,
         ceiling=ceiling,
+        contributions=spread.contributions,
+        of_model=np.sqrt(shared - spread.shared + moment - variance),
     )
 
 
 def _inputs(
     basis: Basis, found: Permittivity, around: Surroundings, water: Mapping[str, Input]
 ) -> list[Input]:
-    inputs = [Input("permittivity", found.value, found.per_reading, found.shared)]
+    inputs = [Input("permittivity", found.value, found.of_reading, found.shared)]
     inputs.extend(water.values())
     if "frequency" in basis.takes:
         inputs.append(Input("frequency", around.frequency))
     if "loss" in basis.takes:
         unknown = np.full(found.value.shape, np.nan)
-        inputs.append(Input("loss", unknown if found.loss is None else found.loss))
+        loss = unknown if found.loss is None else found.loss
+        inputs.append(Input("loss", loss, 0.0 if found.loss_u is None else found.loss_u))
     inputs.extend(
         Input(name, basis.values[name], shared=u)
         for name, u in basis.uncertainties.items()

@@ -98,11 +98,11 @@ def _summed(
     labels, source = _labels(groups, value.shape), _labels(sources, value.shape)
     number = labels.max(initial=-1) + 1
     pairs, pair = np.unique(np.stack([labels, source]), axis=1, return_inverse=True)
-    common = np.square(np.bincount(pair.ravel(), weight * shared))
-    common = np.bincount(pairs[0], common, minlength=number)
+    of_pair = np.square(np.bincount(pair.ravel(), weight * shared))
+    common = np.bincount(pairs[0], of_pair, minlength=number)
     alone = np.bincount(labels, np.square(weight) * np.maximum(own, 0.0), minlength=number)
     return Aggregate(
-        np.bincount(labels, weight * value, minlength=number),
+        column(np.bincount(labels, weight * value, minlength=number)),
         np.sqrt(common + alone),
         np.sqrt(common),
         np.bincount(labels, minlength=number),

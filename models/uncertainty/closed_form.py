@@ -14,7 +14,6 @@ from models.relation import Array, column
 from models.uncertainty.coverage import coverage_factor
 from models.uncertainty.distributions import Distribution
 
-
 LEAST = float(np.finfo(np.float64).smallest_subnormal)
 
 

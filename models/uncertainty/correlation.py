@@ -57,7 +57,7 @@ def triangular(matrix: Array) -> Array:
     """
     values, vectors = np.linalg.eigh(matrix)
     root = vectors * np.sqrt(np.maximum(values, 0.0))
-    upper = np.linalg.qr(root.T, mode="r")
+    _, upper = np.linalg.qr(root.T)
     return column(np.tril((upper * np.where(np.diagonal(upper) < 0, -1.0, 1.0)[:, None]).T))
 
 

@@ -45,7 +45,8 @@ class Distribution(ABC):
     @property
     def rows(self) -> int:
         """How many rows the columns have; 1 where all are scalars."""
-        return max(np.size(getattr(self, field.name)) for field in fields(self))
+        shapes = (np.shape(getattr(self, field.name)) for field in fields(self))
+        return int(np.broadcast_shapes((1,), *shapes)[0])
 
     @property
     def exact(self) -> bool:
@@ -59,7 +60,7 @@ class Distribution(ABC):
     def take(self, index: Any) -> Self:
         """Some of the rows; ``np.s_[:, None]`` sets them up against draws along the last axis."""
         columns = {field.name: getattr(self, field.name) for field in fields(self)}
-        some = {name: column(c)[index] for name, c in columns.items() if np.size(c) > 1}
+        some = {name: column(c)[index] for name, c in columns.items() if np.size(c) != 1}
         same = {name: np.reshape(c, ())[()] for name, c in columns.items() if np.size(c) == 1}
         return replace(self, **some, **same)
 
@@ -109,7 +110,7 @@ class Normal(Symmetric):
     """Width: the standard uncertainty."""
 
     def deviate(self, z: Array) -> Array:
-        """z itself."""
+        """The variable itself."""
         return z
 
     @property
@@ -216,8 +217,8 @@ class StudentT(Symmetric):
 
 
 def rows_of(inputs: Iterable[Distribution]) -> int:
-    """How many rows a set of inputs has."""
-    return max((given.rows for given in inputs), default=1)
+    """How many rows a set of inputs has. Raises ValueError where their lengths differ."""
+    return int(np.broadcast_shapes((1,), *((given.rows,) for given in inputs))[0])
 
 
 def as_normal(inputs: Iterable[Input]) -> dict[str, Distribution]:

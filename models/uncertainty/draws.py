@@ -19,7 +19,7 @@ from models.relation import Array, column
 Counts = NDArray[np.intp]
 Interval = Literal["symmetric", "shortest"]
 """The same probability left on both sides, or the shortest of all (JCGM 101, 7.7)."""
-KEPT = 2**20
+KEPT = 2**18
 """Numbers in a matrix up to which it is kept for the next block."""
 HALF_STEP = 2.0**-31
 """Half the spacing of the points: none lies on 0, whose normal deviate is not finite."""

@@ -11,7 +11,7 @@ from dataclasses import dataclass, fields
 from typing import Any
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from models.relation import Array, column
 from models.uncertainty.correlation import correlation_matrix, triangular
@@ -52,6 +52,14 @@ class JointlySimulated:
     value: Array
     covariance: Array
     outside: Counts
+
+
+@dataclass(frozen=True, slots=True)
+class Stopping:
+    """When adaptive draws end: so many significant digits stand, or there were so many draws."""
+
+    digits: int = 2
+    most: int = 1_000_000
 
 
 def simulate(
@@ -95,14 +103,14 @@ def simulate_jointly(
     parts = []
     for rows in _blocks(inputs, draws.count):
         outputs = np.stack(_values(measurand, inputs, rows, scores), axis=1)
-        known = np.isfinite(outputs).all(axis=1)
-        count = known.sum(axis=1)
+        known = np.logical_and.reduce(np.isfinite(outputs), axis=1)
+        count: Counts = known.sum(axis=1)
         outputs = np.where(known[:, None, :], outputs, 0.0)
         with np.errstate(invalid="ignore", divide="ignore"):
             mean = outputs.sum(axis=2) / count[:, None]
             away = np.where(known[:, None, :], outputs - mean[:, :, None], 0.0)
-            products = (away[:, :, None, :] * away[:, None, :, :]).sum(axis=3)
-            covariance = products / (count - 1.0)[:, None, None]
+            products = [(away * away[:, i : i + 1]).sum(axis=2) for i in range(away.shape[1])]
+            covariance = np.stack(products, axis=1) / (count - 1.0)[:, None, None]
         parts.append(JointlySimulated(mean, covariance, draws.count - count))
     return _stacked(parts)
 
@@ -112,8 +120,7 @@ def simulate_until_stable(
     inputs: Mapping[str, Distribution],
     *,
     draws: Draws | None = None,
-    digits: int = 2,
-    most: int = 1_000_000,
+    stopping: Stopping | None = None,
     correlation: ArrayLike | None = None,
     probability: float = 0.95,
     interval: Interval = "symmetric",
@@ -121,19 +128,21 @@ def simulate_until_stable(
     """Batches of draws until every figure of a row is stable to so many digits (JCGM 101, 7.9).
 
     draws: of one batch; 10 000 pseudo-random ones, or 100 / (1 - probability) where that is more.
-    digits: significant ones, of the standard uncertainty. Stable: twice the standard deviation
-        of each figure's mean over the batches is below half a unit of the last digit.
-    most: draws per row at which a row stops unstable; its ``draws`` then says so.
+    stopping: when to stop; two digits, a million draws.
+
+    Stable: twice the standard deviation of each figure's mean over the batches is below half a unit
+    in the last digit of the standard uncertainty.
     """
+    stopping = stopping or Stopping()
     batch = max(10_000, int(np.ceil(100.0 / (1.0 - probability))))
     draws = draws or Draws(batch, kind="pseudo-random")
     parts = []
     for rows in _blocks(inputs, draws.count):
         run = _Run(np.arange(rows.start, rows.stop), probability, interval)
-        for number in range(max(2, most // draws.count)):
+        for number in range(max(2, stopping.most // draws.count)):
             scores = _scores(draws, len(inputs), correlation, number)
             run.add(_values(measurand, inputs, run.going, scores)[0])
-            run.retire(run.stable(digits))
+            run.retire(run.stable(stopping.digits))
             if not run.going.size:
                 break
         run.retire(np.ones(run.going.size, dtype=bool))
@@ -159,16 +168,16 @@ class _Run:
             np.stack([found.value, found.standard_uncertainty, found.lower, found.upper])
         )
 
-    def stable(self, digits: int) -> Any:
+    def stable(self, digits: int) -> NDArray[np.bool_]:
         """Which rows are; a row without any number is."""
         if len(self._figures) < 2:
             return np.zeros(self.going.size, dtype=bool)
         values = np.concatenate(self._batches, axis=1)
         u = moments_of(values, np.isfinite(values).sum(axis=1))[1]
-        spread = np.std(self._figures, axis=0, ddof=1) / np.sqrt(len(self._figures))
+        spread = column(np.std(self._figures, axis=0, ddof=1)) / np.sqrt(len(self._figures))
         return (2.0 * spread.max(axis=0) < numerical_tolerance(u, digits)) | ~(u > 0)
 
-    def retire(self, rows: Any) -> None:
+    def retire(self, rows: NDArray[np.bool_]) -> None:
         """Take rows out of the run, with all their draws."""
         if np.any(rows):
             values = np.concatenate([batch[rows] for batch in self._batches], axis=1)
@@ -193,7 +202,7 @@ def _scores(draws: Draws, inputs: int, correlation: ArrayLike | None, batch: int
 
 def _blocks(inputs: Mapping[str, Distribution], draws: int) -> Iterator[slice]:
     count, step = rows_of(inputs.values()), max(1, BLOCK // draws)
-    return (slice(start, min(start + step, count)) for start in range(0, count, step))
+    return (slice(start, min(start + step, count)) for start in range(0, max(count, 1), step))
 
 
 def _values(

@@ -23,7 +23,7 @@ from models.uncertainty.draws import Counts, Draws
 from models.uncertainty.monte_carlo import simulate
 from models.uncertainty.standard_space import STEP, StandardSpace, along, direction_of
 
-BLOCK = 8192
+BLOCK = 16_384
 """Rows computed at a time."""
 CURVED = 0.01
 """Curvature term, in half-widths, from which each end is looked at again;"""
@@ -31,6 +31,10 @@ LOPSIDED = 0.08
 """how much longer one arm is than the mean of both, from which it is;"""
 UNEVEN = 0.005
 """how far that mean is from what the gradient promises: a curvature not seen at the centre."""
+ENTANGLED = 0.1
+"""Terms of products of inputs, along one slanting line, from which all of them are found."""
+OPPOSED = 0.14
+"""Curvatures across the gradient, root of the sum of squares, in slopes, from which it is done."""
 LOST = 0.05
 """Curvature term, in half-widths, from which only draws will do,"""
 FURTHER = 1.0
@@ -80,14 +84,14 @@ def band(
     draws: for rows that need them; 16 384 quasi-random ones.
     Raises ParameterError when the correlation matrix is none.
 
-    With k inputs: 2 k + 3 evaluations, for rows that bend 4 k + 10 more.
+    With k inputs: 2 k + 5 evaluations; for rows that bend 6 k + 10 and one per pair of inputs more.
     """
     factor = None
     if correlation is not None:
         factor = triangular(correlation_matrix(correlation, len(inputs)))
     count, z = rows_of(inputs.values()), coverage_factor(probability)
     parts = []
-    for start in range(0, count, BLOCK):
+    for start in range(0, max(count, 1), BLOCK):
         rows = slice(start, min(start + BLOCK, count))
         some = {name: given.take(rows) for name, given in inputs.items()}
         space = StandardSpace(measurand, some, factor, rows.stop - start)
@@ -120,18 +124,23 @@ def _one_input(space: StandardSpace, probability: float) -> Band:
 
 
 def _along_gradient(space: StandardSpace, z: float) -> Band:
-    """One step for all rows; again at each end for those that bend."""
+    """One step for all rows; those that bend are looked at again."""
     value = space({})
-    slopes, total = space.differences({}, value)
+    slopes, bends = space.differences({}, value)
+    total = sum(bends.values())
     towards, length = direction_of(slopes)
     lower, upper = space(along(towards, -z)), space(along(towards, z))
     half, middle = 0.5 * (upper - lower), 0.5 * (upper + lower) - value
     curvature = 0.5 * total - middle / z**2
-    still = (length == 0.0) & (total == 0.0)
+    entangled = 0.5 * len(slopes) * z * space.entangled(bends, value)
+    still = (length == 0.0) & (total == 0.0) & (entangled == 0.0)
     lost = ~((np.abs(curvature) <= LOST * half) & (half > 0.0))
     bent = np.abs(curvature) > CURVED * half
     bent |= np.abs(middle) > LOPSIDED * half
     bent |= np.abs(half - z * length) > UNEVEN * half
+    bent |= np.abs(entangled) > ENTANGLED * half
+    opposed = sum(np.square((1.0 - a**2) * bends[j]) for j, a in towards.items())
+    bent |= np.sqrt(opposed) > OPPOSED * length
     lower, upper = lower + curvature, upper + curvature
     method = np.select(
         [still, lost, bent], [Method.EXACT, Method.DRAWS, Method.CURVATURE], Method.GRADIENT
@@ -140,10 +149,29 @@ def _along_gradient(space: StandardSpace, z: float) -> Band:
     rows = np.flatnonzero(method == Method.CURVATURE)
     if rows.size:
         some, first = space.take(rows, rows.size), {j: a[rows] for j, a in towards.items()}
-        lower[rows], down = _at_end(some, first, -z, half[rows])
-        upper[rows], up = _at_end(some, first, z, half[rows])
-        method[rows[~(down & up)]] = Method.DRAWS
+        lower[rows], upper[rows], holds = _again(some, first, z, (value[rows], half[rows]))
+        method[rows[~holds]] = Method.DRAWS
     return _settled(value, lower, upper, method)
+
+
+def _again(
+    space: StandardSpace, towards: Mapping[int, Array], z: float, found: tuple[Array, Array]
+) -> tuple[Array, Array, NDArray[np.bool_]]:
+    """Both ends with direction and curvature taken there, widened by what bends across both.
+
+    found: value, and half-width of the first step. Also returns for which rows all this holds.
+    """
+    value, half = found
+    lower, down = _at_end(space, towards, -z, half)
+    upper, up = _at_end(space, towards, z, half)
+    hessian = space.hessian(value)
+    a = np.stack(list(towards.values()))
+    turned = (hessian * a).sum(axis=1)
+    across = np.square(hessian).sum(axis=(0, 1)) - 2.0 * np.square(turned).sum(axis=0)
+    across += np.square((turned * a).sum(axis=0))
+    # Curvatures of both signs leave the middle where it is and add to the variance, tr H^2 / 2.
+    wider = half * (np.sqrt(1.0 + 0.5 * across * np.square(z / half)) - 1.0)
+    return lower - wider, upper + wider, down & up & (wider <= LOST * half)
 
 
 def _at_end(
@@ -152,15 +180,15 @@ def _at_end(
     """One end with direction and curvature taken there, and which rows it holds for."""
     first = along(towards, z)
     value = space(first)
-    slopes, total = space.differences(first, value)
+    slopes, bends = space.differences(first, value)
     better, _ = direction_of(slopes)
     second = space(along(better, z))
     across = space(along(better, STEP, first)) + space(along(better, -STEP, first)) - 2.0 * value
-    curvature = 0.5 * (total - across / STEP**2)
+    curvature = 0.5 * (sum(bends.values()) - across / STEP**2)
     sign = np.sign(z)
     beyond = space(along(towards, z + sign * FURTHER))
     holds = (np.abs(curvature) <= LOST * half) & (sign * (beyond - value) > 0.0)
-    # An end is an extreme: where the second step fell short of the first, the first is better.
+    # An end is an extreme: where the second step falls short of the first, the first is better.
     return sign * np.maximum(sign * value, sign * second) + curvature, holds
 
 

@@ -1,4 +1,4 @@
-"""JCGM 100, 5.1.2, note: the terms of second order, for measurands whose slope vanishes or turns."""
+"""JCGM 100, 5.1.2, note: second-order terms, for measurands whose slope vanishes or turns."""
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
@@ -50,37 +50,32 @@ def propagate_to_second_order(
 
     first, second, shift = np.zeros_like(value), np.zeros_like(value), np.zeros_like(value)
     slopes: dict[str, Array] = {}
-    singles: dict[str, tuple[Array, Array]] = {}
     for name in (given.name for given in uncertain):
         high, low = moved(**{name: STEP}), moved(**{name: -STEP})
         far = moved(**{name: 2 * STEP}) - moved(**{name: -2 * STEP})
-        singles[name], slopes[name] = (high, low), (high - low) / (2 * STEP)
+        slopes[name] = (high - low) / (2 * STEP)
         bend = (high + low - 2 * value) / STEP**2
         third = (far - 2 * (high - low)) / (2 * STEP**3)
         first += np.square(slopes[name])
         second += 0.5 * np.square(bend) + slopes[name] * third
         shift += 0.5 * bend
-    for one, other in combinations(singles, 2):
+    for one, other in combinations(slopes, 2):
         corners = {
             (i, j): moved(**{one: i * STEP, other: j * STEP}) for i in (1, -1) for j in (1, -1)
         }
-        second += _of_pair(corners, slopes, singles, (one, other))
+        second += _of_pair(corners, slopes[one], slopes[other])
     return SecondOrder(first, second, shift)
 
 
 def _of_pair(
-    corners: Mapping[tuple[int, int], Array],
-    slopes: Mapping[str, Array],
-    singles: Mapping[str, tuple[Array, Array]],
-    pair: tuple[str, str],
+    corners: Mapping[tuple[int, int], Array], slope_one: Array, slope_other: Array
 ) -> Array:
-    """Terms (i, j) and (j, i) of two different inputs."""
-    one, other = pair
+    """Both terms of two different inputs: f_ij^2 + f_i f_ijj + f_j f_jii."""
     up_up, up_down = corners[1, 1], corners[1, -1]
     down_up, down_down = corners[-1, 1], corners[-1, -1]
     mixed = (up_up - up_down - down_up + down_down) / (4 * STEP**2)
-    over_other = (up_up + up_down - down_up - down_down) / (2 * STEP**3)
-    over_one = (up_up + down_up - up_down - down_down) / (2 * STEP**3)
-    bend_of_one = over_other - 2 * slopes[one] / STEP**2
-    bend_of_other = over_one - 2 * slopes[other] / STEP**2
-    return np.square(mixed) + slopes[one] * bend_of_one + slopes[other] * bend_of_other
+    third_one = (up_up + up_down - down_up - down_down) / (2 * STEP**3) - 2 * slope_one / STEP**2
+    third_other = (up_up + down_up - up_down - down_down) / (
+        2 * STEP**3
+    ) - 2 * slope_other / STEP**2
+    return np.square(mixed) + slope_one * third_one + slope_other * third_other

@@ -10,8 +10,13 @@ from models.uncertainty.distributions import Distribution
 
 STEP = 0.1
 """Of differences: wide enough for second ones."""
+REACH = 2.0
+"""Of the slanting probe, about where a 95 % interval ends."""
+GOLDEN = 0.6180339887498949
 Point = Mapping[int, Any]
 """Variables by number, as columns or scalars; those left out are 0."""
+Columns = dict[int, Array]
+"""One column per variable, by number."""
 
 
 class StandardSpace:
@@ -42,19 +47,41 @@ class StandardSpace:
             result = self.measurand(**{**self._medians, **self._moved(point)})
         return np.broadcast_to(result, (self.rows,))
 
-    def differences(self, point: Point, value: Array) -> tuple[dict[int, Array], Array]:
-        """Slope along each variable, and the sum of the second derivatives (tr H).
-
-        value: the measurand at the point.
-        """
-        slopes: dict[int, Array] = {}
-        total = -2.0 * len(self._names) * value
+    def differences(self, point: Point, value: Array) -> tuple[Columns, Columns]:
+        """First and second derivative along each variable; ``value`` is the measurand there."""
+        slopes: Columns = {}
+        bends: Columns = {}
+        twice = 2.0 * value
         for j in range(len(self._names)):
             at = point.get(j, 0.0)
             above, below = self({**point, j: at + STEP}), self({**point, j: at - STEP})
-            slopes[j] = (above - below) / (2.0 * STEP)
-            total += above + below
-        return slopes, total / STEP**2
+            slopes[j] = (above - below) * (0.5 / STEP)
+            bends[j] = (above + below - twice) * (1.0 / STEP**2)
+        return slopes, bends
+
+    def entangled(self, bends: Columns, value: Array) -> Array:
+        """Off the diagonal of H at the medians: g'Hg without it, for one slanting unit vector g.
+
+        No two parts of g are alike, so that products of inputs hardly ever cancel.
+        """
+        parts = 0.5 + np.mod(GOLDEN * np.arange(1, len(self._names) + 1), 1.0)
+        parts /= np.sqrt(np.square(parts).sum())
+        both = sum(self(dict(enumerate(side * parts))) for side in (REACH, -REACH))
+        return (both - 2.0 * value) / REACH**2 - sum(
+            part**2 * bends[j] for j, part in enumerate(parts)
+        )
+
+    def hessian(self, value: Array) -> Array:
+        """All second derivatives at the medians, shape (k, k, rows)."""
+        count = len(self._names)
+        hessian = np.empty((count, count, self.rows))
+        single = [self({j: STEP}) for j in range(count)]
+        for i in range(count):
+            hessian[i, i] = single[i] + self({i: -STEP}) - 2.0 * value
+            for j in range(i):
+                corner = self({i: STEP, j: STEP})
+                hessian[i, j] = hessian[j, i] = corner - single[i] - single[j] + value
+        return hessian / STEP**2
 
     def _moved(self, point: Point) -> dict[str, Array]:
         """The inputs that are not at their medians."""
@@ -68,7 +95,7 @@ class StandardSpace:
         return {name: self.inputs[name].from_normal(z) for name, z in scores.items()}
 
 
-def direction_of(slopes: Mapping[int, Array]) -> tuple[dict[int, Array], Array]:
+def direction_of(slopes: Mapping[int, Array]) -> tuple[Columns, Array]:
     """Unit vector along a gradient, and the gradient's length; NaN where that is 0."""
     length = np.sqrt(sum(np.square(slope) for slope in slopes.values()))
     with np.errstate(invalid="ignore", divide="ignore"):

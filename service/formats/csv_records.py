@@ -21,6 +21,7 @@ COMMA, QUOTE = 44, 34
 
 csv.field_size_limit(2**31 - 1)  # the length of a record has its own limit
 
+# A cell and what ends it. Possessive, so that a quote that opens a cell never turns into a letter.
 _CELL = re.compile(rb'(?:"(?:[^"]++|"")*+"[^,\n]*+|(?!")[^,\n]*+)([,\n])')
 
 

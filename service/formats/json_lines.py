@@ -42,7 +42,10 @@ def rows_of(lines: Sequence[bytes]) -> tuple[list[Row], Marks]:
         found = [_parsed(line) for line in lines]
     if set(map(type, found)) <= {dict} and not _may_be_deep(b"".join(lines), len(lines)):
         return found, np.zeros(len(found), dtype=np.bool_)
-    rows = [row if isinstance(row, dict) and not _is_deep(row) else NOTHING for row in found]
+    rows = [
+        row if isinstance(row, dict) and not (_may_be_deep(line, 1) and _is_deep(row)) else NOTHING
+        for line, row in zip(lines, found, strict=True)
+    ]
     return rows, np.array([row is NOTHING for row in rows], dtype=np.bool_)
 
 
@@ -130,11 +133,12 @@ def _parsed(line: bytes) -> Any:
 
 
 def _may_be_deep(objects: bytes, count: int) -> bool:
-    """Whether one of so many objects could be: all the others have a bracket each at least."""
+    """Whether one of so many objects could be: each of the others has a bracket at least."""
     return objects.count(b"[") + objects.count(b"{") >= count + DEEPEST
 
 
 def _is_deep(row: Row) -> bool:
+    """Whether a value lies within more than DEEPEST brackets; without recursion."""
     level: list[Any] = [row]
     for _ in range(DEEPEST + 1):
         level = [

@@ -174,7 +174,7 @@ class RecordCutter:
         longest = int(np.argmax(stops - starts))
         if stops[longest] - starts[longest] > self._line_bytes:
             raise self._too_long(int(lines[longest]))
-        blank = _blank(text, codes, starts, stops)
+        blank = _blank(codes, starts, stops)
         whole = not blank.any()
         if not whole:
             starts, stops, lines = starts[~blank], stops[~blank], lines[~blank]
@@ -202,11 +202,10 @@ class RecordCutter:
         )
 
 
-def _blank(
-    text: bytes, codes: NDArray[np.uint8], starts: Places, stops: Places
-) -> NDArray[np.bool_]:
-    """Records of nothing but blanks; only those that begin with one are looked at."""
+def _blank(codes: NDArray[np.uint8], starts: Places, stops: Places) -> NDArray[np.bool_]:
+    """Records of nothing but blanks."""
     blank = np.isin(codes[starts], BLANKS)
-    for place in np.flatnonzero(blank):
-        blank[place] = not text[starts[place] : stops[place]].strip()
+    if blank.any():
+        letters = np.concatenate((np.zeros(1, np.int64), np.cumsum(~np.isin(codes, BLANKS))))
+        blank = letters[starts] == letters[stops]
     return blank

@@ -12,6 +12,7 @@ from models.conductivity import TEMPERATURE_COMPENSATIONS
 from models.flags import FLAGS
 from models.mixing import MIXING_MODELS
 from models.quantity import QUANTITIES
+from models.salinity import PORE_WATER_MODELS
 from models.soil import TEXTURES
 from models.water import WATER_MODELS
 from service.errors import NotFound
@@ -50,6 +51,8 @@ class Catalogue:
 
 CATALOGUES = (
     Catalogue("mixing-models", "Dielectric mixing models", (MIXING_MODELS,)),
+    Catalogue("pore-water-models", "Pore-water conductivity from bulk conductivity",
+              (PORE_WATER_MODELS,)),
     Catalogue("water-models", "Models of the permittivity of water", (WATER_MODELS,)),
     Catalogue("temperature-compensations", "Temperature compensations of conductivity",
               (TEMPERATURE_COMPENSATIONS,)),

@@ -22,7 +22,8 @@ from service.formats.json_readings import decode
 from service.negotiate import VARY, choose
 from service.routes.estimates_description import DESCRIPTION
 from service.schemas.batch_query import ASIDE, document_of
-from service.schemas.query import basis_of, echo_of, settings_of, units_of_answer
+from service.schemas.echo import echo_of, units_of_answer
+from service.schemas.query import basis_of, settings_of
 
 router = APIRouter(tags=["estimates"])
 

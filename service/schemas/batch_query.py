@@ -7,11 +7,16 @@ from typing import Any
 
 from models.mixing import MIXING_MODELS
 from models.quantity import NOISE, PROBE, SOIL
+from models.registry import Registry
+from models.salinity import PORE_WATER_MODELS
 from service.errors import Unprocessable
 from service.faults import Fault, nearest, shown
 from service.schemas.words import described
 
 _NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?")
+_FAMILIES: Mapping[str, Registry[Any]] = MappingProxyType(
+    {"mixing_model": MIXING_MODELS, "pore_water_model": PORE_WATER_MODELS}
+)
 Place = tuple[str, str, Callable[[str, str], Any]]
 ASIDE = ("format", "strict")
 """Parameters of the answer rather than of the estimate."""
@@ -28,15 +33,17 @@ def document_of(pairs: Iterable[tuple[str, str]]) -> dict[str, Any]:
         if name in given:
             faults.append(Fault(f"{name} is given twice", f"?{name}"))
         given[name] = text
-    places = {**PLACES, **_model_places(given.get("mixing_model"))}
+    places = {**PLACES, **_model_places(given)}
     document: dict[str, Any] = {}
     for name, text in given.items():
         if name not in ASIDE:
             faults += _put(document, places, name, text)
     if faults:
         raise Unprocessable("the query holds what cannot be used", faults)
-    if "model" in document:
-        document["mixing_model"] = {"name": given.get("mixing_model"), **document.pop("model")}
+    for section in _FAMILIES:
+        own = document.pop(f"{section}.own", None)
+        if own is not None:
+            document[section] = {"name": given.get(section), **own}
     return document
 
 
@@ -55,15 +62,20 @@ def _put(
     return []
 
 
-def _model_places(name: str | None) -> dict[str, Place]:
-    """Parameters that are the mixing model's own and nothing else's."""
-    if name is None or name not in MIXING_MODELS:
-        return {}
-    own = [p for p in MIXING_MODELS[name].parameters if p.name not in PLACES]
-    words: dict[str, Place] = {
-        p.name: ("model", p.name, _text if p.choices else _number) for p in own
-    }
-    return words | {f"{p.name}_u": ("model", f"{p.name}_u", _number) for p in own}
+def _model_places(given: Mapping[str, str]) -> dict[str, Place]:
+    """Parameters that are the named models' own and nothing else's."""
+    words: dict[str, Place] = {}
+    for section, registry in _FAMILIES.items():
+        name = given.get(section)
+        if name is None or name not in registry:
+            continue
+        own = f"{section}.own"
+        for parameter in registry[name].parameters:
+            if parameter.name not in PLACES:
+                reader = _text if parameter.choices else _number
+                words[parameter.name] = (own, parameter.name, reader)
+                words[f"{parameter.name}_u"] = (own, f"{parameter.name}_u", _number)
+    return words
 
 
 def _text(_: str, text: str) -> str:
@@ -106,7 +118,10 @@ PLACES: Mapping[str, Place] = MappingProxyType(
     | {
         "texture": ("soil", "texture", _text),
         "mixing_model": ("", "mixing_model", _text),
-        "standard_error": ("model", "standard_error", _number),
+        "pore_water_model": ("", "pore_water_model", _text),
+        "temperature_compensation": ("", "temperature_compensation", _text),
+        "standard_error": ("mixing_model.own", "standard_error", _number),
+        "pore_water_standard_error": ("pore_water_model.own", "standard_error", _number),
         "coverage_probability": ("", "coverage_probability", _number),
         "propagation": ("propagation", "method", _text),
         "assume_temperature": ("assume", "temperature", _number),
@@ -121,6 +136,10 @@ TEXTS = frozenset(n for n, (_, _, reader) in PLACES.items() if reader is not _nu
 _MEANINGS: Mapping[str, str] = MappingProxyType(
     {
         "mixing_model": "name of a mixing model; left out, the service chooses and says why",
+        "pore_water_model": "name of a pore-water model; left out, one is chosen where there is "
+        "bulk_conductivity",
+        "temperature_compensation": "brings conductivities to 25 Cel",
+        "pore_water_standard_error": "replaces the pore-water model's own uncertainty [1]",
         "texture": "USDA texture class of the soil, or peat",
         "standard_error": "replaces the model's own uncertainty [m3/m3]",
         "coverage_probability": "of the interval; 0.95 unless given",

@@ -10,6 +10,7 @@ from models.conductivity.family import TemperatureCompensation
 from models.mixing.family import MixingModel
 from models.quantity import QUANTITIES, Quantity
 from models.relation import Parameter, Range, Relation
+from models.salinity.family import PoreWaterModel
 from models.units import UNITS, Unit
 from models.water.family import WaterModel
 
@@ -45,6 +46,12 @@ def measured(declaration: Any) -> tuple[str, ...]:
 @measured.register
 def _(declaration: MixingModel) -> tuple[str, ...]:
     return (f"{declaration.permittivity}_permittivity",)
+
+
+@measured.register
+def _(declaration: PoreWaterModel) -> tuple[str, ...]:
+    supplied = (parameter.name for parameter in declaration.parameters if parameter.supplied)
+    return ("bulk_conductivity", *supplied)
 
 
 @measured.register

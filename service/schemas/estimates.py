@@ -5,9 +5,11 @@ from typing import Annotated, Any, Literal
 
 from pydantic import ConfigDict, Field, TypeAdapter, WithJsonSchema
 
+from models.conductivity import DEFAULT_COMPENSATION, TEMPERATURE_COMPENSATIONS
 from models.estimate.estimates import band_names
 from models.mixing import MIXING_MODELS
 from models.quantity import NOISE, PROBE, QUANTITIES, READING, SOIL
+from models.salinity import PORE_WATER_MODELS
 from models.soil import TEXTURES
 from service.schemas.words import Body, Number, body_of, described, quantity_fields
 
@@ -15,7 +17,12 @@ ModelKey = Annotated[str, WithJsonSchema({"type": "string", "enum": list(MIXING_
 TextureKey = Annotated[
     str, WithJsonSchema({"type": "string", "examples": ["loam"], "enum": list(TEXTURES)})
 ]
-ECHOED = ("revision", "water_model", "sources", "model_uncertainty")
+PoreWaterKey = Annotated[str, WithJsonSchema({"type": "string", "enum": list(PORE_WATER_MODELS)})]
+CompensationKey = Annotated[
+    str, WithJsonSchema({"type": "string", "enum": list(TEMPERATURE_COMPENSATIONS)})
+]
+ECHOED = ("revision", "water_model", "sources", "model_uncertainty", "saturation_percentage",
+          "saturation_percentage_u")  # fmt: skip
 """What an answer adds to the model and soil it echoes; sent back, it is read past."""
 
 
@@ -33,6 +40,17 @@ class ModelChoice(Body):
         None,
         description="Replaces the model's own uncertainty [m3/m3]: a site's own figure, or 0 to "
         "see the share of the inputs alone.",
+    )
+
+
+class PoreWaterChoice(Body):
+    """A pore-water model with parameters of the caller's own, as for the mixing model."""
+
+    model_config = ConfigDict(extra="allow", frozen=True, hide_input_in_errors=True)
+
+    name: PoreWaterKey
+    standard_error: Annotated[Number, Field(ge=0)] | None = Field(
+        None, description="Replaces the model's own uncertainty, relative to the conductivity."
     )
 
 
@@ -81,6 +99,13 @@ class EstimatesSettings(Body):
     mixing_model: ModelKey | ModelChoice | None = Field(
         None, description="Left out, the service chooses by declared ranges and says why."
     )
+    pore_water_model: PoreWaterKey | PoreWaterChoice | None = Field(
+        None,
+        description="Left out, one is chosen where the readings hold bulk_conductivity.",
+    )
+    temperature_compensation: CompensationKey = Field(
+        DEFAULT_COMPENSATION, description="brings conductivities to 25 Cel"
+    )
     soil: SoilBody = Field(  # type: ignore[valid-type]
         default_factory=SoilBody, description="Inline description of the soil."
     )
@@ -97,6 +122,9 @@ class EstimatesSettings(Body):
     )
 
 
+ESTIMATED = ("water_content", "bulk_conductivity_25", "pore_water_conductivity",
+             "saturation_extract_conductivity")  # fmt: skip
+"""What an answer holds with a band: conductivities where the readings hold bulk_conductivity."""
 SETTINGS = TypeAdapter(EstimatesSettings)
 
 
@@ -135,7 +163,11 @@ def answer_schema() -> dict[str, Any]:
     row = {
         "type": "object",
         "properties": {
-            **{name: {"type": ["number", "null"]} for name in band_names("water_content")},
+            **{
+                name: {"type": ["number", "null"]}
+                for quantity in ESTIMATED
+                for name in band_names(quantity)
+            },
             "flags": {"type": "array", "items": {"type": "string"}},
         },
     }

@@ -1,21 +1,30 @@
-"""From a request's own words to a query in SI, and back to what the answer echoes."""
+"""From a request's own words to a query in SI, with everything that is wrong with it."""
 
 from collections.abc import Iterable, Mapping
 from typing import Any
 
 from pydantic import ValidationError
 
-from models.advisories import Advice
-from models.conversion import Units, from_si, refuse_units, to_si
+from models.conversion import Units, refuse_units, to_si
+from models.conductivity import TEMPERATURE_COMPENSATIONS
 from models.errors import Complaint, ParameterError
-from models.estimate import Basis, Query, choose, prepare
+from models.estimate import Basis, Query, SalinityQuery, choose, prepare
 from models.mixing import MIXING_MODELS
 from models.quantity import QUANTITIES
 from models.readings import quantity_of
+from models.registry import Registry
+from models.relation import Relation
+from models.salinity import PORE_WATER_MODELS
 from models.soil.description import Soil, describe
 from service.errors import Unprocessable
-from service.faults import problems_of
-from service.schemas.estimates import ECHOED, SETTINGS, EstimatesSettings, ModelChoice
+from service.faults import problems_of, shown
+from service.schemas.estimates import (
+    ECHOED,
+    SETTINGS,
+    EstimatesSettings,
+    ModelChoice,
+    PoreWaterChoice,
+)
 
 
 def settings_of(document: Mapping[str, Any]) -> EstimatesSettings:
@@ -41,7 +50,11 @@ def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis:
     soil = _soil(settings, units)
     probe = to_si("probe", _stated(settings.probe), units)
     assumed = to_si("assume", _stated(settings.assume), units)
-    name, given, standard_error = _model(settings.mixing_model, units)
+    name, given, standard_error = _model(
+        "mixing_model", MIXING_MODELS, settings.mixing_model, units
+    )
+    salt = _model("pore_water_model", PORE_WATER_MODELS, settings.pore_water_model, units)
+    TEMPERATURE_COMPENSATIONS[settings.temperature_compensation]
     query = Query(
         model=name or "",
         given=given,
@@ -51,44 +64,15 @@ def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis:
         assumed_temperature=assumed.get("temperature"),
         probability=settings.coverage_probability,
         columns=frozenset(columns),
+        salinity=SalinityQuery(
+            model=salt[0],
+            given=salt[1],
+            standard_error=salt[2],
+            compensation=settings.temperature_compensation,
+        ),
     )
     _refuse_unreachable(query)
     return prepare(query) if name else choose(query)
-
-
-def echo_of(basis: Basis, settings: EstimatesSettings, remarks: Iterable[Advice]) -> dict[str, Any]:
-    """Every constant that was used, so that the answer can be had again from itself.
-
-    remarks: advisories that the readings themselves gave rise to.
-    """
-    query, units = basis.query, settings.units
-    return {
-        "mixing_model": _model_echo(basis, units),
-        "soil": _soil_echo(query.soil, units),
-        "probe": _in_units(query.probe, units),
-        "assume": _in_units(
-            {} if query.assumed_temperature is None else {"temperature": query.assumed_temperature},
-            units,
-        ),
-        "coverage_probability": query.probability,
-        "propagation": {"method": "first-order", "interval": "shortest"},
-        "advisories": [
-            {"code": said.code, "text": said.text} for said in (*basis.advice, *remarks)
-        ],
-    }
-
-
-def units_of_answer(names: Iterable[str], units: Units) -> dict[str, str]:
-    """The unit of every quantity among the columns."""
-    answered: dict[str, str] = {}
-    for name in names:
-        stem = name
-        for suffix in ("_u_shared", "_u", "_lower", "_upper"):
-            if stem not in QUANTITIES:
-                stem = stem.removesuffix(suffix)
-        if QUANTITIES[stem].unit:
-            answered[stem] = units.get(stem, QUANTITIES[stem].unit)
-    return answered
 
 
 def _stated(body: Any) -> dict[str, float]:
@@ -116,16 +100,19 @@ def _soil(settings: EstimatesSettings, units: Units) -> Soil:
 
 
 def _model(
-    named: str | ModelChoice | None, units: Units
+    section: str,
+    registry: Registry[Any],
+    named: str | ModelChoice | PoreWaterChoice | None,
+    units: Units,
 ) -> tuple[str | None, dict[str, Any], float | None]:
     """Name, parameters in SI, and the caller's own standard error."""
     if named is None or isinstance(named, str):
         if named is not None:
-            MIXING_MODELS[named]
+            registry[named]
         return named, {}, None
-    model = MIXING_MODELS[named.name]
+    model: Relation = registry[named.name]
     own = {n: v for n, v in (named.model_extra or {}).items() if n not in ECHOED}
-    _refuse_revision(named, model.revision)
+    _refuse_revision(section, named, model.revision)
     known = {parameter.name: parameter for parameter in model.parameters}
     given: dict[str, Any] = {}
     complaints: list[Complaint] = []
@@ -133,15 +120,14 @@ def _model(
         about, _ = quantity_of(name)
         parameter = known.get(about) or known.get(name.removesuffix("_u"))
         if parameter is not None and not parameter.choices and not _is_number(value):
-            complaints.append(
-                Complaint(name, f"expected a number, found {value!r}"[:120], ("mixing_model", name))
-            )
+            detail = f"expected a number, found {shown(value)}"
+            complaints.append(Complaint(name, detail, (section, name)))
         elif parameter is not None and about in QUANTITIES:
-            given |= to_si("mixing_model", {name: value}, units)
+            given |= to_si(section, {name: value}, units)
         else:
             given[name] = value
     if complaints:
-        raise ParameterError("mixing_model", complaints)
+        raise ParameterError(section, complaints)
     return named.name, given, named.standard_error
 
 
@@ -149,13 +135,12 @@ def _is_number(value: Any) -> bool:
     return isinstance(value, float | int) and not isinstance(value, bool)
 
 
-def _refuse_revision(named: ModelChoice, current: int) -> None:
+def _refuse_revision(section: str, named: ModelChoice | PoreWaterChoice, current: int) -> None:
     asked = (named.model_extra or {}).get("revision", current)
     if asked != current:
-        detail = f"revision {asked} of {named.name} is not here; this service has {current}"
-        raise ParameterError(
-            "mixing_model", [Complaint("revision", detail, ("mixing_model", "revision"))]
-        )
+        detail = f"revision {shown(asked)} of {named.name} is not here; this service has {current}"
+        place = (section, "revision")
+        raise ParameterError(section, [Complaint("revision", detail, place)])
 
 
 def _refuse_unreachable(query: Query) -> None:
@@ -170,37 +155,3 @@ def _refuse_unreachable(query: Query) -> None:
             "imaginary_permittivity), travel_time; found none of them"
         )
         raise ParameterError("readings", [Complaint("readings", detail, ("readings",))])
-
-
-def _model_echo(basis: Basis, units: Units) -> dict[str, Any]:
-    model, query = basis.model, basis.query
-    echo: dict[str, Any] = {"name": model.key, "revision": model.revision}
-    for name, value in basis.values.items():
-        echo |= _in_units({name: value}, units)
-        if name in basis.uncertainties:
-            echo |= _in_units({f"{name}_u": basis.uncertainties[name]}, units)
-    if query.standard_error is not None:
-        echo["standard_error"] = query.standard_error
-    else:
-        echo["model_uncertainty"] = {
-            "standard_uncertainty": model.discrepancy.standard_uncertainty,
-            "reason": model.discrepancy.reason,
-        }
-    if basis.water is not None:
-        echo["water_model"] = basis.water.key
-    return echo | {"sources": dict(basis.origins)}
-
-
-def _soil_echo(soil: Soil, units: Units) -> dict[str, Any]:
-    echo: dict[str, Any] = {} if soil.texture is None else {"texture": soil.texture}
-    for name, value in soil.values.items():
-        echo |= _in_units({name: value, f"{name}_u": soil.uncertainties[name]}, units)
-    return echo | {"sources": dict(soil.origins)}
-
-
-def _in_units(values: Mapping[str, Any], units: Units) -> dict[str, Any]:
-    """SI values in the caller's units; what is no quantity stays as it is."""
-    return {
-        name: float(from_si(name, value, units)) if quantity_of(name)[0] in QUANTITIES else value
-        for name, value in values.items()
-    }

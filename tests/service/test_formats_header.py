@@ -42,8 +42,8 @@ def test_other_names_pass_through():
 def test_no_permittivity():
     told = str(refusal("time,temperature\n,14\n"))
     assert told == (
-        "line 1: expected a column apparent_permittivity or real_permittivity or travel_time, found "
-        "the columns 'time', 'temperature': name the column that holds the permittivity so"
+        "line 1: expected a column apparent_permittivity or real_permittivity or travel_time, "
+        "found the columns 'time', 'temperature': name the column that holds the permittivity so"
     )
 
 

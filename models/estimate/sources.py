@@ -1,0 +1,80 @@
+"""Where an uncertainty comes from: signed effects of each source, by who shares it."""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from models.estimate.permittivity import Permittivity
+from models.estimate.water_content import WaterContent
+from models.relation import Array
+from models.uncertainty.first_order import Input
+
+
+@dataclass(slots=True)
+class Sources:
+    """Signed effects of one standard uncertainty of each source, by who shares it."""
+
+    per_reading: dict[str, Array] = field(default_factory=dict)
+    shared: dict[str, Array] = field(default_factory=dict)
+
+    def plus(self, other: "Sources", weight: Array | float = 1.0) -> "Sources":
+        """These effects and ``weight`` times the other's; the same source adds up with its sign."""
+        return Sources(
+            _sum(self.per_reading, other.per_reading, weight),
+            _sum(self.shared, other.shared, weight),
+        )
+
+    def uncertainties(self) -> tuple[Array | float, Array | float]:
+        """Standard uncertainty in all, and its shared part."""
+        shared = sum(np.square(effect) for effect in self.shared.values())
+        per_reading = sum(np.square(effect) for effect in self.per_reading.values())
+        return np.sqrt(per_reading + shared), np.sqrt(shared)
+
+
+def _sum(
+    one: Mapping[str, Array], other: Mapping[str, Array], weight: Array | float
+) -> dict[str, Array]:
+    total = dict(one)
+    for name, effect in other.items():
+        total[name] = total[name] + weight * effect if name in total else weight * effect
+    return total
+
+
+def of_water_content(
+    found: Permittivity, water: Mapping[str, Input], content: WaterContent
+) -> Sources:
+    """What each source does to the water content, from the contributions of its inputs.
+
+    Temperature works through the permittivity of the water, bulk conductivity through the loss.
+    """
+    effects = Sources()
+    for name, effect in content.contributions.items():
+        if name == "permittivity":
+            width = np.sqrt(np.square(found.of_reading) + np.square(found.shared))
+            unit = np.divide(effect, width, out=np.zeros_like(effect), where=width > 0)
+            effects.per_reading["apparent_permittivity"] = unit * found.per_reading
+            if np.any(found.shared):
+                effects.shared["probe_length"] = unit * found.shared
+            if found.from_loss is not None:
+                effects.per_reading["bulk_conductivity"] = unit * found.from_loss
+        elif name == "loss":
+            effects.per_reading["bulk_conductivity"] = effect
+        elif name in water:
+            effects = effects.plus(_of_water(effect, water[name]))
+        else:
+            effects.shared[name] = effect
+    effects.shared["mixing_model"] = content.of_model
+    return effects
+
+
+def _of_water(effect: Array, given: Input) -> Sources:
+    """Of one property of the water: temperature moves it, and its model leaves some of it open."""
+    width = given.total
+    unit = np.divide(effect, width, out=np.zeros_like(effect), where=width > 0)
+    parts = Sources()
+    if np.any(given.per_reading):
+        parts.per_reading["temperature"] = unit * given.per_reading
+    if np.any(given.shared):
+        parts.shared["water_model"] = unit * given.shared
+    return parts
