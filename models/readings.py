@@ -42,6 +42,7 @@ def read(
     columns: Mapping[str, Array],
     units: Mapping[str, str],
     unreadable: Mapping[str, NDArray[np.bool_]],
+    absent: Mapping[str, NDArray[np.bool_]] | None = None,
 ) -> Readings:
     """Bring columns to SI and gate them.
 
@@ -49,6 +50,9 @@ def read(
     NaN where there was no number.
     units: UCUM codes by quantity name.
     unreadable: by column name, where NaN stands for text that is no number.
+    absent: by column name, rows that do not have the column at all, while their neighbours do.
+
+    A row is flagged by what it holds itself: what only its neighbours have is not missing from it.
     Raises ReadingError when the columns differ in length.
     """
     counts = {name: len(values) for name, values in columns.items()}
@@ -61,6 +65,10 @@ def read(
         name: _gate(name, values, units, unreadable.get(name), flags)
         for name, values in columns.items()
     }
+    for name, rows in (absent or {}).items():
+        about, is_width = quantity_of(name)
+        if not is_width:
+            flags[rows] &= ~BIT[f"missing:{about}"]
     return Readings(count, gated, flags)
 
 

@@ -4,6 +4,7 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 from scipy.constants import speed_of_light
 
 from models.mixing.apparent import conduction_loss, to_apparent, to_real
@@ -24,6 +25,8 @@ class Permittivity:
     """Total eps'' where it is known, from the reading or from its bulk conductivity."""
     loss_u: Array | None = None
     """Standard uncertainty of the loss, per reading."""
+    conduction_only: NDArray[np.bool_] | None = None
+    """Where the loss is that of the bulk conductivity alone, relaxation not included."""
     from_loss: Array | None = None
     """By how much one standard uncertainty of the loss moves the value; None: not at all."""
     uncorrected: Array | None = None
@@ -70,7 +73,14 @@ def permittivity_of(
         if real is not None:
             known = np.zeros(readings.count) if loss is None else np.nan_to_num(loss)
             apparent = apparent.or_else(replace(real, value=to_apparent(real.value, known)))
-        return Permittivity(apparent.value, apparent.per_reading, apparent.shared, loss, loss_u)
+        return Permittivity(
+            apparent.value,
+            apparent.per_reading,
+            apparent.shared,
+            loss,
+            loss_u,
+            _conduction_only(readings),
+        )
     uncorrected = from_loss = None
     if loss is not None and loss_u is not None:
         uncorrected = apparent.value
@@ -82,7 +92,14 @@ def permittivity_of(
             uncorrected = np.where(own, real.value, uncorrected)
             from_loss = np.where(own, 0.0, from_loss)
     return Permittivity(
-        apparent.value, apparent.per_reading, apparent.shared, loss, loss_u, from_loss, uncorrected
+        apparent.value,
+        apparent.per_reading,
+        apparent.shared,
+        loss,
+        loss_u,
+        _conduction_only(readings),
+        from_loss,
+        uncorrected,
     )
 
 
@@ -164,3 +181,11 @@ def _loss(
         return conducted, conducted_u
     lacking = np.isnan(measured)
     return np.where(lacking, conducted, measured), np.where(lacking, conducted_u, measured_u)
+
+
+def _conduction_only(readings: Readings) -> NDArray[np.bool_] | None:
+    """Rows whose loss was not measured as such; None: nothing tells the loss of any row."""
+    if "bulk_conductivity" not in readings.columns:
+        return None
+    measured = readings.columns.get("imaginary_permittivity")
+    return np.ones(readings.count, dtype=bool) if measured is None else np.isnan(measured)

@@ -13,6 +13,12 @@ from models.relation import Array, column
 from models.uncertainty.first_order import Input
 
 
+_TEMPERATURE_TOLD = (
+    BIT["missing:temperature"] | BIT["unreadable:temperature"] | BIT["out-of-gate:temperature"]
+)
+"""Any of these says why a row has no temperature."""
+
+
 @dataclass(frozen=True, slots=True)
 class Surroundings:
     """Frequency in Hz and temperature in Cel, scalar or shape (n,); None: not known."""
@@ -47,6 +53,10 @@ def water_inputs(
         flags |= BIT["missing:temperature"]
         unknown = np.full(count, np.nan)
         return {name: Input(name, unknown) for name in basis.takes if name.startswith("water")}
+    lacking = np.broadcast_to(np.isnan(around.temperature), (count,))
+    unexplained = lacking & ((flags & _TEMPERATURE_TOLD) == 0)
+    if unexplained.any():
+        flags[unexplained] |= BIT["missing:temperature"]
     known = basis.water.validity
     cold = known["temperature"].excludes(around.temperature) & ~np.isnan(around.temperature)
     fast = known["frequency"].excludes(around.frequency)

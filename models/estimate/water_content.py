@@ -2,13 +2,16 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
 from models.estimate.discrepancy import Setting, lean_down, model_uncertainty
 from models.estimate.permittivity import Permittivity
 from models.estimate.surroundings import Surroundings
+from models.mixing.physical.complex_refractive import relaxation_loss
 from models.readings import Readings
 from models.relation import Array
 from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval
@@ -16,6 +19,7 @@ from models.uncertainty.first_order import Input, propagate
 
 UNEXPLAINED_CORRECTION = 0.3
 """Share of a correction for loss that counts as its own standard uncertainty."""
+RELAXATIONS = 6
 CONSISTENT = 3.0
 """Standard uncertainties beyond the physical range at which reading and soil contradict."""
 
@@ -60,7 +64,10 @@ def water_content_of(
 
     def measurand(**named: Array) -> Array:
         permittivity = named.pop("permittivity")
-        return basis.model.to_water_content(permittivity, **{**basis.values, **named})
+        parameters = {**basis.values, **named}
+        if "loss" in basis.takes and found.conduction_only is not None:
+            return _with_relaxation(basis, permittivity, parameters, found.conduction_only)
+        return basis.model.to_water_content(permittivity, **parameters)
 
     computed = measurand(permittivity=found.value, **at)
     spread = propagate(measurand, inputs, computed)
@@ -93,6 +100,24 @@ def water_content_of(
         contributions=spread.contributions,
         of_model=np.sqrt(shared - spread.shared + moment - variance),
     )
+
+
+def _with_relaxation(
+    basis: Basis,
+    permittivity: Array,
+    parameters: dict[str, Any],
+    conduction_only: NDArray[np.bool_],
+) -> Array:
+    """Water content where the loss is that of conduction alone: relaxation depends on the answer.
+
+    A fixed point from the water content without loss; each step shrinks the error a hundredfold.
+    """
+    told = parameters.pop("loss")
+    theta = basis.model.to_water_content(permittivity, **parameters)
+    for _ in range(RELAXATIONS):
+        relaxing = np.where(conduction_only, relaxation_loss(theta, **parameters), 0.0)
+        theta = basis.model.to_water_content(permittivity, loss=told + relaxing, **parameters)
+    return theta
 
 
 def _inputs(

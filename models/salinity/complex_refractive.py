@@ -13,6 +13,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from models.conductivity.loss import conduction_loss
+from models.mixing.joint import to_complex_permittivity
 from models.mixing.phases import FREQUENCY as FREQUENCIES
 from models.mixing.phases import (
     LIQUID,
@@ -21,7 +22,6 @@ from models.mixing.phases import (
     Numbers,
 )
 from models.mixing.physical.complex_refractive import COMPLEX_REFRACTIVE as MIXING
-from models.mixing.physical.complex_refractive import to_complex_permittivity
 from models.numerics.inverse import increasing_inverse
 from models.relation import Array, Parameter, Range, column, ranges
 from models.salinity.family import (

@@ -56,7 +56,8 @@ def triangular(matrix: Array) -> Array:
     triangle of an orthogonal decomposition of the matrix root does not.
     """
     values, vectors = np.linalg.eigh(matrix)
-    root = vectors * np.sqrt(np.maximum(values, 0.0))
+    noise = len(values) * np.finfo(np.float64).eps * values[-1]
+    root = vectors * np.sqrt(np.where(values > noise, values, 0.0))
     _, upper = np.linalg.qr(root.T)
     return column(np.tril((upper * np.where(np.diagonal(upper) < 0, -1.0, 1.0)[:, None]).T))
 

@@ -32,13 +32,15 @@ LOPSIDED = 0.08
 UNEVEN = 0.005
 """how far that mean is from what the gradient promises: a curvature not seen at the centre."""
 ENTANGLED = 0.1
-"""Terms of products of inputs, along one slanting line, from which all of them are found."""
+"""Terms of products of inputs, along one slanting line and by the number of inputs, likewise;"""
 OPPOSED = 0.14
-"""Curvatures across the gradient, root of the sum of squares, in slopes, from which it is done."""
+"""curvatures across the gradient, root of the sum of squares, in slopes, likewise."""
 LOST = 0.05
-"""Curvature term, in half-widths, from which only draws will do,"""
+"""Curvature term or second step, in half-widths, from which only draws will do,"""
 FURTHER = 1.0
 """and how much further out the measurand must still be in its domain, and going the same way."""
+FINE = 1e-8
+"""Share of the value below which a band is too narrow to bend by more than its own rounding."""
 
 
 class Method(IntEnum):
@@ -95,7 +97,9 @@ def band(
         rows = slice(start, min(start + BLOCK, count))
         some = {name: given.take(rows) for name, given in inputs.items()}
         space = StandardSpace(measurand, some, factor, rows.stop - start)
-        found = _one_input(space, probability) if len(inputs) == 1 else _along_gradient(space, z)
+        with np.errstate(all="ignore"):
+            lone = len(inputs) == 1
+            found = _one_input(space, probability) if lone else _along_gradient(space, z)
         needy = np.flatnonzero(found.method == Method.DRAWS)
         if needy.size:
             drawn = simulate(
@@ -132,8 +136,9 @@ def _along_gradient(space: StandardSpace, z: float) -> Band:
     lower, upper = space(along(towards, -z)), space(along(towards, z))
     half, middle = 0.5 * (upper - lower), 0.5 * (upper + lower) - value
     curvature = 0.5 * total - middle / z**2
-    entangled = 0.5 * len(slopes) * z * space.entangled(bends, value)
-    still = (length == 0.0) & (total == 0.0) & (entangled == 0.0)
+    entangled = 0.5 * len(slopes) * z**2 * space.entangled(bends, value)
+    fine = np.maximum(z * length, np.maximum(np.abs(total), np.abs(entangled)))
+    fine = fine <= FINE * np.abs(value)
     lost = ~((np.abs(curvature) <= LOST * half) & (half > 0.0))
     bent = np.abs(curvature) > CURVED * half
     bent |= np.abs(middle) > LOPSIDED * half
@@ -141,11 +146,13 @@ def _along_gradient(space: StandardSpace, z: float) -> Band:
     bent |= np.abs(entangled) > ENTANGLED * half
     opposed = sum(np.square((1.0 - a**2) * bends[j]) for j, a in towards.items())
     bent |= np.sqrt(opposed) > OPPOSED * length
-    lower, upper = lower + curvature, upper + curvature
+    lower = np.where(fine, value - z * length, lower + curvature)
+    upper = np.where(fine, value + z * length, upper + curvature)
     method = np.select(
-        [still, lost, bent], [Method.EXACT, Method.DRAWS, Method.CURVATURE], Method.GRADIENT
+        [fine & (length == 0.0), fine, lost, bent],
+        [Method.EXACT, Method.GRADIENT, Method.DRAWS, Method.CURVATURE],
+        Method.GRADIENT,
     )
-    lower[still] = upper[still] = value[still]
     rows = np.flatnonzero(method == Method.CURVATURE)
     if rows.size:
         some, first = space.take(rows, rows.size), {j: a[rows] for j, a in towards.items()}
@@ -186,18 +193,19 @@ def _at_end(
     across = space(along(better, STEP, first)) + space(along(better, -STEP, first)) - 2.0 * value
     curvature = 0.5 * (sum(bends.values()) - across / STEP**2)
     sign = np.sign(z)
-    beyond = space(along(towards, z + sign * FURTHER))
-    holds = (np.abs(curvature) <= LOST * half) & (sign * (beyond - value) > 0.0)
+    beyond = space(along(better, z + sign * FURTHER))
+    holds = (np.abs(curvature) <= LOST * half) & (np.abs(second - value) <= LOST * half)
+    holds &= sign * (beyond - second) > 0.0
     # An end is an extreme: where the second step falls short of the first, the first is better.
     return sign * np.maximum(sign * value, sign * second) + curvature, holds
 
 
 def _settled(value: Array, lower: Array, upper: Array, method: NDArray[np.int_]) -> Band:
-    nothing = np.isnan(value)
+    nothing = ~np.isfinite(value)
     method = np.where(nothing, Method.NO_NUMBER, method)
     unset = nothing | (method == Method.DRAWS)
     return Band(
-        value,
+        np.where(nothing, np.nan, value),
         np.where(unset, np.nan, lower),
         np.where(unset, np.nan, upper),
         method.astype(np.uint8),

@@ -98,8 +98,7 @@ class StandardSpace:
 def direction_of(slopes: Mapping[int, Array]) -> tuple[Columns, Array]:
     """Unit vector along a gradient, and the gradient's length; NaN where that is 0."""
     length = np.sqrt(sum(np.square(slope) for slope in slopes.values()))
-    with np.errstate(invalid="ignore", divide="ignore"):
-        return {j: slope / length for j, slope in slopes.items()}, length
+    return {j: slope / length for j, slope in slopes.items()}, length
 
 
 def along(direction: Mapping[int, Array], distance: float, start: Point | None = None) -> Point:

@@ -9,7 +9,7 @@ import polars as pl
 from numpy.typing import NDArray
 
 from models.flags import BIT, Flags, slugs_of, withheld
-from models.readings import Readings, quantity_of, read
+from models.readings import Readings, read
 from models.relation import Array
 from service.formats.errors import CellError, shown
 from service.formats.header import folded
@@ -64,12 +64,8 @@ class Block:
         A row is flagged by what it holds itself: a column that only its neighbours have is not
         missing from it, and a row that could not be taken apart is said to be that alone.
         """
-        found = read(self.values, units, self.unreadable)
+        found = read(self.values, units, self.unreadable, self.absent)
         flags = found.flags if self.values else np.zeros(len(self), np.uint64)
-        for name, rows in self.absent.items():
-            about, is_width = quantity_of(name)
-            if not is_width:
-                flags[rows] &= ~BIT[f"missing:{about}"]
         flags[self.broken] = BIT["unreadable-row"]
         return Readings(len(self), found.columns, flags)
 

@@ -4,11 +4,11 @@ from collections.abc import Collection, Iterable, Mapping, Sequence
 from difflib import get_close_matches
 from types import MappingProxyType
 
-from models.quantity import PROBE, QUANTITIES, READING, SOIL
+from models.quantity import NOISE, PROBE, QUANTITIES, READING, SOIL
 from service.formats.errors import HeaderError, shown
 
 NUMBERS = tuple(name for name in READING if QUANTITIES[name].unit)
-RECOGNISED = frozenset((*NUMBERS, *(f"{name}_u" for name in NUMBERS)))
+RECOGNISED = frozenset((*NUMBERS, *(f"{name}_u" for name in NOISE)))
 """Columns that are read as numbers; every other one passes through."""
 
 NEEDED = ("apparent_permittivity", "real_permittivity", "travel_time")

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from typing import Any, Literal
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.quantity import NOISE, QUANTITIES, READING
 from models.relation import Array
@@ -32,6 +33,8 @@ class JsonReadings:
     count: int
     numbers: Mapping[str, Array]
     texts: Mapping[str, Sequence[str | None]]
+    absent: Mapping[str, NDArray[np.bool_]]
+    """Rows that do not have a key which others have."""
 
 
 def decode(readings: Any, *, most: int) -> JsonReadings:
@@ -58,13 +61,17 @@ def _decode_rows(rows: list[Any], most: int) -> JsonReadings:
                 if not isinstance(row, dict)
             ]
         )
-    names = list(dict.fromkeys(key for keys in set(map(tuple, rows)) for key in keys))
+    shapes = set(map(tuple, rows))
+    names = list(dict.fromkeys(key for row in rows for key in row) if len(shapes) > 1 else rows[0])
     strangers = [name for name in names if name not in KNOWN]
     if strangers:
         first = {name: next(i for i, row in enumerate(rows) if name in row) for name in strangers}
         _refuse([_stranger(n, pointer(("readings", i, n))) for n, i in first.items()])
     cells = {name: [row.get(name) for row in rows] for name in names}
-    return _typed("rows", len(rows), cells)
+    absent: dict[str, NDArray[np.bool_]] = {}
+    if len(shapes) > 1:
+        absent = {name: np.array([name not in row for row in rows]) for name in names}
+    return _typed("rows", len(rows), cells, absent)
 
 
 def _decode_columns(columns: dict[str, Any], most: int) -> JsonReadings:
@@ -89,11 +96,14 @@ def _decode_columns(columns: dict[str, Any], most: int) -> JsonReadings:
     ]
     if faults:
         _refuse(faults)
-    return _typed("columns", count, columns)
+    return _typed("columns", count, columns, {})
 
 
 def _typed(
-    shape: Literal["rows", "columns"], count: int, cells: Mapping[str, list[Any]]
+    shape: Literal["rows", "columns"],
+    count: int,
+    cells: Mapping[str, list[Any]],
+    absent: Mapping[str, NDArray[np.bool_]],
 ) -> JsonReadings:
     faults: list[Fault] = []
     numbers: dict[str, Array] = {}
@@ -115,7 +125,8 @@ def _typed(
                 break
     if faults:
         _refuse(faults)
-    return JsonReadings(shape, count, numbers, texts)
+    gaps = {n: rows for n, rows in absent.items() if n in numbers}
+    return JsonReadings(shape, count, numbers, texts, gaps)
 
 
 def _stranger(name: str, place: str) -> Fault:

@@ -166,11 +166,12 @@ class RecordCutter:
         codes = np.frombuffer(text, np.uint8)
         starts = np.concatenate((np.zeros(1, np.int64), ends.places[:-1] + 1))
         stops = ends.places - ((codes[ends.places - 1] == CR) & (ends.places > starts))
-        feeds = ends.places
-        if text.count(b"\n") != len(feeds):
-            feeds = np.flatnonzero(codes == LF)
-        lines = self._line + np.searchsorted(feeds, starts)
-        self._line += len(feeds)
+        count = text.count(b"\n")
+        if count == len(starts):
+            lines = np.arange(self._line, self._line + count)
+        else:
+            lines = self._line + np.searchsorted(np.flatnonzero(codes == LF), starts)
+        self._line += count
         longest = int(np.argmax(stops - starts))
         if stops[longest] - starts[longest] > self._line_bytes:
             raise self._too_long(int(lines[longest]))
@@ -179,7 +180,7 @@ class RecordCutter:
         if not whole:
             starts, stops, lines = starts[~blank], stops[~blank], lines[~blank]
         return Records(
-            text, starts, stops, lines, ends.regular and whole, whole and len(feeds) == len(starts)
+            text, starts, stops, lines, ends.regular and whole, whole and count == len(starts)
         )
 
     def _check_utf8(self, text: bytes) -> None:

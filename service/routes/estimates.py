@@ -88,7 +88,7 @@ def _answer(document: dict[str, Any], answered: str, most: int) -> Response:
     sent = decode(document.pop("readings"), most=most)
     settings = settings_of(document)
     basis = basis_of(settings, (*sent.numbers, *sent.texts))
-    result = estimate(read(sent.numbers, settings.units, {}), basis)
+    result = estimate(read(sent.numbers, settings.units, {}, sent.absent), basis)
     answer = laid_out(result, sent, settings.units)
     if answered != JSON:
         return Response(tabulate(answer, answered), media_type=answered, headers=VARY)

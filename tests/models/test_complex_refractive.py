@@ -6,13 +6,12 @@ from numpy.testing import assert_allclose, assert_array_less
 from scipy.constants import epsilon_0
 from scipy.optimize import fsolve
 
+from models.mixing.joint import to_complex_permittivity, to_water_content_and_conductivity
 from models.mixing.physical import crim
 from models.mixing.physical.complex_refractive import (
     COMPLEX_REFRACTIVE,
-    to_complex_permittivity,
     to_permittivity,
     to_water_content,
-    to_water_content_and_conductivity,
 )
 from tests.published import table
 

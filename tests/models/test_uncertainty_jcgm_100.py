@@ -20,8 +20,10 @@ ROOT_3 = np.sqrt(3.0)
 
 def length(standard, difference, expansion_difference, deviation, expansion, difference_in_t):
     """H.1, equation H.3: end gauge compared with a standard, nm."""
-    return standard + difference - standard * (
-        expansion_difference * deviation + expansion * difference_in_t
+    return (
+        standard
+        + difference
+        - standard * (expansion_difference * deviation + expansion * difference_in_t)
     )
 
 
@@ -93,7 +95,9 @@ def impedance(voltage, current, phase):
 
 def observed():
     data = table("jcgm_100_impedance_data")
-    columns = np.stack([data["voltage"].values, data["current"].values * 1e-3, data["phase"].values])
+    columns = np.stack(
+        [data["voltage"].values, data["current"].values * 1e-3, data["phase"].values]
+    )
     means = dict(zip(("voltage", "current", "phase"), columns.mean(axis=1), strict=True))
     return means, np.cov(columns) / columns.shape[1]
 

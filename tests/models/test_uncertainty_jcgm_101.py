@@ -207,7 +207,8 @@ def test_complex_reflection_coefficient():
 
     def reflection(**at):
         s22, s12, s23, s13 = (
-            at[f"size_{port}"] * np.exp(1j * at[f"phase_{port}"]) for port in ("22", "12", "23", "13")
+            at[f"size_{port}"] * np.exp(1j * at[f"phase_{port}"])
+            for port in ("22", "12", "23", "13")
         )
         return s22 - s12 * s23 / s13
 
@@ -225,9 +226,21 @@ def test_complex_reflection_coefficient():
         assert_allclose(figure, printed[name].values[0], atol=printed[name].tolerance[0])
 
 
+def logarithm(x):
+    return np.log(x)
+
+
 def test_logarithm_of_a_rectangle():
+    """Only draws see that no value is above ln 1.1."""
     printed = {name: col.values[0] for name, col in table("npl_logarithm").items()}
     given = Rectangular(0.6, 0.5)
-    first = propagate_jointly(np.log, {"x": given.mean}, given.standard_uncertainty[None, None] ** 2)
-    E = first
-    assert_allclose(E.value[0, 0], printed["first_value"], atol=5e-4)
+    covariance = np.square(given.standard_uncertainty)[None, None]
+    first = propagate_jointly(logarithm, {"x": given.mean}, covariance)
+    value, u = first.value[0, 0], first.standard_uncertainty[0, 0]
+    assert_allclose([value, u], [printed["first_value"], printed["first_u"]], atol=5e-4)
+    assert_allclose(value + 1.96 * u, printed["first_upper"], atol=1e-3)
+    drawn = simulate(logarithm, {"x": given}, draws=MANY, interval="shortest")
+    for found, name in ((drawn.value, "value"), (drawn.standard_uncertainty, "u")):
+        assert_allclose(found, printed[name], atol=5e-4)
+    for found, name in ((drawn.lower, "lower"), (drawn.upper, "upper")):
+        assert_allclose(found, printed[name], atol=5e-3)

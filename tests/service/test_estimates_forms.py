@@ -194,3 +194,21 @@ def test_an_answer_can_be_had_again_from_itself(server):
     assert again["mixing_model"]["name"] == first["mixing_model"]["name"]
     for name, value in first["estimates"][0].items():
         assert again["estimates"][0][name] == pytest.approx(value, rel=1e-12)
+
+
+def test_a_key_that_a_row_does_not_have_is_not_missing_from_it_in_any_form(server):
+    rows = [
+        {"apparent_permittivity": 17.2, "temperature": 14.0, "bulk_conductivity": 0.4},
+        {"apparent_permittivity": 17.2, "temperature": 14.0},
+        {"apparent_permittivity": 17.2},
+        {"apparent_permittivity": 17.2, "temperature": None},
+    ]
+    lines = "".join(json.dumps(row) + "\n" for row in rows)
+    as_lines = server.client.post(
+        "/v1/estimates", params=QUERY, content=lines,
+        headers={"Content-Type": "application/x-ndjson"},
+    )  # fmt: skip
+    as_json = server.client.post("/v1/estimates", json={**SETTINGS, "readings": rows}).json()
+    flags = [row["flags"] for row in as_json["estimates"]]
+    assert flags == [json.loads(line)["flags"] for line in as_lines.text.splitlines()]
+    assert flags == [[], [], ["missing:temperature"], ["missing:temperature"]]

@@ -1,91 +1,26 @@
 """Mironov, Dobson, Kaupp, Komarov and Kleshchenko (2004): complex refractive indices add up.
 
 sqrt(eps) = (1 - phi) sqrt(eps_s) + theta sqrt(eps_w) + (phi - theta), with eps = eps' - j eps''
-all along. Index and attenuation are two equations, so a complex permittivity tells two things:
-water content, and how well the pore water conducts. Both follow in closed form (derived here):
-with m, the excess of sqrt(eps) over that of the soil without water, (1 + m / theta)^2 is the
-permittivity of the water; its real part is known, which leaves a quadratic equation for theta.
+all along. Here the apparent permittivity and the loss of the soil are given;
+``models.mixing.joint`` starts from a complex permittivity and finds the conductivity of the pore
+water as well.
 """
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
+from numpy.typing import ArrayLike
 
-from models.conductivity.loss import conduction_loss
 from models.mixing.family import Discrepancy, MixingModel
+from models.mixing.joint import INDEX, WIDER, from_index, one_answer
 from models.mixing.phases import (
     FREQUENCY,
     LIQUID,
     POROSITY,
     SOLID_PERMITTIVITY,
     WATER_PERMITTIVITY,
-    Numbers,
-    soil_phases,
 )
-from models.mixing.physical import crim, power_law
+from models.mixing.physical import crim
 from models.numerics.inverse import increasing_inverse
 from models.relation import Array, Citation, ComplexArray, Parameter, Range, column, ranges
-
-INDEX = 0.5
-"""The exponent of refractive indices."""
-WIDER = 1e-6
-"""Rounding must not push a root out of its own bracket."""
-
-
-@np.errstate(all="ignore")
-def to_complex_permittivity(
-    water_content: Numbers,
-    pore_water_conductivity: Numbers,
-    frequency: Numbers,
-    /,
-    *,
-    water_permittivity: Numbers,
-    porosity: Numbers,
-    solid_permittivity: Numbers,
-    exponent: float = INDEX,
-) -> ComplexArray:
-    """Permittivity eps' - j eps'' of a wet soil, conduction included.
-
-    water_content: elementwise, m3/m3. pore_water_conductivity: elementwise, S/m, at the
-        temperature of the soil. frequency: elementwise, Hz.
-    water_permittivity: elementwise, eps' - j eps'' of the water without conduction.
-    porosity: m3/m3; solid_permittivity: real or complex; exponent: above 0, up to 1.
-    """
-    water = water_permittivity - 1j * conduction_loss(pore_water_conductivity, frequency)
-    phases = soil_phases(np.asarray(water_content), porosity, solid_permittivity, water)
-    return np.asarray(power_law.mixture(phases, exponent), dtype=np.complex128)
-
-
-@np.errstate(all="ignore")
-def to_water_content_and_conductivity(
-    permittivity: Numbers,
-    frequency: Numbers,
-    /,
-    *,
-    water_permittivity: Numbers,
-    porosity: Numbers,
-    solid_permittivity: Numbers,
-    exponent: float = INDEX,
-) -> tuple[Array, Array]:
-    """Water content, m3/m3, and conductivity of the pore water, S/m at soil temperature.
-
-    permittivity: elementwise, eps' - j eps'' of the soil, conduction included; other arguments
-        as in ``to_complex_permittivity``, whose exact inverse this is.
-
-    Both are NaN where no soil answers: eps' <= 0, less index than the soil without water has, or
-    so much loss that two water contents would explain it. A loss below that of pure water gives a
-    conductivity below zero, as noise will; it is not cut off.
-    """
-    eps = np.asarray(permittivity, dtype=np.complex128)
-    water = np.asarray(water_permittivity, dtype=np.complex128)
-    lifted = _power(eps, exponent)
-    excess = lifted - ((1 - porosity) * _power(solid_permittivity, exponent) + porosity)
-    excess = np.where(eps.real > 0, excess, np.nan)
-    if exponent == INDEX:
-        theta = _from_index(excess, water.real)
-    else:
-        theta = _from_power(excess, water.real, exponent)
-    conducting = (1 + excess / theta) ** (1 / exponent)
-    return theta, (water.imag - conducting.imag) / conduction_loss(1.0, frequency)
 
 
 @np.errstate(all="ignore")
@@ -106,7 +41,7 @@ def to_water_content(
     water_permittivity: eps' of the water; water_loss: its eps'' without conduction.
 
     With the loss, the conductivity of the pore water is solved for along the way and does no harm;
-    NaN as in ``to_water_content_and_conductivity``. Without it, the water is taken to lose no more
+    NaN as in ``models.mixing.joint``. Without it, the water is taken to lose no more
     than ``water_loss``.
     """
     ka, solid = column(permittivity), _index(solid_permittivity, solid_loss)
@@ -118,7 +53,7 @@ def to_water_content(
         )  # fmt: skip
     dry, index = _dry(solid, porosity), np.sqrt(ka)
     excess = index - 1j * column(loss) / (2 * index) - dry
-    return _from_index(np.where(2 * ka > column(loss), excess, np.nan), column(water_permittivity))
+    return from_index(np.where(2 * ka > column(loss), excess, np.nan), column(water_permittivity))
 
 
 @np.errstate(all="ignore")
@@ -137,7 +72,7 @@ def to_permittivity(
 
     With the loss, this is the soil whose pore water conducts just enough to lose that much in
     all; NaN where ``to_water_content`` would not find the way back. To start from a conductivity
-    instead, see ``to_complex_permittivity``.
+    instead, see ``models.mixing.joint``.
     """
     theta, solid = column(water_content), _index(solid_permittivity, solid_loss)
     if loss is None:
@@ -158,7 +93,7 @@ def to_permittivity(
     most = shift + np.hypot(np.sqrt(known), half_loss / least - dry.imag)
     index = increasing_inverse(surplus, 0.0, least * (1 - WIDER), most * (1 + WIDER))
     excess = index - 1j * half_loss / index - dry
-    known_way_back = (theta > 0) & _one_answer(excess, INDEX) & (index > half_loss / index)
+    known_way_back = (theta > 0) & one_answer(excess, INDEX) & (index > half_loss / index)
     return np.where(known_way_back, index**2, np.nan)
 
 
@@ -171,36 +106,24 @@ def _dry(solid: ComplexArray, porosity: ArrayLike) -> ComplexArray:
     return solid - column(porosity) * (solid - 1)
 
 
-def _power(permittivity: Numbers, exponent: float) -> ComplexArray:
-    eps = np.asarray(permittivity, dtype=np.complex128)
-    return np.sqrt(eps) if exponent == INDEX else eps**exponent
+@np.errstate(all="ignore")
+def relaxation_loss(
+    water_content: ArrayLike,
+    /,
+    *,
+    water_permittivity: ArrayLike,
+    water_loss: ArrayLike,
+    porosity: ArrayLike,
+    solid_permittivity: ArrayLike,
+    solid_loss: ArrayLike,
+) -> Array:
+    """Loss eps'' of the soil without conduction, elementwise; arguments as in ``to_permittivity``.
 
-
-def _from_index(excess: ComplexArray, water: Array) -> Array:
-    """The root of Re (1 + m / theta)^2 = eps_w', in the form that cancels nothing."""
-    m, k = excess.real, water - 1
-    theta = (m + np.sqrt(m * m + k * (m * m - excess.imag**2))) / k
-    return np.where(_one_answer(excess, INDEX), theta, np.nan)
-
-
-def _from_power(excess: ComplexArray, water: Array, exponent: float) -> Array:
-    """1/u with Re (1 + m u)^(1/a) = eps_w'.
-
-    Wherever there is one answer the left side increases with u. As the angle of 1 + m u stays
-    below that of m, it is at least (abs(m) u)^(1/a) cos(arg(m) / a), which bounds u.
+    What has to be added to the loss that a direct-current conductivity makes.
     """
-    steepness = np.cos(np.angle(excess) / exponent)
-    most = (water / steepness) ** exponent / np.abs(excess) * (1 + WIDER)
-    inverse = increasing_inverse(
-        lambda u: ((1 + excess * u) ** (1 / exponent)).real,
-        water, 0.0, np.where(_one_answer(excess, exponent), most, np.nan),
-    )  # fmt: skip
-    return 1 / inverse
-
-
-def _one_answer(excess: ComplexArray, exponent: float) -> NDArray[np.bool_]:
-    """Whether just one water content explains the excess: Re m > 0 and Re m^(1/a) > 0."""
-    return np.abs(excess.imag) < excess.real * np.tan(exponent * np.pi / 2)
+    theta, solid = column(water_content), _index(solid_permittivity, solid_loss)
+    index = _dry(solid, porosity) + theta * (_index(water_permittivity, water_loss) - 1)
+    return np.asarray(-(index * index).imag)
 
 
 COMPLEX_REFRACTIVE = MixingModel(
