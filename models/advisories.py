@@ -66,12 +66,13 @@ ADVISORIES: Registry[Advisory] = Registry(
              condition="The answer holds the conductivity of the saturation extract.",
              text="The extract follows from a balance of salt (saturation percentage: {origin}): "
              "nothing dissolves or settles as water is added. Gypsum adds up to about 2 dS/m."),
-    Advisory(key="frequency-assumed",
-             condition="The model depends on frequency and none was given.",
-             text="No frequency was given: {frequency} GHz was assumed. Give probe.frequency or a "
-             "frequency column; below 0.3 GHz it matters."),
+    Advisory(key="frequency-assumed", condition="No frequency was given.",
+             text="No frequency was given: {frequency} GHz was assumed, and nothing was corrected "
+             "for conduction. Give probe.frequency or a frequency column: below 0.3 GHz clay and "
+             "conduction make a soil read too wet, which the band does not hold otherwise."),
     Advisory(key="temperature-assumed", condition="The caller said assume.temperature.",
-             text="Temperature was assumed to be {temperature} Cel where the reading has none."),
+             text="Temperature was assumed to be {temperature} Cel, to {u} K (k = 1), where the "
+             "reading has none."),
     Advisory(key="model-range", condition="A soil property or the frequency is outside the "
              "model's declared range.",
              text="Outside the conditions in which {model} was established: {names}. The band is "

@@ -76,9 +76,11 @@ FLAGS: Registry[Flag] = Registry(
     Flag(key="outside-model-range", condition="Permittivity, water content, temperature, "
          "frequency or a soil property is outside the range the model's source vouches for.",
          text="Outside the conditions in which the equation was established.",
-         reason="The band is widened with the distance from the range.", keeps_number=True),
-    Flag(key="low-frequency", condition="The frequency is below the model's range in a soil "
-         "whose clay content is above 0.05, or not known.",
+         reason="The band is widened with the distance in permittivity and frequency, and for "
+         "clay and organic matter.", keeps_number=True),
+    Flag(key="low-frequency", condition="The frequency is below 0.3 GHz in a soil whose clay "
+         "content is above 0.05, or not known, and neither the model's coefficients nor its "
+         "standard error are the caller's own.",
          text="At this frequency clay raises the permittivity: the equation reads too wet. The "
          "band reaches further down than up.",
          reason="Published laboratory pairs at 50 MHz in clay: curves made at 0.5 to 1 GHz read "
@@ -86,7 +88,7 @@ FLAGS: Registry[Flag] = Registry(
     Flag(key="lossy", condition="Correcting the apparent permittivity for conduction lowers the "
          "water content by more than 0.01 m3/m3.",
          text="Conduction made the soil look wetter than it is; the correction is in the answer "
-         "and three tenths of it in the band.",
+         "and half of it in the band.",
          reason="Ka = eps'/2 (1 + sqrt(1 + tan^2 delta)): loss raises Ka above eps'.",
          keeps_number=True),
     Flag(key="loss-missing", condition="The model needs the loss of the soil, and the row holds "
@@ -151,8 +153,9 @@ FLAGS: Registry[Flag] = Registry(
          keeps_number=True, keeps_pore_water=False),
     Flag(key="outside-water-range", condition="The temperature or frequency is outside the range "
          "of the water model.",
-         text="The permittivity of water is not known here.",
-         reason="Kaatze (1989) holds from -4.1 to 60 Cel.", keeps_number=False),
+         text="The permittivity of water is less well known here.",
+         reason="Each water model has its own range, Kaatze (1989) from -4.1 to 60 Cel; "
+         "outside, it goes on smoothly and counts as known to 2 %.", keeps_number=True),
 )  # fmt: skip
 
 _NAMING = tuple(key for key, flag in FLAGS.items() if flag.names_quantity)

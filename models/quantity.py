@@ -19,6 +19,14 @@ SUFFIXES: Mapping[str, str] = MappingProxyType({
     "_upper": "upper end of the coverage interval",
 })  # fmt: skip
 
+BANDED = ("", *SUFFIXES)
+"""Suffixes of an estimated quantity, in the order of the answer."""
+
+
+def band_names(quantity: str) -> tuple[str, ...]:
+    """The columns an estimated quantity has."""
+    return tuple(quantity + suffix for suffix in BANDED)
+
 
 @dataclass(frozen=True, slots=True)
 class Quantity:

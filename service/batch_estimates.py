@@ -5,7 +5,7 @@ from collections.abc import Mapping
 from models.advisories import Advice
 from models.conversion import from_si
 from models.estimate import Basis, Remarks, columns_of, estimate
-from models.estimate.estimates import band_names
+from models.quantity import band_names
 from models.readings import Readings
 from service.formats.block import Answer, Block
 from service.schemas.echo import units_of_answer

@@ -2,8 +2,8 @@
 
 from models.estimate.basis import Basis, Query, prepare
 from models.estimate.choice import choose
-from models.estimate.estimates import Estimates
-from models.estimate.pipeline import columns_of, estimate
+from models.estimate.explanation import explain
+from models.estimate.pipeline import Estimates, columns_of, estimate
 from models.estimate.salinity import SalinityQuery
 from models.remarks import Remarks
 
@@ -16,5 +16,6 @@ __all__ = [
     "choose",
     "columns_of",
     "estimate",
+    "explain",
     "prepare",
 ]

@@ -15,6 +15,7 @@ from models.soil.description import Soil
 from models.water import WATER_MODELS
 from models.water.family import WaterModel
 
+ASSUMED_TEMPERATURE_U = 7.0
 ASSUMED_FREQUENCY = 1e9
 """Hz, of a probe that does not say: the upper end of what TDR sees."""
 
@@ -31,6 +32,8 @@ class Query:
     probe: Mapping[str, float] = field(default_factory=dict)
     """Values and ``<name>_u`` of the probe."""
     assumed_temperature: float | None = None
+    assumed_temperature_u: float = ASSUMED_TEMPERATURE_U
+    """K; by default that of soil over a season."""
     probability: float = 0.95
     columns: frozenset[str] = frozenset()
     """Names of the columns the readings have."""
@@ -73,7 +76,14 @@ class Basis:
     @property
     def corrects_loss(self) -> bool:
         """Whether an apparent permittivity is corrected for loss before the model sees it."""
-        return self.frequency_known and "loss" not in self.takes
+        return "loss" not in self.takes and not self.model.conducting
+
+    @property
+    def tells_correction(self) -> bool:
+        """Whether the readings hold anything to correct by."""
+        columns = self.query.columns
+        by_conductivity = "bulk_conductivity" in columns and self.frequency_known
+        return self.corrects_loss and ("imaginary_permittivity" in columns or by_conductivity)
 
 
 def prepare(query: Query) -> Basis:
@@ -133,10 +143,14 @@ def _of_soil(basis: Basis) -> Iterator[Advice]:
 def _of_probe(basis: Basis) -> Iterator[Advice]:
     """What was assumed of the probe, and which of its permittivities was used."""
     query = basis.query
-    if not basis.frequency_known and (basis.water is not None or "frequency" in basis.takes):
+    if not basis.frequency_known:
         yield advise("frequency-assumed", frequency=f"{ASSUMED_FREQUENCY / 1e9:g}")
     if query.assumed_temperature is not None:
-        yield advise("temperature-assumed", temperature=f"{query.assumed_temperature:g}")
+        yield advise(
+            "temperature-assumed",
+            temperature=f"{query.assumed_temperature:g}",
+            u=f"{query.assumed_temperature_u:g}",
+        )
     kinds = kinds_in(query.columns)
     if len(kinds) > 1:
         first = f"{basis.model.permittivity}_permittivity"

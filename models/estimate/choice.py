@@ -1,4 +1,4 @@
-"""Which mixing model, where the caller names none: by declared ranges, then by the band."""
+"""Which mixing model, where the caller names none: declared ranges, then bands and experience."""
 
 from dataclasses import dataclass, replace
 
@@ -16,10 +16,19 @@ from models.soil.description import Soil
 
 ORGANIC = 0.12
 """Organic matter from which a soil counts as organic, common practice."""
-TYPICAL_WATER_CONTENT = 0.25
+TYPICAL = {"mineral": 0.25, "organic": 0.50}
+"""Water contents, m3/m3, at which bands are compared."""
 TYPICAL_TEMPERATURE = 20.0
-NEVER = frozenset({"square-root", "polynomial", "complex-refractive", "hanai-bruggeman"})
-"""Not chosen unasked: they need the caller's own coefficients, the loss, or saturated soil."""
+NO_BETTER_KNOWN = 0.025
+"""m3/m3: among bands narrower than this, the order of PREFERRED decides."""
+PREFERRED = ("crim", "malicki-1996", "topp-1980", "roth-1992-organic", "roth-1990", "mironov-2009")
+"""By how widely they were tried in soils their authors had not seen; then as declared."""
+NEVER = frozenset({
+    "square-root", "polynomial", "complex-refractive", "hanai-bruggeman", "maxwell-garnett",
+    "bruggeman", "sihvola",
+})  # fmt: skip
+"""Not chosen unasked: they need the caller's own coefficients, the loss, saturated soil, or a
+knowledge of how solids and water lie that nobody has."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,28 +38,39 @@ class _Candidate:
 
 
 def choose(query: Query) -> Basis:
-    """The basis of the model with the narrowest band among those whose ranges hold.
+    """The basis of a model whose ranges hold, by the width of its band and by experience.
 
     ``query.model`` is not looked at. A candidate has all its inputs, is made for this kind of
-    soil, and declares ranges that hold the soil and the frequency; its band is that of a reading
-    at 0.25 m3/m3 and 20 Cel.
+    soil, and declares ranges that hold the soil and the frequency; where no model holds at the
+    frequency, those that hold otherwise, and the answer says so.
     Raises ParameterError when no model can answer.
     """
-    candidates = [c for key in MIXING_MODELS if (c := _candidate(query, key)) is not None]
+    found = [c for key in MIXING_MODELS if (c := _candidate(query, key)) is not None]
+    within = [c for c in found if _holds_frequency(c.basis.model, query)]
+    candidates = within or found
     if not candidates:
         detail = (
-            "no mixing model holds for this soil and frequency: name one in mixing_model and "
-            "read its declared range at /v1/mixing-models"
+            "no mixing model holds for this soil: name one in mixing_model and read its declared "
+            "range at /v1/mixing-models"
         )
-        raise ParameterError("mixing_model", [Complaint("mixing_model", detail)])
-    best = min(candidates, key=lambda c: c.standard_uncertainty)
+        place = ("mixing_model",)
+        raise ParameterError("mixing_model", [Complaint("mixing_model", detail, place)])
+    best = min(candidates, key=_rank)
+    beside = "" if within else " None of them is made for this frequency."
     why = (
         f"of {len(candidates)} models whose inputs are given and whose declared ranges hold "
-        f"({_case(query)}), it has the smallest standard uncertainty at "
-        f"{TYPICAL_WATER_CONTENT:g} m3/m3: {best.standard_uncertainty:.3f} m3/m3."
+        f"({_case(query)}), its standard uncertainty at {_typical(query.soil):g} m3/m3 is "
+        f"{best.standard_uncertainty:.3f} m3/m3, and none that was tried as widely has a smaller "
+        f"one.{beside}"
     )
     said = advise("model-chosen", model=best.basis.model.key, why=why)
     return replace(best.basis, advice=(said, *best.basis.advice))
+
+
+def _rank(candidate: _Candidate) -> tuple[float, int]:
+    key = candidate.basis.model.key
+    place = PREFERRED.index(key) if key in PREFERRED else len(PREFERRED)
+    return round(max(candidate.standard_uncertainty, NO_BETTER_KNOWN), 3), place
 
 
 def _candidate(query: Query, key: str) -> _Candidate | None:
@@ -68,19 +88,22 @@ def _candidate(query: Query, key: str) -> _Candidate | None:
 
 
 def _suits(model: MixingModel, query: Query) -> bool:
-    organic = _organic(query.soil)
-    if model.soils == ("mineral" if organic else "organic"):
+    if model.soils == ("mineral" if _organic(query.soil) else "organic"):
         return False
     if model.water is not None and not _has_temperature(query):
         return False
     kinds = kinds_in(query.columns)
-    if kinds == ("real_permittivity",) and model.permittivity != "real":
-        return False
-    if "real_permittivity" not in kinds and kinds and model.permittivity == "real":
-        return False
+    return "real_permittivity" in kinds or not kinds or model.permittivity == "apparent"
+
+
+def _holds_frequency(model: MixingModel, query: Query) -> bool:
     known = model.validity.get("frequency")
     frequency = query.probe.get("frequency")
     return known is None or frequency is None or not bool(known.excludes(frequency))
+
+
+def _typical(soil: Soil) -> float:
+    return TYPICAL["organic" if _organic(soil) else "mineral"]
 
 
 def _has_temperature(query: Query) -> bool:
@@ -95,16 +118,22 @@ def _typical_uncertainty(basis: Basis) -> float:
     """Of one reading at a typical water content, from the model's own forward equation."""
     warm = replace(
         basis,
-        query=replace(basis.query, columns=frozenset(), assumed_temperature=TYPICAL_TEMPERATURE),
+        salinity=None,
+        query=replace(
+            basis.query,
+            columns=frozenset(),
+            assumed_temperature=TYPICAL_TEMPERATURE,
+            assumed_temperature_u=0.0,
+        ),
     )
-    tried = np.linspace(2.0, 40.0, 77)
+    tried = np.linspace(2.0, 60.0, 117)
     probe = Readings(
         tried.size,
         {f"{basis.model.permittivity}_permittivity": tried},
         np.zeros(tried.size, dtype=np.uint64),
     )
     answer = estimate(probe, warm).columns
-    off = np.abs(answer["water_content"] - TYPICAL_WATER_CONTENT)
+    off = np.abs(answer["water_content"] - _typical(basis.query.soil))
     if np.all(np.isnan(off)):
         return float("nan")
     return float(answer["water_content_u"][np.nanargmin(off)])
@@ -118,7 +147,9 @@ def _case(query: Query) -> str:
     if "organic_matter" in soil.values:
         said.append(f"organic matter {soil.values['organic_matter']:.2g}")
     frequency = query.probe.get("frequency")
-    if frequency is None:
+    if frequency is None and "frequency" in query.columns:
+        said.append("frequency by reading")
+    elif frequency is None:
         said.append(f"frequency not given, {ASSUMED_FREQUENCY / 1e9:g} GHz assumed")
     else:
         said.append(f"{frequency / 1e9:.3g} GHz")

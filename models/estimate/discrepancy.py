@@ -8,20 +8,23 @@ look wetter than it is: that term reaches down, not up.
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from models.mixing.family import MixingModel
 from models.relation import Array, column
 
 CLAY = 0.045  # with 0.022 makes 0.05: sd of a TDR curve in clay
-ORGANIC = 0.045  # sd of mineral curves in organic soil and the other way round
-SALINE = 0.045  # sd above 0.2 S/m of bulk conductivity
-SLOW = 0.045  # sd half a decade outside the range of frequencies
-DISTANCE = 0.10  # per width of the declared permittivity range, beyond its end
+ORGANIC = 0.045  # sd of mineral curves from 12 % organic matter on, and the other way round
+PEAT = 0.09  # added up to 30 %: a mineral curve reads peat 0.15 too dry
+SALINE = 0.045  # sd above 0.2 S/m of bulk conductivity that was not corrected for
+SLOW = 0.045  # sd a fifth of a decade outside the range of frequencies
+DISTANCE = 0.10  # per width of the declared permittivity range, below its lower end
+RUNAWAY = 1.0  # the same above its upper end: cubics leave all others there
 WARMING = 0.0024  # per K and per m3/m3, of a curve that knows no temperature
 REFERENCE_TEMPERATURE = 20.0
 UNKNOWN_TEMPERATURE = 7.0  # K, sd of soil temperature over a season, common practice
-LEAN = 0.13  # at a tenth of the model's lowest frequency, in clay
+LEAN = 0.18  # at a tenth of the lowest frequency of TDR, in clay
+ICE = 0.10  # of the pores without liquid water: (sqrt(3.19) - 1) / (n_w - 1), were all of it ice
 TDR_LOWEST = 0.3e9  # Hz, common practice
 DECADE = np.log(10.0)
 
@@ -33,8 +36,11 @@ class Setting:
     permittivity: Array
     water_content: Array
     frequency: Array
+    """NaN where nobody said it: nothing is added for it then."""
     temperature: Array | None
+    temperature_u: Array
     conductivity: Array | None
+    """Bulk conductivity that nothing was corrected for, S/m."""
     clay: float | None
     organic_matter: float | None
 
@@ -61,43 +67,59 @@ def model_uncertainty(model: MixingModel, at: Setting) -> Array:
     variance += _soil_term(model, at)
     off = _decades_outside(model, at.frequency)
     if off is not None:
-        variance += np.square(SLOW * np.minimum(off * 2.0, 1.0))
+        variance += np.square(SLOW * np.minimum(off * 5.0, 1.0))
     if at.conductivity is not None:
         saline = ramp(np.nan_to_num(at.conductivity), 0.15, 0.25)
         variance += np.square(SALINE * saline)
     known = model.validity.get(f"{model.permittivity}_permittivity")
     if known is not None:
-        variance += np.square(DISTANCE * np.nan_to_num(known.distance(at.permittivity)))
+        away = np.nan_to_num(known.distance(at.permittivity))
+        rate = np.where(at.permittivity > known.high, RUNAWAY, DISTANCE)
+        variance += np.square(rate * away)
     if model.water is None:
-        variance += np.square(WARMING * at.water_content * _degrees_off(at.temperature))
+        variance += np.square(WARMING * at.water_content) * _degrees_off(at)
     return np.sqrt(variance)
 
 
-def lean_down(model: MixingModel, at: Setting) -> Array | None:
-    """How far below the value the truth may lie for clay at low frequency, m3/m3; None: nowhere.
+def lean_down(model: MixingModel, at: Setting, pores: float) -> Array | None:
+    """How far below the value the truth may lie, m3/m3; None: nowhere.
 
-    At 50 MHz in clay, curves made at 0.5 to 1 GHz read 0.07 to 0.17 m3/m3 too wet (published
-    laboratory pairs, ten soils). The scale grows with the logarithm of the frequency below the
-    model's range and with clay from 0.05 to 0.20; clay that is not known counts as clay.
+    pores: porosity, or 1 where it is not known.
+
+    Clay at low frequency: at 50 MHz, curves made at 0.5 to 1 GHz read 0.07 to 0.17 m3/m3 too wet
+    (published laboratory pairs, ten soils). The scale grows with the logarithm of the frequency
+    below 0.3 GHz, whatever range the model declares, and with clay from 0.05 to 0.15; clay that is
+    not known counts as clay. A caller's own coefficients are taken to be made for their clay.
+    Ice: it is seen as a little more than the air it is taken for.
     """
-    slow = _decades_below(model, at.frequency)
-    if slow is None:
+    parts = []
+    slow = None if model.fitted_by_caller else _decades_below(at.frequency)
+    clay = 1.0 if at.clay is None else float(ramp(at.clay, 0.05, 0.15))
+    if slow is not None and clay > 0.0:
+        parts.append(LEAN * clay * slow)
+    if at.temperature is not None and np.any(at.temperature <= 0.0):
+        empty = np.maximum(pores - np.nan_to_num(at.water_content), 0.0)
+        parts.append(np.where(at.temperature <= 0.0, ICE * empty, 0.0))
+    if not parts:
         return None
-    clay = 1.0 if at.clay is None else float(ramp(at.clay, 0.05, 0.20))
-    if clay <= 0.0:
-        return None
-    return LEAN * clay * slow
+    return np.sqrt(sum(np.square(part) for part in parts))
 
 
-def _decades_below(model: MixingModel, frequency: Array) -> Array | None:
-    """Decades below the model's range and below what TDR sees, at most 1.5; None: nowhere."""
-    known = model.validity.get("frequency")
-    if known is None:
+def leans_for_clay(
+    model: MixingModel, frequency: Array, clay: float | None
+) -> NDArray[np.bool_] | None:
+    """Rows in which clay at low frequency makes the soil read too wet; None: nowhere."""
+    slow = None if model.fitted_by_caller else _decades_below(frequency)
+    if slow is None or (clay is not None and clay <= 0.05):
         return None
-    lowest = min(known.low, TDR_LOWEST)
-    if not np.any(frequency < lowest):
+    return slow > 0.0
+
+
+def _decades_below(frequency: Array) -> Array | None:
+    """Decades below what TDR sees, at most 1.5; None: nowhere."""
+    if not np.any(frequency < TDR_LOWEST):
         return None
-    return np.clip(np.log(lowest / frequency) / DECADE, 0.0, 1.5)
+    return np.nan_to_num(np.clip(np.log(TDR_LOWEST / frequency) / DECADE, 0.0, 1.5))
 
 
 def _decades_outside(model: MixingModel, frequency: Array) -> Array | None:
@@ -106,26 +128,32 @@ def _decades_outside(model: MixingModel, frequency: Array) -> Array | None:
     if known is None or not np.any(known.excludes(frequency)):
         return None
     below, above = np.log(known.low / frequency), np.log(frequency / known.high)
-    return np.maximum(np.maximum(below, above), 0.0) / DECADE
+    return np.nan_to_num(np.maximum(np.maximum(below, above), 0.0)) / DECADE
 
 
 def _soil_term(model: MixingModel, at: Setting) -> float:
     """Variance for clay and organic matter the model does not take into account."""
     takes = {parameter.name for parameter in model.parameters}
     variance = 0.0
+    if model.fitted_by_caller:
+        return variance
     if at.clay is not None and "clay" not in takes and model.soils != "organic":
-        variance += (CLAY * float(ramp(at.clay, 0.30, 0.45))) ** 2
+        variance += (CLAY * float(ramp(at.clay, 0.25, 0.35))) ** 2
     if at.organic_matter is not None and "organic_matter" not in takes:
         organic = at.organic_matter
         if model.soils == "mineral":
             variance += (ORGANIC * float(ramp(organic, 0.05, 0.12))) ** 2
-        elif model.soils == "organic":
+            variance += (PEAT * float(ramp(organic, 0.12, 0.30))) ** 2
+        elif model.soils == "any":
+            variance += (ORGANIC * float(ramp(organic, 0.12, 0.30))) ** 2
+        else:
             variance += (ORGANIC * float(1.0 - ramp(organic, 0.05, 0.15))) ** 2
     return variance
 
 
-def _degrees_off(temperature: Array | None) -> Array | float:
-    if temperature is None:
-        return UNKNOWN_TEMPERATURE
-    off = np.abs(temperature - REFERENCE_TEMPERATURE)
-    return np.where(np.isnan(off), UNKNOWN_TEMPERATURE, off)
+def _degrees_off(at: Setting) -> Array | float:
+    """Mean square distance from 20 Cel, K2."""
+    if at.temperature is None:
+        return UNKNOWN_TEMPERATURE**2
+    off = np.square(at.temperature - REFERENCE_TEMPERATURE) + np.square(at.temperature_u)
+    return np.where(np.isnan(off), UNKNOWN_TEMPERATURE**2, off)

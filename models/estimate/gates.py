@@ -7,7 +7,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
-from models.estimate.discrepancy import Setting, lean_down
 from models.estimate.permittivity import Permittivity
 from models.estimate.pore_water import PoreWater
 from models.estimate.surroundings import Surroundings
@@ -25,9 +24,17 @@ AIR, COLD_WATER = 1.0, 88.0
 SOLID, SOLID_U = 4.7, 0.6  # permittivity of mineral solids, where none is given
 
 
-def flag_inputs(found: Permittivity, around: Surroundings, basis: Basis, flags: Flags) -> None:
+def flag_inputs(
+    found: Permittivity,
+    around: Surroundings,
+    basis: Basis,
+    flags: Flags,
+    travel_time: Array | None,
+) -> None:
     """Flag readings that hold no permittivity, or an impossible one."""
     unseen = found.uncorrected if found.uncorrected is not None else found.value
+    if travel_time is not None:
+        _set(flags, np.isnan(unseen) & ~np.isnan(travel_time), "out-of-gate:travel_time")
     _set(flags, np.isnan(unseen) & ~_spoiled(flags), "no-permittivity")
     _set(flags, np.isnan(found.value) & ~np.isnan(unseen), "too-lossy")
     if "loss" in basis.takes:
@@ -56,11 +63,14 @@ def flag_results(
     _set(flags, computed < 0.0, "drier-than-dry")
     _set(flags, computed > content.ceiling, "wetter-than-pores")
     astray = (computed < -CONSISTENT * content.scale_above) | (
-        computed - content.ceiling > CONSISTENT * content.scale_below
+        computed - content.ceiling
+        > CONSISTENT * np.sqrt(np.square(content.scale_below) + content.ceiling_u**2)
     )
     _set(flags, astray, "inconsistent")
     if content.correction is not None:
         _set(flags, content.correction > CORRECTED, "lossy")
+    if content.leans_for_clay is not None:
+        _set(flags, np.broadcast_to(content.leans_for_clay, flags.shape), "low-frequency")
     _flag_ranges(computed, found, around, basis, flags)
 
 
@@ -97,21 +107,16 @@ def _flag_ranges(
     at = {
         f"{model.permittivity}_permittivity": found.value,
         "water_content": computed,
-        "frequency": around.frequency,
+        "frequency": around.known_frequency,
         "temperature": around.temperature,
     }
     outside = np.full(flags.shape, bool(basis.outside))
     for name, known in model.validity.items():
         value = at.get(name)
-        if value is None or (name == "frequency" and not basis.frequency_known):
+        if value is None:
             continue
         outside |= known.excludes(value) & ~np.isnan(value)
     _set(flags, outside & ~np.isnan(computed), "outside-model-range")
-    soil = basis.query.soil.values
-    setting = Setting(found.value, computed, around.frequency, None, None, soil.get("clay"), None)
-    lean = lean_down(model, setting)
-    if lean is not None:
-        _set(flags, np.broadcast_to(lean > 0.0, flags.shape), "low-frequency")
 
 
 def _flag_bounds(found: Permittivity, reach: Array, basis: Basis, flags: Flags) -> None:

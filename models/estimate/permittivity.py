@@ -8,9 +8,12 @@ from numpy.typing import NDArray
 from scipy.constants import speed_of_light
 
 from models.mixing.apparent import conduction_loss, to_apparent, to_real
+from models.quantity import QUANTITIES
 from models.readings import Readings
 from models.relation import Array
 
+VACUUM = 1.0
+"""Nothing has less: below it there was no reading."""
 KINDS = ("apparent_permittivity", "real_permittivity", "travel_time")
 
 
@@ -56,9 +59,10 @@ def permittivity_of(
 ) -> Permittivity:
     """The ``kind`` ("apparent" or "real") of permittivity of each reading.
 
-    frequency: shape (n,), Hz. probe: values and ``_u`` of the probe, SI.
-    correct: whether the frequency is known well enough to take the loss out of an apparent
-    permittivity; a model that takes the loss itself needs none of this.
+    frequency: scalar or shape (n,), Hz; NaN where nobody said it: conduction then tells no loss.
+    probe: values and ``_u`` of the probe, SI.
+    correct: whether loss is taken out of an apparent permittivity; not for a model that takes the
+    loss itself, or whose curve holds it.
 
     A row's own column of that kind comes first, then the other kind, converted with the row's
     loss (exact; with no loss known the two are equal). A curve of Ka was made in soils of little
@@ -129,7 +133,9 @@ def _without_loss(apparent: _Part, loss: Array, loss_u: Array) -> tuple[_Part, A
     """Real part: eps' = Ka - eps''^2 / (4 Ka), and what one u of the loss does to it."""
     ratio = loss / (2.0 * apparent.value)
     gain = 1.0 + np.square(ratio)
-    part = _Part(to_real(apparent.value, loss), gain * apparent.per_reading, gain * apparent.shared)
+    real = to_real(apparent.value, loss)
+    real = np.where(real >= VACUUM, real, np.nan)
+    part = _Part(real, gain * apparent.per_reading, gain * apparent.shared)
     return part, -ratio * loss_u
 
 
@@ -162,7 +168,9 @@ def _apparent(readings: Readings, probe: Mapping[str, float]) -> _Part | None:
     index = speed_of_light * time / (2.0 * length)
     index_u = speed_of_light * noise_of(readings, "travel_time", probe) / (2.0 * length)
     shared = 2.0 * np.square(index) * probe.get("probe_length_u", 0.0) / length
-    timed = _Part(np.square(index), 2.0 * index * index_u, shared)
+    value = np.square(index)
+    value = np.where(QUANTITIES["apparent_permittivity"].gate_si.excludes(value), np.nan, value)
+    timed = _Part(value, 2.0 * index * index_u, shared)
     return timed if direct is None else direct.or_else(timed)
 
 
@@ -176,7 +184,9 @@ def _loss(
     if conductivity is None:
         return measured, None if measured is None else measured_u
     conducted = conduction_loss(conductivity, frequency)
-    conducted_u = conduction_loss(noise_of(readings, "bulk_conductivity", probe), frequency)
+    from_bulk = conduction_loss(noise_of(readings, "bulk_conductivity", probe), frequency)
+    from_frequency = conducted * noise_of(readings, "frequency", probe) / frequency
+    conducted_u = np.sqrt(np.square(from_bulk) + np.square(from_frequency))
     if measured is None:
         return conducted, conducted_u
     lacking = np.isnan(measured)

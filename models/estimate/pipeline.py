@@ -1,25 +1,35 @@
 """The way of a reading: permittivity, water content, flags; in blocks that fit the cache."""
 
+from collections.abc import Mapping
+from dataclasses import dataclass
+
 import numpy as np
 from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
 from models.estimate.conductivities import conductivities_of
-from models.estimate.estimates import Estimates, band_names
 from models.estimate.gates import flag_inputs, flag_pore_water, flag_results
 from models.estimate.permittivity import Permittivity, permittivity_of
 from models.estimate.pore_water import PoreWater
 from models.estimate.sources import of_water_content
 from models.estimate.surroundings import Surroundings, frost, surroundings_of, water_inputs
 from models.estimate.water_content import water_content_of
-from models.flags import BIT, withheld, without_pore_water
+from models.flags import BIT, Flags, withheld, without_pore_water
+from models.quantity import band_names
 from models.readings import Readings
 from models.relation import Array
 
-LOSS = frozenset({"bulk_conductivity", "imaginary_permittivity"})
-"""Columns that tell the loss of the soil."""
 BLOCK = 16_384
 """Rows computed at a time: the working columns stay in the processor's cache."""
+
+
+@dataclass(frozen=True, slots=True)
+class Estimates:
+    """One row per reading, in the order of the readings."""
+
+    columns: Mapping[str, Array]
+    """SI and Cel; NaN where the flags say why there is no number."""
+    flags: Flags
 
 
 def estimate(readings: Readings, basis: Basis) -> Estimates:
@@ -42,7 +52,7 @@ def estimate(readings: Readings, basis: Basis) -> Estimates:
 def columns_of(basis: Basis) -> tuple[str, ...]:
     """The columns an answer has, in order: they depend on the basis, never on the readings."""
     names = list(band_names("water_content"))
-    if basis.corrects_loss and basis.query.columns & LOSS:
+    if basis.tells_correction:
         names.append("conduction_correction")
     if basis.salinity is not None:
         names += [*band_names("bulk_conductivity_25"), *band_names("pore_water_conductivity")]
@@ -55,7 +65,7 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
     flags = readings.flags.copy()
     around = surroundings_of(readings, basis)
     found = _permittivity(readings, basis, around, basis.model.permittivity)
-    flag_inputs(found, around, basis, flags)
+    flag_inputs(found, around, basis, flags, readings.columns.get("travel_time"))
     water = water_inputs(basis, around, readings.count, flags)
     content = water_content_of(readings, basis, found, around, water)
     flag_results(content, found, around, basis, flags)
@@ -70,7 +80,8 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
         if content.correction is None
         else content.correction,
     }
-    columns = _without(columns, withheld(flags) | np.isnan(content.computed))
+    unknown = np.isnan(content.computed) | np.isnan(content.standard_uncertainty)
+    columns = _without(columns, withheld(flags) | unknown)
     if basis.salinity is not None:
         real = found
         if basis.model.permittivity == "apparent" and not basis.corrects_loss:
@@ -92,7 +103,7 @@ def _permittivity(
     return permittivity_of(
         readings,
         kind,
-        around.frequency,
+        around.known_frequency,
         basis.query.probe,
         correct=basis.corrects_loss or kind == "real",
     )

@@ -12,7 +12,8 @@ from models.readings import Readings
 from models.relation import Array, column
 from models.uncertainty.first_order import Input
 
-
+BEYOND = 0.02
+"""Relative standard uncertainty of a water model outside its range, where it goes on smoothly."""
 _TEMPERATURE_TOLD = (
     BIT["missing:temperature"] | BIT["unreadable:temperature"] | BIT["out-of-gate:temperature"]
 )
@@ -24,6 +25,8 @@ class Surroundings:
     """Frequency in Hz and temperature in Cel, scalar or shape (n,); None: not known."""
 
     frequency: Array
+    known_frequency: Array
+    """The same, NaN where nobody said it."""
     temperature: Array | None
     temperature_u: Array
 
@@ -31,13 +34,18 @@ class Surroundings:
 def surroundings_of(readings: Readings, basis: Basis) -> Surroundings:
     """A row's own frequency and temperature, else the probe's and the assumed one."""
     query = basis.query
-    frequency = _filled(readings, "frequency", query.probe.get("frequency", ASSUMED_FREQUENCY))
+    known = _filled(readings, "frequency", query.probe.get("frequency", np.nan))
+    frequency = np.where(np.isnan(known), ASSUMED_FREQUENCY, known)
     assumed = query.assumed_temperature
     temperature: Array | None = None
     if "temperature" in readings.columns or assumed is not None:
         temperature = _filled(readings, "temperature", np.nan if assumed is None else assumed)
     spread = _filled(readings, "temperature_u", query.probe.get("temperature_u", 0.0))
-    return Surroundings(frequency, temperature, spread)
+    if assumed is not None:
+        own = readings.columns.get("temperature")
+        lacking = True if own is None else np.isnan(own)
+        spread = np.where(lacking, query.assumed_temperature_u, spread)
+    return Surroundings(frequency, known, temperature, spread)
 
 
 def water_inputs(
@@ -67,9 +75,15 @@ def water_inputs(
         warmer = _water(basis, around.frequency, around.temperature + around.temperature_u)
     else:
         warmer = here
-    own = {"water_permittivity": basis.water.static_uncertainty, "water_loss": 0.0}
+    less_known = BEYOND * here["water_permittivity"]
+    own = np.where(beyond, less_known, basis.water.static_uncertainty)
     return {
-        name: Input(name, here[name], warmer[name] - here[name], own[name])
+        name: Input(
+            name,
+            here[name],
+            warmer[name] - here[name],
+            own if name == "water_permittivity" else 0.0,
+        )
         for name in basis.takes
         if name in here
     }

@@ -8,7 +8,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
-from models.estimate.discrepancy import Setting, lean_down, model_uncertainty
+from models.estimate.discrepancy import (
+    Setting,
+    lean_down,
+    leans_for_clay,
+    model_uncertainty,
+)
 from models.estimate.permittivity import Permittivity
 from models.estimate.surroundings import Surroundings
 from models.mixing.physical.complex_refractive import relaxation_loss
@@ -17,9 +22,12 @@ from models.relation import Array
 from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval
 from models.uncertainty.first_order import Input, propagate
 
-UNEXPLAINED_CORRECTION = 0.3
-"""Share of a correction for loss that counts as its own standard uncertainty."""
+UNEXPLAINED_CORRECTION = 0.5
+"""Share of a correction for loss that counts as its own standard uncertainty: in soils made by the
+complex refractive index, half of the correction to all of it is still missing after it."""
 RELAXATIONS = 6
+DRY = 0.02
+"""m3/m3, below which loss cannot be told from none: the answer without it is taken."""
 CONSISTENT = 3.0
 """Standard uncertainties beyond the physical range at which reading and soil contradict."""
 
@@ -40,6 +48,9 @@ class WaterContent:
     """By how much correcting for loss lowered the value."""
     ceiling: float
     """Porosity, or 1 where it is not known."""
+    ceiling_u: float
+    leans_for_clay: NDArray[np.bool_] | None
+    """Rows whose band reaches down for clay at low frequency; None: none."""
     contributions: Mapping[str, Array]
     """What one standard uncertainty of each input of the equation does to the value, signed."""
     of_model: Array
@@ -72,7 +83,8 @@ def water_content_of(
     computed = measurand(permittivity=found.value, **at)
     spread = propagate(measurand, inputs, computed)
     setting = _setting(readings, basis, found, around, computed)
-    own, lean = _own_uncertainty(basis, setting)
+    ceiling, ceiling_u = _ceiling(basis)
+    own, lean = _own_uncertainty(basis, setting, ceiling)
     shared = spread.shared + np.square(own)
     correction = None
     if found.uncorrected is not None:
@@ -81,13 +93,15 @@ def water_content_of(
     variance = spread.per_reading + shared
     above = np.sqrt(variance)
     below = above if lean is None else np.sqrt(variance + np.square(lean))
-    ceiling, ceiling_u = _ceiling(basis)
     probability = basis.query.probability
     high = min(1.0, ceiling + coverage_factor(probability) * ceiling_u)
     interval = shortest_interval(
         computed, below, above, low=0.0, high=high, probability=probability
     )
-    moment = variance if lean is None else np.square(below) - below * above + np.square(above)
+    moment = variance
+    if lean is not None:
+        two_piece = np.square(below) - below * above + np.square(above)
+        moment = np.where(lean > 0.0, two_piece, variance)
     return WaterContent(
         computed=computed,
         scale_below=below,
@@ -97,6 +111,8 @@ def water_content_of(
         interval=interval,
         correction=correction,
         ceiling=ceiling,
+        ceiling_u=ceiling_u,
+        leans_for_clay=_leans_for_clay(basis, around.known_frequency),
         contributions=spread.contributions,
         of_model=np.sqrt(shared - spread.shared + moment - variance),
     )
@@ -114,10 +130,11 @@ def _with_relaxation(
     """
     told = parameters.pop("loss")
     theta = basis.model.to_water_content(permittivity, **parameters)
+    without = theta
     for _ in range(RELAXATIONS):
         relaxing = np.where(conduction_only, relaxation_loss(theta, **parameters), 0.0)
         theta = basis.model.to_water_content(permittivity, loss=told + relaxing, **parameters)
-    return theta
+    return np.where(np.isnan(theta) & (without <= DRY) & ~np.isnan(told), without, theta)
 
 
 def _inputs(
@@ -150,20 +167,35 @@ def _setting(
     return Setting(
         permittivity=found.value,
         water_content=computed,
-        frequency=around.frequency,
+        frequency=around.known_frequency,
         temperature=around.temperature,
-        conductivity=readings.columns.get("bulk_conductivity"),
+        temperature_u=around.temperature_u,
+        conductivity=_uncorrected(readings, basis, found),
         clay=soil.get("clay"),
         organic_matter=soil.get("organic_matter"),
     )
 
 
-def _own_uncertainty(basis: Basis, at: Setting) -> tuple[Array, Array | None]:
+def _uncorrected(readings: Readings, basis: Basis, found: Permittivity) -> Array | None:
+    """Bulk conductivity of the rows in which nothing was done about it."""
+    bulk = readings.columns.get("bulk_conductivity")
+    if bulk is None or "loss" in basis.takes or basis.model.conducting:
+        return None
+    return bulk if found.loss is None else np.where(np.isnan(found.loss), bulk, 0.0)
+
+
+def _leans_for_clay(basis: Basis, frequency: Array) -> NDArray[np.bool_] | None:
+    if basis.query.standard_error is not None:
+        return None
+    return leans_for_clay(basis.model, frequency, basis.query.soil.values.get("clay"))
+
+
+def _own_uncertainty(basis: Basis, at: Setting, pores: float) -> tuple[Array, Array | None]:
     """The model's own: the caller's figure as it stands, or ours, which knows where it is."""
     stated = basis.query.standard_error
     if stated is not None:
         return np.full(at.permittivity.shape, stated), None
-    return model_uncertainty(basis.model, at), lean_down(basis.model, at)
+    return model_uncertainty(basis.model, at), lean_down(basis.model, at, pores)
 
 
 def _ceiling(basis: Basis) -> tuple[float, float]:

@@ -40,3 +40,7 @@ class MixingModel(Relation):
     """Standard error of water content as the authors report it, m3/m3; None: not stated."""
     discrepancy: Discrepancy
     soils: Literal["mineral", "organic", "any"] = "any"
+    conducting: bool = False
+    """The equation already holds the conduction of the soil: its Ka must not be corrected."""
+    fitted_by_caller: bool = False
+    """Its coefficients are the caller's own: valid where they were fitted."""

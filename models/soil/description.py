@@ -90,7 +90,8 @@ def _add_class(book: _Book, key: str) -> None:
         book.add("sand", mean.sand, mean.sand_u, origin)
     if not book.has("porosity"):
         book.add("bulk_density", mean.bulk_density, mean.bulk_density_u, origin)
-    book.add("particle_density", mean.particle_density, mean.particle_density_u, origin)
+    if not book.has("organic_matter"):
+        book.add("particle_density", mean.particle_density, mean.particle_density_u, origin)
     book.add("organic_matter", mean.organic_matter, mean.organic_matter_u, origin)
 
 

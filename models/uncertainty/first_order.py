@@ -32,7 +32,10 @@ class Input:
             return np.abs(column(self.per_reading))
         if not np.any(self.per_reading):
             return np.abs(column(self.shared))
-        return np.sqrt(np.square(column(self.per_reading)) + np.square(column(self.shared)))
+        one, other = np.abs(column(self.per_reading)), np.abs(column(self.shared))
+        both = np.sqrt(np.square(one) + np.square(other))
+        # To the last digit what a column without the other part would give.
+        return np.where(one == 0, other, np.where(other == 0, one, both))
 
 
 @dataclass(frozen=True, slots=True)

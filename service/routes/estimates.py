@@ -10,7 +10,7 @@ import orjson
 from fastapi import APIRouter, FastAPI, Request
 from fastapi.responses import Response
 
-from models.estimate import Remarks, estimate
+from models.estimate import Remarks, estimate, explain
 from models.readings import read
 from service.batch import IN_MEMORY, Conversion, SpooledResponse, convert_stream
 from service.batch_estimates import APPENDED, TableEstimates
@@ -22,7 +22,7 @@ from service.formats.json_readings import decode
 from service.negotiate import VARY, choose
 from service.routes.estimates_description import DESCRIPTION
 from service.schemas.batch_query import ASIDE, document_of
-from service.schemas.echo import echo_of, units_of_answer
+from service.schemas.echo import echo_of, explanation_echo, units_of_answer
 from service.schemas.query import basis_of, settings_of
 
 router = APIRouter(tags=["estimates"])
@@ -88,7 +88,8 @@ def _answer(document: dict[str, Any], answered: str, most: int) -> Response:
     sent = decode(document.pop("readings"), most=most)
     settings = settings_of(document)
     basis = basis_of(settings, (*sent.numbers, *sent.texts))
-    result = estimate(read(sent.numbers, settings.units, {}, sent.absent), basis)
+    readings = read(sent.numbers, settings.units, {}, sent.absent)
+    result = estimate(readings, basis)
     answer = laid_out(result, sent, settings.units)
     if answered != JSON:
         return Response(tabulate(answer, answered), media_type=answered, headers=VARY)
@@ -96,6 +97,8 @@ def _answer(document: dict[str, Any], answered: str, most: int) -> Response:
     remarks = Remarks()
     remarks.note(sent.numbers, settings.units, result.flags)
     rest = {"units": units, **echo_of(basis, settings, remarks.advice(settings.units))}
+    if settings.explain:
+        rest |= explanation_echo(explain(readings, basis))
     return Response(encode(answer, sent.shape, rest), media_type=JSON, headers=VARY)
 
 

@@ -125,6 +125,7 @@ PLACES: Mapping[str, Place] = MappingProxyType(
         "coverage_probability": ("", "coverage_probability", _number),
         "propagation": ("propagation", "method", _text),
         "assume_temperature": ("assume", "temperature", _number),
+        "assume_temperature_u": ("assume", "temperature_u", _number),
         "units": ("", "units", _units),
     }
 )
@@ -145,6 +146,7 @@ _MEANINGS: Mapping[str, str] = MappingProxyType(
         "coverage_probability": "of the interval; 0.95 unless given",
         "propagation": "first-order",
         "assume_temperature": "temperature where a row has none [Cel]",
+        "assume_temperature_u": "standard uncertainty of it [K]; 7 unless given",
         "units": "quantity:unit pairs, comma-separated: bulk_conductivity:mS/m",
         "format": "json, csv or ndjson; beats Accept",
         "strict": "true: the first cell that cannot be read ends the batch with 422",

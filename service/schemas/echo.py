@@ -5,7 +5,8 @@ from typing import Any
 
 from models.advisories import Advice
 from models.conversion import Units, from_si
-from models.estimate import Basis
+from models.estimate import Basis, Query
+from models.estimate.explanation import Explanation
 from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from models.soil.description import Soil
@@ -23,15 +24,28 @@ def echo_of(basis: Basis, settings: EstimatesSettings, remarks: Iterable[Advice]
         **_salinity_echo(basis, units),
         "soil": _soil_echo(query.soil, units),
         "probe": _in_units(query.probe, units),
-        "assume": _in_units(
-            {} if query.assumed_temperature is None else {"temperature": query.assumed_temperature},
-            units,
-        ),
+        "assume": _assumed(query, units),
         "coverage_probability": query.probability,
         "propagation": {"method": "first-order", "interval": "shortest"},
         "advisories": [
             {"code": said.code, "text": said.text} for said in (*basis.advice, *remarks)
         ],
+    }
+
+
+def explanation_echo(found: Explanation) -> dict[str, Any]:
+    """Effects of temperature, one list entry per reading, null where one cannot be told."""
+    effects = {
+        name: [value if value == value else None for value in sizes.tolist()]  # noqa: PLR0124
+        for name, sizes in found.effects.items()
+    }
+    return {
+        "explanation": {
+            "reference_temperature": {"value": 20.0, "unit": "Cel"},
+            "unit": "m3/m3",
+            "effects": effects,
+            "dominant": list(found.dominant),
+        }
     }
 
 
@@ -46,6 +60,13 @@ def units_of_answer(names: Iterable[str], units: Units) -> dict[str, str]:
         if QUANTITIES[stem].unit:
             answered[stem] = units.get(stem, QUANTITIES[stem].unit)
     return answered
+
+
+def _assumed(query: Query, units: Units) -> dict[str, Any]:
+    if query.assumed_temperature is None:
+        return {}
+    values = {"temperature": query.assumed_temperature}
+    return _parameters(values, {"temperature": query.assumed_temperature_u}, units)
 
 
 def _model_echo(basis: Basis, units: Units) -> dict[str, Any]:

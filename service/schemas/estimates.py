@@ -6,9 +6,8 @@ from typing import Annotated, Any, Literal
 from pydantic import ConfigDict, Field, TypeAdapter, WithJsonSchema
 
 from models.conductivity import DEFAULT_COMPENSATION, TEMPERATURE_COMPENSATIONS
-from models.estimate.estimates import band_names
 from models.mixing import MIXING_MODELS
-from models.quantity import NOISE, PROBE, QUANTITIES, READING, SOIL
+from models.quantity import NOISE, PROBE, QUANTITIES, READING, SOIL, band_names
 from models.salinity import PORE_WATER_MODELS
 from models.soil import TEXTURES
 from service.schemas.words import Body, Number, body_of, described, quantity_fields
@@ -85,6 +84,9 @@ class Assume(Body):
     """What may be assumed where a reading does not say."""
 
     temperature: Number | None = Field(None, description=described("temperature"))
+    temperature_u: Annotated[Number, Field(ge=0)] | None = Field(
+        None, description="standard uncertainty of it [K]; 7 unless given"
+    )
 
 
 class Propagation(Body):
@@ -114,6 +116,10 @@ class EstimatesSettings(Body):
     )
     coverage_probability: Annotated[Number, Field(ge=0.5, le=0.999)] = 0.95
     propagation: Propagation = Propagation()
+    explain: Annotated[bool, Field(strict=True)] = Field(
+        default=False,
+        description="Adds what temperature does to each reading, effect by effect [m3/m3].",
+    )
     assume: Assume = Assume()
     units: dict[str, str] = Field(
         default_factory=dict,

@@ -5,10 +5,11 @@ from typing import Any
 
 from pydantic import ValidationError
 
-from models.conversion import Units, refuse_units, to_si
 from models.conductivity import TEMPERATURE_COMPENSATIONS
+from models.conversion import Units, refuse_units, to_si
 from models.errors import Complaint, ParameterError
 from models.estimate import Basis, Query, SalinityQuery, choose, prepare
+from models.estimate.basis import ASSUMED_TEMPERATURE_U
 from models.mixing import MIXING_MODELS
 from models.quantity import QUANTITIES
 from models.readings import quantity_of
@@ -62,6 +63,7 @@ def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis:
         soil=soil,
         probe=probe,
         assumed_temperature=assumed.get("temperature"),
+        assumed_temperature_u=assumed.get("temperature_u", ASSUMED_TEMPERATURE_U),
         probability=settings.coverage_probability,
         columns=frozenset(columns),
         salinity=SalinityQuery(

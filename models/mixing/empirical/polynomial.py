@@ -4,7 +4,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from models.errors import Complaint, ParameterError
-from models.mixing.empirical.practice import TDR_FREQUENCY, UNFROZEN
+from models.mixing.empirical.practice import UNFROZEN
 from models.mixing.family import Discrepancy, MixingModel
 from models.numerics.inverse import increasing_inverse
 from models.relation import Array, Citation, Parameter, Range, column, ranges
@@ -109,6 +109,7 @@ POLYNOMIAL = MixingModel(
     to_water_content=to_water_content,
     to_permittivity=to_permittivity,
     permittivity="apparent",
+    fitted_by_caller=True,
     parameters=(
         Parameter(name="constant", meaning="water content where Ka is 0", range=Range(-1.0, 1.0)),
         Parameter(name="linear", meaning="coefficient of Ka", range=Range(-1.0, 1.0)),
@@ -126,7 +127,6 @@ POLYNOMIAL = MixingModel(
     validity=ranges(
         apparent_permittivity=(PERMITTIVITY.low, PERMITTIVITY.high),
         water_content=(0.0, 1.0),
-        frequency=TDR_FREQUENCY,
         temperature=UNFROZEN,
     ),
     source=Citation(

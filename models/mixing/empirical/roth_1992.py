@@ -75,6 +75,7 @@ ROTH_1992_MINERAL = MixingModel(
     published_error=0.015,
     discrepancy=Discrepancy(
         standard_uncertainty=0.02,
+        wet_uncertainty=0.04,
         reason="0.015 m3/m3 over its own eleven horizons; a little more for others",
     ),
     validity=ranges(

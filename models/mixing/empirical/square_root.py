@@ -3,7 +3,7 @@
 import numpy as np
 from numpy.typing import ArrayLike
 
-from models.mixing.empirical.practice import TDR_FREQUENCY, UNFROZEN
+from models.mixing.empirical.practice import UNFROZEN
 from models.mixing.family import Discrepancy, MixingModel
 from models.numerics.power import root, square
 from models.relation import Array, Citation, Parameter, Range, column, ranges
@@ -40,6 +40,7 @@ SQUARE_ROOT = MixingModel(
     to_water_content=to_water_content,
     to_permittivity=to_permittivity,
     permittivity="apparent",
+    fitted_by_caller=True,
     parameters=(
         Parameter(
             name="slope",
@@ -59,7 +60,6 @@ SQUARE_ROOT = MixingModel(
     validity=ranges(
         apparent_permittivity=(1.0, 81.0),
         water_content=(0.0, 1.0),
-        frequency=TDR_FREQUENCY,
         temperature=UNFROZEN,
     ),
     source=Citation(

@@ -6,10 +6,9 @@ The water has to be continuous, so this is a model of saturated soil: porosity i
 import numpy as np
 from numpy.typing import ArrayLike
 
-from models.mixing.family import MixingModel
+from models.mixing.family import Discrepancy, MixingModel
 from models.mixing.phases import (
     FREQUENCY,
-    GEOMETRY_UNKNOWN,
     LIQUID,
     SOLID_PERMITTIVITY,
     WATER_PERMITTIVITY,
@@ -75,5 +74,8 @@ HANAI_BRUGGEMAN = MixingModel(
     water="kaatze-1989",
     parameters=(SOLID_PERMITTIVITY, WATER_PERMITTIVITY),
     validity=ranges(water_content=(0.2, 0.95), frequency=FREQUENCY, temperature=LIQUID),
-    discrepancy=GEOMETRY_UNKNOWN,
+    discrepancy=Discrepancy(
+        standard_uncertainty=0.03,
+        reason="no published figure; water as the host of a saturated soil is well founded",
+    ),
 )

@@ -124,6 +124,7 @@ MIRONOV_2009 = MixingModel(
     to_permittivity=to_permittivity,
     to_water_content=to_water_content,
     permittivity="apparent",
+    conducting=True,
     soils="mineral",
     parameters=(
         Parameter(name="frequency", meaning="of the measurement, or effective frequency",

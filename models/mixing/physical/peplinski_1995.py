@@ -97,7 +97,7 @@ PEPLINSKI_1995 = MixingModel(
     validity=ranges(water_content=(0.01, 0.5), frequency=(0.3e9, 1.3e9), temperature=LIQUID,
                     sand=(0.05, 0.52), clay=(0.08, 0.48)),
     discrepancy=Discrepancy(
-        standard_uncertainty=0.035,
+        standard_uncertainty=0.045,
         reason="fitted to few soils; no error of water content is published",
     ),
 )  # fmt: skip

@@ -82,6 +82,7 @@ ROTH_1990 = MixingModel(
     published_error=0.013,
     discrepancy=Discrepancy(
         standard_uncertainty=0.018,
+        wet_uncertainty=0.03,
         reason="0.013 or less over the authors' eleven sites, widened for soils they had not seen",
     ),
 )  # fmt: skip

@@ -10,7 +10,7 @@ from hypothesis import strategies as st
 from service.formats.csv_records import cells_of, csv_ends
 from service.formats.errors import FormatError, RecordTooLong
 from service.formats.records import RecordCutter, line_ends
-from tests.service.doubling import cut
+from tests.service.formats.doubling import cut
 
 TEXTS = st.text(alphabet='a1,"\n é;\x00', max_size=80)
 

@@ -2,7 +2,7 @@
 
 import pytest
 
-from tests.service.doubling import converted, csv_rows, json_rows
+from tests.service.formats.doubling import converted, csv_rows, json_rows
 
 
 def test_csv_to_csv_to_the_letter():

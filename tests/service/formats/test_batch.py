@@ -21,8 +21,8 @@ from service.batch import PIECE, Counts, SpooledResponse, convert_file, convert_
 from service.formats import FORMATS
 from service.formats.block import Answer
 from service.formats.errors import CellError, FormatError, SpoolFull
-from tests.service.doubling import conversion, converted, cut, doubled
 from tests.service.echo import running
+from tests.service.formats.doubling import conversion, converted, cut, doubled
 
 ROWS = b"".join(b"%d,%d.5,%s\n" % (i, 1 + i % 80, b"x" * (i % 40)) for i in range(150_000))
 TABLE = b"row,apparent_permittivity,note\n" + ROWS

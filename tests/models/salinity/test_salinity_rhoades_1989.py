@@ -5,7 +5,7 @@ import pytest
 from numpy.testing import assert_allclose, assert_array_less
 
 from models.salinity.rhoades_1989 import RHOADES_1989, to_bulk, to_pore_water
-from tests.models.pore_water_soils import loam
+from tests.models.salinity.pore_water_soils import loam
 from tests.published import table
 
 DECISIEMENS = 0.1  # S/m

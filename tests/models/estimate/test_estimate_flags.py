@@ -7,9 +7,10 @@ import pytest
 from numpy.testing import assert_allclose
 
 from models.advisories import ADVISORIES
-from models.errors import ModelError, ParameterError
+from models.errors import ModelError
 from models.estimate import Query, choose, columns_of, estimate, prepare
 from models.flags import FLAGS, SLUGS, slugs_of
+from models.mixing import MIXING_MODELS
 from models.readings import read
 from models.soil.description import describe
 from tests.models.soils import SPREAD, VALUES, basis_for
@@ -51,7 +52,6 @@ def test_an_ordinary_reading_has_a_number_and_no_flag():
         ({"permittivity-above-water"}, {"apparent_permittivity": 85.0, "temperature": 14.0}),
         ({"inconsistent", "wetter-than-pores"},
          {"apparent_permittivity": 45.0, "temperature": 14.0}),
-        ({"outside-water-range", "frozen"}, {"apparent_permittivity": 9.0, "temperature": -12.0}),
     ],
 )  # fmt: skip
 def test_no_number_where_there_is_none_and_the_row_says_why(expected, cells):
@@ -67,6 +67,7 @@ def test_no_number_where_there_is_none_and_the_row_says_why(expected, cells):
         ("out-of-gate:temperature", "topp-1980",
          {"apparent_permittivity": 17.0, "temperature": -9999.0}),
         ("frozen", "crim", {"apparent_permittivity": 9.0, "temperature": -0.5}),
+        ("outside-water-range", "crim", {"apparent_permittivity": 5.0, "temperature": -12.0}),
         ("near-freezing", "crim", {"apparent_permittivity": 9.0, "temperature": 0.5}),
         ("drier-than-dry", "crim", {"apparent_permittivity": 2.4, "temperature": 14.0}),
         ("outside-model-range", "topp-1980", {"apparent_permittivity": 2.5, "temperature": 14.0}),
@@ -125,7 +126,7 @@ def test_clay_and_conduction_widen_the_band():
     plain = told("topp-1980", apparent_permittivity=17.0, temperature=20.0)[1]["water_content_u"]
     clay = told("topp-1980", soil=CLAY, apparent_permittivity=17.0, temperature=20.0)[1]
     saline = told(
-        "topp-1980", apparent_permittivity=17.0, temperature=20.0, bulk_conductivity=3.0
+        "topp-1980", probe={}, apparent_permittivity=17.0, temperature=20.0, bulk_conductivity=3.0
     )[1]  # fmt: skip
     assert clay["water_content_u"] > 1.5 * plain
     assert saline["water_content_u"] > 1.5 * plain
@@ -208,11 +209,59 @@ def test_the_choice_says_why_and_depends_on_the_soil():
     assert cold.model.water is None
 
 
-def test_no_choice_is_an_error_that_says_so():
+def test_where_no_model_holds_at_the_frequency_the_choice_says_so():
     query = Query(model="", soil=SOIL, probe={"frequency": 40e9},
                   columns=frozenset({"apparent_permittivity"}))  # fmt: skip
-    with pytest.raises(ParameterError, match="name one in mixing_model"):
-        choose(query)
+    assert "None of them is made for this frequency" in choose(query).advice[0].text
+
+
+@pytest.mark.parametrize(
+    ("expected", "soil", "probe", "columns"),
+    [
+        ("crim", SOIL, {"frequency": 1e9}, {"apparent_permittivity", "temperature"}),
+        ("crim", SOIL, {"frequency": 1e9}, {"real_permittivity", "temperature"}),
+        ("malicki-1996", SOIL, {"frequency": 1e9}, {"apparent_permittivity"}),
+        ("topp-1980", describe(None, {}, {}), {}, {"apparent_permittivity"}),
+        ("roth-1992-organic", describe("peat", {}, {}), {}, {"apparent_permittivity"}),
+        ("mironov-2009", SOIL, {"frequency": 1e8}, {"apparent_permittivity"}),
+    ],
+)
+def test_the_choice_for_usual_soils_is_the_usual_one(expected, soil, probe, columns):
+    query = Query(model="", soil=soil, probe=probe, columns=frozenset(columns))
+    assert choose(query).model.key == expected
+
+
+@pytest.mark.parametrize("key", ["crim", "topp-1980", "de-loor-1968"])
+def test_measured_loss_needs_no_frequency(key):
+    """eps' = 18.5 beside eps'' = 22.35: Ka = 23.8 must not be taken for the low-loss Ka."""
+    cells = {"real_permittivity": 18.5, "imaginary_permittivity": 22.35, "temperature": 20.0}
+    stated = told(key, probe={"frequency": 1e9}, **cells)[1]["water_content"]
+    unstated = told(key, probe={}, **cells)[1]["water_content"]
+    assert_allclose(unstated, stated, rtol=1e-3)
+
+
+def test_a_curve_that_holds_its_own_loss_is_not_corrected_for_it():
+    """Mironov (2009) at 100 MHz, clay 0.30: its own Ka gives its own water content back."""
+    model = MIXING_MODELS["mironov-2009"]
+    seen = model.to_permittivity(0.25, frequency=1e8, clay=0.30)
+    found = told("mironov-2009", soil=describe(None, {"clay": 0.30}, {}),
+                 probe={"frequency": 1e8}, apparent_permittivity=float(seen), temperature=20.0,
+                 bulk_conductivity=1.0)[1]  # fmt: skip
+    assert_allclose(found["water_content"], 0.25, atol=1e-9)
+
+
+@pytest.mark.parametrize("time", [0.5, 1.0])
+def test_a_travel_time_faster_than_light_is_no_reading(time):
+    """Along 0.30 m of rods there and back light itself needs 2.0 ns."""
+    flags, found = told("topp-1980", probe={"probe_length": 0.3}, travel_time=time)
+    assert "out-of-gate:travel_time" in flags
+    assert np.isnan(found["water_content"])
+
+
+def test_a_missing_frequency_is_not_taken_for_a_known_one():
+    cells = {"apparent_permittivity": 24.0, "temperature": 20.0, "bulk_conductivity": 1.0}
+    unknown = told("topp-1980", probe={}, frequency=NAN, **cells)[1]
+    assert unknown["conduction_correction"] == 0.0
 
 
 def test_what_is_missing_is_named_with_where_to_say_it():

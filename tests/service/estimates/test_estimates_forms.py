@@ -212,3 +212,14 @@ def test_a_key_that_a_row_does_not_have_is_not_missing_from_it_in_any_form(serve
     flags = [row["flags"] for row in as_json["estimates"]]
     assert flags == [json.loads(line)["flags"] for line in as_lines.text.splitlines()]
     assert flags == [[], [], ["missing:temperature"], ["missing:temperature"]]
+
+
+def test_the_largest_effect_of_temperature_is_named_where_asked(server):
+    readings = [{"apparent_permittivity": 17.2, "temperature": 30.0, "bulk_conductivity": 0.4}]
+    answer = server.client.post(
+        "/v1/estimates", json={**SETTINGS, "explain": True, "readings": readings}
+    ).json()
+    told = answer["explanation"]
+    assert set(told["effects"]) == {"free-water", "bound-water", "conduction"}
+    assert told["effects"]["free-water"][0] < 0
+    assert told["dominant"][0] in told["effects"]

@@ -8,7 +8,7 @@ from models.errors import ParameterError, UnknownName
 from models.quantity import QUANTITIES
 from models.salinity import DEFAULT_PORE_WATER_MODEL, PORE_WATER_MODELS
 from models.salinity.family import BELOW_SURFACE, OFFSET_TOO_CLOSE, TOO_DRY
-from tests.models.pore_water_soils import LOAM, loam
+from tests.models.salinity.pore_water_soils import LOAM, loam
 
 NAMES = {
     "hilhorst-2000", "rhoades-1976", "rhoades-1989", "malicki-walczak-1999",

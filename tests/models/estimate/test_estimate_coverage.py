@@ -4,12 +4,13 @@ import numpy as np
 import pytest
 from scipy.constants import epsilon_0
 
-from models.estimate import estimate
+from models.estimate import Query, estimate, prepare
 from models.estimate.discrepancy import Setting, model_uncertainty
 from models.estimate.permittivity import permittivity_of
 from models.estimate.surroundings import surroundings_of, water_inputs
 from models.mixing import MIXING_MODELS
 from models.readings import read
+from models.soil.description import describe
 from tests.models.soils import basis_for
 
 DRAWS = 20_000
@@ -47,8 +48,8 @@ def simulate(basis, truth, rng, *, error=None):
     if error is None:
         clean = model.to_permittivity(truth, **values | supplied)
         soil = query.soil.values
-        at = Setting(clean, truth, around.frequency, warmth, None, soil["clay"],
-                     soil["organic_matter"])  # fmt: skip
+        at = Setting(clean, truth, around.frequency, warmth, np.zeros(truth.size), None,
+                     soil["clay"], soil["organic_matter"])  # fmt: skip
         error = model_uncertainty(model, at)
     shown = model.to_permittivity(truth + error * rng.standard_normal(truth.size),
                                   **values | supplied)  # fmt: skip
@@ -81,7 +82,8 @@ def test_the_band_covers_simulated_truth(key):
     truth = rng.uniform(low, high, DRAWS)
     share, known = covered(basis, simulate(basis, truth, rng), truth)
     assert known > 0.99
-    assert 0.93 < share < 0.97
+    # Below 0.3 GHz in clay a band reaches down for what this simulation does not do to it.
+    assert 0.93 < share < (0.97 if basis.query.probe["frequency"] >= 3e8 else 0.99)
 
 
 @pytest.mark.parametrize("key", ["topp-1980", "crim", "roth-1990"])
@@ -103,7 +105,7 @@ def test_a_stated_standard_error_replaces_the_models_own(key):
     assert 0.93 < share < 0.97
 
 
-@pytest.mark.parametrize("key", ["topp-1980", "crim", "roth-1990", "maxwell-garnett"])
+@pytest.mark.parametrize("key", ["topp-1980", "crim", "roth-1990", "power-law"])
 @pytest.mark.parametrize("truth", [0.005, 0.02, 0.44, 0.465])
 def test_near_dry_and_near_saturated_the_band_still_covers(key, truth):
     basis = basis_for(key)
@@ -112,3 +114,32 @@ def test_near_dry_and_near_saturated_the_band_still_covers(key, truth):
     share, known = covered(basis, simulate(basis, truths, rng), truths)
     assert known > 0.90  # an error of the model may leave a permittivity below that of vacuum
     assert share > 0.92
+
+
+LAW = MIXING_MODELS["topp-1980"]
+
+
+@pytest.mark.parametrize("clay", [0.15, 0.30, 0.60, None])
+@pytest.mark.parametrize(
+    "key",
+    ["topp-1980", "ledieu-1986", "malicki-1996", "curtis-2001", "power-law", "crim", "roth-1990",
+     "mironov-2009", "de-loor-1968", "jacobsen-schjonning-1993"],
+)  # fmt: skip
+def test_at_50_mhz_in_clay_the_band_of_any_model_holds_the_truth(key, clay):
+    """Read too wet by 0.07 to 0.17 m3/m3 (published laboratory pairs, ten soils), on a curve."""
+    model = MIXING_MODELS[key]
+    if clay is None and any(p.name == "clay" for p in model.parameters):
+        return
+    rng = np.random.default_rng(4)
+    truth = rng.uniform(0.10, 0.40, DRAWS)
+    shown = LAW.to_permittivity(truth + rng.uniform(0.07, 0.17, DRAWS))
+    given = {"porosity": 0.55, "solid_permittivity": 4.7} | ({} if clay is None else {"clay": clay})
+    spread = {"porosity": 0.03, "solid_permittivity": 0.6}
+    columns = {f"{model.permittivity}_permittivity": shown, "temperature": np.full(DRAWS, 20.0)}
+    basis = prepare(Query(
+        model=key, soil=describe(None, given, spread), columns=frozenset(columns),
+        probe={"frequency": 50e6, f"{model.permittivity}_permittivity_u": 0.3},
+    ))  # fmt: skip
+    share, known = covered(basis, read(columns, {}, {}), truth)
+    assert known > 0.9
+    assert share > 0.93

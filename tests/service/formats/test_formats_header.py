@@ -2,9 +2,9 @@
 
 import pytest
 
-from models.quantity import PROBE, READING, SOIL
+from models.quantity import NOISE, PROBE, READING, SOIL
 from service.formats.errors import FormatError, HeaderError
-from tests.service.doubling import conversion, converted, csv_rows
+from tests.service.formats.doubling import conversion, converted, csv_rows
 
 
 def refusal(body, into="csv", out=None, **options):
@@ -24,7 +24,7 @@ def test_names_are_known_whatever_their_case_and_blanks(header):
                      ["17.5", "x", "35.0", ""]]  # fmt: skip
 
 
-@pytest.mark.parametrize("name", [f"{name}{u}" for name in READING[1:] for u in ("", "_u")])
+@pytest.mark.parametrize("name", [*READING[1:], *(f"{name}_u" for name in NOISE)])
 def test_every_number_of_a_reading_is_read(name):
     other = "travel_time" if name == "real_permittivity" else "real_permittivity"
     work = conversion("csv", "csv")

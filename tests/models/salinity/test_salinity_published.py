@@ -8,7 +8,7 @@ from models.mixing.physical import hanai_bruggeman
 from models.salinity import PORE_WATER_MODELS
 from models.salinity.hilhorst_2000 import water_permittivity
 from models.salinity.waxman_smits_1968 import charge_of_pores, equivalent_conductance
-from tests.models.pore_water_soils import loam
+from tests.models.salinity.pore_water_soils import loam
 from tests.published import table
 
 DECISIEMENS = 0.1  # S/m

@@ -12,7 +12,7 @@ from hypothesis import strategies as st
 from models.flags import BIT
 from service.formats import FORMATS, MEDIA_TYPES, format_of
 from service.formats.errors import FormatError
-from tests.service.doubling import conversion, converted, csv_rows, cut, json_rows
+from tests.service.formats.doubling import conversion, converted, csv_rows, cut, json_rows
 
 SAMPLES = {
     "csv": "time,note,apparent_permittivity,temperature\n"

@@ -6,7 +6,7 @@ from numpy.testing import assert_allclose, assert_array_less
 from models.conductivity.loss import conduction_loss
 from models.mixing.joint import to_complex_permittivity, to_water_content_and_conductivity
 from models.salinity.complex_refractive import bulk_of_loss, to_bulk, to_pore_water
-from tests.models.pore_water_soils import loam
+from tests.models.salinity.pore_water_soils import loam
 from tests.published import table
 
 ROWS = 3000

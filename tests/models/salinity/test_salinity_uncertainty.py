@@ -8,7 +8,7 @@ from models.salinity import PORE_WATER_MODELS
 from models.salinity.hilhorst_2000 import OFFSET_U
 from models.salinity.texture_defaults import surface_conductivity
 from models.uncertainty.first_order import Input, propagate
-from tests.models.pore_water_soils import loam
+from tests.models.salinity.pore_water_soils import loam
 from tests.published import table
 
 DRAWS = 200_000
