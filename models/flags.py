@@ -119,6 +119,16 @@ FLAGS: Registry[Flag] = Registry(
          text="Reading and soil description cannot both be right.",
          reason="A wrong porosity, an air gap, a sensor out of the ground, or another model's "
          "permittivity.", keeps_number=False),
+    Flag(key="band-from-curvature", condition="A first order would put an end of the band wrong by "
+         "more than three per cent of its half-width.",
+         text="The band follows the curve of the equation: inverse first-order reliability.",
+         reason="Rows without this flag and without band-from-draws have a first-order band.",
+         keeps_number=True),
+    Flag(key="band-from-draws", condition="The equation bends so much within its uncertainty, or "
+         "leaves its domain, that only draws tell the band.",
+         text="The band is that of shared quasi-random draws.",
+         reason="The same draws for every row: the same reading always gets the same band.",
+         keeps_number=True),
     Flag(key="frozen", condition="The temperature is at or below 0 Cel.",
          text="Unfrozen water only: ice is not seen as water.",
          reason="The permittivity of ice is 3.2, that of water 88; salt is driven out of ice into "

@@ -4,7 +4,7 @@ from models.estimate.basis import Basis, Query, prepare
 from models.estimate.choice import choose
 from models.estimate.explanation import explain
 from models.estimate.pipeline import Estimates, columns_of, estimate
-from models.estimate.salinity import SalinityQuery
+from models.estimate.salt.salinity import SalinityQuery
 from models.remarks import Remarks
 
 __all__ = [

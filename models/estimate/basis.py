@@ -7,11 +7,12 @@ from typing import Any
 from models.advisories import Advice, advise
 from models.estimate.binding import SUPPLIED, bind
 from models.estimate.permittivity import kinds_in
-from models.estimate.salinity import Salinity, SalinityQuery, settle
+from models.estimate.salt.salinity import Salinity, SalinityQuery, settle
 from models.mixing import MIXING_MODELS
 from models.mixing.family import MixingModel
 from models.quantity import NOISE
 from models.soil.description import Soil
+from models.uncertainty.draws import Draws
 from models.water import WATER_MODELS
 from models.water.family import WaterModel
 
@@ -35,6 +36,8 @@ class Query:
     assumed_temperature_u: float = ASSUMED_TEMPERATURE_U
     """K; by default that of soil over a season."""
     probability: float = 0.95
+    draws: Draws | None = None
+    """How to draw, for a Monte Carlo propagation; None: first order and quantiles."""
     columns: frozenset[str] = frozenset()
     """Names of the columns the readings have."""
     salinity: SalinityQuery = field(default_factory=SalinityQuery)

@@ -8,13 +8,14 @@ from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
 from models.estimate.permittivity import Permittivity
-from models.estimate.pore_water import PoreWater
+from models.estimate.salt.pore_water import PoreWater
 from models.estimate.surroundings import Surroundings
 from models.estimate.water_content import CONSISTENT, WaterContent
 from models.flags import BIT, Flags, without_pore_water
 from models.mixing.physical.bounds import hashin_shtrikman
 from models.relation import Array
 from models.uncertainty.coverage import coverage_factor
+from models.uncertainty.reliability import Method
 from models.water.kaatze_1989 import static_permittivity
 
 CORRECTED = 0.01  # m3/m3 of correction for loss that is worth a flag
@@ -62,11 +63,15 @@ def flag_results(
     _set(flags, unanswered & known & ~_spoiled(flags), slug)
     _set(flags, computed < 0.0, "drier-than-dry")
     _set(flags, computed > content.ceiling, "wetter-than-pores")
-    astray = (computed < -CONSISTENT * content.scale_above) | (
+    astray = (computed < -CONSISTENT * content.spread.above) | (
         computed - content.ceiling
-        > CONSISTENT * np.sqrt(np.square(content.scale_below) + content.ceiling_u**2)
+        > CONSISTENT * np.sqrt(np.square(content.spread.below) + content.ceiling_u**2)
     )
     _set(flags, astray, "inconsistent")
+    if content.spread.method is not None and basis.query.draws is None:
+        _set(flags, content.spread.method == Method.DRAWS, "band-from-draws")
+        curved = (content.spread.method > 0) & (content.spread.method < Method.DRAWS)
+        _set(flags, curved, "band-from-curvature")
     if content.correction is not None:
         _set(flags, content.correction > CORRECTED, "lossy")
     if content.leans_for_clay is not None:

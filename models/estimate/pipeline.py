@@ -7,10 +7,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
-from models.estimate.conductivities import conductivities_of
 from models.estimate.gates import flag_inputs, flag_pore_water, flag_results
 from models.estimate.permittivity import Permittivity, permittivity_of
-from models.estimate.pore_water import PoreWater
+from models.estimate.salt.conductivities import conductivities_of
+from models.estimate.salt.pore_water import PoreWater
 from models.estimate.sources import of_water_content
 from models.estimate.surroundings import Surroundings, frost, surroundings_of, water_inputs
 from models.estimate.water_content import water_content_of

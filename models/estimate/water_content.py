@@ -2,21 +2,16 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
-from models.estimate.discrepancy import (
-    Setting,
-    lean_down,
-    leans_for_clay,
-    model_uncertainty,
-)
+from models.estimate.discrepancy import Setting, lean_down, leans_for_clay, model_uncertainty
+from models.estimate.equation import Equation
 from models.estimate.permittivity import Permittivity
+from models.estimate.spread import Spread, by_draws, by_quantiles
 from models.estimate.surroundings import Surroundings
-from models.mixing.physical.complex_refractive import relaxation_loss
 from models.readings import Readings
 from models.relation import Array
 from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval
@@ -25,9 +20,6 @@ from models.uncertainty.first_order import Input, propagate
 UNEXPLAINED_CORRECTION = 0.5
 """Share of a correction for loss that counts as its own standard uncertainty: in soils made by the
 complex refractive index, half of the correction to all of it is still missing after it."""
-RELAXATIONS = 6
-DRY = 0.02
-"""m3/m3, below which loss cannot be told from none: the answer without it is taken."""
 CONSISTENT = 3.0
 """Standard uncertainties beyond the physical range at which reading and soil contradict."""
 
@@ -37,12 +29,9 @@ class WaterContent:
     """Water content as the equation gives it, and what is known around it; shape (n,)."""
 
     computed: Array
-    scale_below: Array
-    scale_above: Array
-    standard_uncertainty: Array
-    """Root of the second moment of the two-piece distribution about the computed value."""
+    spread: Spread
     shared: Array
-    """The part of it that all readings of this soil and probe share."""
+    """The part of the standard uncertainty that all readings of this soil and probe share."""
     interval: Interval
     correction: Array | None
     """By how much correcting for loss lowered the value."""
@@ -55,6 +44,15 @@ class WaterContent:
     """What one standard uncertainty of each input of the equation does to the value, signed."""
     of_model: Array
     """Standard uncertainty that is the mixing model's own, what it leaves of loss included."""
+    equation: Equation
+    own: Array
+    """Standard uncertainty of the model's own error, both ways; ``lean`` adds to it downward."""
+    lean: Array | None
+
+    @property
+    def standard_uncertainty(self) -> Array:
+        """Root of the second moment about the computed value."""
+        return self.spread.standard_uncertainty
 
 
 def water_content_of(
@@ -68,92 +66,51 @@ def water_content_of(
 
     The interval is the shortest one of what the equation and the physical range together allow:
     see ``models.uncertainty.coverage``. The range is 0 to the upper end of the porosity's own
-    coverage interval, or to 1 where the porosity is not known.
+    coverage interval, or to 1 where the porosity is not known. Where the equation bends too much
+    for a first order, its own quantiles take the place of value -+ k u: see
+    ``models.estimate.spread``.
     """
-    inputs = _inputs(basis, found, around, water)
-    at = {given.name: given.value for given in inputs if given.name != "permittivity"}
-
-    def measurand(**named: Array) -> Array:
-        permittivity = named.pop("permittivity")
-        parameters = {**basis.values, **named}
-        if "loss" in basis.takes and found.conduction_only is not None:
-            return _with_relaxation(basis, permittivity, parameters, found.conduction_only)
-        return basis.model.to_water_content(permittivity, **parameters)
-
-    computed = measurand(permittivity=found.value, **at)
-    spread = propagate(measurand, inputs, computed)
-    setting = _setting(readings, basis, found, around, computed)
+    equation = Equation.of(basis, found, around, water)
+    computed = equation(**equation.at)
+    first = propagate(equation, equation.inputs, computed)
     ceiling, ceiling_u = _ceiling(basis)
-    own, lean = _own_uncertainty(basis, setting, ceiling)
-    shared = spread.shared + np.square(own)
+    own, lean = _own_uncertainty(basis, _setting(readings, basis, found, around, computed), ceiling)
     correction = None
     if found.uncorrected is not None:
-        correction = measurand(permittivity=found.uncorrected, **at) - computed
-        shared = shared + np.square(UNEXPLAINED_CORRECTION * correction)
-    variance = spread.per_reading + shared
-    above = np.sqrt(variance)
-    below = above if lean is None else np.sqrt(variance + np.square(lean))
+        moved = equation.at | {"permittivity": found.uncorrected}
+        correction = equation(**moved) - computed
+        own = np.sqrt(np.square(own) + np.square(UNEXPLAINED_CORRECTION * correction))
+    shared = first.shared + np.square(own)
+    variance = first.per_reading + shared
+    plain = Spread.of(variance, lean)
     probability = basis.query.probability
     high = min(1.0, ceiling + coverage_factor(probability) * ceiling_u)
-    interval = shortest_interval(
-        computed, below, above, low=0.0, high=high, probability=probability
+    if basis.query.draws is not None:
+        spread, interval = by_draws(equation, computed, plain, own, lean, high)
+    else:
+        spread = by_quantiles(equation, computed, first, plain, own, lean)
+        interval = shortest_interval(
+            computed, spread.below, spread.above, low=0.0, high=high, probability=probability
+        )
+    moment = np.square(plain.standard_uncertainty)
+    common = np.divide(
+        shared + moment - variance, moment, out=np.zeros_like(moment), where=moment > 0
     )
-    moment = variance
-    if lean is not None:
-        two_piece = np.square(below) - below * above + np.square(above)
-        moment = np.where(lean > 0.0, two_piece, variance)
     return WaterContent(
         computed=computed,
-        scale_below=below,
-        scale_above=above,
-        standard_uncertainty=np.sqrt(moment),
-        shared=np.sqrt(shared + moment - variance),
+        spread=spread,
+        shared=spread.standard_uncertainty * np.sqrt(np.clip(common, 0.0, 1.0)),
         interval=interval,
         correction=correction,
         ceiling=ceiling,
         ceiling_u=ceiling_u,
         leans_for_clay=_leans_for_clay(basis, around.known_frequency),
-        contributions=spread.contributions,
-        of_model=np.sqrt(shared - spread.shared + moment - variance),
+        contributions=first.contributions,
+        of_model=np.sqrt(np.maximum(np.square(own) + moment - variance, 0.0)),
+        equation=equation,
+        own=own,
+        lean=lean,
     )
-
-
-def _with_relaxation(
-    basis: Basis,
-    permittivity: Array,
-    parameters: dict[str, Any],
-    conduction_only: NDArray[np.bool_],
-) -> Array:
-    """Water content where the loss is that of conduction alone: relaxation depends on the answer.
-
-    A fixed point from the water content without loss; each step shrinks the error a hundredfold.
-    """
-    told = parameters.pop("loss")
-    theta = basis.model.to_water_content(permittivity, **parameters)
-    without = theta
-    for _ in range(RELAXATIONS):
-        relaxing = np.where(conduction_only, relaxation_loss(theta, **parameters), 0.0)
-        theta = basis.model.to_water_content(permittivity, loss=told + relaxing, **parameters)
-    return np.where(np.isnan(theta) & (without <= DRY) & ~np.isnan(told), without, theta)
-
-
-def _inputs(
-    basis: Basis, found: Permittivity, around: Surroundings, water: Mapping[str, Input]
-) -> list[Input]:
-    inputs = [Input("permittivity", found.value, found.of_reading, found.shared)]
-    inputs.extend(water.values())
-    if "frequency" in basis.takes:
-        inputs.append(Input("frequency", around.frequency))
-    if "loss" in basis.takes:
-        unknown = np.full(found.value.shape, np.nan)
-        loss = unknown if found.loss is None else found.loss
-        inputs.append(Input("loss", loss, 0.0 if found.loss_u is None else found.loss_u))
-    inputs.extend(
-        Input(name, basis.values[name], shared=u)
-        for name, u in basis.uncertainties.items()
-        if name in basis.values
-    )
-    return inputs
 
 
 def _setting(
@@ -195,7 +152,10 @@ def _own_uncertainty(basis: Basis, at: Setting, pores: float) -> tuple[Array, Ar
     stated = basis.query.standard_error
     if stated is not None:
         return np.full(at.permittivity.shape, stated), None
-    return model_uncertainty(basis.model, at), lean_down(basis.model, at, pores)
+    lean = lean_down(basis.model, at, pores)
+    if lean is not None:
+        lean = np.broadcast_to(lean, at.permittivity.shape)
+    return model_uncertainty(basis.model, at), lean
 
 
 def _ceiling(basis: Basis) -> tuple[float, float]:

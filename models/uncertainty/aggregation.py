@@ -97,9 +97,10 @@ def _summed(
         raise ParameterError("uncertainty", [Complaint("shared", detail)])
     labels, source = _labels(groups, value.shape), _labels(sources, value.shape)
     number = labels.max(initial=-1) + 1
-    pairs, pair = np.unique(np.stack([labels, source]), axis=1, return_inverse=True)
-    of_pair = np.square(np.bincount(pair.ravel(), weight * shared))
-    common = np.bincount(pairs[0], of_pair, minlength=number)
+    several = source.max(initial=0) + 1
+    pairs, pair = np.unique(labels * several + source, return_inverse=True)
+    of_pair = np.square(np.bincount(pair, weight * shared))
+    common = np.bincount(pairs // several, of_pair, minlength=number)
     alone = np.bincount(labels, np.square(weight) * np.maximum(own, 0.0), minlength=number)
     return Aggregate(
         column(np.bincount(labels, weight * value, minlength=number)),

@@ -14,8 +14,8 @@ from scipy.special import ndtr, ndtri
 
 from models.relation import Array, column
 
-FAR = 6.0
-"""Scales from an end beyond which the end takes less than 1e-9 of the probability."""
+FAR = 4.75
+"""Scales from an end beyond which the end takes less than 1e-6 of the probability."""
 ASTRAY = 6.0
 """Scales outside the range beyond which all that is left is its end."""
 

@@ -46,6 +46,9 @@ class Propagated:
     shared: Array
     contributions: Mapping[str, Array]
     """Signed, one standard uncertainty of each input: its size is that input's share."""
+    bends: Mapping[str, Array]
+    """How far the middle over plus and minus one standard uncertainty is from the value; NaN where
+    one of the two is outside the domain."""
 
 
 def propagate(measurand: Callable[..., Array], inputs: Sequence[Input], value: Array) -> Propagated:
@@ -60,6 +63,7 @@ def propagate(measurand: Callable[..., Array], inputs: Sequence[Input], value: A
     at = {given.name: given.value for given in inputs}
     per_reading, shared = np.zeros_like(value), np.zeros_like(value)
     contributions: dict[str, Array] = {}
+    bends: dict[str, Array] = {}
     for given in inputs:
         width = given.total
         if not np.any(width > 0):
@@ -72,6 +76,7 @@ def propagate(measurand: Callable[..., Array], inputs: Sequence[Input], value: A
             one_sided = np.where(np.isnan(above), value - below, above - value)
             contribution = np.where(astray, one_sided, contribution)
         contributions[given.name] = contribution
+        bends[given.name] = 0.5 * (above + below) - value
         variance = np.square(contribution)
         if not np.any(given.shared):
             per_reading += variance
@@ -81,7 +86,7 @@ def propagate(measurand: Callable[..., Array], inputs: Sequence[Input], value: A
             common = _share(given.shared, width)
             shared += variance * common
             per_reading += variance * (1.0 - common)
-    return Propagated(per_reading, shared, contributions)
+    return Propagated(per_reading, shared, contributions, bends)
 
 
 def _share(part: Any, width: Array) -> Array:

@@ -7,8 +7,8 @@ restricted to what is not negative.
 
 import numpy as np
 
-from models.estimate.pore_water import PoreWater
-from models.estimate.salinity import Salinity
+from models.estimate.salt.pore_water import PoreWater
+from models.estimate.salt.salinity import Salinity
 from models.estimate.sources import Sources
 from models.estimate.water_content import WaterContent
 from models.relation import Array

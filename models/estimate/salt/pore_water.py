@@ -12,7 +12,7 @@ import numpy as np
 
 from models.estimate.basis import Basis
 from models.estimate.permittivity import Permittivity, noise_of
-from models.estimate.salinity import Salinity
+from models.estimate.salt.salinity import Salinity
 from models.estimate.sources import Sources
 from models.estimate.surroundings import Surroundings
 from models.estimate.water_content import WaterContent

@@ -1,0 +1,131 @@
+"""How a water content may differ from its value: first order, quantiles where it bends, or draws.
+
+First order (JCGM 100) is exact for an equation without curvature. What the curvature of each input
+does to the ends of the interval is known from the same evaluations, and moves both ends; rows in
+which that is more than three per cent of the half-width get the equation's own quantiles (inverse
+first-order reliability, or shared quasi-random draws where that will not do).
+"""
+
+from dataclasses import dataclass, replace
+from typing import Self
+
+import numpy as np
+from numpy.typing import NDArray
+
+from models.estimate.equation import OWN, Equation
+from models.relation import Array
+from models.uncertainty.coverage import Interval, coverage_factor
+from models.uncertainty.distributions import Normal
+from models.uncertainty.draws import Draws
+from models.uncertainty.first_order import Propagated
+from models.uncertainty.monte_carlo import simulate
+from models.uncertainty.reliability import Method, band
+
+CURVED, BARE = 0.015, 0.003
+"""Shift of an end, in half-widths, from which a row is looked at again: with the model's own error
+in the band, which is normal and takes the most of what is left, and without."""
+
+
+@dataclass(frozen=True, slots=True)
+class Spread:
+    """A two-piece normal around the computed value; shape (n,)."""
+
+    below: Array
+    above: Array
+    standard_uncertainty: Array
+    """Root of the second moment about the peak."""
+    method: NDArray[np.uint8] | None = None
+    """Codes of ``Method`` for rows that were looked at again, 0 for the others."""
+    outside: NDArray[np.intp] | None = None
+    """Of a row's draws, how many had no answer or an impossible one."""
+
+    @classmethod
+    def of(cls, variance: Array, lean: Array | None) -> Self:
+        """First order, and what leans down."""
+        above = np.sqrt(variance)
+        if lean is None:
+            return cls(above, above, above)
+        below = np.sqrt(variance + np.square(lean))
+        two_piece = np.square(below) - below * above + np.square(above)
+        return cls(below, above, np.sqrt(np.where(lean > 0.0, two_piece, variance)))
+
+
+def by_quantiles(
+    equation: Equation,
+    computed: Array,
+    first: Propagated,
+    plain: Spread,
+    own: Array,
+    lean: Array | None,
+) -> Spread:
+    """The first-order spread, with the equation's own quantiles in the rows that bend."""
+    z = coverage_factor(equation.basis.query.probability)
+    variance = np.square(plain.above)
+    shift = np.zeros_like(computed)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        steeper = (z * z - 1.0) / variance
+        for name, bend in first.bends.items():
+            # Both ends move by z^2 of the bend along the gradient, and by one of it across.
+            weight = np.square(first.contributions[name])
+            weight *= steeper
+            weight += 1.0
+            weight *= bend
+            shift += weight
+    small = np.abs(shift) <= np.where(own > 0, CURVED * z, BARE * z) * plain.above
+    shift = np.where(small, shift, 0.0) / z
+    plain = replace(plain, below=plain.below - shift, above=plain.above + shift)
+    rows = np.flatnonzero(~small & ~np.isnan(computed) & (variance > 0))
+    if not rows.size:
+        return plain
+    some = equation.rows(rows)
+    every = some.distributions(own[rows], own[rows]) | {OWN: Normal(0.0, own[rows])}
+    found = band(some, every, probability=equation.basis.query.probability)
+    below, above = (found.value - found.lower) / z, (found.upper - found.value) / z
+    if lean is not None:
+        below = np.sqrt(np.square(below) + np.square(lean[rows]))
+    lower, upper = plain.below.copy(), plain.above.copy()
+    known = np.isfinite(below) & np.isfinite(above)
+    lower[rows[known]], upper[rows[known]] = below[known], above[known]
+    method = np.zeros(computed.shape, dtype=np.uint8)
+    method[rows[known]] = found.method[known]
+    return Spread(lower, upper, plain.standard_uncertainty, method)
+
+
+def by_draws(
+    equation: Equation,
+    computed: Array,
+    plain: Spread,
+    own: Array,
+    lean: Array | None,
+    high: float,
+) -> tuple[Spread, Interval]:
+    """JCGM 101: draws of every input; draws with an impossible water content are left out.
+
+    The interval is the shortest one of the draws that are left, and reaches to the value where
+    that lies outside it.
+    """
+    query = equation.basis.query
+    reach = own if lean is None else np.sqrt(np.square(own) + np.square(lean))
+
+    def possible(**named: Array) -> Array:
+        theta = equation(**named)
+        return np.where((theta >= 0.0) & (theta <= high), theta, np.nan)
+
+    found = simulate(
+        possible,
+        equation.distributions(reach, own),
+        draws=query.draws or Draws(),
+        probability=query.probability,
+        interval="shortest",
+    )
+    peak = np.clip(computed, 0.0, high)
+    lower, upper = np.minimum(found.lower, peak), np.maximum(found.upper, peak)
+    method = np.full(computed.shape, Method.DRAWS, dtype=np.uint8)
+    z = coverage_factor(query.probability)
+    below = np.where(np.isnan(lower), plain.below, (peak - lower) / z)
+    above = np.where(np.isnan(upper), plain.above, (upper - peak) / z)
+    spread = Spread(
+        np.maximum(below, plain.below), np.maximum(above, plain.above),
+        found.standard_uncertainty, method, found.outside,
+    )  # fmt: skip
+    return spread, Interval(lower, upper, peak)

@@ -1,0 +1,1 @@
+"""Raw reflections to permittivity: traces, coaxial tips, filled lines and cells, two-port cells."""

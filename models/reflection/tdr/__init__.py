@@ -1,0 +1,1 @@
+"""Time-domain reflectometry: a trace of reflected steps to permittivity and conductivity."""
