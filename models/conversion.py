@@ -75,11 +75,14 @@ def from_si(name: str, values: Array | float, units: Units) -> Array:
 def _fault(
     quantity: Quantity, si: float, value: float, unit: Unit, *, is_width: bool
 ) -> str | None:
+    gate = quantity.gate_si
     if is_width:
         if si < 0:
             return f"{quantity.name}_u must be at least 0, found {value:g}"
+        if si > gate.high - gate.low:
+            most = float(unit.width_from_si(gate.high - gate.low))
+            return f"{quantity.name}_u can be at most {most:g} {unit.code}, found {value:g}"
         return None
-    gate = quantity.gate_si
     if not gate.excludes(si):
         return None
     low, high = float(unit.from_si(gate.low)), float(unit.from_si(gate.high))

@@ -129,6 +129,11 @@ FLAGS: Registry[Flag] = Registry(
          text="The band is that of shared quasi-random draws.",
          reason="The same draws for every row: the same reading always gets the same band.",
          keeps_number=True),
+    Flag(key="draws-left-out", condition="More than one in twenty of the draws asked for gave no "
+         "water content, or an impossible one.",
+         text="The band is that of the draws that are left, and reaches to the value.",
+         reason="Near the ends of the range part of the stated uncertainty is impossible; much of "
+         "it says that reading, soil and model disagree.", keeps_number=True),
     Flag(key="frozen", condition="The temperature is at or below 0 Cel.",
          text="Unfrozen water only: ice is not seen as water.",
          reason="The permittivity of ice is 3.2, that of water 88; salt is driven out of ice into "
@@ -166,6 +171,11 @@ FLAGS: Registry[Flag] = Registry(
          text="The permittivity of water is less well known here.",
          reason="Each water model has its own range, Kaatze (1989) from -4.1 to 60 Cel; "
          "outside, it goes on smoothly and counts as known to 2 %.", keeps_number=True),
+    Flag(key="not-estimated", condition="A stored reading is from a time for which no one soil and "
+         "probe are on record, or what is on record does not suffice.",
+         text="There is nothing on record by which to estimate this reading.",
+         reason="Installations say which soil a probe was in, and when; the advisories of the "
+         "answer say what is lacking.", keeps_number=False),
 )  # fmt: skip
 
 _NAMING = tuple(key for key, flag in FLAGS.items() if flag.names_quantity)

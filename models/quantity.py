@@ -7,6 +7,7 @@ outside is a fault of the logger, of a unit or of a typing hand.
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from math import log
 from types import MappingProxyType
 
 from models.relation import Range
@@ -19,6 +20,7 @@ SUFFIXES: Mapping[str, str] = MappingProxyType({
     "_upper": "upper end of the coverage interval",
 })  # fmt: skip
 
+TINY = 1e-30
 BANDED = ("", *SUFFIXES)
 """Suffixes of an estimated quantity, in the order of the answer."""
 
@@ -41,6 +43,8 @@ class Quantity:
     """What is physically possible, in ``unit``."""
     lookalikes: tuple[str, ...] = ()
     """Units that people send by mistake, most likely first."""
+    typical: float | None = None
+    """A usual value in SI, to tell which of several units was meant; None: the first that fits."""
 
     @property
     def key(self) -> str:
@@ -71,10 +75,14 @@ class Quantity:
         ``si_value`` was read as being in ``unit``.
         """
         written = float(UNITS[unit].from_si(si_value))
-        for code in self.lookalikes:
-            if code != unit and not self.gate_si.excludes(UNITS[code].to_si(written)):
-                return code
-        return None
+        meant = {
+            code: float(UNITS[code].to_si(written)) for code in self.lookalikes if code != unit
+        }
+        fits = [code for code, value in meant.items() if not self.gate_si.excludes(value)]
+        if not fits or self.typical is None:
+            return next(iter(fits), None)
+        usual = self.typical
+        return min(fits, key=lambda code: abs(log(max(meant[code], TINY) / usual)))
 
 
 _FRACTION = Range(0.0, 1.0)
@@ -92,16 +100,19 @@ QUANTITIES: Mapping[str, Quantity] = MappingProxyType({q.name: q for q in (
     Quantity("imaginary_permittivity", "eps''", "1",
              "loss, >= 0, conduction included, of eps = eps' - j eps''", Range(0.0, 20000.0)),
     Quantity("frequency", "f", "Hz", "of the measurement, or effective frequency",
-             Range(1e6, 1e11), ("MHz", "GHz", "kHz")),
+             Range(1e6, 1e11), ("MHz", "GHz", "kHz"), typical=3e8),
     Quantity("travel_time", "t", "ns", "two-way, along the rods", Range(0.0, 1000.0), ("ps", "s")),
     Quantity("temperature", "T", "Cel", "of the soil", Range(-40.0, 60.0), ("K", "[degF]")),
     Quantity("bulk_conductivity", "sigma_b", "dS/m",
-             "of the soil as a whole, at soil temperature", Range(0.0, 20.0), _CONDUCTIVITY),
+             "of the soil as a whole, at soil temperature", Range(0.0, 20.0), _CONDUCTIVITY,
+             typical=0.05),
     Quantity("bulk_conductivity_25", "sigma_b25", "dS/m",
              "of the soil as a whole, brought to 25 Cel", Range(0.0, 40.0), _CONDUCTIVITY),
     Quantity("water_content", "theta", "m3/m3", "volumetric, liquid water", _FRACTION, ("%",)),
     Quantity("conduction_correction", "", "m3/m3", "by how much correcting the apparent "
              "permittivity for conduction lowered the water content", Range(-1.0, 1.0), ("%",)),
+    Quantity("model_spread", "", "m3/m3", "standard deviation between mixing models whose ranges "
+             "hold the reading", Range(0.0, 1.0), ("%",)),
     Quantity("gravimetric_water_content", "w", "kg/kg", "of dry mass", Range(0.0, 20.0), ("%",)),
     Quantity("degree_of_saturation", "S_r", "1", "share of the pores filled with water",
              _FRACTION, ("%",)),
@@ -139,6 +150,11 @@ QUANTITIES: Mapping[str, Quantity] = MappingProxyType({q.name: q for q in (
     Quantity("water_permittivity", "eps_w", "1", "of the pore water, real or apparent as the "
              "mixing model takes it; computed from temperature and frequency unless given",
              Range(40.0, 100.0)),
+    Quantity("static_permittivity", "eps_static", "1", "below all relaxations of a spectrum"),
+    Quantity("infinite_permittivity", "eps_inf", "1", "above all relaxations of a spectrum"),
+    Quantity("relaxation_strength", "", "1", "permittivity below a relaxation less that above"),
+    Quantity("relaxation_time", "tau", "ns", "of one term of a spectrum"),
+    Quantity("relaxation_frequency", "", "Hz", "1 / (2 pi tau), of one term of a spectrum"),
 )})  # fmt: skip
 
 READING = (

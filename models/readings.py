@@ -65,6 +65,12 @@ def read(
         name: _gate(name, values, units, unreadable.get(name), flags)
         for name, values in columns.items()
     }
+    for name, values in columns.items():
+        about, is_width = quantity_of(name)
+        if is_width and about in gated:
+            # A value whose uncertainty is impossible must not pass for exact.
+            lost = np.isnan(gated[name]) & ~np.isnan(values)
+            gated[about] = np.where(lost, np.nan, gated[about])
     for name, rows in (absent or {}).items():
         about, is_width = quantity_of(name)
         if not is_width:
@@ -90,10 +96,10 @@ def _gate(
     if not is_width:
         flags[absent] |= BIT[f"missing:{about}"]
     si = unit.width_to_si(values) if is_width else unit.to_si(values)
+    gate = quantity.gate_si
     if is_width:
-        impossible = (si < 0) | np.isinf(si)
+        impossible = (si < 0) | (si > gate.high - gate.low)
     else:
-        gate = quantity.gate_si
         impossible = (si < gate.low) | (si > gate.high)
     if impossible.any():
         flags[impossible] |= BIT[f"out-of-gate:{about}"]

@@ -52,13 +52,14 @@ class Remarks:
     def _suspect(self, name: str, impossible: Array, units: Units) -> None:
         if not impossible.size:
             return
-        gate = QUANTITIES[name].gate_si
+        quantity, unit = QUANTITIES[name], unit_of(name, units)
         known = self._suspicions.get(name)
-        sent = unit_of(name, units).code
-        for other in (known.other,) if known else QUANTITIES[name].lookalikes:
-            fits = ~gate.excludes(UNITS[other].to_si(impossible))
-            if other != sent and fits.any():
-                example = float(impossible[np.argmax(fits)])
-                found = self._suspicions.setdefault(name, _Suspicion(other, example))
-                found.count += int(np.count_nonzero(fits))
-                return
+        example = float(impossible[0])
+        other = (
+            known.other if known else quantity.likely_unit(float(unit.to_si(example)), unit.code)
+        )
+        if other is None:
+            return
+        fits = ~quantity.gate_si.excludes(UNITS[other].to_si(impossible))
+        found = self._suspicions.setdefault(name, _Suspicion(other, example))
+        found.count += int(np.count_nonzero(fits))

@@ -12,12 +12,18 @@ from starlette.types import ASGIApp
 
 from service import __version__
 from service.access import RequireKey, keys_of
+from service.batch.workers import yield_to_requests
 from service.errors import add_error_handlers
 from service.limits import LimitBody
 from service.observe import Observe
-from service.routes import catalogues, estimates, health, pages, problems
+from service.routes import catalogues, estimates, health, pages, problems, spectra
+from service.routes.stored import documents, overview, readings
+from service.routes.stored import estimates as stored_estimates
 from service.schemas.openapi import Api, operation_id
 from service.settings import Settings, read_settings
+from service.stations.documents import Shelf
+from service.store.opening import open_store
+from service.store.writer import Writer
 
 DESCRIPTION = """
 Readings of dielectric soil probes in, volumetric water content with its band out.
@@ -27,12 +33,17 @@ know. A changed coefficient is a new model name or a new `revision`. Every 4xx a
 `application/problem+json`. HEAD is taken wherever GET is; `X-Request-Id` is echoed, or made.
 """
 TAGS = [
+    {"name": "stations", "description": "What is installed where; readings kept; what they say."},
     {"name": "estimates", "description": "Readings to water content."},
+    {"name": "records", "description": "Raw records to permittivity, and to what it tells."},
     {"name": "catalogues", "description": "Models, textures, flags and words, with their sources."},
     {"name": "service", "description": "Health, versions, limits, problems."},
 ]
 
-WARMING: tuple[Callable[[FastAPI], object], ...] = (lambda api: api.openapi(),)
+WARMING: tuple[Callable[[FastAPI], object], ...] = (
+    lambda api: api.openapi(),
+    lambda _: yield_to_requests(),
+)
 """Called before the first request, so that no request waits for them."""
 
 
@@ -62,8 +73,9 @@ def create_api(settings: Settings) -> Api:
     api.state.settings = settings
     api.state.draining = False
     api.state.tables = 0
-    main = (estimates.router, health.router, problems.router, pages.router)
-    for router in (*main, *catalogues.routers):
+    main = (estimates.router, spectra.router, health.router, problems.router, pages.router)
+    kept = (readings.router, stored_estimates.router, overview.router, *documents.routers)
+    for router in (*main, *kept, *catalogues.routers):
         api.include_router(router)
     add_error_handlers(api)
     return api
@@ -81,10 +93,23 @@ def _lifespan(api: FastAPI) -> AbstractAsyncContextManager[None]:
     async def life() -> AsyncIterator[None]:
         for warm in WARMING:
             warm(api)
-        with _drained(api):
+        with _kept(api), _drained(api):
             yield
 
     return life()
+
+
+@contextmanager
+def _kept(api: FastAPI) -> Iterator[None]:
+    """The store, open; at the end what was acknowledged or waits is written before it closes."""
+    store = open_store(api.state.settings)
+    writer = Writer(store)
+    api.state.writer, api.state.shelf = writer, Shelf(store)
+    try:
+        yield
+    finally:
+        writer.close()
+        store.close()
 
 
 @contextmanager

@@ -4,16 +4,20 @@ from collections.abc import Mapping
 
 from models.advisories import Advice
 from models.conversion import from_si
-from models.estimate import Basis, Remarks, columns_of, estimate
+from models.estimate import Basis, Estimates, Remarks, columns_of, estimate
+from models.estimate.beside.ensemble import COLUMNS, EveryModel
 from models.quantity import band_names
 from models.readings import Readings
+from service.answers.effort import refuse_effort
 from service.formats.block import Answer, Block
-from service.schemas.echo import units_of_answer
+from service.schemas.echo import echo_of, headers_of, units_of_answer
+from service.schemas.echo_beside import ensemble_echo
 from service.schemas.estimates import EstimatesSettings
 from service.schemas.query import basis_of
 
 APPENDED = frozenset({
     "conduction_correction",
+    "model_spread",
     *band_names("water_content"),
     *band_names("bulk_conductivity_25"),
     *band_names("pore_water_conductivity"),
@@ -25,21 +29,31 @@ APPENDED = frozenset({
 class TableEstimates:
     """What a conversion calls with each block of a table."""
 
-    def __init__(self, settings: EstimatesSettings) -> None:
-        self.settings = settings
-        self.basis: Basis | None = None
+    def __init__(self, settings: EstimatesSettings, drawn_values: int | None = None) -> None:
+        """drawn_values: the limit on draws times readings times models, where there is one."""
+        self.settings, self.drawn_values = settings, drawn_values
+        self.rows = 0
+        self.basis: Basis | EveryModel | None = None
         self.remarks = Remarks()
 
     def __call__(self, block: Block) -> Answer:
         """The estimates of a block, in the caller's units.
 
-        Raises ModelError, at the first block, when the request cannot be settled.
+        Raises ModelError, at the first block, when the request cannot be settled; Unprocessable,
+        at the block where it becomes too much, when it asks for more draws than it may.
         """
+        self.rows += len(block)
+        if self.drawn_values is not None:
+            refuse_effort(self.settings, self.rows, self.drawn_values)
         if self.basis is None:
             self.basis = basis_of(self.settings, block.values)
         units = self.settings.units
         readings: Readings = block.readings(units)
-        result = estimate(readings, self.basis)
+        if isinstance(self.basis, EveryModel):
+            together = self.basis.estimate(readings)
+            result = Estimates(together.columns, together.flags)
+        else:
+            result = estimate(readings, self.basis)
         self.remarks.note(block.values, units, result.flags)
         columns = {name: from_si(name, v, units) for name, v in result.columns.items()}
         return Answer(columns, result.flags)
@@ -52,14 +66,13 @@ class TableEstimates:
         return (*self.basis.advice, *self.remarks.advice(self.settings.units))
 
     def headers(self) -> Mapping[str, str]:
-        """What a table cannot say in its cells: model, units, advisories."""
-        if self.basis is None:
+        """What a table cannot say in its cells: model, units, advisories, every constant."""
+        basis, units = self.basis, self.settings.units
+        if basis is None:
             return {}
-        basis = self.basis
-        units = units_of_answer(columns_of(basis), self.settings.units)
-        return {
-            "Mixing-Model": basis.model.key,
-            **({"Pore-Water-Model": basis.salinity.model.key} if basis.salinity else {}),
-            "Units": ", ".join(f"{name}={unit}" for name, unit in units.items()),
-            "Advisories": ", ".join(said.code for said in self.advice),
-        }
+        remarks = self.remarks.advice(units)
+        if isinstance(basis, EveryModel):
+            echo, names = ensemble_echo(basis, self.settings, remarks), COLUMNS
+        else:
+            echo, names = echo_of(basis, self.settings, remarks), columns_of(basis)
+        return headers_of(echo, units_of_answer(names, units))

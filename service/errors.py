@@ -3,12 +3,13 @@
 Problem
     Malformed  Unauthenticated  Forbidden  NotFound  MethodNotAllowed  NotAcceptable  Stalled
     TooLarge  UnsupportedMediaType  Unprocessable  HeadersTooLarge  InternalError  Unavailable
+    Conflicted  PreconditionFailed  PreconditionRequired  TooManyRequests
 """
 
 import json
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Mapping
 from types import MappingProxyType
-from typing import Any, ClassVar
+from typing import Any
 
 from fastapi import FastAPI, Request
 from fastapi.exceptions import RequestValidationError
@@ -19,55 +20,19 @@ from starlette.types import Scope
 
 from models.errors import ModelError, ParameterError
 from service.faults import Fault, faults_of, pointer
-from service.formats.errors import CellError, FormatError, HeaderError, RecordTooLong, SpoolFull
+from service.formats.errors import (
+    AnswerTooLong,
+    CellError,
+    FormatError,
+    HeaderError,
+    RecordTooLong,
+    SpoolFull,
+)
+from service.schemas.problem import Problem as Problem  # noqa: PLC0414 - for all who raise one
+from service.stations.problems import Conflicted
+from service.store.errors import InUse, StoreError
 
 MEDIA_TYPE = "application/problem+json"
-MOST_FAULTS = 20
-"""Items that an answer lists; of the others it says how many there are."""
-
-
-class Problem(HTTPException):
-    """A request that is not answered as asked; ``detail`` says what to change."""
-
-    status: ClassVar[int]
-    slug: ClassVar[str]
-
-    def __init_subclass__(cls, *, status: int, slug: str) -> None:
-        cls.status, cls.slug = status, slug
-
-    def __init__(
-        self,
-        detail: object,
-        errors: Sequence[Fault] = (),
-        headers: Mapping[str, str] | None = None,
-    ) -> None:
-        super().__init__(self.status, str(detail) or self.title(), dict(headers or {}))
-        self.errors = tuple(errors)
-
-    @classmethod
-    def title(cls) -> str:
-        """What all problems of this kind have in common."""
-        return (cls.__doc__ or "").partition("\n")[0].rstrip(".")
-
-    @classmethod
-    def meaning(cls) -> str:
-        """What the caller can do about it."""
-        return " ".join((cls.__doc__ or "").partition("\n")[2].split())
-
-    def document(self, request_id: str) -> dict[str, Any]:
-        """The body of the answer, without empty members."""
-        body: dict[str, Any] = {
-            "type": f"/problems/{self.slug}",
-            "title": self.title(),
-            "status": self.status,
-            "detail": self.detail,
-            "request_id": request_id,
-        }
-        if self.errors:
-            body["errors"] = [fault.as_json() for fault in self.errors[:MOST_FAULTS]]
-        if len(self.errors) > MOST_FAULTS:
-            body["errors_not_shown"] = len(self.errors) - MOST_FAULTS
-        return body
 
 
 class Malformed(Problem, status=400, slug="malformed"):
@@ -209,6 +174,8 @@ def _of_table(error: FormatError) -> Problem:
 
 TRANSLATIONS: Mapping[type[Exception], Callable[[Any], Problem]] = MappingProxyType({
     HTTPException: _of_http,
+    StoreError: lambda error: Unavailable(str(error), 5),
+    InUse: Conflicted,
     RequestValidationError: _of_request,
     ClientDisconnect: Malformed,
     ParameterError: _of_parameters,
@@ -216,6 +183,7 @@ TRANSLATIONS: Mapping[type[Exception], Callable[[Any], Problem]] = MappingProxyT
     FormatError: _of_table,
     RecordTooLong: TooLarge,
     SpoolFull: lambda error: Unavailable(f"{error}; ask later, or send the table in parts", 60),
+    AnswerTooLong: lambda error: TooLarge(f"{error}; send the table in parts"),
 })  # fmt: skip
 """What the layers below raise, as problems; the most derived class decides."""
 

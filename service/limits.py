@@ -12,7 +12,7 @@ from starlette.types import ASGIApp, Message, Receive, Scope, Send
 from service.errors import HeadersTooLarge, Malformed, Stalled, TooLarge, UnsupportedMediaType
 from service.settings import Settings
 
-BATCH_PATHS = ("/v1/estimates",)
+BATCH_PATHS = ("/v1/estimates", "/v1/stations/")
 """Paths that take a table of any length as their body."""
 JSON = "JSON"
 JSON_SUFFIXES = ("/json", "+json")

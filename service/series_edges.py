@@ -1,6 +1,6 @@
 """Edges of bins in local time: quarters of an hour, hours and days, whatever the clocks do."""
 
-import math
+import itertools
 from collections.abc import Mapping
 from datetime import date, datetime, timedelta
 from types import MappingProxyType
@@ -13,7 +13,7 @@ from models.relation import Array
 
 EVERY: Mapping[str, float] = MappingProxyType({"15m": 900.0, "1h": 3600.0, "1d": 86_400.0})
 """Usual length of a bin, s, by its name in a query."""
-FIRST, LAST = -62_000_000_000.0, 253_000_000_000.0
+FIRST, LAST = -61_800_000_000.0, 252_700_000_000.0
 """s since the epoch between which every zone has a calendar."""
 
 
@@ -40,25 +40,33 @@ def bin_edges(start: float, end: float, every: str, zone: ZoneInfo) -> Array:
     Raises ParameterError when ``every`` is none of those or the end is not after the start.
     """
     _check(start, end, every)
-    day = datetime.fromtimestamp(start, zone).date()
-    midnights = []
-    while not midnights or midnights[-1] < end:
-        midnights.append(_midnight(day, zone))
+    day = datetime.fromtimestamp(start, zone).date() - timedelta(days=1)
+    midnights = [_midnight(day, zone)]
+    while midnights[-1] < end:
         day += timedelta(days=1)
-    if midnights[0] > start:  # the clock went back over midnight: the day began the evening before
-        midnights.insert(0, _midnight(datetime.fromtimestamp(start, zone).date(), zone, fold=0))
-    edges = np.array(midnights)
-    if every == "1d":
-        return edges
-    parts = np.concatenate([_parts(*ends, EVERY[every]) for ends in zip(edges, edges[1:])])
-    first = int(np.searchsorted(parts, start, side="right")) - 1
-    last = int(np.searchsorted(parts, end, side="left"))
-    return np.append(parts, edges[-1])[first : last + 1]
-
-
-def _parts(midnight: float, following: float, length: float) -> Array:
-    return np.arange(midnight, following, length)
+        midnights.append(_midnight(day, zone))
+    edges = np.unique(midnights)  # where a zone skips a whole day, two midnights are one
+    if every != "1d":
+        within = [np.arange(*ends, EVERY[every]) for ends in itertools.pairwise(edges)]
+        edges = np.concatenate([*within, edges[-1:]])
+    first = int(np.searchsorted(edges, start, side="right")) - 1
+    last = int(np.searchsorted(edges, end, side="left"))
+    return edges[first : last + 1]
 
 
 def _midnight(day: date, zone: ZoneInfo) -> float:
+    """The first instant of a day; where clocks skip midnight, that of the change."""
     return datetime(day.year, day.month, day.day, tzinfo=zone).timestamp()
+
+
+def _check(start: float, end: float, every: str) -> None:
+    complaints = []
+    if every not in EVERY:
+        detail = f"takes every as one of {', '.join(EVERY)}, found {every[:20]!r}"
+        complaints.append(Complaint("every", detail))
+    if not FIRST <= start < end <= LAST:
+        complaints.append(
+            Complaint("end", "takes an end after the start, between years 12 and 9979")
+        )
+    if complaints:
+        raise ParameterError("series", complaints)

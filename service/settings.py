@@ -43,6 +43,10 @@ class Settings(BaseSettings):
         default=8000, ge=0, le=65535, description="port to listen on; 0: any free one"
     )
     data: Path = Field(default_factory=data_folder, description="folder of keys and data")
+    database_url: str = Field(
+        default="", repr=False,
+        description="postgresql://user@host/name; empty: one SQLite file in the data folder",
+    )  # fmt: skip
     workers: int = Field(default=1, ge=1, le=64, description="server processes")
     log_format: Literal["text", "json"] = Field(
         default="text", description="how log lines are written"
@@ -50,10 +54,18 @@ class Settings(BaseSettings):
     json_body_bytes: int = Field(default=4 * MIB, ge=1024, description="largest JSON body")
     json_readings: int = Field(default=20_000, ge=1, description="most readings in a JSON body")
     batch_body_bytes: int = Field(
-        default=4096 * MIB, ge=1024, description="largest CSV or NDJSON body, after decompression"
+        default=4096 * MIB, ge=1024, description="largest table, after decompression"
     )
     wire_body_bytes: int = Field(
-        default=1024 * MIB, ge=1024, description="largest compressed CSV or NDJSON body, as sent"
+        default=1024 * MIB, ge=1024, description="largest compressed table, as sent"
+    )
+    batch_rows: int = Field(default=100_000_000, ge=1, description="most rows of a table")
+    answer_bytes: int = Field(
+        default=16384 * MIB, ge=1024, description="longest answer to a table, kept until it ends"
+    )
+    drawn_values: int = Field(
+        default=1_000_000_000, ge=1_000_000,
+        description="most draws times readings times models of one request",
     )
     header_bytes: int = Field(default=64 * 1024, ge=1024, description="largest headers in all")
     line_bytes: int = Field(
@@ -66,10 +78,20 @@ class Settings(BaseSettings):
         default=30.0, gt=0, description="longest pause while a body arrives; then 408"
     )
     request_seconds: float = Field(
-        default=3600.0, gt=0, description="longest time for a whole body to arrive; then 408"
+        default=3600.0, gt=0,
+        description="longest time for a body to arrive and be worked out; then 408",
     )
     drain_seconds: float = Field(
         default=0.0, ge=0, le=600, description="time between a stop signal and the end of listening"
+    )
+    requests_per_minute: int = Field(
+        default=0, ge=0, description="most requests of one key in each server process; 0: any"
+    )
+    future_seconds: float = Field(
+        default=300.0, ge=0, description="how far the clock of a logger may be ahead"
+    )
+    page_rows: int = Field(
+        default=150_000, ge=1, description="most rows of an answer from the store"
     )
     queued_batches: int = Field(
         default=16, ge=1, description="batches that are taken on at a time; further ones get 503"
@@ -91,8 +113,9 @@ class Settings(BaseSettings):
 
 
 LIMITS = (
-    "json_body_bytes", "json_readings", "batch_body_bytes", "wire_body_bytes", "header_bytes",
-    "line_bytes", "body_stall_seconds", "request_seconds", "queued_batches",
+    "json_body_bytes", "json_readings", "drawn_values", "batch_body_bytes", "wire_body_bytes",
+    "batch_rows", "answer_bytes", "header_bytes", "line_bytes", "body_stall_seconds",
+    "request_seconds", "queued_batches", "requests_per_minute", "future_seconds", "page_rows",
 )  # fmt: skip
 """Settings that a client meets."""
 

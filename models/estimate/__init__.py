@@ -1,8 +1,8 @@
 """Estimates: readings in, values with uncertainty out; the only place where the two meet."""
 
 from models.estimate.basis import Basis, Query, prepare
+from models.estimate.beside.explanation import explain
 from models.estimate.choice import choose
-from models.estimate.explanation import explain
 from models.estimate.pipeline import Estimates, columns_of, estimate
 from models.estimate.salt.salinity import SalinityQuery
 from models.remarks import Remarks

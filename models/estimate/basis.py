@@ -138,8 +138,9 @@ def _of_soil(basis: Basis) -> Iterator[Advice]:
     unstated = _unstated(basis)
     if unstated:
         yield advise("no-uncertainty-stated", names=", ".join(unstated), example=f"{unstated[0]}_u")
-    if basis.outside:
-        yield advise("model-range", model=basis.model.key, names=", ".join(basis.outside))
+    outside = [*basis.outside, *_outside_frequency(basis)]
+    if outside:
+        yield advise("model-range", model=basis.model.key, names=", ".join(outside))
     yield from _contradiction(soil)
 
 
@@ -161,6 +162,13 @@ def _of_probe(basis: Basis) -> Iterator[Advice]:
         yield advise("permittivities-beside", names=", ".join(kinds), used=used)
 
 
+def _outside_frequency(basis: Basis) -> tuple[str, ...]:
+    known = basis.model.validity.get("frequency")
+    stated = basis.query.probe.get("frequency")
+    outside = known is not None and stated is not None and bool(known.excludes(stated))
+    return ("frequency",) if outside else ()
+
+
 def _unstated(basis: Basis) -> list[str]:
     """What enters the estimate as if it were exact."""
     query = basis.query
@@ -169,6 +177,12 @@ def _unstated(basis: Basis) -> list[str]:
     if not basis.needs_temperature and "temperature" in came:
         came.remove("temperature")
     exact = [n for n, u in basis.uncertainties.items() if u == 0.0 and basis.origins[n] == "given"]
+    soil = query.soil
+    through = soil.origins.get("porosity", "").startswith("1 - bulk_density")
+    if through and "porosity" in basis.values and soil.uncertainties["bulk_density"] == 0.0:
+        exact.append("bulk_density")
+    if "travel_time" in query.columns and "probe_length_u" not in query.probe:
+        exact.append("probe_length")
     return came + exact
 
 

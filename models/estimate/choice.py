@@ -87,8 +87,13 @@ def _candidate(query: Query, key: str) -> _Candidate | None:
     return None if np.isnan(spread) else _Candidate(basis, spread)
 
 
+def suits_soil(model: MixingModel, soil: Soil) -> bool:
+    """Whether a model is made for soil of this kind, mineral or organic."""
+    return model.soils != ("mineral" if _organic(soil) else "organic")
+
+
 def _suits(model: MixingModel, query: Query) -> bool:
-    if model.soils == ("mineral" if _organic(query.soil) else "organic"):
+    if not suits_soil(model, query.soil):
         return False
     if model.water is not None and not _has_temperature(query):
         return False

@@ -20,6 +20,7 @@ from models.water.kaatze_1989 import static_permittivity
 
 CORRECTED = 0.01  # m3/m3 of correction for loss that is worth a flag
 SUSPECT = 55.0  # permittivity from which a comparison with water is worth its cost
+LEFT_OUT = 0.05  # share of draws without an answer that is worth a flag
 NONE = np.uint64(0)
 AIR, COLD_WATER = 1.0, 88.0
 SOLID, SOLID_U = 4.7, 0.6  # permittivity of mineral solids, where none is given
@@ -61,13 +62,16 @@ def flag_results(
     known = ~np.isnan(_temperature(around, flags)) if basis.needs_temperature else True
     slug = "too-lossy" if "loss" in basis.takes else "no-solution"
     _set(flags, unanswered & known & ~_spoiled(flags), slug)
-    _set(flags, computed < 0.0, "drier-than-dry")
-    _set(flags, computed > content.ceiling, "wetter-than-pores")
     astray = (computed < -CONSISTENT * content.spread.above) | (
         computed - content.ceiling
         > CONSISTENT * np.sqrt(np.square(content.spread.below) + content.ceiling_u**2)
     )
     _set(flags, astray, "inconsistent")
+    _set(flags, (computed < 0.0) & ~astray, "drier-than-dry")
+    _set(flags, (computed > content.ceiling) & ~astray, "wetter-than-pores")
+    if content.spread.outside is not None and basis.query.draws is not None:
+        left_out = content.spread.outside > LEFT_OUT * basis.query.draws.count
+        _set(flags, left_out, "draws-left-out")
     if content.spread.method is not None and basis.query.draws is None:
         _set(flags, content.spread.method == Method.DRAWS, "band-from-draws")
         curved = (content.spread.method > 0) & (content.spread.method < Method.DRAWS)

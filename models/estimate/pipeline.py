@@ -13,11 +13,12 @@ from models.estimate.salt.conductivities import conductivities_of
 from models.estimate.salt.pore_water import PoreWater
 from models.estimate.sources import of_water_content
 from models.estimate.surroundings import Surroundings, frost, surroundings_of, water_inputs
-from models.estimate.water_content import water_content_of
+from models.estimate.water_content import WaterContent, water_content_of
 from models.flags import BIT, Flags, withheld, without_pore_water
 from models.quantity import band_names
 from models.readings import Readings
 from models.relation import Array
+from models.uncertainty.first_order import Input
 
 BLOCK = 16_384
 """Rows computed at a time: the working columns stay in the processor's cache."""
@@ -61,7 +62,20 @@ def columns_of(basis: Basis) -> tuple[str, ...]:
     return tuple(names)
 
 
-def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
+@dataclass(frozen=True, slots=True)
+class Worked:
+    """One block half way: everything that its water content came from."""
+
+    readings: Readings
+    around: Surroundings
+    found: Permittivity
+    water: Mapping[str, Input]
+    content: WaterContent
+    flags: Flags
+
+
+def work_out(readings: Readings, basis: Basis) -> Worked:
+    """Water content of one block, and what it came from; the flags are those of its water."""
     flags = readings.flags.copy()
     around = surroundings_of(readings, basis)
     found = _permittivity(readings, basis, around, basis.model.permittivity)
@@ -70,16 +84,22 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
     content = water_content_of(readings, basis, found, around, water)
     flag_results(content, found, around, basis, flags)
     frost(around.temperature, flags)
+    return Worked(readings, around, found, water, content, flags)
+
+
+def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
+    worked = work_out(readings, basis)
+    around, found, water = worked.around, worked.found, worked.water
+    content, flags = worked.content, worked.flags
     columns: dict[str, Array] = {
         "water_content": content.interval.peak,
         "water_content_u": content.standard_uncertainty,
         "water_content_u_shared": content.shared,
         "water_content_lower": content.interval.lower,
         "water_content_upper": content.interval.upper,
-        "conduction_correction": np.zeros(readings.count)
-        if content.correction is None
-        else content.correction,
     }
+    if basis.tells_correction:
+        columns["conduction_correction"] = _correction(content, found, readings.count)
     unknown = np.isnan(content.computed) | np.isnan(content.standard_uncertainty)
     columns = _without(columns, withheld(flags) | unknown)
     if basis.salinity is not None:
@@ -95,6 +115,13 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
         rest = {n: v for n, v in salt.items() if n not in bulk}
         columns |= _without(rest, without_pore_water(flags))
     return Estimates(columns, flags)
+
+
+def _correction(content: WaterContent, found: Permittivity, count: int) -> Array:
+    """By how much loss was corrected for; NaN where nothing tells the loss."""
+    if content.correction is None or found.loss is None:
+        return np.full(count, np.nan)
+    return np.where(np.isnan(found.loss), np.nan, content.correction)
 
 
 def _permittivity(

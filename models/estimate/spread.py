@@ -106,26 +106,34 @@ def by_draws(
     """
     query = equation.basis.query
     reach = own if lean is None else np.sqrt(np.square(own) + np.square(lean))
+    peak = np.clip(computed, 0.0, high)
+    method = np.zeros(computed.shape, dtype=np.uint8)
+    rows = np.flatnonzero(np.isfinite(computed) & np.isfinite(plain.standard_uncertainty))
+    if not rows.size:
+        return replace(plain, method=method), Interval(peak, peak, peak)
+    some = equation.rows(rows)
 
     def possible(**named: Array) -> Array:
-        theta = equation(**named)
+        theta = some(**named)
         return np.where((theta >= 0.0) & (theta <= high), theta, np.nan)
 
     found = simulate(
         possible,
-        equation.distributions(reach, own),
+        some.distributions(reach[rows], own[rows]),
         draws=query.draws or Draws(),
         probability=query.probability,
         interval="shortest",
     )
-    peak = np.clip(computed, 0.0, high)
-    lower, upper = np.minimum(found.lower, peak), np.maximum(found.upper, peak)
-    method = np.full(computed.shape, Method.DRAWS, dtype=np.uint8)
+    method[rows] = Method.DRAWS
+    lower, upper, standard = (np.full(computed.shape, np.nan) for _ in range(3))
+    outside = np.zeros(computed.shape, dtype=np.intp)
+    lower[rows], upper[rows] = (
+        np.minimum(found.lower, peak[rows]),
+        np.maximum(found.upper, peak[rows]),
+    )
+    standard[rows], outside[rows] = found.standard_uncertainty, found.outside
     z = coverage_factor(query.probability)
     below = np.where(np.isnan(lower), plain.below, (peak - lower) / z)
     above = np.where(np.isnan(upper), plain.above, (upper - peak) / z)
-    spread = Spread(
-        np.maximum(below, plain.below), np.maximum(above, plain.above),
-        found.standard_uncertainty, method, found.outside,
-    )  # fmt: skip
-    return spread, Interval(lower, upper, peak)
+    below, above = np.maximum(below, plain.below), np.maximum(above, plain.above)
+    return Spread(below, above, standard, method, outside), Interval(lower, upper, peak)

@@ -6,12 +6,20 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from models.conductivity.loss import conduction_loss
 from models.estimate.basis import Basis
-from models.estimate.discrepancy import Setting, lean_down, leans_for_clay, model_uncertainty
+from models.estimate.discrepancy import (
+    TDR_LOWEST,
+    Setting,
+    lean_down,
+    leans_for_clay,
+    model_uncertainty,
+)
 from models.estimate.equation import Equation
 from models.estimate.permittivity import Permittivity
 from models.estimate.spread import Spread, by_draws, by_quantiles
 from models.estimate.surroundings import Surroundings
+from models.mixing.apparent import to_real
 from models.readings import Readings
 from models.relation import Array
 from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval
@@ -80,11 +88,14 @@ def water_content_of(
         moved = equation.at | {"permittivity": found.uncorrected}
         correction = equation(**moved) - computed
         own = np.sqrt(np.square(own) + np.square(UNEXPLAINED_CORRECTION * correction))
+    unseen = _unseen_conduction(readings, basis, found, equation, computed)
+    if unseen is not None:
+        lean = unseen if lean is None else np.sqrt(np.square(lean) + np.square(unseen))
     shared = first.shared + np.square(own)
     variance = first.per_reading + shared
     plain = Spread.of(variance, lean)
     probability = basis.query.probability
-    high = min(1.0, ceiling + coverage_factor(probability) * ceiling_u)
+    high = most_water(basis)
     if basis.query.draws is not None:
         spread, interval = by_draws(equation, computed, plain, own, lean, high)
     else:
@@ -111,6 +122,22 @@ def water_content_of(
         own=own,
         lean=lean,
     )
+
+
+def _unseen_conduction(
+    readings: Readings, basis: Basis, found: Permittivity, equation: Equation, computed: Array
+) -> Array | None:
+    """How much too wet a row may read whose conductivity is known and whose frequency is not.
+
+    The correction at the lowest frequency of TDR; None where there is no such row.
+    """
+    bulk = _uncorrected(readings, basis, found)
+    if bulk is None or basis.query.standard_error is not None or not np.any(bulk > 0.0):
+        return None
+    loss = conduction_loss(np.nan_to_num(bulk), TDR_LOWEST)
+    slowest = np.maximum(np.nan_to_num(to_real(found.value, loss)), 1.0)
+    off = computed - equation(**equation.at | {"permittivity": slowest})
+    return np.maximum(np.nan_to_num(off), 0.0)
 
 
 def _setting(
@@ -156,6 +183,12 @@ def _own_uncertainty(basis: Basis, at: Setting, pores: float) -> tuple[Array, Ar
     if lean is not None:
         lean = np.broadcast_to(lean, at.permittivity.shape)
     return model_uncertainty(basis.model, at), lean
+
+
+def most_water(basis: Basis) -> float:
+    """The upper end of the porosity's own coverage interval; 1 where the porosity is not known."""
+    ceiling, ceiling_u = _ceiling(basis)
+    return min(1.0, ceiling + coverage_factor(basis.query.probability) * ceiling_u)
 
 
 def _ceiling(basis: Basis) -> tuple[float, float]:

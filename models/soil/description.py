@@ -7,7 +7,7 @@ import numpy as np
 
 from models.errors import Complaint, ParameterError
 from models.soil import banin_amiel_1970, bound_water
-from models.soil.texture import TEXTURES, texture_key
+from models.soil.texture import TEXTURES, TextureClass, texture_key
 
 PARTICLE_DENSITY, PARTICLE_DENSITY_U = 2650.0, 50.0  # mineral soils, common practice
 ORGANIC_DENSITY = 1400.0  # of organic matter, common practice
@@ -86,13 +86,20 @@ def _add_class(book: _Book, key: str) -> None:
     origin = f"texture {key}"
     mean = TEXTURES[key]
     if not book.has("silt"):
+        book.add("sand", _rest_of(mean, book.values.get("clay")), mean.sand_u, origin)
         book.add("clay", mean.clay, mean.clay_u, origin)
-        book.add("sand", mean.sand, mean.sand_u, origin)
     if not book.has("porosity"):
         book.add("bulk_density", mean.bulk_density, mean.bulk_density_u, origin)
     if not book.has("organic_matter"):
         book.add("particle_density", mean.particle_density, mean.particle_density_u, origin)
     book.add("organic_matter", mean.organic_matter, mean.organic_matter_u, origin)
+
+
+def _rest_of(mean: TextureClass, clay: float | None) -> float | None:
+    """The class's sand, as a share of what a clay content of the caller's own leaves."""
+    if clay is None or mean.sand is None or mean.clay is None:
+        return mean.sand
+    return mean.sand / (1.0 - mean.clay) * max(1.0 - clay, 0.0)
 
 
 def _derive(book: _Book) -> None:

@@ -19,6 +19,8 @@ from models.spectrum.relaxation import RELAXATIONS, dispersion
 ELECTRODE_FREQUENCY = 2 * np.pi * 1e6
 """rad/s, at which the electrode's permittivity is stated."""
 MOST_TERMS = 4
+OUTSIDE = 30.0
+"""How far outside the band a term may relax, as a factor of frequency."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,23 +61,32 @@ class Form:
         """Every parameter, in the order of a vector."""
         slots = [Slot("infinite_permittivity", 1.0, 1e3)]
         for k, kind in enumerate(self.terms):
-            slots += [Slot("relaxation_strength", 1e-9, 1e9, True, k),
-                      Slot("relaxation_time", 1e-14, 1e2, True, k)]  # fmt: skip
-            slots += [Slot(s.name, s.low, s.high, s.logarithmic, k) for s in RELAXATIONS[kind].shapes]
+            slots += [Slot("relaxation_strength", 1e-9, 1e9, logarithmic=True, term=k),
+                      Slot("relaxation_time", 1e-14, 1e2, logarithmic=True, term=k)]  # fmt: skip
+            slots += [
+                Slot(s.name, s.low, s.high, s.logarithmic, k) for s in RELAXATIONS[kind].shapes
+            ]
         if self.conduction:
             slots.append(Slot("bulk_conductivity", 0.0, 1e3))
         if self.electrode:
-            slots += [Slot("electrode_permittivity", 1e-3, 1e12, True),
+            slots += [Slot("electrode_permittivity", 1e-3, 1e12, logarithmic=True),
                       Slot("electrode_exponent", 0.0, 0.8)]  # fmt: skip
         return tuple(slots)
 
-    @property
-    def bounds(self) -> tuple[Array, Array]:
-        """Lower and upper ends of a vector."""
-        ends = [(s.low, s.high) if not s.logarithmic else (np.log(s.low), np.log(s.high))
-                for s in self.slots]  # fmt: skip
-        low, high = zip(*ends, strict=True)
-        return np.array(low), np.array(high)
+    def bounds(self, lowest: float, highest: float) -> tuple[Array, Array]:
+        """Lower and upper ends of a vector, for a band between two frequencies, Hz.
+
+        A relaxation further outside the band than ``OUTSIDE`` would leave no trace of its own:
+        below, it is conduction; above, it is the infinite permittivity.
+        """
+        low, high = (
+            np.array([np.log(end) if s.logarithmic else end for s, end in ends])
+            for ends in (((s, s.low) for s in self.slots), ((s, s.high) for s in self.slots))
+        )
+        times = [i for i, slot in enumerate(self.slots) if slot.name == "relaxation_time"]
+        low[times] = np.log(1 / (2 * np.pi * highest * OUTSIDE))
+        high[times] = np.log(OUTSIDE / (2 * np.pi * lowest))
+        return low, high
 
     @property
     def title(self) -> str:
@@ -119,14 +130,19 @@ def evaluate(form: Form, vector: Array, frequency: Array) -> tuple[ComplexArray,
         rows += [strength * g, *(strength * slopes)]
         at += 2 + count
     if form.conduction:
-        per_conductivity = -1j / (w * VACUUM_PERMITTIVITY)
-        eps = eps + vector[at] * per_conductivity
-        rows.append(per_conductivity)
+        conducting = per_conductivity(w)
+        eps = eps + vector[at] * conducting
+        rows.append(conducting)
         at += 1
     derivatives = np.array(rows)
     if form.electrode:
         eps, derivatives = _behind_electrodes(eps, derivatives, w, vector[at:])
     return eps, derivatives.T
+
+
+def per_conductivity(angular_frequency: Array) -> ComplexArray:
+    """What each S/m of conductivity adds to the permittivity eps' - j eps'', 1 / (S/m)."""
+    return np.asarray(-1j / (angular_frequency * VACUUM_PERMITTIVITY), dtype=np.complex128)
 
 
 def _behind_electrodes(

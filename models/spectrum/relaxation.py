@@ -26,7 +26,9 @@ class Shape:
 
 ALPHA = Shape("alpha", "how far relaxation times spread to both sides", 0.0, 0.9)
 BETA = Shape("beta", "below 1: relaxation times reach further down than up", 0.1, 1.0)
-RESONANCE_FREQUENCY = Shape("resonance_frequency", "where the term resonates, Hz", 1e3, 1e12, True)
+RESONANCE_FREQUENCY = Shape(
+    "resonance_frequency", "where the term resonates, Hz", 1e3, 1e12, logarithmic=True
+)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

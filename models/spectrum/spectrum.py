@@ -92,10 +92,9 @@ def _length_complaints(
     columns: dict[str, Array], real_u: Array | None, loss_u: Array | None
 ) -> list[Complaint]:
     count = len(columns["frequency"])
-    found = dict(columns)
-    for name, given in (("real_permittivity_u", real_u), ("imaginary_permittivity_u", loss_u)):
-        if given is not None and np.ndim(given):
-            found[name] = given
+    widths = {"real_permittivity_u": real_u, "imaginary_permittivity_u": loss_u}
+    lists = {name: u for name, u in widths.items() if u is not None and np.ndim(u)}
+    found = {**columns, **lists}
     complaints = [
         _complaint(name, f"{name} has {len(given)} values where frequency has {count}")
         for name, given in found.items()
@@ -134,9 +133,7 @@ def _axis_complaints(frequency: Array) -> list[Complaint]:
         )
         return [_complaint("frequency", detail)]
     if low < SLOWEST or high > FASTEST:
-        detail = (
-            f"expected frequency from {SLOWEST:g} to {FASTEST:g} Hz, found {low:g} to {high:g}"
-        )
+        detail = f"expected frequency from {SLOWEST:g} to {FASTEST:g} Hz, found {low:g} to {high:g}"
         return [_complaint("frequency", detail)]
     return []
 

@@ -11,10 +11,9 @@ from itertools import combinations, permutations, product
 import numpy as np
 from scipy.optimize import nnls
 
-from models.conductivity.loss import VACUUM_PERMITTIVITY
 from models.relation import Array, ComplexArray
-from models.spectrum.form import ELECTRODE_FREQUENCY, Form, without_electrodes
-from models.spectrum.relaxation import RELAXATIONS, dispersion
+from models.spectrum.form import ELECTRODE_FREQUENCY, Form, per_conductivity, without_electrodes
+from models.spectrum.relaxation import dispersion
 
 POINTS = 32
 """Of the spectrum, as many as a start needs."""
@@ -35,11 +34,7 @@ def starts(
 
     frequency: shape (n,), Hz. noise: shape (2, n), standard uncertainties of both parts.
     """
-    kept = np.unique(np.geomspace(1, len(frequency), POINTS).astype(int) - 1)
-    if len(frequency) > POINTS:
-        kept = np.unique(np.linspace(0, len(frequency) - 1, POINTS).round().astype(int))
-    else:
-        kept = np.arange(len(frequency))
+    kept = np.unique(np.linspace(0, len(frequency) - 1, POINTS).round().astype(int))
     f, eps, u = frequency[kept], permittivity[kept], noise[:, kept]
     found: list[tuple[float, Array]] = []
     for electrode in _electrodes(form, f, eps):
@@ -73,9 +68,9 @@ def _linear(
 ) -> list[tuple[float, Array]]:
     w = 2 * np.pi * frequency
     target = np.concatenate([(permittivity.real - 1) / noise[0], permittivity.imag / noise[1]])
-    fixed = [np.ones_like(w) + 0j]
+    fixed = [np.ones(w.shape, np.complex128)]
     if form.conduction:
-        fixed.append(-1j / (w * VACUUM_PERMITTIVITY))
+        fixed.append(per_conductivity(w))
     fixed_columns = [_stacked(column, noise) for column in fixed]
     size = float(np.median(np.abs(permittivity)))
     found = []
@@ -99,13 +94,21 @@ def _combinations(
     grid = np.linspace(high, low, GRID[len(form.terms)])
     middle = float(np.log(np.sqrt(w.min() * w.max()) / (2 * np.pi)))
     known = {**SHAPES, "resonance": ((middle,), (float(np.log(w.max() / (2 * np.pi))),))}
-    orders = set(permutations(range(len(form.terms)))) if len(set(form.terms)) > 1 else {
-        tuple(range(len(form.terms)))
-    }  # fmt: skip
-    for shapes in product(*(known[kind] for kind in form.terms)):
+    few = 1 if len(form.terms) > 2 else None
+    for shapes in product(*(known[kind][:few] for kind in form.terms)):
         for chosen in combinations(grid, len(form.terms)):
-            for order in orders:
+            for order in _orders(form.terms):
                 yield shapes, tuple(float(chosen[place]) for place in order)
+
+
+def _orders(kinds: tuple[str, ...]) -> list[tuple[int, ...]]:
+    """Which term takes which of the times, the slowest first; like terms are not swapped."""
+    return [
+        order
+        for order in permutations(range(len(kinds)))
+        if all(order[i] < order[j] for i, j in combinations(range(len(kinds)), 2)
+               if kinds[i] == kinds[j])
+    ]  # fmt: skip
 
 
 def _stacked(column: ComplexArray, noise: Array) -> Array:
@@ -130,7 +133,8 @@ def _vector(
 
 def _different(form: Form, ranked: list[Array], count: int) -> list[Array]:
     """The best that are not neighbours on the grid of any better one."""
-    times = [i for i, slot in enumerate(form.slots) if slot.name == "relaxation_time"]
+    telling = {"relaxation_time", "electrode_permittivity"}
+    times = [i for i, slot in enumerate(form.slots) if slot.name in telling]
     chosen: list[Array] = []
     for vector in ranked:
         if all(np.any(np.abs(vector[times] - other[times]) > 1.0) for other in chosen):

@@ -1,9 +1,9 @@
 """A table of any length in, the same rows with their answers out: by HTTP and from files."""
 
-from service.batch.conversion import PIECE, Conversion, Counts, convert_file
+from service.batch.conversion import PIECE, Conversion, Counts, Stages, convert_file
 from service.batch.response import SpooledResponse
-from service.batch.spool import Spool
-from service.batch.stream import Stages, convert_stream
+from service.formats.spool import Spool
+from service.batch.stream import convert_stream, deadline
 
 __all__ = [
     "PIECE",
@@ -14,4 +14,5 @@ __all__ = [
     "Stages",
     "convert_file",
     "convert_stream",
+    "deadline",
 ]

@@ -1,32 +1,24 @@
-"""A table of any length in, the same rows with their answers out, in bounded memory.
+"""One table on its way: decoded block by block, answered, encoded; from files without a server.
 
-The answer is spooled and begins after the last byte of the table. A response that is written
-while the request is still read loses bodies: a client that sends everything before it reads
-would wait for ever, and a server that looks for a disconnect swallows what is still arriving.
+Where an executor is given, the estimates of a block are worked out in it while the block before is
+encoded and the next one decoded. Order and answers are the same either way.
 """
 
-import errno
-import io
-from collections.abc import AsyncIterator, Callable, Iterable, Iterator, Mapping
+import time
+from collections.abc import Callable, Collection, Iterable, Iterator
+from concurrent.futures import Executor
 from dataclasses import dataclass, field
+from functools import partial
 from typing import IO
 
-import anyio
-import anyio.lowlevel
-import anyio.to_thread
 import numpy as np
-from starlette.responses import Response
-from starlette.types import Receive, Scope, Send
 
+from service.formats.spool import write_to
 from service.formats.block import Answer, Block, Decoder, Encoder, refuse_first
-from service.formats.errors import SpoolFull
+from service.formats.errors import FormatError, HeaderError
 
 PIECE = 1 << 20
 """Bytes that are read, computed or sent at a time."""
-IN_MEMORY = 8 << 20
-"""Bytes of an answer above which it is kept in a file."""
-
-_FULL = frozenset({errno.ENOSPC, errno.EDQUOT, errno.EFBIG})
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,63 +30,120 @@ class Counts:
 
 
 @dataclass(slots=True)
+class Stages:
+    """Seconds spent on a table, by stage; estimates run beside the other two."""
+
+    decode: float = 0.0
+    estimate: float = 0.0
+    encode: float = 0.0
+
+
+@dataclass(slots=True)
 class Conversion:
     """One table on its way from its decoder to its encoder.
 
     answer: what is appended to the rows of a block.
     strict: refuse the table at the first cell that cannot be read, or is missing and needed.
+    columns: names of the appended columns that are wanted; None: all of them. Flags always come.
+    beside: where answers are worked out; None: in line.
     """
 
     decoder: Decoder
     encoder: Encoder
     answer: Callable[[Block], Answer]
     strict: bool = False
+    columns: Collection[str] | None = None
+    beside: Executor | None = None
     counts: Counts = field(default=Counts(), init=False)
+    stages: Stages = field(default_factory=Stages, init=False)
     _names: tuple[str, ...] | None = field(default=None, init=False)
+    _pending: tuple[Block, Callable[[], Answer]] | None = field(default=None, init=False)
 
     def feed(self, piece: bytes) -> Iterator[bytes]:
         """The answer as far as this piece completes it. Raises FormatError."""
-        return self._encoded(self.decoder.feed(piece))
+        yield from self._through(self.decoder.feed(piece))
 
     def close(self) -> Iterator[bytes]:
         """The rest of the answer. Raises FormatError."""
-        yield from self._encoded(self.decoder.close())
-        yield self.encoder.end()
+        yield from self._through(self.decoder.close())
+        yield from self._settled()
+        with _clocked(self.stages, "encode"):
+            end = self.encoder.end()
+        yield end
 
-    def _encoded(self, blocks: Iterable[Block]) -> Iterator[bytes]:
-        for block in blocks:
-            answer = self.answer(block)
-            if self.strict:
-                refuse_first(block, answer)
+    def _through(self, blocks: Iterable[Block]) -> Iterator[bytes]:
+        waiting = iter(blocks)
+        while True:
+            try:
+                with _clocked(self.stages, "decode"):
+                    block = next(waiting, None)
+            except FormatError:
+                yield from self._settled()  # what is wrong with earlier rows is said first
+                raise
+            if block is None:
+                return
+            before, self._pending = self._pending, (block, self._begun(block))
+            if before is not None:
+                yield from self._encoded(*before)
+
+    def _begun(self, block: Block) -> Callable[[], Answer]:
+        if self.beside is None:
+            return partial(self._answered, block)
+        return self.beside.submit(self._answered, block).result
+
+    def _answered(self, block: Block) -> Answer:
+        with _clocked(self.stages, "estimate"):
+            return self.answer(block)
+
+    def _settled(self) -> Iterator[bytes]:
+        before, self._pending = self._pending, None
+        if before is not None:
+            yield from self._encoded(*before)
+
+    def _encoded(self, block: Block, result: Callable[[], Answer]) -> Iterator[bytes]:
+        answer = result()
+        if self.strict:
+            refuse_first(block, answer)
+        answer = self._wanted(answer)
+        begin = b""
+        with _clocked(self.stages, "encode"):
             if self._names is None:
                 self._names = tuple(answer.columns)
-                yield self.encoder.start(block.header, self._names)
+                begin = self.encoder.start(block.header, self._names)
             if self._names != tuple(answer.columns):
                 raise ValueError("every block of a table is answered with the same columns")
-            if len(block):
-                yield self.encoder.block(block, answer)
-                flagged = int(np.count_nonzero(answer.flags))
-                self.counts = Counts(self.counts.rows + len(block), self.counts.flagged + flagged)
+            text = self.encoder.block(block, answer) if len(block) else b""
+        flagged = int(np.count_nonzero(answer.flags))
+        self.counts = Counts(self.counts.rows + len(block), self.counts.flagged + flagged)
+        yield begin + text if begin else text
+
+    def _wanted(self, answer: Answer) -> Answer:
+        if self.columns is None:
+            return answer
+        lacking = [name for name in self.columns if name not in answer.columns]
+        if lacking:
+            raise HeaderError(
+                f"columns among {', '.join(answer.columns)}", ", ".join(lacking),
+                mend="leave it out of ?columns=, or send the readings it needs",
+            )  # fmt: skip
+        kept = {name: cells for name, cells in answer.columns.items() if name in self.columns}
+        return Answer(kept, answer.flags)
 
 
-async def convert_stream(
-    chunks: AsyncIterator[bytes], conversion: Conversion, spool: IO[bytes]
-) -> Counts:
-    """Convert a body while it arrives; its answer stands in ``spool`` from where that was.
+class _clocked:  # noqa: N801 - reads as a statement
+    """Adds the time of a block of code to one of the stages."""
 
-    While a piece is worked on, nothing more is taken in: a client sends no faster than that, and
-    one piece is held. One thread of the process works at a time, whatever the number of bodies;
-    they take turns piece by piece.
-    Raises FormatError, SpoolFull, and what ``chunks`` raises.
-    """
+    __slots__ = ("_name", "_stages", "_started")
 
-    def work(piece: bytes) -> None:
-        _write(spool, conversion.feed(piece))
+    def __init__(self, stages: Stages, name: str) -> None:
+        self._stages, self._name = stages, name
 
-    async for piece in _pieces(chunks):
-        await anyio.to_thread.run_sync(work, piece, limiter=_worker())
-    await anyio.to_thread.run_sync(_write, spool, conversion.close(), limiter=_worker())
-    return conversion.counts
+    def __enter__(self) -> None:
+        self._started = time.perf_counter()
+
+    def __exit__(self, *_: object) -> None:
+        spent = getattr(self._stages, self._name) + time.perf_counter() - self._started
+        setattr(self._stages, self._name, spent)
 
 
 def convert_file(
@@ -109,69 +158,9 @@ def convert_file(
     Raises FormatError, SpoolFull.
     """
     while piece := source.read(PIECE):
-        _write(target, conversion.feed(piece))
+        for part in conversion.feed(piece):
+            write_to(target, part)
         progress(len(piece))
-    _write(target, conversion.close())
+    for part in conversion.close():
+        write_to(target, part)
     return conversion.counts
-
-
-class SpooledResponse(Response):
-    """Everything in a spool, with its length; the spool is closed however it ends."""
-
-    def __init__(self, spool: IO[bytes], media_type: str, headers: Mapping[str, str]) -> None:
-        length = spool.seek(0, io.SEEK_END)
-        spool.seek(0)
-        super().__init__(headers={**headers, "Content-Length": str(length)}, media_type=media_type)
-        self._spool = spool
-
-    async def __call__(self, scope: Scope, receive: Receive, send: Send) -> None:  # noqa: ARG002
-        """Send it, a piece at a time."""
-        try:
-            await send(
-                {
-                    "type": "http.response.start",
-                    "status": self.status_code,
-                    "headers": self.raw_headers,
-                }
-            )
-            while piece := await anyio.to_thread.run_sync(self._spool.read, PIECE):
-                await send({"type": "http.response.body", "body": piece, "more_body": True})
-            await send({"type": "http.response.body", "body": b"", "more_body": False})
-        finally:
-            self._spool.close()
-
-
-async def _pieces(chunks: AsyncIterator[bytes]) -> AsyncIterator[bytes]:
-    """The same bytes, in pieces of one size."""
-    waiting = bytearray()
-    async for chunk in chunks:
-        waiting += chunk
-        while len(waiting) >= PIECE:
-            piece = bytes(waiting[:PIECE])
-            del waiting[:PIECE]
-            yield piece
-    if waiting:
-        yield bytes(waiting)
-
-
-def _write(target: IO[bytes], parts: Iterable[bytes]) -> None:
-    for part in parts:
-        try:
-            target.write(part)
-        except OSError as error:
-            if error.errno in _FULL:
-                raise SpoolFull("there is no room left for the answer") from None
-            raise
-
-
-_LIMITER: anyio.lowlevel.RunVar[anyio.CapacityLimiter] = anyio.lowlevel.RunVar("batch worker")
-
-
-def _worker() -> anyio.CapacityLimiter:
-    """One worker thread for each process, which has one event loop."""
-    try:
-        return _LIMITER.get()
-    except LookupError:
-        limiter = anyio.CapacityLimiter(1)
-        _LIMITER.set(limiter)
-        return limiter

@@ -10,6 +10,7 @@ from typing import Protocol
 
 from models.registry import Registry
 from service.formats import csv_rows, ndjson_rows
+from service.formats.arrow import decode, encode
 from service.formats.block import Decoder, Encoder
 
 
@@ -48,6 +49,20 @@ FORMATS: Registry[Format] = Registry(
         ".ndjson",
         ndjson_rows.NdjsonDecoder,
         ndjson_rows.NdjsonEncoder,
+    ),
+    Format(
+        "arrow",
+        "application/vnd.apache.arrow.stream",
+        ".arrows",
+        decode.ArrowDecoder,
+        encode.ArrowEncoder,
+    ),
+    Format(
+        "parquet",
+        "application/vnd.apache.parquet",
+        ".parquet",
+        decode.ParquetDecoder,
+        encode.ParquetEncoder,
     ),
 )
 

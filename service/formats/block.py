@@ -1,8 +1,8 @@
 """What travels between a decoder, the estimates and an encoder: a block of rows at a time."""
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass
-from typing import Protocol
+from typing import Any, Protocol
 
 import numpy as np
 import polars as pl
@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from models.flags import BIT, Flags, slugs_of, withheld
 from models.readings import Readings, read
 from models.relation import Array
-from service.formats.errors import CellError, shown
+from service.formats.errors import CellError, HeaderError, shown
 from service.formats.header import folded
 
 Marks = NDArray[np.bool_]
@@ -31,6 +31,8 @@ class Header:
     text: str = ""
     """Of the header record, to the letter."""
     line_end: str = "\n"
+    schema: Any = None
+    """Of a table whose columns have types: a pyarrow schema."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -52,9 +54,32 @@ class Block:
     """Rows that could not be taken apart; they have no number in any column."""
     cells: Callable[[], list[pl.Series]]
     """Every column of the table as text under its name; null: the row does not have it."""
+    batch: Any = None
+    """The same rows as a pyarrow record batch, where the columns have types."""
+    bare: Collection[str] = ()
+    """Names of columns whose text is JSON as it stands: numbers, truth values, what is nested."""
 
     def __len__(self) -> int:
         return len(self.lines)
+
+    def columns(self, names: Sequence[str]) -> list[pl.Series]:
+        """The cells in the columns of the table's first rows; null where a row has none.
+
+        Raises HeaderError for a name that came up later.
+        """
+        columns = self.cells()
+        if [column.name for column in columns] == list(names):
+            return columns
+        cells = {column.name: column for column in columns}
+        for name in cells.keys() - set(names):
+            row = int(cells[name].is_not_null().to_numpy().argmax())
+            raise HeaderError(
+                "the same names as in the first rows", shown(name), line=int(self.lines[row]),
+                mend="this answer has the columns of the first rows: name it there, with null, "
+                "or ask for application/x-ndjson",
+            )  # fmt: skip
+        nothing = pl.Series(values=[None] * len(self), dtype=pl.String)
+        return [cells.get(name, nothing) for name in names]
 
     def readings(self, units: Mapping[str, str]) -> Readings:
         """The rows in SI, gated and flagged.
@@ -83,11 +108,11 @@ class Answer:
 class Decoder(Protocol):
     """Bytes in, blocks of rows out; one for each table."""
 
-    def feed(self, piece: bytes) -> list[Block]:
+    def feed(self, piece: bytes) -> Iterable[Block]:
         """The blocks that this piece completes. Raises FormatError."""
         ...
 
-    def close(self) -> list[Block]:
+    def close(self) -> Iterable[Block]:
         """The blocks that are left at the end; of a table without rows, one without rows.
 
         Raises FormatError.

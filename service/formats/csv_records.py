@@ -9,12 +9,15 @@ unquoted cell being a letter like any other.
 import codecs
 import csv
 import re
+from collections.abc import Iterable, Mapping, Sequence
+from typing import Any
 
 import numpy as np
 import polars as pl
 from numpy.typing import NDArray
 
-from service.formats.block import Marks
+from models.relation import Array
+from service.formats.cells import Marks, numbers_in
 from service.formats.records import CR, LF, Ends, Places, Records
 
 COMMA, QUOTE = 44, 34
@@ -41,27 +44,68 @@ def csv_ends(window: bytes) -> Ends:
     return Ends(feeds, regular=not stray_return)
 
 
-def cells_of(records: Records, width: int) -> tuple[list[pl.Series], Marks]:
-    """The columns of some records, and which records do not have ``width`` cells.
+class Cells:
+    """The cells of some records.
 
     A record with too many cells or too few has empty ones; so has one with a carriage return
     outside quotes, where other readers would see a row end.
     """
-    if not records.regular or records.text.startswith(codecs.BOM_UTF8):
-        return _cells_row_by_row(records, width)
-    broken = _widths(records) != width
-    text = records.text
-    if broken.any():
-        nothing = b'""' + b"," * (width - 1)
-        pairs = zip(records.pieces(), broken.tolist(), strict=True)
-        text = b"\n".join(nothing if odd else piece for piece, odd in pairs)
-    frame = pl.read_csv(
-        text,
-        has_header=False,
-        infer_schema=False,
-        new_columns=[str(place) for place in range(width)],
-    )
-    return frame.get_columns(), broken
+
+    def __init__(self, records: Records, width: int) -> None:
+        self._width, self._records = width, records
+        self._columns: list[pl.Series] | None = None
+        self.broken: Marks
+        """Which records do not have ``width`` cells."""
+        if not records.regular or records.text.startswith(codecs.BOM_UTF8):
+            self._columns, self.broken = _cells_row_by_row(records, width)
+            return
+        self.broken = _widths(records, width)
+        self._text = records.text
+        if self.broken.any():
+            nothing = b'""' + b"," * (width - 1)
+            pairs = zip(records.pieces(), self.broken.tolist(), strict=True)
+            self._text = b"\n".join(nothing if odd else piece for piece, odd in pairs)
+
+    def columns(self) -> list[pl.Series]:
+        """Every column as text."""
+        if self._columns is None:
+            self._columns = self._read(self._text, dict.fromkeys(range(self._width), pl.String))
+        return self._columns
+
+    def numbers(self, places: Iterable[int]) -> list[tuple[Array, Marks]]:
+        """Some columns as ``numbers_in`` reads them.
+
+        Numbers are read as such at once; only rows in which that fails are read as text.
+        """
+        wanted = list(places)
+        if self._columns is not None or not wanted:
+            return [numbers_in(self.columns()[place]) for place in wanted]
+        kinds = dict.fromkeys(range(self._width), pl.String) | dict.fromkeys(wanted, pl.Float64)
+        read = dict(zip(sorted(wanted), self._read(self._text, kinds, sorted(wanted)), strict=True))
+        values = {place: np.array(read[place].to_numpy(), np.float64) for place in wanted}
+        odd = {place: np.zeros(len(read[place]), dtype=np.bool_) for place in wanted}
+        doubtful = np.flatnonzero(~np.isfinite(sum(values.values())))
+        if doubtful.size:
+            texts = self._some_rows(doubtful)
+            for place in wanted:
+                values[place][doubtful], odd[place][doubtful] = numbers_in(texts[place])
+        return [(values[place], odd[place]) for place in wanted]
+
+    def _some_rows(self, rows: NDArray[np.intp]) -> list[pl.Series]:
+        if 2 * rows.size > len(self._records) or self.broken.any():
+            return [column.gather(rows) for column in self.columns()]
+        pieces = self._records.pieces()
+        text = b"\n".join([pieces[row] for row in rows.tolist()])
+        return self._read(text, dict.fromkeys(range(self._width), pl.String))
+
+    def _read(
+        self, text: bytes, kinds: Mapping[int, Any], places: Sequence[int] | None = None
+    ) -> list[pl.Series]:
+        schema = {str(place): kind for place, kind in kinds.items()}
+        frame = pl.read_csv(
+            text, has_header=False, schema=schema, columns=places, ignore_errors=True
+        )
+        return frame.get_columns()
 
 
 def cells_in(text: str) -> list[str]:
@@ -100,14 +144,20 @@ def _ends_cell_by_cell(window: bytes) -> Ends:
     return Ends(np.array(ends, np.int64), regular=False, opened=opened)
 
 
-def _widths(records: Records) -> Places:
-    """How many cells each of some regular records has."""
+def _widths(records: Records, width: int) -> Marks:
+    """Which of some regular records have another number of cells."""
     codes = np.frombuffer(records.text, np.uint8)
     outside = codes == COMMA
     if b'"' in records.text:
         outside &= np.cumsum(codes == QUOTE, dtype=np.uint8) % 2 == 0
     commas = np.flatnonzero(outside)
-    return np.searchsorted(commas, records.ends) - np.searchsorted(commas, records.starts) + 1
+    starts, ends = records.starts, records.ends
+    if width > 1 and commas.size == len(starts) * (width - 1):
+        by_row = commas.reshape(-1, width - 1)
+        if ((by_row[:, 0] >= starts) & (by_row[:, -1] < ends)).all():
+            return np.zeros(len(starts), dtype=np.bool_)
+    found = np.searchsorted(commas, ends) - np.searchsorted(commas, starts) + 1
+    return np.asarray(found != width)
 
 
 def _cells_row_by_row(records: Records, width: int) -> tuple[list[pl.Series], Marks]:

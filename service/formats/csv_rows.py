@@ -13,8 +13,8 @@ import polars as pl
 
 from models.relation import Array
 from service.formats.block import UNREADABLE_ROW, Answer, Block, Header, Marks
-from service.formats.cells import csv_text, decimal_commas, finite, numbers_in, quoted
-from service.formats.csv_records import cells_in, cells_of, csv_ends
+from service.formats.cells import csv_text, decimal_commas, finite, quoted
+from service.formats.csv_records import Cells, cells_in, csv_ends
 from service.formats.errors import FormatError, HeaderError, shown
 from service.formats.flag_text import flags_as_csv
 from service.formats.header import (
@@ -45,40 +45,40 @@ class CsvDecoder:
         self._places: dict[str, int] = {}
         self._given = False
 
-    def feed(self, piece: bytes) -> list[Block]:
+    def feed(self, piece: bytes) -> Iterator[Block]:
         """See Decoder."""
         return self._blocks(self._cutter.feed(piece))
 
-    def close(self) -> list[Block]:
+    def close(self) -> Iterator[Block]:
         """See Decoder."""
-        blocks = self._blocks(self._cutter.close())
+        yield from self._blocks(self._cutter.close())
         if self._header is None:
             raise FormatError("a header record and rows", "an empty body")
         if not self._given:
-            blocks.append(self._block(self._header, Records.none()))
-        return blocks
+            yield self._block(self._header, Records.none())
 
-    def _blocks(self, cut: Iterator[Records]) -> list[Block]:
-        blocks = []
+    def _blocks(self, cut: Iterator[Records]) -> Iterator[Block]:
         for records in cut:
-            rows = records
+            rows, first = records, 0
             if self._header is None:
                 self._header = _header(records)
                 self._places = _places(self._header, self._appends, int(records.lines[0]))
-                rows = records.without_first()
+                rows, first = records.without_first(), records.first_ones() - 1
             if len(rows):
-                blocks.append(self._block(self._header, rows))
-        return blocks
+                yield self._block(self._header, rows, first)
 
-    def _block(self, header: Header, records: Records) -> Block:
-        columns, broken = cells_of(records, len(header.names))
+    def _block(self, header: Header, records: Records, first: int = 0) -> Block:
+        """Some rows; ``first`` of them are those by which the table is judged."""
+        cells = Cells(records, len(header.names))
+        broken = cells.broken
         values: dict[str, Array] = {}
         unreadable: dict[str, Marks] = {}
-        for name, place in self._places.items():
-            values[name], odd = numbers_in(columns[place])
+        numbers = cells.numbers(self._places.values())
+        for (name, place), (found, odd) in zip(self._places.items(), numbers, strict=True):
+            values[name] = found
             if odd.any():
                 unreadable[name] = odd
-                if not self._given and decimal_commas(columns[place]):
+                if first and decimal_commas(cells.columns()[place].head(first)):
                     raise HeaderError(
                         "decimal points", "decimal commas", line=int(records.lines[0]),
                         column=header.names[place], mend="write 17.2, not 17,2",
@@ -94,7 +94,7 @@ class CsvDecoder:
             broken=broken,
             cells=lambda: [
                 column.fill_null("").alias(name)
-                for column, name in zip(columns, header.names, strict=True)
+                for column, name in zip(cells.columns(), header.names, strict=True)
             ],
         )
 
@@ -122,7 +122,7 @@ class CsvEncoder:
     def block(self, block: Block, answer: Answer) -> bytes:
         """See Encoder."""
         own = block.header.form == KEY
-        passed = [block.records] if own else self._cells(block)
+        passed = [block.records] if own else [csv_text(c) for c in block.columns(self._names)]
         if block.broken.any():
             empty = "," * (len(block.header.names) - 1) if own else ""
             whole = quoted(block.records) + empty
@@ -141,19 +141,6 @@ class CsvEncoder:
     def end(self) -> bytes:
         """See Encoder."""
         return b""
-
-    def _cells(self, block: Block) -> list[pl.Series]:
-        """The cells of a table of another format, in the columns of its first rows."""
-        cells = {column.name: column for column in block.cells()}
-        for name in cells.keys() - set(self._names):
-            row = int(cells[name].is_not_null().to_numpy().argmax())
-            raise HeaderError(
-                "the same names as in the first rows", shown(name), line=int(block.lines[row]),
-                mend="a CSV answer has the columns of the first rows: name it there, with null, "
-                "or ask for application/x-ndjson",
-            )  # fmt: skip
-        empty = pl.repeat("", len(block), dtype=pl.String, eager=True)
-        return [csv_text(cells.get(name, empty)) for name in self._names]
 
 
 def _header(records: Records) -> Header:

@@ -5,6 +5,7 @@ FormatError          the body is not what its media type promises
     CellError        a cell is refused, where the caller asked for strictness
     RecordTooLong    one record exceeds what is taken
 SpoolFull            there is no room for the answer
+    AnswerTooLong    it is longer than one may be
 """
 
 SHOWN = 60
@@ -49,3 +50,7 @@ class RecordTooLong(FormatError):
 
 class SpoolFull(Exception):
     """There is no room for the answer on this machine."""
+
+
+class AnswerTooLong(SpoolFull):
+    """The answer is longer than one may be."""

@@ -5,6 +5,7 @@ from collections.abc import Callable
 import numpy as np
 import orjson
 import polars as pl
+from numpy.typing import NDArray
 
 from models.flags import Flags, slugs_of
 
@@ -17,6 +18,14 @@ def flags_as_csv(flags: Flags) -> pl.Series:
 def flags_as_json(flags: Flags) -> pl.Series:
     """Lists of slugs, as JSON text."""
     return _spelt(flags, lambda slugs: orjson.dumps(slugs).decode())
+
+
+def combinations(flags: Flags) -> tuple[list[list[str]], NDArray[np.intp]]:
+    """Every combination of flags there is, spelt out, and which of them each row has."""
+    if not flags.any():
+        return [[]], np.zeros(flags.size, dtype=np.intp)
+    masks, places = np.unique(flags, return_inverse=True)
+    return [list(slugs_of(mask)) for mask in masks.tolist()], places
 
 
 def _spelt(flags: Flags, spell: Callable[[tuple[str, ...]], str]) -> pl.Series:

@@ -2,17 +2,18 @@
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from io import BytesIO
 from typing import Any
 
 import numpy as np
 import orjson
 import polars as pl
-from numpy.typing import NDArray
 
 from models.conversion import Units, from_si
 from models.estimate import Estimates
-from models.flags import Flags, slugs_of
+from models.flags import Flags
 from models.relation import Array
+from service.formats.flag_text import combinations
 from service.formats.json_readings import JsonReadings
 
 PASSED = ("time", "depth")
@@ -32,6 +33,11 @@ class JsonEstimates:
         """All columns but the flags."""
         return (*self.texts, *self.numbers)
 
+    def with_weight(self, weight: Array, total: Array) -> "JsonEstimates":
+        """With each row's share of a combination as a further column."""
+        share = np.divide(weight, total, out=np.zeros_like(weight), where=total > 0)
+        return JsonEstimates(self.texts, {**self.numbers, "weight": share}, self.flags)
+
 
 def laid_out(estimates: Estimates, readings: JsonReadings, units: Units) -> JsonEstimates:
     """What tells each reading apart, and its estimates in the caller's units."""
@@ -48,12 +54,25 @@ def encode(answer: JsonEstimates, shape: str, rest: Mapping[str, Any]) -> bytes:
     return b'{"estimates":' + body + b"," + orjson.dumps(rest)[1:]
 
 
+def encode_members(members: Mapping[str, JsonEstimates], shape: str) -> bytes:
+    """``models``: the estimates of each model by its name, in the shape of the readings."""
+    laid = _rows if shape == "rows" else _columns
+    told = (b'"%b":%b' % (key.encode(), laid(member)) for key, member in members.items())
+    return b'"models":{' + b",".join(told) + b"}"
+
+
 def tabulate(answer: JsonEstimates, media_type: str) -> bytes:
     """The estimates alone, as a table."""
+    frame, text = _frame(answer), BytesIO()
     if media_type == "text/csv":
-        flat = _frame(answer).with_columns(pl.col("flags").list.join(";"))
-        return flat.write_csv().encode()
-    return _frame(answer).write_ndjson().encode()
+        return frame.with_columns(pl.col("flags").list.join(";")).write_csv().encode()
+    if media_type == "application/vnd.apache.parquet":
+        frame.write_parquet(text)
+    elif media_type == "application/vnd.apache.arrow.stream":
+        frame.write_ipc_stream(text)
+    else:
+        frame.write_ndjson(text)
+    return text.getvalue()
 
 
 def _rows(answer: JsonEstimates) -> bytes:
@@ -62,8 +81,8 @@ def _rows(answer: JsonEstimates) -> bytes:
 
 def _columns(answer: JsonEstimates) -> bytes:
     """Column by column: orjson writes NaN as null, each combination of flags is spelt once."""
-    combinations, places = _combinations(answer.flags)
-    spelt = [orjson.dumps(slugs) for slugs in combinations]
+    words, places = combinations(answer.flags)
+    spelt = [orjson.dumps(slugs) for slugs in words]
     parts = [
         orjson.dumps({**answer.texts, **answer.numbers}, option=orjson.OPT_SERIALIZE_NUMPY)[:-1],
         b',"flags":[',
@@ -79,15 +98,7 @@ def _frame(answer: JsonEstimates) -> pl.DataFrame:
     }
     for name, values in answer.numbers.items():
         columns[name] = pl.Series(name, values).fill_nan(None)
-    combinations, places = _combinations(answer.flags)
-    spelt = pl.Series("flags", combinations, dtype=pl.List(pl.String))
+    words, places = combinations(answer.flags)
+    spelt = pl.Series("flags", words, dtype=pl.List(pl.String))
     columns["flags"] = spelt.gather(places)
     return pl.DataFrame(columns)
-
-
-def _combinations(flags: Flags) -> tuple[list[list[str]], NDArray[np.intp]]:
-    """Every combination of flags there is, spelt out, and which of them each row has."""
-    if not flags.any():
-        return [[]], np.zeros(flags.size, dtype=np.intp)
-    masks, places = np.unique(flags, return_inverse=True)
-    return [list(slugs_of(mask)) for mask in masks.tolist()], places

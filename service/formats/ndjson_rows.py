@@ -1,7 +1,8 @@
 """application/x-ndjson: one JSON object a line, one line a row (RFC 8259).
 
 A row is kept as the text it came as, and the answer is inserted before its closing brace. Keys
-may differ from line to line.
+may differ from line to line; those on lines that begin in the first 64 KiB decide what the table
+is taken to hold, such as whether it has a conductivity to answer for.
 """
 
 from collections import Counter
@@ -46,20 +47,17 @@ class NdjsonDecoder:
         self._appends = appends
         self._header: Header | None = None
         self._spellings: dict[str, str] = {}
+        self._known: tuple[str, ...] = ()
 
-    def feed(self, piece: bytes) -> list[Block]:
+    def feed(self, piece: bytes) -> Iterator[Block]:
         """See Decoder."""
-        return self._blocks(self._cutter.feed(piece))
+        return map(self._block, self._cutter.feed(piece))
 
-    def close(self) -> list[Block]:
+    def close(self) -> Iterator[Block]:
         """See Decoder."""
-        blocks = self._blocks(self._cutter.close())
+        yield from map(self._block, self._cutter.close())
         if self._header is None:
             raise FormatError("a JSON object on each line", "an empty body")
-        return blocks
-
-    def _blocks(self, cut: Iterator[Records]) -> list[Block]:
-        return [self._block(records) for records in cut]
 
     def _block(self, records: Records) -> Block:
         pieces = records.pieces()
@@ -67,11 +65,15 @@ class NdjsonDecoder:
         shapes = first_rows(rows)
         keys = self._keys(shapes, records)
         if self._header is None:
-            self._header = Header(keys_of(shapes), KEY)
-        values: dict[str, Array] = {}
+            first = first_rows(rows[: records.first_ones()])
+            self._header = Header(keys_of(first), KEY)
+            self._known = tuple(recognised(self._header.names, self._appends, line=1))
+        nothing, everywhere = np.full(len(rows), np.nan), np.ones(len(rows), dtype=np.bool_)
+        values: dict[str, Array] = dict.fromkeys(self._known, nothing)
         unreadable: dict[str, Marks] = {}
-        absent: dict[str, Marks] = {}
+        absent: dict[str, Marks] = dict.fromkeys(self._known, everywhere)
         for name, key in keys.items():
+            absent.pop(name, None)
             if any(key not in shape for shape in shapes):
                 absent[name] = np.array([key not in row for row in rows], dtype=np.bool_)
                 cells = [row.get(key) for row in rows]
@@ -162,7 +164,7 @@ def _members(block: Block) -> pl.Series:
     parts: list[pl.Series | str] = ["{"]
     for column in block.cells():
         name = folded(column.name)
-        text = json_text(column)
+        text = column if column.name in block.bare else json_text(column)
         if name in block.values:
             number = numbers_as_text(block.values[name])
             odd = block.unreadable.get(name, np.zeros(len(block), dtype=np.bool_))

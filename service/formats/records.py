@@ -17,10 +17,15 @@ from service.formats.errors import FormatError, RecordTooLong
 
 BLOCK_BYTES = 1 << 20
 LINE_BYTES = 1 << 20
+FIRST_BYTES = 64 << 10
+"""The records that begin in so many bytes decide what is read of a table, whatever the block."""
+BLANK_BYTES = 16 << 20
+"""Of blank lines, as many again as of others and these: no logger writes more."""
 
 Places = NDArray[np.int64]
 LF, CR = 10, 13
-BLANKS = np.frombuffer(b" \t\r\n", np.uint8)
+BLANK = b" \t\r\n"
+BLANKS = np.frombuffer(BLANK, np.uint8)
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,6 +69,10 @@ class Records:
         places = np.zeros(0, np.int64)
         return cls(b"", places, places, places, regular=False, dense=False)
 
+    def first_ones(self) -> int:
+        """How many of the first block's records decide what is read of the table."""
+        return int(np.searchsorted(self.starts, FIRST_BYTES))
+
     def without_first(self) -> "Records":
         """All but the first record."""
         begin = int(self.starts[1]) if len(self) > 1 else len(self.text)
@@ -106,10 +115,12 @@ class RecordCutter:
     ) -> None:
         self._find = find
         self._line_bytes = line_bytes
-        self._sizes = (block_bytes, max(block_bytes, line_bytes + len(b"\r\n")))
+        self._sizes = _sizes(max(block_bytes, FIRST_BYTES), line_bytes)
+        self._later_sizes = _sizes(block_bytes, line_bytes)
         self._waiting = bytearray()
         self._line = 1
-        self._begun = False
+        self._marked = self._begun = False
+        self._blanks = self._others = 0
 
     def feed(self, piece: bytes) -> Iterator[Records]:
         """The blocks that this piece completes.
@@ -130,17 +141,40 @@ class RecordCutter:
         return self._blocks(last=True)
 
     def _blocks(self, *, last: bool) -> Iterator[Records]:
+        if not self._begun and not self._begin(last=last):
+            return
         while self._waiting and (last or len(self._waiting) >= self._sizes[0]):
-            if not self._begun:
-                self._begun = True
-                if self._waiting.startswith(codecs.BOM_UTF8):
-                    del self._waiting[: len(codecs.BOM_UTF8)]
-                    continue
             records = self._next(last=last)
             if records is None:
                 return
+            self._sizes = self._later_sizes
             if len(records):
                 yield records
+
+    def _begin(self, *, last: bool) -> bool:
+        """Drop what stands before the first record; whether that was found."""
+        mark = codecs.BOM_UTF8
+        if not self._marked:
+            if len(self._waiting) < len(mark) and not last:
+                return False
+            self._marked = True
+            if self._waiting.startswith(mark):
+                del self._waiting[: len(mark)]
+        blank = len(self._waiting) - len(self._waiting.lstrip(BLANK))
+        dropped = self._waiting.rfind(b"\n", 0, blank) + 1
+        self._line += self._waiting.count(b"\n", 0, dropped)
+        self._count(dropped, 0)
+        self._begun = blank < len(self._waiting)
+        del self._waiting[:dropped]
+        return self._begun
+
+    def _count(self, blanks: int, others: int) -> None:
+        self._blanks += blanks
+        self._others += others
+        if self._blanks > BLANK_BYTES + self._others:
+            raise RecordTooLong(
+                f"at most {BLANK_BYTES} bytes of blank lines", "more", line=self._line
+            )
 
     def _next(self, *, last: bool) -> Records | None:
         """The records of the next window; None while it takes more bytes to tell."""
@@ -177,6 +211,8 @@ class RecordCutter:
             raise self._too_long(int(lines[longest]))
         blank = _blank(codes, starts, stops)
         whole = not blank.any()
+        empty = 0 if whole else int((ends.places - starts + 1)[blank].sum())
+        self._count(empty, len(text) - empty)
         if not whole:
             starts, stops, lines = starts[~blank], stops[~blank], lines[~blank]
         return Records(
@@ -190,17 +226,18 @@ class RecordCutter:
             at = error.start
             if error.end == len(text) and "unexpected end" in error.reason:
                 return
-            raise FormatError(
-                "UTF-8",
-                f"the byte 0x{text[at]:02x}",
-                line=self._line + text.count(b"\n", 0, at),
-                mend="save the table as UTF-8",
-            ) from None
+            line, found = self._line + text.count(b"\n", 0, at), f"the byte 0x{text[at]:02x}"
+            raise FormatError("UTF-8", found, line=line, mend="save the table as UTF-8") from None
 
     def _too_long(self, line: int, mend: str = "") -> RecordTooLong:
         return RecordTooLong(
             f"at most {self._line_bytes} bytes in a record", "more", line=line, mend=mend
         )
+
+
+def _sizes(block_bytes: int, line_bytes: int) -> tuple[int, int]:
+    """Of a window, and of one that is widened to the longest record."""
+    return block_bytes, max(block_bytes, line_bytes + len(b"\r\n"))
 
 
 def _blank(codes: NDArray[np.uint8], starts: Places, stops: Places) -> NDArray[np.bool_]:

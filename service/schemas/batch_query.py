@@ -18,7 +18,7 @@ _FAMILIES: Mapping[str, Registry[Any]] = MappingProxyType(
     {"mixing_model": MIXING_MODELS, "pore_water_model": PORE_WATER_MODELS}
 )
 Place = tuple[str, str, Callable[[str, str], Any]]
-ASIDE = ("format", "strict")
+ASIDE = ("format", "strict", "columns")
 """Parameters of the answer rather than of the estimate."""
 
 
@@ -93,6 +93,12 @@ def _number(name: str, text: str) -> float:
     return float(text)
 
 
+def _whole(name: str, text: str) -> int:
+    if not text.strip().isdecimal():
+        raise ValueError(f"{name}: expected a whole number, found {shown(text)}")
+    return int(text)
+
+
 def _units(_: str, text: str) -> Mapping[str, str]:
     units: dict[str, str] = {}
     for pair in text.split(","):
@@ -124,6 +130,8 @@ PLACES: Mapping[str, Place] = MappingProxyType(
         "pore_water_standard_error": ("pore_water_model.own", "standard_error", _number),
         "coverage_probability": ("", "coverage_probability", _number),
         "propagation": ("propagation", "method", _text),
+        "draws": ("propagation", "draws", _whole),
+        "seed": ("propagation", "seed", _whole),
         "assume_temperature": ("assume", "temperature", _number),
         "assume_temperature_u": ("assume", "temperature_u", _number),
         "units": ("", "units", _units),
@@ -131,7 +139,9 @@ PLACES: Mapping[str, Place] = MappingProxyType(
 )
 """Where each parameter stands in a JSON request: section, key, and how its text is read."""
 
-TEXTS = frozenset(n for n, (_, _, reader) in PLACES.items() if reader is not _number) | {*ASIDE}
+TEXTS = frozenset(n for n, (_, _, reader) in PLACES.items() if reader not in (_number, _whole)) | {
+    *ASIDE
+}
 """Parameters that are no numbers."""
 
 _MEANINGS: Mapping[str, str] = MappingProxyType(
@@ -144,11 +154,15 @@ _MEANINGS: Mapping[str, str] = MappingProxyType(
         "texture": "USDA texture class of the soil, or peat",
         "standard_error": "replaces the model's own uncertainty [m3/m3]",
         "coverage_probability": "of the interval; 0.95 unless given",
-        "propagation": "first-order",
+        "propagation": "first-order or monte-carlo",
+        "draws": "of a Monte Carlo propagation; 10000 unless given",
+        "seed": "of the draws; 1 unless given",
         "assume_temperature": "temperature where a row has none [Cel]",
         "assume_temperature_u": "standard uncertainty of it [K]; 7 unless given",
         "units": "quantity:unit pairs, comma-separated: bulk_conductivity:mS/m",
-        "format": "json, csv or ndjson; beats Accept",
+        "format": "json, csv, ndjson, arrow or parquet; beats Accept",
+        "columns": "comma-separated names of the columns a table is to get, of those it would get "
+        "anyway; flags always come",
         "strict": "true: the first cell that cannot be read ends the batch with 422",
     }
 )

@@ -1,12 +1,12 @@
 """What an answer echoes: every constant that was used, in the caller's own units."""
 
+import json
 from collections.abc import Iterable, Mapping
 from typing import Any
 
 from models.advisories import Advice
 from models.conversion import Units, from_si
 from models.estimate import Basis, Query
-from models.estimate.explanation import Explanation
 from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from models.soil.description import Soil
@@ -18,34 +18,53 @@ def echo_of(basis: Basis, settings: EstimatesSettings, remarks: Iterable[Advice]
 
     remarks: advisories that the readings themselves gave rise to.
     """
-    query, units = basis.query, settings.units
     return {
-        "mixing_model": _model_echo(basis, units),
-        **_salinity_echo(basis, units),
+        "mixing_model": model_echo(basis, settings.units),
+        **_salinity_echo(basis, settings.units),
+        **surroundings_echo(basis.query, settings),
+        "advisories": advice_echo((*basis.advice, *remarks)),
+    }
+
+
+def advice_echo(said: Iterable[Advice]) -> list[dict[str, str]]:
+    """Advisories, each with its code and its text."""
+    return [{"code": one.code, "text": one.text} for one in said]
+
+
+def surroundings_echo(query: Query, settings: EstimatesSettings) -> dict[str, Any]:
+    """Soil, probe and what was assumed: the same whichever model is used."""
+    units = settings.units
+    return {
         "soil": _soil_echo(query.soil, units),
         "probe": _in_units(query.probe, units),
         "assume": _assumed(query, units),
         "coverage_probability": query.probability,
-        "propagation": {"method": "first-order", "interval": "shortest"},
-        "advisories": [
-            {"code": said.code, "text": said.text} for said in (*basis.advice, *remarks)
-        ],
+        "propagation": settings.propagation.model_dump(),
     }
 
 
-def explanation_echo(found: Explanation) -> dict[str, Any]:
-    """Effects of temperature, one list entry per reading, null where one cannot be told."""
-    effects = {
-        name: [value if value == value else None for value in sizes.tolist()]  # noqa: PLR0124
-        for name, sizes in found.effects.items()
-    }
+NOT_BRIEF = frozenset({"advisories", "mixing_models", "not_answering"})
+"""Too long for a header, many of which end at 4 or 8 KiB on their way."""
+
+
+def _briefly(value: Any) -> Any:
+    """A part of an echo without the reasons in words, numbers to ten digits."""
+    if isinstance(value, Mapping):
+        return {n: _briefly(v) for n, v in value.items() if n not in {"reason", "sources"}}
+    return float(f"{value:.10g}") if isinstance(value, float) else value
+
+
+def headers_of(echo: Mapping[str, Any], units: Mapping[str, str]) -> dict[str, str]:
+    """What a table cannot say in its cells: models, units, advisories, every constant used."""
+    model, pore_water = echo["mixing_model"], echo.get("pore_water_model")
+    constants = {name: _briefly(value) for name, value in echo.items() if name not in NOT_BRIEF}
+    codes = dict.fromkeys(said["code"] for said in echo["advisories"])
     return {
-        "explanation": {
-            "reference_temperature": {"value": 20.0, "unit": "Cel"},
-            "unit": "m3/m3",
-            "effects": effects,
-            "dominant": list(found.dominant),
-        }
+        "Mixing-Model": model["name"] if isinstance(model, Mapping) else model,
+        **({"Pore-Water-Model": pore_water["name"]} if pore_water else {}),
+        "Units": ", ".join(f"{name}={unit}" for name, unit in units.items()),
+        "Advisories": ", ".join(codes),
+        "Estimate-Basis": json.dumps(constants, separators=(",", ":")),
     }
 
 
@@ -69,7 +88,8 @@ def _assumed(query: Query, units: Units) -> dict[str, Any]:
     return _parameters(values, {"temperature": query.assumed_temperature_u}, units)
 
 
-def _model_echo(basis: Basis, units: Units) -> dict[str, Any]:
+def model_echo(basis: Basis, units: Units) -> dict[str, Any]:
+    """The mixing model as it was used."""
     model, query = basis.model, basis.query
     echo: dict[str, Any] = {"name": model.key, "revision": model.revision}
     echo |= _parameters(basis.values, basis.uncertainties, units)

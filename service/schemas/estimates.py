@@ -12,7 +12,9 @@ from models.salinity import PORE_WATER_MODELS
 from models.soil import TEXTURES
 from service.schemas.words import Body, Number, body_of, described, quantity_fields
 
-ModelKey = Annotated[str, WithJsonSchema({"type": "string", "enum": list(MIXING_MODELS)})]
+ALL = "all"
+"""In place of a mixing model: every one that can answer."""
+ModelKey = Annotated[str, WithJsonSchema({"type": "string", "enum": [*MIXING_MODELS, ALL]})]
 TextureKey = Annotated[
     str, WithJsonSchema({"type": "string", "examples": ["loam"], "enum": list(TEXTURES)})
 ]
@@ -35,7 +37,7 @@ class ModelChoice(Body):
     model_config = ConfigDict(extra="allow", frozen=True, hide_input_in_errors=True)
 
     name: ModelKey
-    standard_error: Annotated[Number, Field(ge=0)] | None = Field(
+    standard_error: Annotated[Number, Field(ge=0, le=1)] | None = Field(
         None,
         description="Replaces the model's own uncertainty [m3/m3]: a site's own figure, or 0 to "
         "see the share of the inputs alone.",
@@ -48,7 +50,7 @@ class PoreWaterChoice(Body):
     model_config = ConfigDict(extra="allow", frozen=True, hide_input_in_errors=True)
 
     name: PoreWaterKey
-    standard_error: Annotated[Number, Field(ge=0)] | None = Field(
+    standard_error: Annotated[Number, Field(ge=0, le=3)] | None = Field(
         None, description="Replaces the model's own uncertainty, relative to the conductivity."
     )
 
@@ -90,9 +92,16 @@ class Assume(Body):
 
 
 class Propagation(Body):
-    """How uncertainty is carried to the answer."""
+    """How uncertainty is carried to the answer.
 
-    method: Literal["first-order"] = "first-order"
+    First order (JCGM 100) with the equation's own quantiles where it bends, or draws (JCGM 101):
+    the same draws for every reading, so that a reading's band does not depend on its neighbours.
+    """
+
+    method: Literal["first-order", "monte-carlo"] = "first-order"
+    draws: Annotated[int, Field(strict=True, ge=100, le=1_000_000)] = 10_000
+    seed: Annotated[int, Field(strict=True, ge=0, le=2**63 - 1)] = 1
+    interval: Literal["shortest"] = "shortest"
 
 
 class EstimatesSettings(Body):
@@ -116,6 +125,15 @@ class EstimatesSettings(Body):
     )
     coverage_probability: Annotated[Number, Field(ge=0.5, le=0.999)] = 0.95
     propagation: Propagation = Propagation()
+    budget: Annotated[bool, Field(strict=True)] = Field(
+        default=False,
+        description="Adds each input's share of the variance, and what would narrow the band most.",
+    )
+    validate_first_order: Annotated[bool, Field(strict=True)] = Field(
+        default=False,
+        alias="validate",
+        description="Adds whether the first-order band agrees with draws (JCGM 101, clause 8).",
+    )
     explain: Annotated[bool, Field(strict=True)] = Field(
         default=False,
         description="Adds what temperature does to each reading, effect by effect [m3/m3].",
@@ -126,6 +144,12 @@ class EstimatesSettings(Body):
         description="UCUM codes by quantity, where they differ from the API's own unit.",
         examples=[{"bulk_conductivity": "mS/m"}],
     )
+
+
+def model_name(settings: EstimatesSettings) -> str | None:
+    """The mixing model that is asked for by name, be it ALL; None: the service chooses."""
+    named = settings.mixing_model
+    return named.name if isinstance(named, ModelChoice) else named
 
 
 ESTIMATED = ("water_content", "bulk_conductivity_25", "pore_water_conductivity",

@@ -5,12 +5,16 @@ from typing import Any
 
 from fastapi import FastAPI
 from fastapi.routing import APIRoute
+from pydantic import TypeAdapter
 
 from service.errors import MEDIA_TYPE, PROBLEMS
 from service.examples import examples, show
 from service.schemas.estimates import SETTINGS
+from service.spectra.bodies import SPECTRA
 
 REFERENCE = "#/components/schemas/{model}"
+BODIES: tuple[TypeAdapter[Any], ...] = (SETTINGS, SPECTRA)
+"""Bodies that routes describe themselves; their parts stand among the components."""
 
 PROBLEM: dict[str, Any] = {
     "title": "Problem",
@@ -65,7 +69,8 @@ class Api(FastAPI):
             for unused in ("HTTPValidationError", "ValidationError"):
                 schemas.pop(unused, None)
             schemas["Problem"] = PROBLEM
-            schemas |= SETTINGS.json_schema(ref_template=REFERENCE)["$defs"]
+            for bodies in BODIES:
+                schemas |= bodies.json_schema(ref_template=REFERENCE).get("$defs", {})
             document["components"]["securitySchemes"] = {
                 "key": {"type": "http", "scheme": "bearer",
                         "description": "a key made by `gleyline key add`"},

@@ -10,16 +10,21 @@ from models.conversion import Units, refuse_units, to_si
 from models.errors import Complaint, ParameterError
 from models.estimate import Basis, Query, SalinityQuery, choose, prepare
 from models.estimate.basis import ASSUMED_TEMPERATURE_U
+from models.estimate.beside.ensemble import EveryModel, prepare_all
 from models.mixing import MIXING_MODELS
 from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from models.registry import Registry
 from models.relation import Relation
 from models.salinity import PORE_WATER_MODELS
+from models.soil import TEXTURES
 from models.soil.description import Soil, describe
+from models.soil.texture import texture_key
+from models.uncertainty.draws import Draws
 from service.errors import Unprocessable
-from service.faults import problems_of, shown
+from service.faults import hint, problems_of, shown
 from service.schemas.estimates import (
+    ALL,
     ECHOED,
     SETTINGS,
     EstimatesSettings,
@@ -40,22 +45,23 @@ def settings_of(document: Mapping[str, Any]) -> EstimatesSettings:
         raise Unprocessable("the request holds what cannot be used", faults) from None
 
 
-def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis:
-    """Everything an estimate rests on beside its readings.
+def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis | EveryModel:
+    """Everything an estimate rests on beside its readings; for ALL that of every model.
 
     columns: names of the columns the readings have.
     Raises ModelError, with the place of each complaint, when it cannot be settled.
     """
     units = settings.units
     refuse_units(units)
-    soil = _soil(settings, units)
+    soil = soil_of(settings.soil, units)
     probe = to_si("probe", _stated(settings.probe), units)
     assumed = to_si("assume", _stated(settings.assume), units)
-    name, given, standard_error = _model(
+    name, given, standard_error = model_of(
         "mixing_model", MIXING_MODELS, settings.mixing_model, units
     )
-    salt = _model("pore_water_model", PORE_WATER_MODELS, settings.pore_water_model, units)
-    TEMPERATURE_COMPENSATIONS[settings.temperature_compensation]
+    salt = model_of("pore_water_model", PORE_WATER_MODELS, settings.pore_water_model, units)
+    compensation = settings.temperature_compensation
+    named_in(TEMPERATURE_COMPENSATIONS, compensation, ("temperature_compensation",))
     query = Query(
         model=name or "",
         given=given,
@@ -65,16 +71,39 @@ def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis:
         assumed_temperature=assumed.get("temperature"),
         assumed_temperature_u=assumed.get("temperature_u", ASSUMED_TEMPERATURE_U),
         probability=settings.coverage_probability,
+        draws=_draws(settings),
         columns=frozenset(columns),
         salinity=SalinityQuery(
             model=salt[0],
             given=salt[1],
             standard_error=salt[2],
-            compensation=settings.temperature_compensation,
+            compensation=compensation,
         ),
     )
     _refuse_unreachable(query)
+    if name == ALL:
+        return prepare_all(query)
     return prepare(query) if name else choose(query)
+
+
+def named_in(registry: Registry[Any], name: str, place: tuple[str, ...]) -> Any:
+    """The member of that name.
+
+    Raises ParameterError with its place in the request and the nearest name there is.
+    """
+    if name in registry:
+        return registry[name]
+    known = [*registry, *([ALL] if registry is MIXING_MODELS else ())]
+    meant = hint(name, known) or f"; choose one of {', '.join(known)}"
+    detail = f"no {registry.family} is called {shown(name)}{meant}"
+    raise ParameterError(place[0], [Complaint(name, detail, place)])
+
+
+def _draws(settings: EstimatesSettings) -> Draws | None:
+    asked = settings.propagation
+    if asked.method == "first-order":
+        return None
+    return Draws(asked.draws, seed=asked.seed, kind="pseudo-random")
 
 
 def _stated(body: Any) -> dict[str, float]:
@@ -86,8 +115,11 @@ def _stated(body: Any) -> dict[str, float]:
     }
 
 
-def _soil(settings: EstimatesSettings, units: Units) -> Soil:
-    body: Any = settings.soil
+def soil_of(body: Any, units: Units) -> Soil:
+    """A soil as a request describes it, completed; ``body`` is a ``SoilBody``.
+
+    Raises ParameterError with the place of each complaint.
+    """
     stated = to_si("soil", _stated(body), units)
     given = {name: value for name, value in stated.items() if name in QUANTITIES}
     spread = {n.removesuffix("_u"): u for n, u in stated.items() if n not in QUANTITIES}
@@ -98,10 +130,12 @@ def _soil(settings: EstimatesSettings, units: Units) -> Soil:
             for name in lonely
         ]
         raise ParameterError("soil", complaints)
+    if body.texture is not None:
+        named_in(TEXTURES, texture_key(body.texture), ("soil", "texture"))
     return describe(body.texture, given, spread)
 
 
-def _model(
+def model_of(
     section: str,
     registry: Registry[Any],
     named: str | ModelChoice | PoreWaterChoice | None,
@@ -109,10 +143,12 @@ def _model(
 ) -> tuple[str | None, dict[str, Any], float | None]:
     """Name, parameters in SI, and the caller's own standard error."""
     if named is None or isinstance(named, str):
-        if named is not None:
-            registry[named]
+        if named is not None and not _is_all(section, named):
+            named_in(registry, named, (section,))
         return named, {}, None
-    model: Relation = registry[named.name]
+    if _is_all(section, named.name):
+        return named.name, _nothing_of_its_own(named), named.standard_error
+    model: Relation = named_in(registry, named.name, (section, "name"))
     own = {n: v for n, v in (named.model_extra or {}).items() if n not in ECHOED}
     _refuse_revision(section, named, model.revision)
     known = {parameter.name: parameter for parameter in model.parameters}
@@ -131,6 +167,22 @@ def _model(
     if complaints:
         raise ParameterError(section, complaints)
     return named.name, given, named.standard_error
+
+
+def _is_all(section: str, name: str) -> bool:
+    return section == "mixing_model" and name == ALL
+
+
+def _nothing_of_its_own(named: ModelChoice | PoreWaterChoice) -> dict[str, Any]:
+    """No parameters; whoever gives one means a model that is not named."""
+    complaints = [
+        Complaint(name, f"{name} belongs to one model; all takes none", ("mixing_model", name))
+        for name in named.model_extra or {}
+        if name not in ECHOED
+    ]
+    if complaints:
+        raise ParameterError("mixing_model", complaints)
+    return {}
 
 
 def _is_number(value: Any) -> bool:

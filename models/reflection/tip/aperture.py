@@ -22,7 +22,8 @@ Model = Literal["capacitive", "radiating", "fitted", "aperture-field"]
 MODELS: Mapping[Model, str] = MappingProxyType({
     "capacitive": "y = eps (Stuchly and Stuchly 1980)",
     "radiating": "y = eps + g eps^2.5, g = -j |g| f^3 (Marsland and Evans 1987), g from the radii",
-    "fitted": "y = eps + h f^2 eps^2 - j g f^3 eps^2.5, h and g real, from four or more standards",
+    "fitted": "y = eps + h f^2 eps^2 - j g f^3 eps^2.5 + what these two bring in higher powers, h "
+    "and g real and the same at all frequencies, from four or more standards",
     "aperture-field": "y = eps (1 + sum over n > 1 of m_n (-j k)^n), k = 2 pi f sqrt(eps) / c, "
     "m_n from the radii (Levine and Papas 1951, Misra 1987)",
 })  # fmt: skip
@@ -32,6 +33,11 @@ TERMS = 64
 REACH = 25.0
 """|k| 2b up to which the series has digits left; beyond, an aperture is no longer small."""
 UNIT = 1e9  # Hz, of the fitted coefficients
+WAVE_NUMBER = 2 * np.pi * UNIT / speed_of_light
+FOLLOWING = 12
+"""Powers up to which a fitted aperture is carried on."""
+USUAL = 3.3
+"""Ratio of the radii of a 50 ohm line filled with PTFE."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -106,6 +112,30 @@ class Aperture:
             detail = f"the {self.model} aperture needs inner_radius and outer_radius, in m"
             raise ParameterError("aperture", [Complaint("aperture", detail, ("aperture",))])
 
+    @property
+    def coefficients(self) -> ComplexArray:
+        """Of y / eps as a power series of sqrt(eps) times the frequency in GHz."""
+        if self.model == "capacitive":
+            return np.ones(1, dtype=complex)
+        if self.model == "fitted":
+            return self._fitted()
+        assert self.geometry is not None  # noqa: S101 - asked before
+        known = self.geometry.series * (-1j * WAVE_NUMBER) ** np.arange(TERMS)
+        return known if self.model == "aperture-field" else known[:4] * (1, 0, 0, 1)
+
+    def _fitted(self) -> ComplexArray:
+        """h and g, and the higher powers that they bring in an aperture of like proportions."""
+        h, g = self.fitted
+        shape = Geometry(1.0, USUAL) if self.geometry is None else self.geometry
+        series = shape.series[:FOLLOWING]
+        found = np.zeros(FOLLOWING, dtype=complex)
+        found[0] = 1.0
+        for n in range(2, FOLLOWING):
+            halves, odd = (n - 3 * (n % 2)) // 2, n % 2
+            own = series[n] / (series[2] ** halves * series[3] ** odd)
+            found[n] = own * h**halves * (-1j * g) ** odd
+        return found
+
     @np.errstate(all="ignore")
     def admittance(
         self, permittivity: ComplexArray, frequency: Array
@@ -114,34 +144,14 @@ class Aperture:
 
         permittivity: eps' - j eps''. frequency: Hz, broadcast with it.
         """
-        eps = permittivity
-        root = np.sqrt(eps)
+        x = np.sqrt(permittivity) * (frequency / UNIT)
         if self.model == "aperture-field" and self.geometry is not None:
-            return self._field(eps, root, frequency)
-        h, g = self._terms(frequency)
-        value = eps + eps * eps * (h + g * root)
-        return value, 1 + eps * (2 * h + 2.5 * g * root)
-
-    def _terms(self, frequency: Array) -> tuple[ComplexArray, ComplexArray]:
-        """Coefficients of eps^2 and eps^2.5."""
-        if self.model == "radiating" and self.geometry is not None:
-            k = 2 * np.pi * frequency / speed_of_light
-            return 0j * k, 1j * self.geometry.series[3] * k**3
-        h, g = self.fitted if self.model == "fitted" else (0.0, 0.0)
-        f = frequency / UNIT
-        return h * f**2 + 0j, -1j * g * f**3
-
-    def _field(
-        self, eps: ComplexArray, root: ComplexArray, frequency: Array
-    ) -> tuple[ComplexArray, ComplexArray]:
-        assert self.geometry is not None  # noqa: S101 - asked before
-        x = -2j * np.pi * frequency * root / speed_of_light
-        x = np.where(np.abs(x) * 2 * self.geometry.outer <= REACH, x, np.nan)
+            x = np.where(np.abs(x) * WAVE_NUMBER * 2 * self.geometry.outer <= REACH, x, np.nan)
         value, slope = np.zeros_like(x), np.zeros_like(x)  # of the series, by x
-        for coefficient in self.geometry.series[::-1]:
+        for coefficient in self.coefficients[::-1]:
             slope = slope * x + value
             value = value * x + coefficient
-        return eps * value, value + 0.5 * x * slope
+        return permittivity * value, value + 0.5 * x * slope
 
     @np.errstate(all="ignore")
     def permittivity(self, admittance: ComplexArray, frequency: Array) -> ComplexArray:
@@ -153,11 +163,13 @@ class Aperture:
             return admittance + 0.0
         eps = admittance + 0.0
         for share in (0.25, 0.5, 0.75, 1.0):
-            for _ in range(4 if share < 1 else 25):
+            for _ in range(3 if share < 1 else 25):
                 value, slope = self.admittance(eps, frequency)
                 value = share * value + (1 - share) * eps - admittance
                 step = value / (share * slope + (1 - share))
-                limit = 0.5 * np.abs(eps)
-                eps = eps - step * np.minimum(1.0, limit / np.maximum(np.abs(step), 1e-300))
+                size = np.abs(step)
+                eps = eps - step * np.minimum(1.0, 0.5 * np.abs(eps) / np.maximum(size, 1e-300))
+                if not np.any(size > 1e-13 * np.abs(eps)):
+                    break
         value, _ = self.admittance(eps, frequency)
         return np.where(np.abs(value - admittance) <= 1e-9 * np.abs(admittance), eps, np.nan)

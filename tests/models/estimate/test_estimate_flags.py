@@ -50,7 +50,7 @@ def test_an_ordinary_reading_has_a_number_and_no_flag():
         ({"out-of-gate:apparent_permittivity"},
          {"apparent_permittivity": 0.5, "temperature": 14.0}),
         ({"permittivity-above-water"}, {"apparent_permittivity": 85.0, "temperature": 14.0}),
-        ({"inconsistent", "wetter-than-pores"},
+        ({"inconsistent"},
          {"apparent_permittivity": 45.0, "temperature": 14.0}),
     ],
 )  # fmt: skip
@@ -259,9 +259,11 @@ def test_a_travel_time_faster_than_light_is_no_reading(time):
 
 
 def test_a_missing_frequency_is_not_taken_for_a_known_one():
-    cells = {"apparent_permittivity": 24.0, "temperature": 20.0, "bulk_conductivity": 1.0}
+    cells = {"apparent_permittivity": 24.0, "temperature": 20.0, "bulk_conductivity": 3.0}
     unknown = told("topp-1980", probe={}, frequency=NAN, **cells)[1]
-    assert unknown["conduction_correction"] == 0.0
+    assert np.isnan(unknown["conduction_correction"])
+    dry = told("topp-1980", probe={}, **(cells | {"bulk_conductivity": 0.0}))[1]
+    assert unknown["water_content_lower"] < dry["water_content_lower"] - 0.005
 
 
 def test_what_is_missing_is_named_with_where_to_say_it():

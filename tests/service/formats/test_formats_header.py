@@ -177,13 +177,15 @@ def test_a_name_twice_is_no_json():
     )
 
 
-def test_a_key_that_comes_too_late_for_a_csv_answer():
-    lines = ['{"apparent_permittivity":17}'] * 4
-    lines[3] = '{"apparent_permittivity":17,"late":1}'
-    told = refusal("\n".join(lines), "ndjson", "csv", block_bytes=60)
+@pytest.mark.parametrize("out", ["csv", "arrow", "parquet"])
+@pytest.mark.parametrize("block_bytes", [60, 1 << 20])
+def test_a_key_that_comes_too_late_for_an_answer_with_columns(out, block_bytes):
+    lines = ['{"apparent_permittivity":17}'] * 3_000  # more than the first 64 KiB
+    lines[2_800] = '{"apparent_permittivity":17,"late":1}'
+    told = refusal("\n".join(lines), "ndjson", out, block_bytes=block_bytes)
     assert str(told) == (
-        "line 4: expected the same names as in the first rows, found 'late': a CSV answer has the "
-        "columns of the first rows: name it there, with null, or ask for application/x-ndjson"
+        "line 2801: expected the same names as in the first rows, found 'late': this answer has "
+        "the columns of the first rows: name it there, with null, or ask for application/x-ndjson"
     )
 
 

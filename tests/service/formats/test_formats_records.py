@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from service.formats.csv_records import cells_of, csv_ends
+from service.formats.csv_records import Cells, csv_ends
 from service.formats.errors import FormatError, RecordTooLong
 from service.formats.records import RecordCutter, line_ends
 from tests.service.formats.doubling import cut
@@ -138,9 +138,10 @@ def taken_apart(text):
     cutter = RecordCutter(csv_ends)
     rows = []
     for block in [*cutter.feed(text.encode()), *cutter.close()]:
-        columns, broken = cells_of(block, 2)
-        cells = [list(row) for row in zip(*(c.fill_null("") for c in columns), strict=True)]
-        for row, odd in zip(cells, broken.tolist(), strict=True):
+        found = Cells(block, 2)
+        columns = [column.fill_null("") for column in found.columns()]
+        cells = [list(row) for row in zip(*columns, strict=True)]
+        for row, odd in zip(cells, found.broken.tolist(), strict=True):
             assert not odd or row == ["", ""]
             rows.append(None if odd else row)
     return rows

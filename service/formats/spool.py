@@ -1,14 +1,13 @@
 """Where an answer waits until its table has ended: in memory while short, else in a file."""
 
 import errno
-import io
 import tempfile
 from types import TracebackType
-from typing import IO, Any, Self
+from typing import IO, Any, Protocol, Self
 
-from service.formats.errors import SpoolFull
+from service.formats.errors import AnswerTooLong, SpoolFull
 
-IN_MEMORY = 8 << 20
+IN_MEMORY = 1 << 20
 """Bytes above which a spool is kept in a file."""
 _FULL = frozenset({errno.ENOSPC, errno.EDQUOT, errno.EFBIG})
 
@@ -25,9 +24,9 @@ class Spool:
         self.size = 0
 
     def write(self, data: bytes) -> None:
-        """Append. Raises SpoolFull when there is no room, here or as agreed."""
+        """Append. Raises SpoolFull when there is no room, AnswerTooLong."""
         if self._most is not None and self.size + len(data) > self._most:
-            raise SpoolFull(f"the answer has more than {self._most} bytes", as_agreed=True)
+            raise AnswerTooLong(f"the answer has more than {self._most} bytes")
         write_to(self._file, data)
         self.size += len(data)
         Spool.waiting += len(data)
@@ -64,7 +63,16 @@ class Spool:
         self.close()
 
 
-def write_to(target: IO[bytes], data: bytes) -> None:
+
+class Writable(Protocol):
+    """What answers are written to."""
+
+    def write(self, data: bytes, /) -> object:
+        """Append."""
+        ...
+
+
+def write_to(target: Writable, data: bytes) -> None:
     """Write all of it. Raises SpoolFull when there is no room left."""
     try:
         target.write(data)
@@ -72,10 +80,3 @@ def write_to(target: IO[bytes], data: bytes) -> None:
         if error.errno in _FULL:
             raise SpoolFull("there is no room left for the answer") from None
         raise
-
-
-def end_of(target: IO[bytes]) -> int:
-    """The length of a file; it stands at its beginning afterwards."""
-    length = target.seek(0, io.SEEK_END)
-    target.seek(0)
-    return length

@@ -1,0 +1,106 @@
+"""Ayers and Westcot (1985): the water that must pass below the roots to keep salt where it is.
+
+Conductivities at 25 Cel, S/m: of the water applied, and of the saturated paste extract. Another
+method gives another answer: the time-integrated chart of ASCE Manual 71 gives 0.2 where equation 9
+gives 0.32 (tomato, water of 3 dS/m).
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from models.decisions.outcome import Known, Outcome, outcome
+from models.relation import Array, Citation, column
+
+SOURCE = Citation(
+    authors="Ayers, R. S.; Westcot, D. W.",
+    year=1985,
+    title="Water quality for agriculture",
+    where="FAO Irrigation and Drainage Paper 29, revision 1, section 2.4",
+    equation="LR = ECw / (5 ECe - ECw) (9); AW = ET / (1 - LR) (7)",
+    note="equation 9 from a secondary copy; equation 7 and the extraction pattern from memory",
+)
+CONVENTIONAL, FREQUENT = "conventional", "high-frequency"
+METHODS = (CONVENTIONAL, FREQUENT)
+"""Equation 9 with the extract the crop is to have; or, for drip and daily sprinkling,
+ECw / (2 max ECe) with the extract at which it yields nothing."""
+UPTAKE = (0.4, 0.3, 0.2, 0.1)
+"""Share of the water taken up in each quarter of the root zone, from the top."""
+
+
+@dataclass(frozen=True, slots=True)
+class Leaching:
+    """One row per question, shape (n,)."""
+
+    requirement: Outcome
+    """Share of the applied water that is to pass below the roots; NaN where ``too_saline``."""
+    too_saline: NDArray[np.bool_]
+    """The water is too saline for this target: no share of it would do."""
+
+
+def requirement(
+    water_conductivity: ArrayLike, extract_conductivity: ArrayLike, *, method: str = CONVENTIONAL
+) -> Array:
+    """Leaching requirement, elementwise; NaN where no share below 1 would do."""
+    water, extract = column(water_conductivity), column(extract_conductivity)
+    room = 5.0 * extract - water if method == CONVENTIONAL else 2.0 * extract
+    with np.errstate(invalid="ignore", divide="ignore"):
+        share = water / room
+    return np.where((room > 0) & (share < 1.0), share, np.nan)
+
+
+def require_leaching(
+    water_conductivity: Known,
+    extract_conductivity: Known,
+    *,
+    method: str = CONVENTIONAL,
+    probability: float = 0.95,
+) -> Leaching:
+    """Leaching requirement with its band, elementwise.
+
+    extract_conductivity: the target; with ``high-frequency`` that at which nothing is left.
+    """
+    given = {"water": water_conductivity, "extract": extract_conductivity}
+
+    def share(water: Array, extract: Array) -> Array:
+        return requirement(water, extract, method=method)
+
+    found = outcome(share, given, low=0.0, high=1.0, probability=probability)
+    water, extract = (
+        column(known[0] if isinstance(known, tuple) else known) for known in given.values()
+    )
+    numbers = np.isfinite(water) & np.isfinite(extract)
+    return Leaching(found, np.isnan(found.value) & numbers)
+
+
+def applied_water(
+    evapotranspiration: Known, leaching_requirement: Known, *, probability: float = 0.95
+) -> Outcome:
+    """Water to apply so that the crop has its own and the rest leaches (Eq. 7), elementwise, m."""
+    given = {"used": evapotranspiration, "share": leaching_requirement}
+
+    def applied(used: Array, share: Array) -> Array:
+        return np.where(share < 1.0, used / np.where(share < 1.0, 1.0 - share, 1.0), np.nan)
+
+    return outcome(applied, given, low=0.0, probability=probability)
+
+
+def root_zone_profile(water_conductivity: ArrayLike, leaching_fraction: ArrayLike) -> Array:
+    """Conductivity of the soil water at the top of each quarter and at the bottom, S/m.
+
+    Shape (..., 5). Salt stays while roots take up 40, 30, 20 and 10 % of the water, quarter by
+    quarter.
+    """
+    water, share = column(water_conductivity), column(leaching_fraction)
+    left = 1.0 - np.concatenate([[0.0], np.cumsum(UPTAKE)]) * (1.0 - share[..., np.newaxis])
+    with np.errstate(divide="ignore"):
+        return water[..., np.newaxis] / left
+
+
+def concentration_factor(leaching_fraction: ArrayLike) -> Array:
+    """Mean extract conductivity of the root zone over that of the water, elementwise.
+
+    The extract is taken as half as saline as the soil water.
+    """
+    return 0.5 * root_zone_profile(1.0, leaching_fraction).mean(axis=-1)

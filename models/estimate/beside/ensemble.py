@@ -1,0 +1,163 @@
+"""Every mixing model that can answer, side by side, and what they say together.
+
+A model's weight is the inverse square of its own uncertainty at that reading, which grows outside
+its range; a model whose declared range does not hold the reading is shown and weighs nothing. The
+combined variance is the weighted mean of the models' variances plus the weighted spread between
+them: the spread is an error all readings of this soil share.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from models.advisories import Advice
+from models.errors import Complaint, ModelError, ParameterError
+from models.estimate.basis import Basis, Query, prepare
+from models.estimate.choice import suits_soil
+from models.estimate.pipeline import Estimates, estimate
+from models.estimate.water_content import most_water
+from models.flags import BIT, Flags
+from models.mixing import MIXING_MODELS
+from models.quantity import band_names
+from models.readings import Readings
+from models.relation import Array
+from models.uncertainty.coverage import shortest_interval
+
+OUTSIDE = (
+    BIT["outside-model-range"]
+    | BIT["inconsistent"]
+    | BIT["low-frequency"]
+    | BIT["outside-water-range"]
+)
+"""Any of these takes a model's weight away."""
+
+
+@dataclass(frozen=True, slots=True)
+class Member:
+    """One model's answer, and its weight at each reading."""
+
+    estimates: Estimates
+    weight: Array
+
+
+@dataclass(frozen=True, slots=True)
+class Ensemble:
+    """All members, and their combination; shape (n,), SI."""
+
+    members: Mapping[str, Member]
+    columns: Mapping[str, Array]
+    """Water content with its band, and ``model_spread``: standard deviation between the models
+    that have weight."""
+    flags: Flags
+    """What all members say of a reading; where none has weight, what any of them says."""
+
+
+COLUMNS = (*band_names("water_content"), "model_spread")
+
+SAID_ONCE = frozenset(
+    {
+        "indirect-measurement",
+        "numbers-not-verdicts",
+        "generic-equation",
+        "texture-defaults",
+        "frequency-assumed",
+        "temperature-assumed",
+        "porosity-disagrees",
+    }
+)
+
+
+@dataclass(frozen=True, slots=True)
+class EveryModel:
+    """A query, bound to every mixing model that has what it needs."""
+
+    query: Query
+    bases: Mapping[str, Basis]
+    silent: Mapping[str, str]
+    """Models that cannot answer, and why."""
+
+    @property
+    def advice(self) -> tuple[Advice, ...]:
+        """What the members' answers must be read with, said once."""
+        fullest: dict[str, Advice] = {}
+        for basis in self.bases.values():
+            for said in basis.advice:
+                known = fullest.get(said.code)
+                if said.code in SAID_ONCE and (known is None or len(known.text) < len(said.text)):
+                    fullest[said.code] = said
+        return tuple(fullest.values())
+
+    def estimate(self, readings: Readings) -> Ensemble:
+        """Every model's estimates, and their combination."""
+        members = {key: _member(readings, basis) for key, basis in self.bases.items()}
+        weights = np.array([member.weight for member in members.values()])
+        flags = np.array([member.estimates.flags for member in members.values()])
+        heard = np.any(weights > 0, axis=0)
+        said = np.bitwise_or.reduce(flags, axis=0)
+        common = np.bitwise_and.reduce(flags, axis=0)
+        most = max(most_water(basis) for basis in self.bases.values())
+        columns = _combined(members, weights, most, self.query.probability)
+        settled: Flags = np.where(heard, common, said)
+        return Ensemble(members, columns, settled)
+
+
+def prepare_all(query: Query) -> EveryModel:
+    """Bind a query to all models.
+
+    Raises ParameterError when no model can answer.
+    """
+    bases: dict[str, Basis] = {}
+    silent: dict[str, str] = {}
+    for key in MIXING_MODELS:
+        try:
+            bases[key] = replace(prepare(replace(query, model=key, given={})), salinity=None)
+        except ModelError as error:
+            silent[key] = str(error)
+    if not bases:
+        detail = "no mixing model has what it needs: give soil.texture"
+        raise ParameterError("soil", [Complaint("soil", detail, ("soil",))])
+    return EveryModel(query, bases, silent)
+
+
+def _member(readings: Readings, basis: Basis) -> Member:
+    found = estimate(readings, basis)
+    u = found.columns["water_content_u"]
+    within = suits_soil(basis.model, basis.query.soil) and not basis.outside
+    counts = within & np.isfinite(u) & (u > 0) & ((found.flags & OUTSIDE) == 0)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        weight = np.where(counts, 1.0 / np.square(u), 0.0)
+    return Member(found, weight)
+
+
+def _combined(
+    members: Mapping[str, Member], weights: Array, most: float, probability: float
+) -> dict[str, Array]:
+    total = weights.sum(axis=0)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        share = np.where(total > 0, weights / total, 0.0)
+
+    def of(name: str) -> Array:
+        return np.nan_to_num(np.array([m.estimates.columns[name] for m in members.values()]))
+
+    values, u, shared = of("water_content"), of("water_content_u"), of("water_content_u_shared")
+    known = total > 0
+    theta = np.where(known, (share * values).sum(axis=0), np.nan)
+    between = (share * np.square(values - theta)).sum(axis=0)
+    variance = (share * np.square(u)).sum(axis=0) + between
+    common = (share * np.square(shared)).sum(axis=0) + between
+    spread = np.sqrt(np.where(known, variance, np.nan))
+    ends = shortest_interval(theta, spread, spread, low=0.0, high=most, probability=probability)
+    counted = weights > 0
+    count = counted.sum(axis=0)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        mean = np.where(counted, values, 0.0).sum(axis=0) / count
+        apart = np.where(counted, np.square(values - mean), 0.0).sum(axis=0) / (count - 1)
+    return {
+        "water_content": ends.peak,
+        "water_content_u": spread,
+        "water_content_u_shared": np.sqrt(np.where(known, common, np.nan)),
+        "water_content_lower": ends.lower,
+        "water_content_upper": ends.upper,
+        "model_spread": np.sqrt(np.where(count > 1, apart, np.nan)),
+    }

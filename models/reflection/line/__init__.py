@@ -1,0 +1,1 @@
+"""Filled lines and cells seen from one end."""

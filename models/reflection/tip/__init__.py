@@ -1,0 +1,1 @@
+"""Coaxial tips: standards, aperture, permittivity."""

@@ -1,0 +1,1 @@
+"""Samples in a line, seen from both ends."""

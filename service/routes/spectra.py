@@ -1,0 +1,92 @@
+"""POST /v1/spectra: a permittivity spectrum in; relaxation terms, circuit, chart and soil out."""
+
+from collections.abc import Mapping
+from typing import Any
+
+import anyio.to_thread
+import orjson
+from fastapi import APIRouter, Request
+from fastapi.responses import Response
+
+from models.spectrum import Interpretation, interpret
+from models.spectrum.views import UNIT_CUBE
+from service.errors import Malformed, Unprocessable, UnsupportedMediaType
+from service.faults import Fault
+from service.negotiate import VARY, choose
+from service.page.svg import MEDIA_TYPE as SVG
+from service.spectra.answer import answer_of
+from service.spectra.bodies import SPECTRA, SpectraBody
+from service.spectra.chart import chart_of
+from service.spectra.question import body_of, question_of, sent_spectrum
+
+router = APIRouter(tags=["records"])
+
+JSON = "application/json"
+OFFERED: Mapping[str, str] = {"json": JSON, "svg": SVG}
+
+
+def request_schema() -> dict[str, Any]:
+    """JSON schema of the body, its parts in the components of the description."""
+    schema = SPECTRA.json_schema(ref_template="#/components/schemas/{model}")
+    schema.pop("$defs", None)
+    return schema
+
+
+DESCRIPTION: dict[str, Any] = {
+    "requestBody": {
+        "required": True,
+        "description": "A spectrum, and what is asked of it. Complex numbers are those of "
+        "exp(+j w t): the imaginary part of a lossy permittivity is below zero. A spectrum of the "
+        "other convention is conjugated once, with a flag that says so.",
+        "content": {JSON: {"schema": request_schema()}},
+    },
+    "responses": {
+        "200": {
+            "description": "Terms with bands, the fitted curve, the equivalent circuit, and where "
+            "a soil is described its water; or the chart.",
+            "content": {JSON: {"schema": {"type": "object"}}, SVG: {"schema": {"type": "string"}}},
+        }
+    },
+}
+
+
+@router.post("/v1/spectra", summary="Relaxation terms of a spectrum, and the soil behind it",
+             openapi_extra=DESCRIPTION)  # fmt: skip
+async def post_spectra(request: Request) -> Response:
+    """Fit of a permittivity spectrum, as JSON or, by Accept, as a chart."""
+    media_type = request.headers.get("content-type", "").partition(";")[0].strip().lower()
+    if media_type != JSON:
+        raise UnsupportedMediaType(
+            f"expected a Content-Type of {JSON}, found {media_type[:80] or 'none'}",
+            headers={"Accept": JSON},
+        )
+    answered = choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
+    document = _parsed(await request.body())
+    return await anyio.to_thread.run_sync(_answer, document, answered)
+
+
+def _parsed(body: bytes) -> dict[str, Any]:
+    try:
+        document = orjson.loads(body)
+    except orjson.JSONDecodeError as error:
+        raise Malformed(f"the body is not JSON: {error}") from None
+    if not isinstance(document, dict):
+        raise Unprocessable("expected an object", [Fault("expected an object", "#")])
+    return document
+
+
+def _answer(document: dict[str, Any], answered: str) -> Response:
+    body = body_of(document)
+    found, cell = interpreted(body)
+    if answered == SVG:
+        return Response(chart_of(found, body, cell), media_type=SVG, headers=VARY)
+    told = orjson.dumps(answer_of(found, body, cell), option=orjson.OPT_SERIALIZE_NUMPY)
+    return Response(told, media_type=JSON, headers=VARY)
+
+
+def interpreted(body: SpectraBody) -> tuple[Interpretation, float]:
+    """The interpretation of a request's spectrum, and its cell, F."""
+    question = question_of(body)
+    cell = body.cell.capacitance if body.cell else None
+    spectrum = sent_spectrum(body.spectrum, body.units, cell)
+    return interpret(spectrum, question), cell or UNIT_CUBE

@@ -1,0 +1,1 @@
+"""What is stored: soils, probes, stations, their readings, and what is asked about them."""

@@ -1,0 +1,79 @@
+"""GET /v1/stations/{name}/estimates and profile: worked out when asked, from what is kept."""
+
+from typing import Any
+
+from fastapi import APIRouter, Request, Response
+
+from service.routes.stored.documents import Name
+from service.routes.stored.paging import answered
+from service.series_edges import EVERY
+from service.stations.asked import asked_of
+from service.stations.questions import estimates_page, profile_page
+from service.stations.resampled import resampled_page
+
+router = APIRouter(prefix="/v1/stations/{name}", tags=["stations"])
+
+RANGE = ("start", "end", "probe", "depth", "at_revision", "limit", "after", "shape")
+_TOLD = {
+    "start": "first moment, RFC 3339",
+    "end": "the moment before which it ends, RFC 3339",
+    "probe": "readings that name this probe",
+    "depth": "readings that name this depth [m] instead of a probe",
+    "at_revision": "as the store was at this revision: readings, soils, probes, installations",
+    "limit": "rows of a page",
+    "after": "where a page begins: follow the Link of the one before",
+    "shape": "rows or columns, of JSON",
+    "every": f"means over {', '.join(EVERY)} instead of rows",
+    "zone": "IANA zone that days and hours are counted in; the station's unless given",
+    "mean": "plain or time-weighted",
+    "time": "moment, RFC 3339; now unless given",
+    "within": "how old a reading may be: 90m, 1h, 2d; 1h unless given",
+}
+
+
+def described(names: tuple[str, ...]) -> dict[str, Any]:
+    """How OpenAPI shows the parameters of a question."""
+    return {
+        "parameters": [
+            {"name": name, "in": "query", "required": False, "description": _TOLD[name],
+             "schema": {"type": "string"}}
+            for name in names
+        ]
+    }  # fmt: skip
+
+
+SERIES = (*RANGE, "every", "zone", "mean")
+PROFILE = ("time", "within", "probe", "depth", "at_revision", "shape")
+
+
+@router.get(
+    "/estimates",
+    summary="Estimates of kept readings",
+    openapi_extra=described(SERIES),
+    response_class=Response,
+)
+async def get_estimates(request: Request, name: Name) -> Response:
+    """Each reading with the soil and the probe that were installed at its time.
+
+    So a better calibration corrects the whole record, and `at_revision` gives what was answered
+    before. Words of POST /v1/estimates in the query, such as mixing_model, beat what is stored.
+    """
+    asked = asked_of(
+        request.query_params.multi_items(), SERIES, request.app.state.settings.page_rows
+    )
+    question = estimates_page if asked.every is None else resampled_page
+    return await answered(request, name, asked, question, "estimates")
+
+
+@router.get(
+    "/profile",
+    summary="The last estimate of each depth",
+    openapi_extra=described(PROFILE),
+    response_class=Response,
+)
+async def get_profile(request: Request, name: Name) -> Response:
+    """At or before a moment, from the top down, each with its age."""
+    asked = asked_of(
+        request.query_params.multi_items(), PROFILE, request.app.state.settings.page_rows
+    )
+    return await answered(request, name, asked, profile_page, "profile")

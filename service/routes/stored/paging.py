@@ -1,0 +1,52 @@
+"""Answers from the store, page by page: media type, entity tag, link to what follows."""
+
+from collections.abc import Callable
+from urllib.parse import urlencode
+
+import anyio.to_thread
+from fastapi import Request, Response
+
+from service.negotiate import VARY, choose
+from service.routes.etag import matches
+from service.stations.answers import OFFERED, encoded
+from service.stations.asked import Asked
+from service.stations.questions import Page, Scene, scene_of, tag_of
+
+
+async def answered(
+    request: Request, name: str, asked: Asked, question: Callable[[Scene, Asked], Page], key: str
+) -> Response:
+    """The answer to a question about a station; 304 where the caller has it already.
+
+    key: under which JSON holds the rows.
+    """
+    media_type = choose(
+        request.headers.get("accept"), request.query_params.get("format"), OFFERED
+    )
+
+    def work() -> Response:
+        scene = scene_of(request.app.state.shelf, name, asked)
+        told = f"{request.url.path}?{request.url.query} {media_type}"
+        tag = tag_of(scene, asked, told)
+        headers = {**VARY, "Store-Revision": str(scene.revision), "Cache-Control": "no-cache"}
+        if tag is not None:
+            headers["ETag"] = tag
+            if matches(", ".join(request.headers.getlist("if-none-match")), tag):
+                return Response(None, 304, headers)
+        page = question(scene, asked)
+        headers["Row-Count"] = str(page.frame.height)
+        rest = dict(page.rest)
+        if page.after is not None:
+            rest["next"] = next_of(request, page.after)
+            headers["Link"] = f'<{rest["next"]}>; rel="next"'
+        return Response(
+            encoded(page.frame, media_type, key, rest, asked.shape), 200, headers, media_type
+        )
+
+    return await anyio.to_thread.run_sync(work)
+
+
+def next_of(request: Request, after: str) -> str:
+    """The address of the next page: the same question, from there."""
+    pairs = [pair for pair in request.query_params.multi_items() if pair[0] != "after"]
+    return f"{request.url.path}?{urlencode([*pairs, ('after', after)])}"

@@ -1,0 +1,199 @@
+"""POST and GET /v1/stations/{name}/readings: what loggers send, and what is kept of it."""
+
+from collections.abc import Mapping
+from typing import Any
+
+import anyio.to_thread
+import orjson
+from fastapi import APIRouter, Request, Response
+
+from models.conversion import refuse_units
+from service.errors import Malformed, Unprocessable, UnsupportedMediaType
+from service.faults import Fault
+from service.formats import FORMATS, Format, format_of
+from service.formats.block import Block
+from service.negotiate import VARY, choose
+from service.routes.stored.documents import Name, absent
+from service.routes.stored.paging import answered
+from service.schemas.batch_query import document_of
+from service.stations.asked import asked_of, now
+from service.stations.documents import Documents, Shelf
+from service.stations.ingest.arrival import Rules
+from service.stations.ingest.json_rows import check_rows, taken_apart
+from service.stations.ingest.keeping import Tally, keep
+from service.stations.ingest.senml import MEDIA_TYPE as SENML
+from service.stations.ingest.senml import resolved
+from service.stations.ingest.tables import TableReader
+from service.stations.questions import readings_page
+
+JSON = "application/json"
+OFFERED: Mapping[str, str] = {"json": JSON}
+AT_ONCE = 200
+"""Readings of a JSON body up to which they are checked without a thread."""
+
+router = APIRouter(prefix="/v1/stations/{name}", tags=["stations"])
+
+_SENT: dict[str, Any] = {
+    "requestBody": {
+        "required": True,
+        "content": {
+            JSON: {"schema": {
+                "type": "object",
+                "required": ["readings"],
+                "properties": {
+                    "readings": {"description": "a list of objects or one object of arrays; each "
+                                 "with time, probe or depth, and numbers", "oneOf": [
+                                     {"type": "array", "items": {"type": "object"}},
+                                     {"type": "object"}]},
+                    "units": {"type": "object", "additionalProperties": {"type": "string"}},
+                    "probe": {"type": "string", "description": "of all readings"},
+                    "depth": {"type": "number", "description": "of all readings [m]"},
+                },
+                "additionalProperties": False,
+            }},
+            SENML: {"schema": {"type": "array", "items": {"type": "object"}}},
+            **{f.media_type: {"schema": {"type": "string"}} for f in FORMATS.values()},
+        },
+    },
+    "parameters": [
+        {"name": name, "in": "query", "required": False, "description": f"tables: {told}",
+         "schema": {"type": "string"}}
+        for name, told in (("units", "quantity:unit pairs, comma-separated"),
+                           ("probe", "of rows that name none"), ("depth", "of rows without [m]"))
+    ],
+}  # fmt: skip
+
+
+@router.post(
+    "/readings", summary="Keep readings of a logger", openapi_extra=_SENT, response_class=Response
+)
+async def post_readings(request: Request, name: Name) -> Response:
+    """What is acknowledged is durable, and resending is harmless.
+
+    The key of a reading is station, probe or depth, and time. The same key with other values is a
+    conflict: kept beside, never over the first. Rows that cannot be kept are told one by one; the
+    others are kept.
+    """
+    choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
+    sent = request.headers.get("content-type", "")
+    media_type = sent.partition(";")[0].strip().lower()
+    table = format_of(media_type)
+    if table is None and media_type not in {JSON, SENML}:
+        accepted = ", ".join((JSON, SENML, *(f.media_type for f in FORMATS.values())))
+        raise UnsupportedMediaType(
+            f"expected a Content-Type of {accepted}, found {media_type[:80] or 'none'}",
+            headers={"Accept": accepted},
+        )
+    documents = await _documents_with(request.app.state.shelf, name)
+    tally = Tally()
+    if table is not None:
+        await _keep_table(request, name, table, documents, tally)
+    else:
+        await _keep_json(request, name, media_type, documents, tally)
+    return Response(orjson.dumps(tally.document()), 200, VARY, JSON)
+
+
+@router.get("/readings", summary="Readings as they are kept", response_class=Response)
+async def get_readings(request: Request, name: Name) -> Response:
+    """In the unit of the API, ordered by series, then time, with the revision that brought each."""
+    asked = asked_of(
+        request.query_params.multi_items(),
+        ("start", "end", "probe", "depth", "limit", "after", "at_revision", "shape"),
+        request.app.state.settings.page_rows,
+        estimates=False,
+    )
+    return await answered(request, name, asked, readings_page, "readings")
+
+
+async def _documents_with(shelf: Shelf, name: str) -> Documents:
+    """Documents that hold the station; as last seen where they do, for the writer checks that.
+
+    Raises NotFound.
+    """
+    documents = shelf.current
+    if documents.find("station", name) is None:
+        _, documents = await anyio.to_thread.run_sync(shelf.fresh)
+    if documents.find("station", name) is None:
+        raise absent("station", name, documents)
+    return documents
+
+
+async def _keep_json(
+    request: Request, name: str, media_type: str, documents: Documents, tally: Tally
+) -> None:
+    for stray in request.query_params.keys() - {"format"}:
+        detail = "a JSON request says everything in its body"
+        raise Unprocessable(detail, [Fault(detail, f"?{stray[:80]}")])
+    settings, state = request.app.state.settings, request.app.state
+    body = await request.body()
+    try:
+        document = orjson.loads(body)
+    except orjson.JSONDecodeError as error:
+        raise Malformed(f"the body is not JSON: {error}") from None
+    rules = _rules(name, documents, settings.future_seconds, {})
+    if media_type == SENML:
+        rows, point = resolved(document, rules, now())
+        shared: Mapping[str, Any] = {}
+    else:
+        rows, point, rest = taken_apart(document, settings.json_readings)
+        shared = rest["shared"]
+        rules = _rules(name, documents, settings.future_seconds, rest["units"])
+    if len(rows) <= AT_ONCE:
+        arrival = check_rows(rows, point, shared, rules)
+    else:
+        arrival = await anyio.to_thread.run_sync(check_rows, rows, point, shared, rules)
+    await keep(state.writer, state.shelf, name, arrival, documents, tally)
+
+
+async def _keep_table(
+    request: Request, name: str, table: Format, documents: Documents, tally: Tally
+) -> None:
+    """Block by block, as the body arrives: each block is durable before the next is read."""
+    state, settings = request.app.state, request.app.state.settings
+    query = dict(request.query_params)
+    query.pop("format", None)
+    probe, depth = query.pop("probe", None), query.pop("depth", None)
+    stated = document_of(query.items())
+    for stray in stated.keys() - {"units"}:
+        detail = f"readings take no {stray}: it belongs to the soil, or to a question"
+        raise Unprocessable(detail, [Fault(detail, f"?{stray}")])
+    units = stated.get("units", {})
+    refuse_units(units)
+    rules = _rules(name, documents, settings.future_seconds, units)
+    if probe is not None and (fault := rules.probe_fault(probe)):
+        raise Unprocessable(fault, [Fault(fault, "?probe")])
+    reader = TableReader(rules, probe, _depth(depth))
+    decoder = table.decoder((), block_bytes=settings.block_bytes, line_bytes=settings.line_bytes)
+    async def take(blocks: list[Block]) -> None:
+        for block in blocks:
+            arrival = await anyio.to_thread.run_sync(reader, block)
+            await keep(state.writer, state.shelf, name, arrival, documents, tally)
+
+    waiting = bytearray()
+    async for piece in request.stream():
+        waiting += piece
+        if len(waiting) >= settings.block_bytes:
+            await take(await anyio.to_thread.run_sync(decoder.feed, bytes(waiting)))
+            waiting.clear()
+    if waiting:
+        await take(await anyio.to_thread.run_sync(decoder.feed, bytes(waiting)))
+    await take(await anyio.to_thread.run_sync(decoder.close))
+
+
+def _rules(
+    name: str, documents: Documents, allowance: float, units: Mapping[str, str]
+) -> Rules:
+    station = documents.station(name)
+    if station is None:
+        raise absent("station", name, documents)
+    return Rules.of(station, documents, allowance, units)
+
+
+def _depth(text: str | None) -> float | None:
+    if text is None:
+        return None
+    try:
+        return float(text)
+    except ValueError:
+        detail = "depth: expected a number of metres"
+        raise Unprocessable(detail, [Fault(detail, "?depth")]) from None

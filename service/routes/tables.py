@@ -1,0 +1,114 @@
+"""A table as the body of POST /v1/estimates: streamed in, spooled, sent after its last byte."""
+
+from collections.abc import Iterator, Mapping
+from contextlib import contextmanager
+
+from fastapi import FastAPI, Request
+from fastapi.responses import Response
+
+from service.batch import Conversion, Spool, SpooledResponse, convert_stream, deadline
+from service.batch_estimates import APPENDED, TableEstimates
+from service.errors import Problem, Stalled, TooLarge, Unavailable, Unprocessable
+from service.faults import Fault, nearest, shown
+from service.formats import FORMATS, MEDIA_TYPES, Format
+from service.negotiate import VARY, choose
+from service.schemas.batch_query import document_of
+from service.schemas.query import settings_of
+from service.settings import Settings
+
+
+async def answer_table(request: Request, sent: Format) -> Response:
+    """The rows of the body with their estimates, in the format the client accepts."""
+    limits: Settings = request.app.state.settings
+    query = request.query_params
+    preferred = {sent.key: sent.media_type, **MEDIA_TYPES}
+    answered = choose(request.headers.get("accept"), query.get("format"), preferred)
+    settings = settings_of(document_of(query.multi_items()))
+    table = TableEstimates(settings, limits.drawn_values)
+    target = next(f for f in FORMATS.values() if f.media_type == answered)
+    conversion = Conversion(
+        sent.decoder(APPENDED, block_bytes=limits.block_bytes, line_bytes=limits.line_bytes),
+        target.encoder(),
+        table,
+        strict=_is_true(query.get("strict")),
+        columns=wanted(query.get("columns")),
+    )
+    with _place_for(request.app):
+        return await _converted(request, conversion, table, answered)
+
+
+def wanted(text: str | None) -> tuple[str, ...] | None:
+    """Names of the columns to append; None: all of them.
+
+    Raises Unprocessable for a name that no answer has.
+    """
+    if text is None:
+        return None
+    names = tuple(name.strip() for name in text.split(",") if name.strip())
+    faults = []
+    for name in names:
+        if name not in APPENDED:
+            meant = nearest(name, APPENDED)
+            hint = f"; did you mean {meant}?" if meant else ""
+            faults.append(Fault(f"no answer has a column {shown(name)}{hint}", "?columns"))
+    if faults:
+        raise Unprocessable("columns names what no answer has", faults)
+    return names
+
+
+@contextmanager
+def _place_for(app: FastAPI) -> Iterator[None]:
+    """One of the tables this process takes on at a time. Raises Unavailable when it has enough."""
+    most = app.state.settings.queued_batches
+    if app.state.tables >= most:
+        detail = f"{most} tables are being worked on, which is as many as are taken on at a time"
+        raise Unavailable(detail, retry_after=5)
+    app.state.tables += 1
+    try:
+        yield
+    finally:
+        app.state.tables -= 1
+
+
+async def _converted(
+    request: Request, conversion: Conversion, table: TableEstimates, answered: str
+) -> Response:
+    limits: Settings = request.app.state.settings
+    spool = Spool(limits.answer_bytes)
+
+    def late() -> Problem:
+        return Stalled(
+            f"the table was not answered within {limits.request_seconds:g} s "
+            f"({conversion.counts.rows} rows were): send it in parts",
+            headers={"Connection": "close"},
+        )
+
+    within_time = deadline(limits.request_seconds, late)
+
+    def check() -> None:
+        within_time()
+        if conversion.counts.rows > limits.batch_rows:
+            raise TooLarge(f"the table has more than {limits.batch_rows} rows; send it in parts")
+
+    try:
+        counts = await convert_stream(request.stream(), conversion, spool, check)
+        check()
+        request.scope["state"]["table"] = conversion
+        headers: Mapping[str, str] = {
+            **VARY,
+            **table.headers(),
+            "Row-Count": str(counts.rows),
+            "Flagged-Count": str(counts.flagged),
+        }
+        return SpooledResponse(spool, answered, headers)
+    except BaseException:
+        spool.close()
+        raise
+
+
+def _is_true(text: str | None) -> bool:
+    if text is None or text == "false":
+        return False
+    if text == "true":
+        return True
+    raise Unprocessable("strict is true or false", [Fault("strict is true or false", "?strict")])

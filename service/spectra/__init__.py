@@ -1,0 +1,1 @@
+"""Permittivity spectra over HTTP: what a request says, what an answer tells, and its chart."""

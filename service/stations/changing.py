@@ -1,0 +1,141 @@
+"""Changing a soil, a probe or a station: checks, preconditions, and a try again when it must be."""
+
+import re
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from pydantic import ValidationError
+
+from models.errors import ModelError, ParameterError
+from models.quantity import READING
+from service.errors import NotFound, Unprocessable
+from service.faults import Fault, hint, pointer, problems_of
+from service.schemas.query import basis_of, settings_of
+from service.stations.bodies import BODIES
+from service.stations.documents import Documents, Shelf
+from service.stations.problems import Conflicted, PreconditionFailed, PreconditionRequired
+from service.stations.settings import settings_document
+from service.stations.station import faults_of_station, station_of
+from service.store.errors import Changed, Stale
+from service.store.interface import Document, Kind
+
+PATIENCE = 5
+_TAG = re.compile(r'"(\d{1,18})"')
+
+
+@dataclass(frozen=True, slots=True)
+class Wish:
+    """What is to be changed, by whom, and on which condition."""
+
+    kind: Kind
+    name: str
+    author: str | None
+    if_match: str | None
+    if_none_match: str | None
+    body: Mapping[str, Any] | None
+    """None: delete it."""
+
+
+@dataclass(frozen=True, slots=True)
+class Change:
+    """What came of it."""
+
+    document: Document
+    created: bool = False
+
+
+def checked(kind: Kind, given: Mapping[str, Any]) -> Mapping[str, Any]:
+    """A body of the right form, as it is kept: what was not said is not in it.
+
+    Raises Unprocessable with a pointer to every fault.
+    """
+    adapter = BODIES[kind]
+    try:
+        body = adapter.validate_python(given)
+    except ValidationError as error:
+        faults = problems_of(error, given, adapter)
+        raise Unprocessable(f"the {kind} holds what cannot be used", faults) from None
+    kept: Mapping[str, Any] = body.model_dump(mode="json", exclude_unset=True, by_alias=True)
+    if kind == "station":
+        return kept
+    probe, soil = (kept, {}) if kind == "probe" else ({}, kept)
+    _check_science(kind, settings_document(soil, probe, {}))
+    return kept
+
+
+def _check_science(kind: Kind, document: Mapping[str, Any]) -> None:
+    """Gates, names and parameters, as a request for estimates would meet them."""
+    everything = (*READING, *(f"{name}_u" for name in READING))
+    if kind == "probe":
+        document = {**document, "mixing_model": "topp-1980"}  # any that asks nothing of a probe
+    try:
+        basis_of(settings_of(document), everything)
+    except ParameterError as error:
+        faults = [
+            Fault(c.detail, pointer(c.place[1:] if c.place[:1] == (kind,) else c.place))
+            for c in error.complaints
+        ]
+        raise Unprocessable(str(error), faults) from None
+    except ModelError as error:
+        raise Unprocessable(str(error), [Fault(str(error), "#")]) from None
+
+
+def apply(shelf: Shelf, wish: Wish) -> Change:
+    """Make the change. Blocks.
+
+    Raises NotFound, Unprocessable, Conflicted, PreconditionFailed, PreconditionRequired.
+    """
+    for _ in range(PATIENCE):
+        _, documents = shelf.fresh()
+        current = documents.find(wish.kind, wish.name)
+        _check_condition(wish, current, documents)
+        if current is not None and wish.body is not None and current.body == wish.body:
+            return Change(current)
+        if current is not None and wish.body is not None and wish.if_match is None:
+            raise PreconditionRequired(
+                f"there is a {wish.kind} {wish.name} with other content at revision "
+                f'{current.revision}: send If-Match: "{current.revision}" to replace it',
+                headers={"ETag": f'"{current.revision}"'},
+            )
+        _check_references(wish, documents)
+        new = Document(wish.kind, wish.name, 0, 0, wish.author, wish.body)
+        try:
+            kept = shelf.store.put(new, documents.revision, current.revision if current else 0)
+        except (Stale, Changed):
+            continue
+        return Change(kept, created=current is None)
+    raise Conflicted("soils, probes and stations keep changing: try again")
+
+
+def _check_condition(wish: Wish, current: Document | None, documents: Documents) -> None:
+    if current is None and wish.body is None:
+        near = hint(wish.name, documents.by_kind[wish.kind])
+        raise NotFound(f"there is no {wish.kind} {wish.name}{near}")
+    if wish.if_none_match is not None and current is not None and wish.body is not None:
+        raise PreconditionFailed(f"there is a {wish.kind} {wish.name} already")
+    if wish.if_match is None:
+        return
+    if current is None:
+        raise PreconditionFailed(f"there is no {wish.kind} {wish.name} to be replaced")
+    asked = wish.if_match.strip()
+    if asked != "*" and str(current.revision) not in _TAG.findall(asked):
+        raise PreconditionFailed(
+            f"the {wish.kind} {wish.name} is at revision {current.revision}, not {asked[:80]}",
+            headers={"ETag": f'"{current.revision}"'},
+        )
+
+
+def _check_references(wish: Wish, documents: Documents) -> None:
+    """Names that a station gives must be there, and what stations name must stay."""
+    if wish.kind == "station" and wish.body is not None:
+        station = station_of(Document("station", wish.name, 0, 0, None, wish.body))
+        soils, probes = documents.by_kind["soil"], documents.by_kind["probe"]
+        faults = faults_of_station(station, soils, probes, wish.body.get("sentinels"))
+        if faults:
+            raise Unprocessable("the station holds what cannot be used", faults)
+    elif wish.kind != "station" and wish.body is None:
+        for name in documents.by_kind["station"]:
+            known = documents.station(name)
+            if known and any(getattr(i, wish.kind) == wish.name for i in known.installations):
+                raise Conflicted(f"the station {name} has an installation with it")
