@@ -171,6 +171,24 @@ FLAGS: Registry[Flag] = Registry(
          text="The permittivity of water is less well known here.",
          reason="Each water model has its own range, Kaatze (1989) from -4.1 to 60 Cel; "
          "outside, it goes on smoothly and counts as known to 2 %.", keeps_number=True),
+    Flag(key="no-end-reflection", condition="No rise in the trace stands out from noise and from "
+         "its surroundings where the rods may end, or its permittivity would be below 1 or above "
+         "90.",
+         text="The end of the rods cannot be seen in the trace.",
+         reason="Conduction takes the reflection from the end: the largest peak that is left is "
+         "noise. Inversion of the whole trace needs no end reflection.", keeps_number=False),
+    Flag(key="record-too-short", condition="The level of the record still changes by more than "
+         "0.002, and by more than noise, over its last tenth.",
+         text="The reflection had not settled when the record ended: the conductivity is that of "
+         "its end, with the change as part of its uncertainty.",
+         reason="Conductivity follows from the level after all reflections have died away: a "
+         "record of more than three round trips.", keeps_number=True),
+    Flag(key="model-too-simple", condition="The fitted line leaves a reduced chi-square above "
+         "1.5.",
+         text="The model does not explain the trace to its noise: the soil relaxes in more ways, "
+         "is layered, or the probe is not as described. Uncertainties are widened by the misfit.",
+         reason="A wrong model can fit well where it looks and be far off in permittivity.",
+         keeps_number=True),
     Flag(key="not-estimated", condition="A stored reading is from a time for which no one soil and "
          "probe are on record, or what is on record does not suffice.",
          text="There is nothing on record by which to estimate this reading.",

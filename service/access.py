@@ -1,20 +1,27 @@
-"""Who may ask what: bearer keys, and the scope that each request needs."""
+"""Who may ask what, and how often: bearer keys, the scope each request needs, a rate for each."""
 
+import math
+import time
 from collections.abc import Mapping
 from types import MappingProxyType
 
-from starlette.datastructures import Headers
-from starlette.types import ASGIApp, Receive, Scope, Send
+from starlette.datastructures import Headers, MutableHeaders
+from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
 from service.errors import Forbidden, Unauthenticated
 from service.settings import Settings, SettingsError
-from service.store.keys import KeyFile, Reach
+from service.stations.problems import TooManyRequests
+from service.store.keys import Key, KeyFile, Reach
 
 GUARDED = "/v1/"
 """What lies elsewhere says nothing about anyone's soil: health, documentation, problem types."""
 
 READS: frozenset[str] = frozenset({"/v1/estimates"})
 """Paths whose POST computes and keeps nothing."""
+
+STATIONS, CHANGES = "/v1/stations/", "/v1/changes"
+DESCRIBED = ("/v1/soils/", "/v1/probes/")
+"""Paths of what readings are interpreted by: changing them changes every estimate."""
 
 CHALLENGE: Mapping[str, str] = MappingProxyType(
     {"WWW-Authenticate": 'Bearer realm="gleyline"', "Cache-Control": "no-store"}
@@ -34,6 +41,10 @@ def keys_of(settings: Settings) -> KeyFile:
 
 def scope_needed(method: str, path: str) -> Reach:
     """The scope a key must have for a request."""
+    if path == CHANGES or (
+        method in {"PUT", "PATCH", "DELETE"} and path.startswith((*DESCRIBED, STATIONS))
+    ):
+        return "manage"
     if method in {"GET", "HEAD", "OPTIONS"} or (method == "POST" and path in READS):
         return "read"
     return "write"
@@ -80,3 +91,74 @@ class RequireKey:
                 f"{scope['method']} {scope['path']} needs {needed}",
                 headers={"WWW-Authenticate": f'{refusal}, scope="{needed}"'},
             )
+        if key.stations:
+            scope["state"]["key_stations"] = key.stations
+            _check_station(key, needed, scope["path"])
+
+
+def _check_station(key: Key, needed: Reach, path: str) -> None:
+    """Raise Forbidden for other stations, and for changing what all stations share."""
+    name = path.removeprefix(STATIONS).partition("/")[0] if path.startswith(STATIONS) else None
+    if name in key.stations or (name is None and needed == "read"):
+        return
+    refusal = CHALLENGE["WWW-Authenticate"] + ', error="insufficient_scope"'
+    raise Forbidden(
+        f"the key {key.label} reaches the stations {', '.join(key.stations)} and nothing else",
+        headers={"WWW-Authenticate": refusal},
+    )
+
+
+class LimitRate:
+    """ASGI layer that lets each key ask so often, in this process.
+
+    A bucket of a minute's requests that fills at an even rate: a burst is let through, a flood is
+    not. Where there are no keys, an address has a bucket.
+    """
+
+    WINDOW = 60
+    MOST_BUCKETS = 10_000
+
+    def __init__(self, app: ASGIApp, per_minute: int) -> None:
+        self.app = app
+        self.quota = per_minute
+        self._buckets: dict[str, tuple[float, float]] = {}
+        """What is left, and when it was."""
+
+    async def __call__(self, scope: Scope, receive: Receive, send: Send) -> None:
+        """Raise TooManyRequests, or go on and tell what is left."""
+        if not self.quota or scope["type"] != "http" or not scope["path"].startswith(GUARDED):
+            await self.app(scope, receive, send)
+            return
+        whose = scope["state"].get("key_label") or f"@{(scope.get('client') or ('',))[0]}"
+        left, wait = self._take(whose)
+        told = {
+            "RateLimit-Policy": f'"default";q={self.quota};w={self.WINDOW}',
+            "RateLimit": f'"default";r={left};t={math.ceil(wait)}',
+        }
+        if left < 0:
+            told["RateLimit"] = f'"default";r=0;t={math.ceil(wait)}'
+            raise TooManyRequests(
+                f"{self.quota} requests in {self.WINDOW} s were agreed for this key; wait "
+                f"{math.ceil(wait)} s",
+                headers={**told, "Retry-After": str(math.ceil(wait))},
+            )
+
+        async def outwards(message: Message) -> None:
+            if message["type"] == "http.response.start":
+                MutableHeaders(scope=message).update(told)
+            await send(message)
+
+        await self.app(scope, receive, outwards)
+
+    def _take(self, whose: str) -> tuple[int, float]:
+        """Requests left after this one, below 0: none; and seconds until there is one more."""
+        now = time.monotonic()
+        rate = self.quota / self.WINDOW
+        left, since = self._buckets.get(whose, (float(self.quota), now))
+        left = min(self.quota, left + (now - since) * rate)
+        if left < 1.0:
+            return -1, (1.0 - left) / rate
+        if len(self._buckets) >= self.MOST_BUCKETS:
+            self._buckets.clear()
+        self._buckets[whose] = (left - 1.0, now)
+        return int(left - 1.0), 1.0 / rate

@@ -11,7 +11,7 @@ from fastapi import FastAPI
 from starlette.types import ASGIApp
 
 from service import __version__
-from service.access import RequireKey, keys_of
+from service.access import LimitRate, RequireKey, keys_of
 from service.batch.workers import yield_to_requests
 from service.errors import add_error_handlers
 from service.limits import LimitBody
@@ -84,7 +84,7 @@ def create_api(settings: Settings) -> Api:
 def surrounded(api: Api, settings: Settings) -> ASGIApp:
     """The layers of every request, outermost last to be added."""
     keys = keys_of(settings)
-    limited = LimitBody(api, settings)
+    limited = LimitRate(LimitBody(api, settings), settings.requests_per_minute)
     return Observe(RequireKey(limited, keys, on_loopback=settings.on_loopback))
 
 

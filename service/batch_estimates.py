@@ -33,6 +33,7 @@ class TableEstimates:
         """drawn_values: the limit on draws times readings times models, where there is one."""
         self.settings, self.drawn_values = settings, drawn_values
         self.rows = 0
+        self.columns: tuple[str, ...] = ()
         self.basis: Basis | EveryModel | None = None
         self.remarks = Remarks()
 
@@ -46,7 +47,8 @@ class TableEstimates:
         if self.drawn_values is not None:
             refuse_effort(self.settings, self.rows, self.drawn_values)
         if self.basis is None:
-            self.basis = basis_of(self.settings, block.values)
+            self.columns = tuple(block.values)
+            self.basis = basis_of(self.settings, self.columns)
         units = self.settings.units
         readings: Readings = block.readings(units)
         if isinstance(self.basis, EveryModel):
@@ -75,4 +77,5 @@ class TableEstimates:
             echo, names = ensemble_echo(basis, self.settings, remarks), COLUMNS
         else:
             echo, names = echo_of(basis, self.settings, remarks), columns_of(basis)
-        return headers_of(echo, units_of_answer(names, units))
+        told = {"Columns-Read": ", ".join(self.columns)}
+        return told | headers_of(echo, units_of_answer(names, units))

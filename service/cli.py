@@ -1,4 +1,4 @@
-"""The command gleyline: serve, convert, demo, key, openapi."""
+"""The command gleyline: serve, convert, demo, key, store, openapi."""
 
 import errno
 import json
@@ -20,7 +20,10 @@ from service.convert import convert
 from service.demo.run import demo
 from service.logs import logging_config
 from service.settings import Settings, SettingsError, data_folder, misspelt, read_settings, variable
+from service.store.command import store
+from service.store.errors import StoreError
 from service.store.keys import SCOPES, KeyFile, KeyFileError, Reach
+from service.store.opening import open_store
 
 log = logging.getLogger("gleyline")
 
@@ -57,7 +60,8 @@ def serve(**given: str | None) -> None:
     try:
         settings = read_settings(**{name: text for name, text in given.items() if text is not None})
         keys_of(settings)
-    except (SettingsError, KeyFileError) as error:
+        open_store(settings).close()
+    except (SettingsError, KeyFileError, StoreError) as error:
         raise click.ClickException(str(error)) from None
     os.environ.update(settings.as_environment())  # what each server process reads
     config = uvicorn.Config(
@@ -120,11 +124,15 @@ def key() -> None:
 @click.argument("label")
 @click.option("--scope", "scopes", multiple=True, type=click.Choice(SCOPES), default=["read"],
               help="what the key allows; may be given several times  [default: read]")  # fmt: skip
+@click.option("--station", "stations", multiple=True, metavar="NAME",
+              help="the only station it reaches; repeatable  [default: all]")  # fmt: skip
 @data_option
-def add_key(label: str, scopes: tuple[Reach, ...], data: Path) -> None:
+def add_key(
+    label: str, scopes: tuple[Reach, ...], stations: tuple[str, ...], data: Path
+) -> None:
     """Make a key and print it: it cannot be shown again."""
     try:
-        secret = KeyFile(data / "keys.json").add(label, tuple(dict.fromkeys(scopes)))
+        secret = KeyFile(data / "keys.json").add(label, tuple(dict.fromkeys(scopes)), stations)
     except KeyFileError as error:
         raise click.ClickException(str(error)) from None
     click.echo(secret)
@@ -141,7 +149,7 @@ def list_keys(data: Path) -> None:
         raise click.ClickException(str(error)) from None
     for known in keys:
         ended = f"revoked {known.revoked:%Y-%m-%d %H:%M}" if known.revoked else "active"
-        scopes = ",".join(known.scopes)
+        scopes = ",".join(known.scopes) + "".join(f" {name}" for name in known.stations)
         click.echo(f"{known.label}\t{scopes}\tmade {known.created:%Y-%m-%d %H:%M}\t{ended}")
 
 
@@ -167,6 +175,7 @@ def openapi() -> None:
 
 
 main.add_command(convert)
+main.add_command(store)
 main.add_command(demo)
 
 

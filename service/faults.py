@@ -72,8 +72,9 @@ def shortened(text: str) -> str:
 
 def nearest(name: str, known: Iterable[str]) -> str | None:
     """The known name that was most likely meant."""
-    close = difflib.get_close_matches(name[:LONGEST], list(known), n=1, cutoff=0.6)
-    return close[0] if close else None
+    close = difflib.get_close_matches(name[:LONGEST], list(known), n=4, cutoff=0.6)
+    alike = [other for other in close if other.endswith("_u") == name.endswith("_u")]
+    return next(iter(alike or close), None)
 
 
 def hint(name: str, known: Iterable[str]) -> str:

@@ -13,8 +13,6 @@ from models.registry import Registry
 THRESHOLD_SPREAD, SLOPE_SPREAD = 0.17, 0.10
 """Relative standard uncertainty of threshold and slope: our choice, after the ranges that FAO-56
 (revision of 2025) prints for tomato and cucumber, taken as rectangular."""
-DEPTH_SPREAD = 0.15
-"""Relative standard uncertainty of a root depth; our choice."""
 FRACTION_U = 0.05
 """Standard uncertainty of a depletion fraction; our choice."""
 DS_M = 0.1
@@ -40,14 +38,26 @@ class Crop:
     note: str = ""
 
     @property
-    def threshold(self) -> float | None:
-        """S/m."""
-        return None if self.threshold_ds_m is None else self.threshold_ds_m * DS_M
+    def threshold(self) -> tuple[float, float] | None:
+        """Threshold and its standard uncertainty, S/m."""
+        if self.threshold_ds_m is None:
+            return None
+        return self.threshold_ds_m * DS_M, THRESHOLD_SPREAD * self.threshold_ds_m * DS_M
 
     @property
-    def slope(self) -> float | None:
-        """Fraction of the yield per S/m."""
-        return None if self.slope_percent is None else self.slope_percent / 100.0 / DS_M
+    def slope(self) -> tuple[float, float] | None:
+        """Slope and its standard uncertainty, fraction of the yield per S/m."""
+        if self.slope_percent is None:
+            return None
+        value = self.slope_percent / 100.0 / DS_M
+        return value, SLOPE_SPREAD * value
+
+    @property
+    def readily_available(self) -> tuple[float, float] | None:
+        """Depletion fraction at 5 mm a day and its standard uncertainty."""
+        if self.depletion_fraction is None:
+            return None
+        return self.depletion_fraction, FRACTION_U
 
 
 def _crop(
@@ -71,13 +81,13 @@ def _crop(
     )
 
 
-_ROOTS, _SLOPE, _LARGER = "root_depth", "slope_percent", "larger root depth"
+_ROOTS, _SLOPE = "root_depth", "slope_percent"
 _WATER = (_ROOTS, "depletion_fraction")
 _SUBMERGED = "while submerged, the conductivity is that of the soil water"
 
 CROPS: Registry[Crop] = Registry(
     "crop",
-    _crop("Alfalfa", (1.0, 2.0, 0.55), (2.0, 7.3), *_WATER, _SLOPE),
+    _crop("Alfalfa", (1.0, 2.0, 0.55), (2.0, 7.3), _ROOTS, _SLOPE),
     _crop("Barley", None, (8.0, 5.0), note="seedlings may need less salt than the threshold"),
     _crop("Bean", None, (1.0, 19.0)),
     _crop("Bean, green", (0.5, 0.7, 0.45)),

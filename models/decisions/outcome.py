@@ -2,7 +2,7 @@
 
 What a decision rests on is often defined with ends (a depletion is not below zero, a yield not
 above all of it). The number behind it, without ends, is taken as normal; everything beyond an end
-is that end. Quantiles go through such a definition as they are, so the interval keeps its probability.
+is that end. Quantiles go through such a definition as they are: the interval keeps its probability.
 """
 
 from collections.abc import Callable, Mapping

@@ -1,7 +1,7 @@
 """The root zone: water in it, what is missing to field capacity, and how sure that is."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -35,7 +35,7 @@ class RootZone:
     leaching_requirement: ArrayLike = 0.0
     """Share of the water that is to pass below it, below 1."""
     crop_evapotranspiration: float | None = None
-    """m/s; None: no days are told."""
+    """m/s, counted as exact; None: no days are told."""
     probability: float = 0.95
 
 
@@ -67,7 +67,9 @@ def deplete(zone: RootZone) -> Depletion:
     """Available water, depletion, refill and stress of root zones, with bands.
 
     What enters two numbers enters their comparison once: field capacity is in the depletion and in
-    the available water, and the probability of exceedance knows it.
+    the available water, and the probability of exceedance knows it. The inputs themselves count as
+    independent: a field capacity read by the same probe errs with the water content, which makes
+    the true band of the depletion narrower than the one told.
     Raises ParameterError when field capacity is not above the wilting point, the root depth is not
     positive, a fraction or the efficiency is not one, or the leaching requirement is not below 1.
     """
@@ -99,6 +101,9 @@ def deplete(zone: RootZone) -> Depletion:
     depleted, depleted_u = carried(missing, given)
     whole = outcome(total, given, low=0.0, probability=probability)
     factor = 1.0 / (column(zone.efficiency) * (1.0 - column(zone.leaching_requirement)))
+    # The total is uncertain as well: it ends the value, its upper end ends the band.
+    net = within(depleted, depleted_u, low=0.0, high=whole.upper, probability=probability)
+    net = replace(net, value=np.minimum(net.value, whole.value))
     excess = exceedance(*carried(beyond, given))
     return Depletion(
         storage=outcome(
@@ -106,13 +111,8 @@ def deplete(zone: RootZone) -> Depletion:
         ),
         total_available_water=whole,
         readily_available_water=outcome(readily, given, low=0.0, probability=probability),
-        depletion=within(
-            depleted, depleted_u, low=0.0, high=whole.value, probability=probability
-        ),
-        gross_refill=within(
-            depleted * factor, depleted_u * factor, low=0.0, high=whole.value * factor,
-            probability=probability,
-        ),
+        depletion=net,
+        gross_refill=_times(net, factor),
         stress_coefficient=outcome(stress, given, low=0.0, high=1.0, probability=probability),
         exceedance=excess,
         told_apart=(excess >= TOLD_APART) | (excess <= 1.0 - TOLD_APART),
@@ -120,6 +120,15 @@ def deplete(zone: RootZone) -> Depletion:
         below_wilting_point=depleted > whole.value,
         days=_days(zone, carried(beyond, given)),
     )  # fmt: skip
+
+
+def _times(found: Outcome, factor: Array) -> Outcome:
+    return Outcome(
+        found.value * factor,
+        found.standard_uncertainty * factor,
+        found.lower * factor,
+        found.upper * factor,
+    )
 
 
 def _days(zone: RootZone, beyond: tuple[Array, Array]) -> Outcome | None:

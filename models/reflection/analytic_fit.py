@@ -58,9 +58,7 @@ def solve(model: Model, start: ComplexArray, read: ComplexArray, spread: Array) 
     hold = (np.square(np.abs(slope)) * weight).sum(axis=0)
     response = np.conj(slope) * weight / hold
     finite = np.isfinite(cost)
-    return Found(
-        np.where(finite, value, np.nan), 1 / np.sqrt(hold), read - predicted, response
-    )
+    return Found(np.where(finite, value, np.nan), 1 / np.sqrt(hold), read - predicted, response)
 
 
 def _cost(residual: ComplexArray, weight: Array) -> Array:

@@ -95,7 +95,7 @@ def _pseudo_inverse(rows: ComplexArray) -> ComplexArray:
     """(A^H A)^-1 A^H of every matrix, shape (f, n, 3) to (f, 3, n), by QR; NaN where singular."""
     q, r = np.linalg.qr(rows)
     diagonal = np.abs(np.diagonal(r, axis1=-2, axis2=-1))
-    singular = diagonal.min(axis=-1) <= 1e-13 * diagonal.max(axis=-1)
+    singular = np.asarray(diagonal.min(axis=-1) <= 1e-13 * diagonal.max(axis=-1))
     r = np.where(singular[:, None, None], np.eye(3), r)
     inverse: ComplexArray = np.linalg.solve(r, np.conj(np.swapaxes(q, -1, -2)))
     return np.where(singular[:, None, None], np.nan, inverse)

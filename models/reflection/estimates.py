@@ -1,4 +1,4 @@
-"""What a sweep is turned into: permittivity over frequency with its uncertainty, flags, findings."""
+"""What a sweep is turned into: permittivity with its uncertainty, flags and findings."""
 
 from dataclasses import dataclass
 

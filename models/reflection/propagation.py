@@ -10,7 +10,7 @@ from models.relation import Array, ComplexArray
 def propagation_constant(
     permittivity: ComplexArray, frequency: Array, permeability: ComplexArray | float = 1.0
 ) -> ComplexArray:
-    """gamma = j w sqrt(eps mu) / c, 1/m, elementwise; frequency in Hz."""
+    """Gamma = j w sqrt(eps mu) / c, 1/m, elementwise; frequency in Hz."""
     index = np.sqrt(permittivity) * np.sqrt(permeability)
     return np.asarray(2j * np.pi * frequency * index / speed_of_light)
 

@@ -1,15 +1,15 @@
 """What can be said of a sweep, frequency by frequency or as a whole, with the number behind it."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from types import MappingProxyType
 
 import numpy as np
-from numpy.typing import NDArray
+from numpy.typing import ArrayLike, NDArray
 
 from models.flags import Flags
 from models.registry import Registry
-from models.relation import Array
+from models.relation import Array, column
 
 MARGIN = 3.0
 """Standard uncertainties by which a bound must be broken."""
@@ -122,6 +122,38 @@ class Finding:
     """What the number is, in words."""
     frequencies: tuple[float, float] | None = None
     """Hz, between which it does not hold; None: everywhere, or nowhere."""
+
+
+def at_most(
+    key: str,
+    about: str,
+    values: ArrayLike,
+    limit: float,
+    frequency: Array | None = None,
+    *,
+    unit: str = "1",
+) -> Finding:
+    """The largest of the values beside what it should not exceed, and where it does."""
+    found = np.atleast_1d(column(values))
+    known = found[~np.isnan(found)]
+    worst = float(known.max()) if known.size else float("nan")
+    bad = found > limit
+    where = None if frequency is None else between(frequency, bad)
+    return Finding(key, not bad.any(), worst, limit, unit, about, where)
+
+
+def at_least(
+    key: str,
+    about: str,
+    values: ArrayLike,
+    limit: float,
+    frequency: Array | None = None,
+    *,
+    unit: str = "1",
+) -> Finding:
+    """The smallest of the values beside what it should not fall below, and where it does."""
+    found = at_most(key, about, -column(values), -limit, frequency, unit=unit)
+    return replace(found, value=-found.value, limit=limit)
 
 
 def raised(flags: Flags, where: NDArray[np.bool_], key: str) -> None:

@@ -79,16 +79,11 @@ def resample(
     limits = _edges(edges)
     _positive(step=step, gap=gap)
     bins = limits.size - 1
-    inside = rows.rows(slice(*np.searchsorted(rows.seconds, limits[[0, -1]])))
     numbers = rows.numbers()
-    within = inside.numbers()
-    of_row, of_number = (
-        np.searchsorted(limits, held.seconds, side="right") - 1 for held in (inside, within)
-    )
-    count = np.bincount(of_number, minlength=bins)
+    inside, of_row, rows_in = _binned(rows, limits)
+    within, of_number, count = _binned(numbers, limits)
     filled, first = np.flatnonzero(count), _firsts(count)
     last = first + count[filled] - 1
-    rows_in = np.bincount(of_row, minlength=bins)
     marked = np.zeros(bins, dtype=np.uint64)
     if inside.seconds.size:
         marked[rows_in > 0] = np.bitwise_or.reduceat(inside.flags, _firsts(rows_in))
@@ -119,8 +114,7 @@ def resample(
 def _mean(key: str, numbers: Series, edges: Array, gap: float) -> Aggregate:
     """Means of the bins up to the last that has one."""
     if MEAN_RULES[key].key == "plain":
-        held = numbers.rows(slice(*np.searchsorted(numbers.seconds, edges[[0, -1]])))
-        bins = np.searchsorted(edges, held.seconds, side="right") - 1
+        held, bins, _ = _binned(numbers, edges)
         weights = np.ones(held.seconds.size)
     else:
         row, bins, weights = time_weights(numbers.seconds, edges, gap)
@@ -157,6 +151,13 @@ def _coverage(seconds: Array, bins: Labels, first: Labels, edges: Array, step: f
         taken = np.bincount(bins[anew], minlength=size.size)
     room = np.maximum(np.floor(size / step + 1e-9), 1.0)
     return np.minimum(taken / room, 1.0)
+
+
+def _binned(rows: Series, edges: Array) -> tuple[Series, Labels, Labels]:
+    """The rows between the edges, the bin of each, and how many each bin holds."""
+    cuts = np.searchsorted(rows.seconds, edges)
+    count = np.diff(cuts)
+    return rows.rows(slice(cuts[0], cuts[-1])), np.repeat(np.arange(count.size), count), count
 
 
 def _firsts(count: Labels) -> Labels:

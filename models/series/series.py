@@ -26,7 +26,8 @@ class Series:
 
     def numbers(self) -> "Series":
         """The rows that have a number."""
-        return self.rows(np.isfinite(self.value))
+        known = np.isfinite(self.value)
+        return self if known.all() else self.rows(known)
 
     def rows(self, kept: slice | NDArray[np.bool_] | Labels) -> "Series":
         """Some of the rows."""

@@ -69,7 +69,8 @@ SPECTRUM_FLAGS: Registry[Flag] = Registry(
          reason="What it leaves over went into whatever parameter could take it; water content "
          "leans on the upper end of the band.", keeps_number=True),
     Flag(key="wetter-than-pores", condition="Water content exceeds the porosity.",
-         text="The whole band asks for more water than there are pores: the value is the porosity.",
+         text="The whole band asks for more water than there are pores: the value is the porosity, "
+         "or lies within what its uncertainty allows.",
          reason="A wrong porosity, or a mixing model that does not fit this soil.",
          keeps_number=True),
     Flag(key="missing:temperature", condition="A soil was described and no temperature given.",

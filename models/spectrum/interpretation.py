@@ -8,7 +8,7 @@ import numpy as np
 
 from models.spectrum import flags
 from models.spectrum.choice import Choice, choose, left_open, noise_of
-from models.spectrum.circuit import Circuit, circuit_of
+from models.spectrum.circuits.circuit import Circuit, circuit_of
 from models.spectrum.description import Banded, Curve, curve, parameters
 from models.spectrum.fit import Fit, fit
 from models.spectrum.flags import Finding

@@ -10,6 +10,8 @@ from models.relation import Array, ComplexArray
 LEAST_POINTS = 3
 LEAST_LOSS = 0.01
 """Share of |eps| below which a relative noise does not follow a part down."""
+SMALLEST, LARGEST = 0.1, 1e9
+"""Of a permittivity; below vacuum calibration is off, above no cell measures anything."""
 SLOWEST, FASTEST, NEVER_BELOW = 1.0, 1e13, 1e5
 """Hz; a sweep that ends below the last is in MHz or GHz."""
 
@@ -146,8 +148,18 @@ def _value_complaints(
         for name, given in columns.items()
         if name != "frequency" and not np.all(np.isfinite(given))
     ]
-    if np.max(np.abs(columns["real_permittivity"]), initial=0.0) == 0:
-        complaints.append(_complaint("real_permittivity", "real_permittivity is 0 throughout"))
+    complaints += [
+        _complaint(name, f"expected {name} of at most {LARGEST:g}, found {worst:g}")
+        for name, given in columns.items()
+        if name != "frequency" and (worst := float(np.max(np.abs(given)))) > LARGEST
+    ]
+    middle = float(np.median(columns["real_permittivity"]))
+    if not middle > SMALLEST:
+        detail = (
+            f"real_permittivity is {middle:g} in the middle; expected eps' of "
+            "eps = eps' - j eps'', which is at least 1"
+        )
+        complaints.append(_complaint("real_permittivity", detail))
     for name, given in (("real_permittivity_u", real_u), ("imaginary_permittivity_u", loss_u)):
         if given is not None and not np.all((np.asarray(given) > 0) & np.isfinite(given)):
             detail = f"{name} must be above 0 everywhere; leave it out where it is not known"

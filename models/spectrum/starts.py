@@ -81,7 +81,10 @@ def _linear(
         ]
         matrix = np.array(columns).T
         scales = np.linalg.norm(matrix, axis=0)
-        answer, misfit = nnls(matrix / scales, target)
+        try:
+            answer, misfit = nnls(matrix / scales, target)
+        except RuntimeError:  # it went round in circles: another combination will do
+            continue
         found.append((float(misfit), _vector(form, answer / scales, shapes, times, size)))
     return found
 
@@ -131,6 +134,14 @@ def _vector(
     return np.array(vector)
 
 
+def _plain(form: Form) -> Array:
+    """A start that needs no data: the middle of every range that matters."""
+    middle = {"infinite_permittivity": 5.0, "relaxation_strength": 5.0, "relaxation_time": 1e-9,
+              "beta": 0.8, "alpha": 0.1, "resonance_frequency": 1e9, "bulk_conductivity": 1e-2,
+              "electrode_permittivity": 1e4, "electrode_exponent": 0.1}  # fmt: skip
+    return form.vector(np.array([middle[slot.name] for slot in form.slots]))
+
+
 def _different(form: Form, ranked: list[Array], count: int) -> list[Array]:
     """The best that are not neighbours on the grid of any better one."""
     telling = {"relaxation_time", "electrode_permittivity"}
@@ -141,4 +152,4 @@ def _different(form: Form, ranked: list[Array], count: int) -> list[Array]:
             chosen.append(vector)
         if len(chosen) == count:
             break
-    return chosen or ranked[:1]
+    return chosen or [_plain(form)]

@@ -2,8 +2,8 @@
 
 from service.batch.conversion import PIECE, Conversion, Counts, Stages, convert_file
 from service.batch.response import SpooledResponse
-from service.formats.spool import Spool
 from service.batch.stream import convert_stream, deadline
+from service.formats.spool import Spool
 
 __all__ = [
     "PIECE",

@@ -13,9 +13,9 @@ from typing import IO
 
 import numpy as np
 
-from service.formats.spool import write_to
 from service.formats.block import Answer, Block, Decoder, Encoder, refuse_first
 from service.formats.errors import FormatError, HeaderError
+from service.formats.spool import write_to
 
 PIECE = 1 << 20
 """Bytes that are read, computed or sent at a time."""
@@ -130,7 +130,7 @@ class Conversion:
         return Answer(kept, answer.flags)
 
 
-class _clocked:  # noqa: N801 - reads as a statement
+class _clocked:
     """Adds the time of a block of code to one of the stages."""
 
     __slots__ = ("_name", "_stages", "_started")

@@ -10,8 +10,8 @@ from collections.abc import AsyncIterator, Callable, Iterator
 
 from service.batch import workers
 from service.batch.conversion import PIECE, Conversion, Counts
-from service.formats.spool import Writable, write_to
 from service.batch.workers import on_worker
+from service.formats.spool import Writable, write_to
 
 
 def nothing_ends() -> None:

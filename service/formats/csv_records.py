@@ -31,17 +31,19 @@ _CELL = re.compile(rb'(?:"(?:[^"]++|"")*+"[^,\n]*+|(?!")[^,\n]*+)([,\n])')
 def csv_ends(window: bytes) -> Ends:
     """The record ends of a window that begins with a record: a quoted line feed ends nothing."""
     codes = np.frombuffer(window, np.uint8)
-    feeds = np.flatnonzero(codes == LF)
+    feeds = ends = np.flatnonzero(codes == LF)
     if b'"' in window:
         quotes = np.flatnonzero(codes == QUOTE)
-        feeds = feeds[np.searchsorted(quotes, feeds) % 2 == 0]
-        if not feeds.size or not _around_cells(codes, quotes[quotes < feeds[-1]]):
+        ends = feeds[np.searchsorted(quotes, feeds) % 2 == 0]
+        if not ends.size or not _around_cells(codes, quotes[quotes < ends[-1]]):
             return _ends_cell_by_cell(window)
-    if not feeds.size:
-        return Ends(feeds)
-    text = window[: feeds[-1] + 1]
-    stray_return = b"\r" in text and text.count(b"\r") != text.count(b"\r\n")
-    return Ends(feeds, regular=not stray_return)
+    if not ends.size:
+        return Ends(ends)
+    stop = int(ends[-1]) + 1
+    stray_return = b"\r" in window and window.count(b"\r", 0, stop) != window.count(
+        b"\r\n", 0, stop
+    )
+    return Ends(ends, regular=not stray_return, feeds=feeds)
 
 
 class Cells:
@@ -84,7 +86,8 @@ class Cells:
         read = dict(zip(sorted(wanted), self._read(self._text, kinds, sorted(wanted)), strict=True))
         values = {place: np.array(read[place].to_numpy(), np.float64) for place in wanted}
         odd = {place: np.zeros(len(read[place]), dtype=np.bool_) for place in wanted}
-        doubtful = np.flatnonzero(~np.isfinite(sum(values.values())))
+        with np.errstate(all="ignore"):
+            doubtful = np.flatnonzero(~np.isfinite(sum(values.values())))
         if doubtful.size:
             texts = self._some_rows(doubtful)
             for place in wanted:

@@ -24,7 +24,7 @@ def combinations(flags: Flags) -> tuple[list[list[str]], NDArray[np.intp]]:
     """Every combination of flags there is, spelt out, and which of them each row has."""
     if not flags.any():
         return [[]], np.zeros(flags.size, dtype=np.intp)
-    masks, places = np.unique(flags, return_inverse=True)
+    masks, places = _masks(flags)
     return [list(slugs_of(mask)) for mask in masks.tolist()], places
 
 
@@ -32,6 +32,12 @@ def _spelt(flags: Flags, spell: Callable[[tuple[str, ...]], str]) -> pl.Series:
     """As many pieces of text as rows, by as many calls as there are combinations."""
     if not flags.any():
         return pl.repeat(spell(()), len(flags), dtype=pl.String, eager=True)
-    masks, places = np.unique(flags, return_inverse=True)
+    masks, places = _masks(flags)
     words = [spell(slugs_of(mask)) for mask in masks.tolist()]
     return pl.Series(words, dtype=pl.String).gather(places)
+
+
+def _masks(flags: Flags) -> tuple[Flags, NDArray[np.intp]]:
+    """The few different masks there are, and which of them each row has."""
+    masks: Flags = np.sort(pl.Series(flags).unique().to_numpy())
+    return masks, np.searchsorted(masks, flags)

@@ -36,13 +36,16 @@ class Ends:
     """Of their line feeds; the window begins with a record."""
     regular: bool = True
     """A fast reader takes these records apart without doubt."""
+    feeds: Places | None = None
+    """Of every line feed of the window, where they have been looked for."""
     opened: int | None = None
     """Where a cell begins that the end of the window leaves open, if no record ends before."""
 
 
 def line_ends(window: bytes) -> Ends:
     """Every line is a record."""
-    return Ends(np.flatnonzero(np.frombuffer(window, np.uint8) == LF))
+    feeds = np.flatnonzero(np.frombuffer(window, np.uint8) == LF)
+    return Ends(feeds, feeds=feeds)
 
 
 @dataclass(frozen=True, slots=True)
@@ -70,7 +73,7 @@ class Records:
         return cls(b"", places, places, places, regular=False, dense=False)
 
     def first_ones(self) -> int:
-        """How many of the first block's records decide what is read of the table."""
+        """How many records of a table's first block decide what is read of it."""
         return int(np.searchsorted(self.starts, FIRST_BYTES))
 
     def without_first(self) -> "Records":
@@ -115,8 +118,8 @@ class RecordCutter:
     ) -> None:
         self._find = find
         self._line_bytes = line_bytes
-        self._sizes = _sizes(max(block_bytes, FIRST_BYTES), line_bytes)
-        self._later_sizes = _sizes(block_bytes, line_bytes)
+        first, widest = max(block_bytes, FIRST_BYTES), max(block_bytes, line_bytes + len(b"\r\n"))
+        self._sizes, self._later_sizes = (first, max(first, widest)), (block_bytes, widest)
         self._waiting = bytearray()
         self._line = 1
         self._marked = self._begun = False
@@ -153,13 +156,12 @@ class RecordCutter:
 
     def _begin(self, *, last: bool) -> bool:
         """Drop what stands before the first record; whether that was found."""
-        mark = codecs.BOM_UTF8
         if not self._marked:
-            if len(self._waiting) < len(mark) and not last:
+            if len(self._waiting) < len(codecs.BOM_UTF8) and not last:
                 return False
             self._marked = True
-            if self._waiting.startswith(mark):
-                del self._waiting[: len(mark)]
+            if self._waiting.startswith(codecs.BOM_UTF8):
+                del self._waiting[: len(codecs.BOM_UTF8)]
         blank = len(self._waiting) - len(self._waiting.lstrip(BLANK))
         dropped = self._waiting.rfind(b"\n", 0, blank) + 1
         self._line += self._waiting.count(b"\n", 0, dropped)
@@ -172,9 +174,8 @@ class RecordCutter:
         self._blanks += blanks
         self._others += others
         if self._blanks > BLANK_BYTES + self._others:
-            raise RecordTooLong(
-                f"at most {BLANK_BYTES} bytes of blank lines", "more", line=self._line
-            )
+            most = f"at most {BLANK_BYTES} bytes of blank lines"
+            raise RecordTooLong(most, "more", line=self._line)
 
     def _next(self, *, last: bool) -> Records | None:
         """The records of the next window; None while it takes more bytes to tell."""
@@ -200,11 +201,12 @@ class RecordCutter:
         codes = np.frombuffer(text, np.uint8)
         starts = np.concatenate((np.zeros(1, np.int64), ends.places[:-1] + 1))
         stops = ends.places - ((codes[ends.places - 1] == CR) & (ends.places > starts))
-        count = text.count(b"\n")
+        feeds = np.flatnonzero(codes == LF) if ends.feeds is None else ends.feeds
+        count = int(np.searchsorted(feeds, ends.places[-1])) + 1
         if count == len(starts):
             lines = np.arange(self._line, self._line + count)
         else:
-            lines = self._line + np.searchsorted(np.flatnonzero(codes == LF), starts)
+            lines = self._line + np.searchsorted(feeds, starts)
         self._line += count
         longest = int(np.argmax(stops - starts))
         if stops[longest] - starts[longest] > self._line_bytes:
@@ -233,11 +235,6 @@ class RecordCutter:
         return RecordTooLong(
             f"at most {self._line_bytes} bytes in a record", "more", line=line, mend=mend
         )
-
-
-def _sizes(block_bytes: int, line_bytes: int) -> tuple[int, int]:
-    """Of a window, and of one that is widened to the longest record."""
-    return block_bytes, max(block_bytes, line_bytes + len(b"\r\n"))
 
 
 def _blank(codes: NDArray[np.uint8], starts: Places, stops: Places) -> NDArray[np.bool_]:

@@ -63,7 +63,6 @@ class Spool:
         self.close()
 
 
-
 class Writable(Protocol):
     """What answers are written to."""
 

@@ -132,8 +132,8 @@ def _by_pixel(columns: list[Array], edges: Array) -> tuple[Labels, list[Array], 
         return series(seconds, np.where(np.isfinite(values), values, np.nan))
 
     found, low, high = (
-        resample(binned(part), edges, step=width, gap=width, rules=["plain"])
-        for part in (value, lower, upper)
+        resample(binned(part), edges, step=width, gap=width, rules=rules)
+        for part, rules in ((value, ["plain"]), (lower, []), (upper, []))
     )
     filled = np.flatnonzero(found.count)
     place = np.searchsorted(filled, np.searchsorted(edges, seconds, side="right") - 1)

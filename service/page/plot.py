@@ -4,6 +4,7 @@ What is measured is drawn as markers, what is computed as lines; series are told
 dash as well as by colour, so that a plot can be read in print and by colour-blind eyes.
 """
 
+import math
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
@@ -16,13 +17,15 @@ from service.page.chart_lines import Look, look_of
 from service.page.svg import Drawing
 
 WIDTH, LEFT, RIGHT = 860.0, 78.0, 210.0
-TOP, HEIGHT, BETWEEN, BOTTOM = 78.0, 250.0, 74.0, 62.0
+TOP, HEIGHT, BETWEEN, BOTTOM = 96.0, 250.0, 74.0, 62.0
 TALL = 480.0
 """Height of a panel whose axes have one scale."""
 INK, QUIET, GRID, EDGE = "#1c1c1c", "#555555", "#dcdcdc", "#999999"
 MOST_MARKERS = 160
 """Of a series; of a longer one, evenly spaced points are drawn."""
 ROW, SAMPLE = 22.0, 34.0
+FEW_DECADES = 300.0
+"""Ratio of the ends of a logarithmic axis up to which decades alone are too few ticks."""
 ONE_SCALE = 6.0
 """Where one axis spans more than this many times the other, they keep scales of their own."""
 
@@ -86,6 +89,8 @@ def plot(
     said = [*notes]
     if any(len(one.x) > MOST_MARKERS for p in panels for one in p.series if one.measured):
         said.append(f"Of the points, {MOST_MARKERS} evenly spaced ones are drawn.")
+    if any(p.panel.one_scale and not _is_one_scale(p.x, p.y) for p in placed):
+        said.append("The axes have scales of their own: one spans far more than the other.")
     bottom = placed[-1].bottom + BOTTOM
     height = bottom + 17.0 * len(said) + 6.0
     drawing = Drawing(WIDTH, height, title=title, description=_described(panels))
@@ -123,11 +128,15 @@ def _one_scale(x: Axis, y: Axis) -> tuple[Axis, Axis]:
     if max(spans) > ONE_SCALE * min(spans):
         return x, y
     unit = max(spans)
-    low = max(y.low, 0.0) if y.low >= 0 else y.low
     return (
         Axis(x.low, x.low + unit * wide, x.start, x.end),
-        Axis(low, low + unit * high, y.start, y.end),
+        Axis(y.low, y.low + unit * high, y.start, y.end),
     )
+
+
+def _is_one_scale(x: Axis, y: Axis) -> bool:
+    across, up = ((axis.high - axis.low) / abs(axis.end - axis.start) for axis in (x, y))
+    return math.isclose(across, up, rel_tol=1e-9)
 
 
 def _draw(drawing: Drawing, placed: _Placed, looks: dict[str, Look], name: str) -> None:
@@ -153,12 +162,12 @@ def _draw(drawing: Drawing, placed: _Placed, looks: dict[str, Look], name: str) 
 
 def _draw_axes(drawing: Drawing, placed: _Placed) -> None:
     x, y, panel = placed.x, placed.y, placed.panel
-    for value, label in x.ticks(7):
+    for value, label in _ticks(x, 7):
         at = float(x.place(value))
         drawing.line(at, placed.top, at, placed.bottom, stroke=GRID)
         drawing.text(at, placed.bottom + 18, label, font_size=12, fill=QUIET,
                      text_anchor="middle")  # fmt: skip
-    for value, label in y.ticks():
+    for value, label in _ticks(y, 6):
         at = float(y.place(value))
         drawing.line(x.start, at, x.end, at, stroke=GRID)
         drawing.text(x.start - 8, at, label, font_size=12, fill=QUIET, text_anchor="end",
@@ -166,6 +175,15 @@ def _draw_axes(drawing: Drawing, placed: _Placed) -> None:
     drawing.text(0.5 * (x.start + x.end), placed.bottom + 38, panel.x_label, font_size=13,
                  fill=INK, text_anchor="middle")  # fmt: skip
     drawing.text(x.start, placed.top - 9, panel.y_label, font_size=13, font_weight=600, fill=INK)
+
+
+def _ticks(axis: Axis, most: int) -> Sequence[tuple[float, str]]:
+    """As the axis has them; on a short logarithmic one also twice and five times the decades."""
+    if not axis.logarithmic or axis.high > FEW_DECADES * axis.low:
+        return axis.ticks(most)
+    powers = range(math.floor(math.log10(axis.low)), math.ceil(math.log10(axis.high)) + 1)
+    values = [factor * 10.0**power for power in powers for factor in (1, 2, 5)]
+    return [(value, f"{value:g}") for value in values if axis.low <= value <= axis.high]
 
 
 def _draw_band(drawing: Drawing, one: Series, look: Look, x: Axis, y: Axis) -> None:

@@ -74,9 +74,10 @@ def router_of(catalogue: Catalogue) -> APIRouter:
         return _answer(request, whole)
 
     async def show_one(request: Request, name: Name) -> Response:
-        if name not in single:
+        known = name if name in single else name.partition(":")[0]  # missing:temperature
+        if known not in single or (known != name and catalogue.path != "flags"):
             raise NotFound(f"/v1/{catalogue.path} has no {shortened(name)}{hint(name, single)}")
-        return _answer(request, single[name])
+        return _answer(request, single[known])
 
     def add(path: str, route: Callable[..., Any], prefix: str, summary: str, example: Any) -> None:
         content = {OFFERED["json"]: {"schema": {"type": "object"}, "example": example}}

@@ -4,6 +4,7 @@ import platform
 from importlib.metadata import version
 from typing import Any
 
+import anyio.to_thread
 from fastapi import APIRouter, Request
 
 from service import __version__
@@ -43,9 +44,10 @@ async def livez() -> dict[str, str]:
 
 @router.get("/readyz", summary="Whether requests are served", responses=_example(READY))
 async def readyz(request: Request) -> dict[str, str]:
-    """503 with Retry-After while the service is stopping: send new requests elsewhere."""
+    """503 with Retry-After while it is stopping, or its store does not answer."""
     if request.app.state.draining:
         raise Unavailable("the service is stopping; requests under way are still answered")
+    await anyio.to_thread.run_sync(request.app.state.shelf.store.head)
     return READY
 
 

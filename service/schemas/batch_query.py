@@ -6,7 +6,7 @@ from types import MappingProxyType
 from typing import Any
 
 from models.mixing import MIXING_MODELS
-from models.quantity import NOISE, PROBE, SOIL
+from models.quantity import NOISE, PROBE, READING, SOIL
 from models.registry import Registry
 from models.salinity import PORE_WATER_MODELS
 from service.errors import Unprocessable
@@ -113,6 +113,11 @@ def _units(_: str, text: str) -> Mapping[str, str]:
 
 
 def _stranger(name: str, known: Iterable[str]) -> Fault:
+    if name == "temperature":
+        detail = "temperature is a column of the table; for rows without one, assume_temperature"
+        return Fault(detail, f"?{name}")
+    if name in READING or name.removesuffix("_u") in READING:
+        return Fault(f"{name} is a column of the table, one value for each reading", f"?{name}")
     meant = nearest(name, known)
     hint = f"did you mean {meant}?" if meant else "the description at /docs lists what is known"
     return Fault(f"unknown parameter {shown(name)}; {hint}", f"?{name[:80]}")

@@ -61,7 +61,10 @@ SoilBody = body_of(
     {
         "texture": (TextureKey | None, Field(None, description="USDA texture class, or peat")),
         **quantity_fields(SOIL),
-        "sources": (dict[str, str] | None, Field(None, description="as echoed; read past")),
+        "sources": (
+            dict[str, Annotated[str, Field(max_length=80)]] | None,
+            Field(None, description="where each value came from, as an earlier answer echoed it"),
+        ),
     },
 )
 

@@ -11,6 +11,7 @@ from service.errors import MEDIA_TYPE, PROBLEMS
 from service.examples import examples, show
 from service.schemas.estimates import SETTINGS
 from service.spectra.bodies import SPECTRA
+from service.stations.bodies import BODIES as STORED
 
 REFERENCE = "#/components/schemas/{model}"
 BODIES: tuple[TypeAdapter[Any], ...] = (SETTINGS, SPECTRA)
@@ -69,7 +70,7 @@ class Api(FastAPI):
             for unused in ("HTTPValidationError", "ValidationError"):
                 schemas.pop(unused, None)
             schemas["Problem"] = PROBLEM
-            for bodies in BODIES:
+            for bodies in (*BODIES, *STORED.values()):
                 schemas |= bodies.json_schema(ref_template=REFERENCE).get("$defs", {})
             document["components"]["securitySchemes"] = {
                 "key": {"type": "http", "scheme": "bearer",

@@ -1,6 +1,7 @@
 """From a request's own words to a query in SI, with everything that is wrong with it."""
 
 from collections.abc import Iterable, Mapping
+from dataclasses import replace
 from typing import Any
 
 from pydantic import ValidationError
@@ -132,7 +133,9 @@ def soil_of(body: Any, units: Units) -> Soil:
         raise ParameterError("soil", complaints)
     if body.texture is not None:
         named_in(TEXTURES, texture_key(body.texture), ("soil", "texture"))
-    return describe(body.texture, given, spread)
+    soil = describe(body.texture, given, spread)
+    told = {name: text for name, text in (body.sources or {}).items() if name in given}
+    return replace(soil, origins={**soil.origins, **told}) if told else soil
 
 
 def model_of(

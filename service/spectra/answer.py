@@ -10,8 +10,8 @@ from models.conversion import Units, from_si
 from models.quantity import QUANTITIES
 from models.relation import Array, ComplexArray
 from models.spectrum import Interpretation
-from models.spectrum.circuit import UNITS as ELEMENT_UNITS
-from models.spectrum.circuit import Branch, Circuit
+from models.spectrum.circuits.circuit import UNITS as ELEMENT_UNITS
+from models.spectrum.circuits.circuit import Branch, Circuit
 from models.spectrum.description import Banded, spread
 from models.spectrum.doubts import TERM as UNRESOLVED
 from models.spectrum.doubts import doubts

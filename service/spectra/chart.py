@@ -15,6 +15,8 @@ POINTS = 240
 """Of a fitted line."""
 DECADES = 1.5
 """Span of a part beyond which its axis is logarithmic."""
+MHZ = 1e6
+STILL = "without conduction"
 UNITS = {"1": "", "Ohm": " in Ohm", "S": " in S"}
 
 
@@ -24,10 +26,12 @@ def chart_of(found: Interpretation, body: SpectraBody, cell: float) -> str:
     lines = _series(found, view, cell, over_frequency=body.chart.plane == "frequency")
     subtitle = (
         f"{len(fit.spectrum.frequency)} points, fitted by {fit.form.title}; residuals "
-        f"{100 * fit.relative_residual:.2g} % of |eps|"
+        f"{100 * fit.relative_residual:.2g} % of |\N{GREEK SMALL LETTER EPSILON}|"
     )
     probability = 100 * body.coverage_probability
-    notes = [f"The band holds the fitted curve with a probability of {probability:g} %."]
+    notes = []
+    if body.chart.plane == "frequency":
+        notes.append(f"The band holds the fitted curve with a probability of {probability:g} %.")
     if view.unit != "1":
         notes.append(f"Capacitance of the empty cell: {cell:.4g} F.")
     title = f"{view.key.capitalize()} of a cell" if view.unit != "1" else view.key.capitalize()
@@ -62,7 +66,7 @@ def _series(found: Interpretation, view: View, cell: float, *, over_frequency: b
     values = seen_as(view.key, eps, fine, cell)
     lines.append(_Line("fitted", fine, values, (half[0], half[1]) if over_frequency else None))
     if fit.form.conduction and view.key == "permittivity":
-        lines.append(_Line("without conduction", fine, _still(fit, fine), None))
+        lines.append(_Line(STILL, fine, _still(fit, fine), None))
     return lines
 
 
@@ -75,10 +79,11 @@ def _still(fit: Fit, frequency: Array) -> ComplexArray:
 
 def _label(view: View, place: int) -> str:
     """Name of a part with its sign and unit."""
-    stroke = "'" if place == 0 else "''"
+    stroke = "\N{PRIME}" if place == 0 else "\N{DOUBLE PRIME}"
     sign = "" if place == 0 or not view.downward or view.key == "permittivity" else "-"
+    symbol = "\N{GREEK SMALL LETTER EPSILON}" if view.symbol == "eps" else view.symbol
     words = ("real part", "loss") if view.key == "permittivity" else ("real part", "imaginary part")
-    return f"{view.key.capitalize()}, {words[place]} {sign}{view.symbol}{stroke}{UNITS[view.unit]}"
+    return f"{view.key.capitalize()}, {words[place]} {sign}{symbol}{stroke}{UNITS[view.unit]}"
 
 
 def _part(view: View, lines: list[_Line], place: int) -> Panel:
@@ -90,12 +95,14 @@ def _part(view: View, lines: list[_Line], place: int) -> Panel:
     for line, part in zip(lines, values, strict=True):
         half = None if line.half is None else line.half[place]
         kept = np.where(part >= 0.3 * drawn.min(), part, np.nan) if wide else part
+        if place == 0 and line.name == STILL:
+            continue
         series.append(
-            Series(line.name, line.frequency, kept, measured=line.name == "measured",
+            Series(line.name, line.frequency / MHZ, kept, measured=line.name == "measured",
                    lower=None if half is None else part - half,
                    upper=None if half is None else part + half)
         )  # fmt: skip
-    return Panel("Frequency in Hz", _label(view, place), series, x_logarithmic=True,
+    return Panel("Frequency in MHz", _label(view, place), series, x_logarithmic=True,
                  y_logarithmic=wide)  # fmt: skip
 
 

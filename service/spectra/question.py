@@ -174,7 +174,11 @@ def _temperature(body: SpectraBody) -> tuple[float, float]:
     """Cel and K; NaN where neither the spectrum nor the caller's assumption says it."""
     if body.temperature is not None:
         given = {"temperature": body.temperature, "temperature_u": body.temperature_u or 0.0}
-        known = to_si("", given, body.units)
+        try:
+            known = to_si("temperature", given, body.units)
+        except ParameterError as error:
+            placed = [Complaint(c.name, c.detail, (c.name,)) for c in error.complaints]
+            raise ParameterError("request", placed) from None
         return known["temperature"], known["temperature_u"]
     if body.assume.temperature is None:
         return np.nan, 0.0

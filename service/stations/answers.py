@@ -50,7 +50,8 @@ def encoded(
         return stream.getvalue()
     if media_type == OFFERED["ndjson"]:
         return frame.write_ndjson().encode()
-    joined = [pl.col(n).list.join(";") for n, kind in frame.schema.items() if kind == pl.List]
+    lists = [name for name, kind in frame.schema.items() if kind == pl.List]
+    joined = [pl.col(name).list.join(";").replace("", None) for name in lists]
     return frame.with_columns(joined).write_csv(line_terminator="\r\n").encode()
 
 

@@ -43,7 +43,7 @@ class Asked:
     shape: str = "rows"
     moment: int | None = None
     within: int = 3600 * SECOND
-    quantity: str = "water_content"
+    quantity: str = ""
     estimate: Mapping[str, Any]
     """What of a request for estimates is stated, in the unit of the API."""
     units: Mapping[str, str]

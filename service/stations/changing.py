@@ -7,13 +7,16 @@ from typing import Any
 
 from pydantic import ValidationError
 
+from models.conversion import refuse_units
 from models.errors import ModelError, ParameterError
 from models.quantity import READING
+from models.readings import quantity_of
 from service.errors import NotFound, Unprocessable
 from service.faults import Fault, hint, pointer, problems_of
 from service.schemas.query import basis_of, settings_of
 from service.stations.bodies import BODIES
 from service.stations.documents import Documents, Shelf
+from service.stations.ingest.arrival import converter
 from service.stations.problems import Conflicted, PreconditionFailed, PreconditionRequired
 from service.stations.settings import settings_document
 from service.stations.station import faults_of_station, station_of
@@ -51,6 +54,7 @@ def checked(kind: Kind, given: Mapping[str, Any]) -> Mapping[str, Any]:
     Raises Unprocessable with a pointer to every fault.
     """
     adapter = BODIES[kind]
+    given = _in_own_units(given) if kind != "station" and "units" in given else given
     try:
         body = adapter.validate_python(given)
     except ValidationError as error:
@@ -62,6 +66,22 @@ def checked(kind: Kind, given: Mapping[str, Any]) -> Mapping[str, Any]:
     probe, soil = (kept, {}) if kind == "probe" else ({}, kept)
     _check_science(kind, settings_document(soil, probe, {}))
     return kept
+
+
+def _in_own_units(given: Mapping[str, Any]) -> Mapping[str, Any]:
+    """A soil or a probe whose quantities are in other units, in the unit of the API."""
+    units = given["units"]
+    if not isinstance(units, dict) or not all(isinstance(code, str) for code in units.values()):
+        raise Unprocessable("expected UCUM codes", [Fault("expected an object", "#/units")])
+    refuse_units(units)
+    found: dict[str, Any] = {}
+    for name, value in given.items():
+        about, is_width = quantity_of(name)
+        if name != "units" and about in units and type(value) in {int, float}:
+            value = float(converter(about, units[about], is_width=is_width)(value))  # noqa: PLW2901
+        if name != "units":
+            found[name] = value
+    return found
 
 
 def _check_science(kind: Kind, document: Mapping[str, Any]) -> None:

@@ -32,6 +32,8 @@ class Key(BaseModel):
     label: Annotated[str, Field(pattern=r"^[A-Za-z0-9][A-Za-z0-9._-]{0,63}$")]
     sha256: Annotated[str, Field(pattern=r"^[0-9a-f]{64}$")]
     scopes: Annotated[tuple[Reach, ...], Field(min_length=1)]
+    stations: tuple[Annotated[str, Field(pattern=r"^[A-Za-z][A-Za-z0-9._-]{0,63}$")], ...] = ()
+    """The only stations it reaches; none named: all."""
     created: datetime
     revoked: datetime | None = None
 
@@ -76,8 +78,10 @@ class KeyFile:
                 found = key
         return found
 
-    def add(self, label: str, scopes: Sequence[Reach]) -> str:
+    def add(self, label: str, scopes: Sequence[Reach], stations: Sequence[str] = ()) -> str:
         """Make a key and return it: the only time it can be seen.
+
+        stations: the only ones it reaches; none: all.
 
         Raises KeyFileError when the label is in use, or is none.
         """
@@ -86,8 +90,9 @@ class KeyFile:
         secret = MARK + secrets.token_urlsafe(32)
         try:
             key = Key(
-                label=label, sha256=_hash(secret), scopes=tuple(scopes), created=datetime.now(UTC)
-            )
+                label=label, sha256=_hash(secret), scopes=tuple(scopes), stations=tuple(stations),
+                created=datetime.now(UTC),
+            )  # fmt: skip
         except ValidationError as error:
             raise KeyFileError("; ".join(fault.detail for fault in problems_of(error))) from None
         self._write((*self.all(), key))

@@ -98,8 +98,10 @@ class PoreWater:
             return _half_difference(lambda sign: self._log(sign, steps), here)
 
         reach = self.content.standard_uncertainty
-        with np.errstate(invalid="ignore", divide="ignore"):
-            slope = np.where(reach > 0, effect(water_content=reach) / reach, 0.0)
+        slope = np.zeros(self.count)
+        if "water_content" in self.salinity.takes:
+            with np.errstate(invalid="ignore", divide="ignore"):
+                slope = np.where(reach > 0, effect(water_content=reach) / reach, 0.0)
         direct = Sources()
         for name, width in self.widths.items():
             if np.any(width > 0):

@@ -1,6 +1,6 @@
 """Permittivity of a filled line or cell from reflections, with what is not known of it."""
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field, replace
 
 import numpy as np
@@ -115,7 +115,8 @@ class _Face:
 @np.errstate(all="ignore")
 def _at_face(query: LineQuery) -> _Face:
     """Through the error terms of the standards, and through the air before the sample."""
-    reads = [query.reads[end] for end in query.ends or tuple(query.reads)]
+    names: Iterable[str] = query.ends or query.reads
+    reads = [query.reads[end] for end in names]
     read = np.stack([one.reflection for one in reads])
     known = all(one.spread is not None for one in reads)
     spread = np.stack([_spread(one) for one in reads])
@@ -158,16 +159,14 @@ def _solved(query: LineQuery, face: _Face, length: float | None) -> _Solution:
     answer = solve(model, start, face.reflection, face.spread)
     left = np.square(np.abs(answer.residual) / face.spread).sum(axis=0)
     freedom = 2 * (len(query.ends) - 1)
-    return _Solution(
-        answer.value, answer.spread, np.sqrt(left / freedom) if freedom else nothing
-    )
+    return _Solution(answer.value, answer.spread, np.sqrt(left / freedom) if freedom else nothing)
 
 
 def _start(query: LineQuery, face: _Face, length: float) -> ComplexArray:
     """In closed form from both ends; else the smooth one of the roots, on a thinned sweep."""
     f = query.frequency
     if len(query.ends) == 2:
-        start, _ = cell.from_both(*face.reflection, f, length)
+        start, _ = cell.from_both(face.reflection[0], face.reflection[1], f, length)
         return np.where(np.isfinite(start), start, 5.0)
     rows = np.unique(np.linspace(0, f.size - 1, min(f.size, TRACED)).astype(int))
     model = cell.model(f[rows], length, query.ends)
@@ -183,9 +182,7 @@ def _first(query: LineQuery) -> tuple["_Face", "_Solution"]:
     return face, _solved(query, face, query.length)
 
 
-def _estimated(
-    query: LineQuery, face: _Face, here: _Solution, *, conjugated: bool
-) -> LineEstimate:
+def _estimated(query: LineQuery, face: _Face, here: _Solution, *, conjugated: bool) -> LineEstimate:
     f = query.frequency
     known, spread = face.known, here.spread
     if not known and np.isfinite(here.residual).any():
@@ -206,7 +203,7 @@ def _estimated(
     flag(face.reflection, face.spread, flags)
     findings = findings_of(query, eps, face.reflection)
     if len(query.ends) == 2 and query.length is not None:
-        both = cell.from_both(*face.reflection, f, query.length)
+        both = cell.from_both(face.reflection[0], face.reflection[1], f, query.length)
         findings = (*findings, magnetic_finding(both[1], here.residual, known=face.known))
     freedom = min(read.freedom for read in query.reads.values())
     estimate = SweepEstimate(

@@ -18,8 +18,12 @@ class CoaxialGap:
     outer_conductor: float
 
     def __post_init__(self) -> None:
-        if not 0 < self.inner_conductor <= self.sample_inner < self.sample_outer <= (
-            self.outer_conductor
+        if (
+            not 0
+            < self.inner_conductor
+            <= self.sample_inner
+            < self.sample_outer
+            <= (self.outer_conductor)
         ):
             detail = (
                 "diameters must grow from inner_conductor over sample_inner and sample_outer to "
@@ -34,22 +38,26 @@ class CoaxialGap:
             self.outer_conductor / self.sample_outer
         )
         sample = np.log(self.sample_outer / self.sample_inner)
-        return float(gaps), float(sample), float(np.log(self.outer_conductor / self.inner_conductor))
+        return (
+            float(gaps),
+            float(sample),
+            float(np.log(self.outer_conductor / self.inner_conductor)),
+        )
 
     @np.errstate(all="ignore")
     def closed(self, read: ComplexArray) -> ComplexArray:
         """Permittivity of the sample from that of sample and gaps together, elementwise."""
         gaps, sample, whole = self.logarithms
-        return read * sample / (whole - read * gaps)
+        return np.asarray(read * sample / (whole - read * gaps))
 
     @np.errstate(all="ignore")
     def slope(self, read: ComplexArray) -> ComplexArray:
         """Derivative of ``closed``, elementwise."""
         gaps, sample, whole = self.logarithms
-        return sample * whole / np.square(whole - read * gaps)
+        return np.asarray(sample * whole / np.square(whole - read * gaps))
 
     @np.errstate(all="ignore")
     def read(self, permittivity: ComplexArray) -> ComplexArray:
         """Permittivity that sample and gaps have together: the inverse of ``closed``."""
         gaps, sample, whole = self.logarithms
-        return permittivity * whole / (sample + permittivity * gaps)
+        return np.asarray(permittivity * whole / (sample + permittivity * gaps))

@@ -1,13 +1,14 @@
 """Good practice with a filled line or cell."""
 
 from collections.abc import Iterator
+from dataclasses import replace
 from typing import Protocol
 
 import numpy as np
 
 from models.flags import Flags
 from models.reflection.propagation import attenuation_length, propagation_constant
-from models.reflection.sweep_flags import MARGIN, Finding, between, raised
+from models.reflection.sweep_flags import MARGIN, Finding, at_least, at_most, raised
 from models.relation import Array, ComplexArray
 
 ABOVE_ONE = 0.02
@@ -47,7 +48,8 @@ def flag(reflection: ComplexArray, spread: Array, flags: Flags) -> None:
     """Mark, in place, where more comes back than went in."""
     excess = np.abs(reflection) - 1
     above = (excess > MARGIN * spread) & (excess > ABOVE_ONE)
-    raised(flags[0], above.any(axis=0), "reflection-above-one")
+    for row in above:
+        raised(flags[0], row, "reflection-above-one")
 
 
 def findings_of(
@@ -63,47 +65,30 @@ def magnetic_finding(mu: ComplexArray, residual: Array, *, known: bool) -> Findi
     residual: of the fit with a permeability of 1, over its spread; it counts where noise is known.
     """
     usable = mu[np.isfinite(mu)]
-    middle = complex(np.median(usable.real) + 1j * np.median(usable.imag)) if usable.size else 1.0
-    departure = abs(middle - 1)
-    fits = known and float(np.nanmedian(residual)) < MARGIN
-    return Finding("magnetic", holds=departure <= MAGNETIC or fits, value=departure,
-                   limit=MAGNETIC, unit="1",
-                   about="median departure of permeability from 1, from both ends")  # fmt: skip
+    middle = complex(np.median(usable.real), np.median(usable.imag)) if usable.size else 1.0
+    about = "median departure of permeability from 1, from both ends"
+    found = at_most("magnetic", about, abs(middle - 1), MAGNETIC)
+    fits = known and float(np.median(residual)) < MARGIN
+    return replace(found, holds=True) if fits else found
 
 
 def _of_reflection(frequency: Array, reflection: ComplexArray) -> Finding:
     with np.errstate(all="ignore"):
         size = np.abs(reflection).max(axis=0)
-    above = size > 1 + ABOVE_ONE
-    return Finding("reflection-above-one", holds=not above.any(), value=_largest(size),
-                   limit=1 + ABOVE_ONE, unit="1", about="largest reflection at the sample",
-                   frequencies=between(frequency, above))  # fmt: skip
+    about = "largest reflection at the sample"
+    return at_most("reflection-above-one", about, size, 1 + ABOVE_ONE, frequency)
 
 
 def _of_sample(query: Described, eps: ComplexArray) -> Iterator[Finding]:
-    frequency = query.frequency
-    if query.length is not None and np.isfinite(eps).any():
-        if query.ends:
-            way = propagation_constant(eps, frequency)
-            turns = np.abs(way.imag) * query.length / (2 * np.pi)
-            short = turns < SHORT
-            yield Finding("electrically-short", holds=not short.any(),
-                          value=float(np.nanmin(turns)), limit=SHORT, unit="1",
-                          about="length of the cell in wavelengths, smallest",
-                          frequencies=between(frequency, short))  # fmt: skip
-        else:
-            thick = query.length / attenuation_length(eps, frequency)
-            thin = thick < ENDLESS
-            yield Finding("sample-thickness", holds=not thin.any(), value=float(np.nanmin(thick)),
-                          limit=ENDLESS, unit="1",
-                          about="length of the filling in attenuation lengths, smallest",
-                          frequencies=between(frequency, thin))  # fmt: skip
+    f = query.frequency
+    if query.length is not None and query.ends:
+        turns = np.abs(propagation_constant(eps, f).imag) * query.length / (2 * np.pi)
+        about = "length of the cell in wavelengths, smallest"
+        yield at_least("electrically-short", about, turns, SHORT, f)
+    elif query.length is not None:
+        thick = query.length / attenuation_length(eps, f)
+        about = "length of the filling in attenuation lengths, smallest"
+        yield at_least("sample-thickness", about, thick, ENDLESS, f)
     if query.grain_size is not None and query.gap_width is not None:
-        ratio = query.gap_width / query.grain_size
-        yield Finding("grain-size", holds=ratio >= GRAINS, value=ratio, limit=GRAINS, unit="1",
-                      about="gap between the conductors over the largest grain")  # fmt: skip
-
-
-def _largest(values: Array) -> float:
-    usable = values[np.isfinite(values)]
-    return float(usable.max()) if usable.size else float("nan")
+        about = "gap between the conductors over the largest grain"
+        yield at_least("grain-size", about, query.gap_width / query.grain_size, GRAINS)

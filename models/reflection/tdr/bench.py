@@ -6,7 +6,6 @@ import numpy as np
 
 from models.errors import Complaint, ParameterError
 from models.reflection.tdr.calibration import USUAL_OFFSET, calibrate, rise_of
-from models.reflection.tdr.identification import Identified, identify
 from models.reflection.tdr.late_level import (
     Circuit,
     Known,
@@ -14,13 +13,14 @@ from models.reflection.tdr.late_level import (
     level_after,
     resistance,
 )
-from models.reflection.tdr.line import OPEN, SHORT
 from models.reflection.tdr.probe import RISE_OVER_SPREAD, Cable, Head, Rods, System
 from models.reflection.tdr.record import Traces
-from models.reflection.tdr.response import grid
 from models.reflection.tdr.smoothing import noise_of
 from models.reflection.tdr.travel_time import Timing, plain_timing
-from models.reflection.tdr.whole_trace import Experiment
+from models.reflection.tdr.whole.experiment import Experiment
+from models.reflection.tdr.whole.identification import Identified, identify
+from models.reflection.tdr.whole.line import OPEN, SHORT
+from models.reflection.tdr.whole.response import grid
 
 USUAL_HEAD_IMPEDANCE, USUAL_ROD_IMPEDANCE = 100.0, 180.0
 """ohm, where a search begins that nobody said better."""
@@ -28,6 +28,8 @@ USUAL_RESISTANCE, USUAL_SKIN, USUAL_SPEED = 0.05, 1e-4, 2e8
 """ohm/m, ohm s^0.5/m and m/s of thin coaxial cable, there and back."""
 SERIES_SHARE_U = 0.5
 """Relative standard uncertainty of a series resistance that was not measured with a short."""
+UNKNOWN_SERIES = Known(0.3, 0.3)
+"""ohm, of a cable nobody says anything of: some metres, and its contacts."""
 OPEN_U = 2e-3
 """Of the level of an open line, where no trace in air says it."""
 DESCRIBED_U = 0.005
@@ -63,8 +65,6 @@ class Description:
     offset_u: float = 0.0
     series_resistance: Known | None = None
     head: Head | None = None
-    cable_delay: float | None = None
-    """s, one way"""
     cable: Cable = field(default_factory=Cable)
     cable_length: float | None = None
     """m"""
@@ -160,7 +160,9 @@ def _series(bench: Bench, from_time: float, open_level: Known) -> Known:
         level, level_u = level_after(short.settled, from_time)
         value = resistance(level, open_level.value, probe.instrument_impedance)
         return Known(value, 0.5 * probe.instrument_impedance * level_u)
-    cable = _cable(probe, probe.cable_delay or 0.0)
+    if probe.cable_length is None:
+        return UNKNOWN_SERIES
+    cable = _cable(probe, 0.0)
     return Known(cable.resistance, SERIES_SHARE_U * cable.resistance)
 
 

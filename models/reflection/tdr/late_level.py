@@ -78,7 +78,7 @@ class Circuit:
     """Conductivity over conductance of the rods, 1/m."""
     series_resistance: Known
     """Of cable and contacts, ohm."""
-    open_level: Known = Known(1.0)  # noqa: RUF009 - frozen
+    open_level: Known = Known(1.0)
     """Where the record settles with nothing between the rods."""
     instrument_impedance: float = 50.0
     """ohm"""

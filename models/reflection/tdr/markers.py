@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 from models.reflection.tdr.probe import RISE_OVER_SPREAD
 from models.reflection.tdr.record import Traces
 from models.reflection.tdr.smoothing import Smoothed, kernels
-from models.relation import Array
+from models.relation import Array, column
 
 FIRST_SHARE = 0.15
 """Of the steepest slope of a trace, for the first reflection to count as one."""
@@ -17,6 +17,8 @@ DETECTED = 8.0
 """Times its noise, for a slope to be a reflection."""
 STANDS_OUT = 0.4
 """Of its slope, by which a reflection is steeper than what is one rise before and after."""
+LONGEST_HEAD = 3e-9
+"""s, two-way, within which the rods begin after the first rise."""
 HALF_ROOT_TAU = float(np.sqrt(0.5 * np.pi))
 
 
@@ -63,6 +65,22 @@ def first_rise(given: Traces, smoothed: Smoothed) -> Edge:
     level = np.where(counted, given.rho, 0.0).sum(axis=-1) / before
     level_u = smoothed.noise / np.sqrt(before)
     return _edge(given, smoothed, peak, (level, level_u), over.any(axis=-1))
+
+
+@np.errstate(all="ignore")
+def rod_start(given: Traces, smoothed: Smoothed, start: Edge) -> Edge:
+    """Where the head ends: the steepest slope soon after the first rise, of the other sign."""
+    place = np.arange(given.points)
+    begins = np.nan_to_num(_index(given, start.steepest))
+    soon = begins + np.ceil(LONGEST_HEAD / given.step)
+    inside = (place > begins[:, None]) & (place <= soon[:, None])
+    rows = np.arange(given.count)
+    sign = np.sign(smoothed.slope[rows, np.clip(begins, 0, given.points - 1).astype(np.intp)])
+    peak = np.where(inside, -sign[:, None] * smoothed.slope, -np.inf).argmax(axis=-1)
+    between = inside & (place <= peak[:, None])
+    top = np.where(between, sign[:, None] * smoothed.level, -np.inf).max(axis=-1)
+    found = np.isfinite(top) & (sign * smoothed.slope[rows, peak] < 0)
+    return _edge(given, smoothed, peak, (sign * top, smoothed.level_noise), found)
 
 
 @np.errstate(all="ignore")
@@ -114,7 +132,7 @@ def _parabola(width: int) -> tuple[NDArray[np.float64], float, float]:
     """
     half = max(width // 2, 1)
     offsets = np.arange(-half, half + 1, dtype=np.float64)
-    weights = np.linalg.pinv(np.vander(offsets, 3, increasing=True))
+    weights = column(np.linalg.pinv(np.vander(offsets, 3, increasing=True)))
     slope = kernels(width)[1]
     return (
         weights,
@@ -158,7 +176,7 @@ def _edge(
     lost = np.where(found, 0.0, np.nan)
     return Edge(
         tangent=steepest - lead + lost,
-        steepest=steepest + lost,
+        steepest=column(steepest + lost),
         tangent_u=np.hypot(np.hypot(smoothed.level_noise, level_u), lead * slope_noise)
         / np.abs(slope)
         + lost,

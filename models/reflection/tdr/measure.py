@@ -1,4 +1,4 @@
-"""Many traces by travel time: permittivity from the end reflection, conductivity from late levels."""
+"""Many traces by travel time: permittivity from their ends, conductivity from late levels."""
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
@@ -6,13 +6,14 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from models.flags import BIT, Flags
-from models.reflection.tdr.apparent import ApparentPermittivity, apparent_permittivity
+from models.reflection.tdr.apparent import apparent_permittivity
 from models.reflection.tdr.bench import Bench, Record, circuit
-from models.reflection.tdr.identification import Identified
 from models.reflection.tdr.late_level import LateLevel, bulk_conductivity, late_level
-from models.reflection.tdr.markers import rod_start
+from models.reflection.tdr.markers import first_rise, rod_start
+from models.reflection.tdr.record import Traces
 from models.reflection.tdr.smoothing import following_widths, smooth
-from models.reflection.tdr.travel_time import Arrivals, Timing, find, plain_timing
+from models.reflection.tdr.travel_time import Timing, find, plain_timing
+from models.reflection.tdr.whole.identification import Identified
 from models.relation import Array
 
 CONDUCTIVE_GATE = 2.0
@@ -40,29 +41,57 @@ Known = Callable[[], Identified | None]
 
 def by_travel_time(record: Record, bench: Bench, known: Known) -> Measured:
     """Apparent permittivity, effective frequency and bulk conductivity of many traces at once."""
-    found, apparent = _times(record, bench)
+    if bench.timing is not None:
+        columns, figures = _by_times(record.trace, bench.timing)
+    else:
+        rows = [record.trace.rows(np.array([row])) for row in range(record.trace.count)]
+        told = [_by_times(row, _shown_by(row, bench)) for row in rows]
+        columns, figures = (
+            {name: np.concatenate([part[k][name] for part in told]) for name in told[0][k]}
+            for k in (0, 1)
+        )
     flags = np.zeros(record.trace.count, dtype=np.uint64)
-    flags[np.isnan(apparent.value)] |= BIT["no-end-reflection"]
-    columns, figures = _of_times(found, apparent)
+    flags[np.isnan(columns["apparent_permittivity"])] |= BIT["no-end-reflection"]
     more, level = conductivity(record, bench, known, flags)
     return Measured(columns | more, figures | level, flags)
 
 
-def _times(record: Record, bench: Bench) -> tuple[Arrivals, ApparentPermittivity]:
-    if bench.timing is not None:
-        found = find(record.trace, bench.timing)
-        return found, apparent_permittivity(found, bench.timing)
-    arrivals, values = [], []
-    for row in range(record.trace.count):
-        one = record.trace.rows(np.array([row]))
-        timing = _shown_by(one, bench)
-        arrivals.append(find(one, timing))
-        values.append(apparent_permittivity(arrivals[-1], timing))
-    return _joined(arrivals), _joined_values(values)
+def _shown_by(trace: Traces, bench: Bench) -> Timing:
+    """Timing of rods whose beginning a trace shows itself: where the slope turns after the head."""
+    smoothed = smooth(trace, int(following_widths(trace)[0]))
+    start = first_rise(trace, smoothed)
+    begin = rod_start(trace, smoothed, start)
+    offset = float(begin.steepest[0] - start.steepest[0])
+    u = float(np.hypot(begin.steepest_u[0], UNSEEN_OFFSET_U * start.rise[0]))
+    return plain_timing(bench.length, bench.probe.length_u, offset, u, smoothed.width)
 
 
-def _shown_by(trace: "Record.trace", bench: Bench) -> Timing:
-    raise AssertionError
+def _by_times(trace: Traces, timing: Timing) -> tuple[dict[str, Array], dict[str, Array]]:
+    """Columns and figures of traces with one timing."""
+    found = find(trace, timing)
+    told = apparent_permittivity(found, timing)
+    lost = np.where(told.refused, np.nan, 0.0)
+    columns = {
+        "apparent_permittivity": told.value,
+        "apparent_permittivity_u": told.standard_uncertainty,
+        "apparent_permittivity_u_shared": told.shared,
+        "frequency": told.frequency,
+        "frequency_u": told.frequency_u,
+        "travel_time": told.travel_time,
+    }
+    figures = {
+        "start_by_tangents": found.start.tangent,
+        "start_by_steepest_slope": found.start.steepest,
+        "end_by_tangents": found.end.tangent + lost,
+        "end_by_steepest_slope": found.end.steepest + lost,
+        "permittivity_by_tangents": told.by_tangents,
+        "permittivity_by_steepest_slope": told.by_steepest,
+        "rise_time": found.end.rise + lost,
+        "signal_to_noise": found.end.signal + lost,
+        "smoothing": found.width,
+        "noise": found.noise,
+    }
+    return columns, figures
 
 
 def conductivity(
@@ -91,3 +120,11 @@ def conductivity(
         "bulk_conductivity_u_shared": shared + lost,
     }
     return columns, _of_level(level)
+
+
+def _of_level(level: LateLevel) -> dict[str, Array]:
+    return {
+        "late_level": level.value,
+        "late_level_u": level.standard_uncertainty,
+        "late_level_from": level.from_time,
+    }

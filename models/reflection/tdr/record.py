@@ -43,7 +43,7 @@ class Traces:
     @property
     def time(self) -> Array:
         """Two-way time of the points, s."""
-        return self.start + self.step * np.arange(self.points)
+        return column(self.start + self.step * np.arange(self.points))
 
     @property
     def end(self) -> float:
@@ -87,14 +87,16 @@ def traces(start: float, step: float, rho: ArrayLike, noise: ArrayLike | None = 
     return Traces(float(start), float(step), values, given)
 
 
-def from_distance(distance: ArrayLike, velocity_factor: float = 1.0) -> tuple[float, float]:
+def from_distance(
+    distance: ArrayLike, velocity_factor: float = 1.0, name: str = "distance"
+) -> tuple[float, float]:
     """Start and step in two-way time of an axis of one-way distances.
 
     distance: shape (points,), m, as the instrument shows them with its propagation velocity set to
     ``velocity_factor`` times that of light.
     Raises ParameterError unless it goes up in even steps.
     """
-    return even_axis(2.0 * column(distance) / (speed_of_light * velocity_factor), "distance")
+    return even_axis(2.0 * column(distance) / (speed_of_light * velocity_factor), name)
 
 
 def even_axis(time: ArrayLike, name: str) -> tuple[float, float]:

@@ -66,8 +66,9 @@ class Timing:
 def plain_timing(
     length: float, length_u: float, offset: float, offset_u: float, width: float | None = None
 ) -> Timing:
-    """Timing from what a probe is said to be: rods of a length, m, that begin ``offset`` s later
-    than the first rise.
+    """Timing of rods that begin ``offset`` s after the first rise.
+
+    length: m.
     """
     unit = 2.0 * length / speed_of_light
     low = offset + unit
@@ -152,9 +153,7 @@ def _find(given: Traces, width: int, timing: Timing, within: Bounds) -> Arrivals
     return Arrivals(start, end, taken, given.stated_noise)
 
 
-def _end(
-    given: Traces, smoothed: Smoothed, timing: Timing, begin: Array, within: Bounds
-) -> Edge:
+def _end(given: Traces, smoothed: Smoothed, timing: Timing, begin: Array, within: Bounds) -> Edge:
     offset, length = timing.offset[1], timing.effective_length[1]
     unit = 2.0 * length / speed_of_light
     rods = begin + offset

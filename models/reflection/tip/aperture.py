@@ -6,7 +6,7 @@ series of its exponential, so that capacitance and radiation are its first two t
 """
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from types import MappingProxyType
 from typing import Literal
@@ -124,7 +124,7 @@ class Aperture:
         return known if self.model == "aperture-field" else known[:4] * (1, 0, 0, 1)
 
     def _fitted(self) -> ComplexArray:
-        """h and g, and the higher powers that they bring in an aperture of like proportions."""
+        """H and g, and the higher powers that they bring in an aperture of like proportions."""
         h, g = self.fitted
         shape = Geometry(1.0, USUAL) if self.geometry is None else self.geometry
         series = shape.series[:FOLLOWING]
@@ -151,7 +151,12 @@ class Aperture:
         for coefficient in self.coefficients[::-1]:
             slope = slope * x + value
             value = value * x + coefficient
-        return permittivity * value, value + 0.5 * x * slope
+        return permittivity * value, np.asarray(value + 0.5 * x * slope, dtype=complex)
+
+    def moved(self, place: int, step: float) -> "Aperture":
+        """The same with one of the fitted coefficients moved."""
+        h, g = self.fitted
+        return replace(self, fitted=(h + step, g) if place == 0 else (h, g + step))
 
     @np.errstate(all="ignore")
     def permittivity(self, admittance: ComplexArray, frequency: Array) -> ComplexArray:

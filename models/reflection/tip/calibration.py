@@ -98,7 +98,7 @@ def calibrate(
         normal = np.real(np.einsum("nfp,nfq->pq", np.conj(jacobian), jacobian))
         slope = np.real(np.einsum("nfp,nf->p", np.conj(jacobian), _known(found.residual / spread)))
         step = -np.linalg.lstsq(normal + damping * np.diag(np.diag(normal)), slope)[0]
-        trial = replace(aperture, fitted=tuple(np.array(aperture.fitted) + step))
+        trial = aperture.moved(0, float(step[0])).moved(1, float(step[1]))
         there, true_there = residual(trial)
         new = _sum(there.residual / spread)
         if new <= cost:
@@ -118,9 +118,9 @@ def calibrate(
 
 
 def scale(frequency: Array, aperture: Aperture) -> ComplexArray:
-    """j w C0 Z0: what turns a relative admittance into one in units of 1/Z0."""
+    """The product j w C0 Z0, which turns a relative admittance into one in units of 1/Z0."""
     capacitance = CAPACITANCE if aperture.geometry is None else aperture.geometry.capacitance
-    return 2j * np.pi * frequency * capacitance * IMPEDANCE
+    return np.asarray(2j * np.pi * frequency * capacitance * IMPEDANCE, dtype=complex)
 
 
 @np.errstate(all="ignore")
@@ -141,9 +141,7 @@ def reflections(
 
 def moved(calibration: Calibration, place: int, step: float) -> Calibration:
     """The calibration with one coefficient moved, everything else following."""
-    changed = list(calibration.aperture.fitted)
-    changed[place] += step
-    aperture = replace(calibration.aperture, fitted=tuple(changed))
+    aperture = calibration.aperture.moved(place, step)
     true = reflections(calibration.frequency, calibration.standards, aperture)
     read = np.stack([standard.read for standard in calibration.standards])
     found = fit(read, true, calibration.spread)
@@ -155,12 +153,7 @@ def _jacobian(
 ) -> ComplexArray:
     columns = []
     for place, step in enumerate(STEPS):
-        ends = []
-        for sign in (1, -1):
-            changed = list(aperture.fitted)
-            changed[place] += sign * step
-            there, _ = residual(replace(aperture, fitted=tuple(changed)))
-            ends.append(there.residual)
+        ends = [residual(aperture.moved(place, sign * step))[0].residual for sign in (1, -1)]
         columns.append(_known((ends[0] - ends[1]) / (2 * step * spread)))
     return np.stack(columns, axis=-1)
 

@@ -81,7 +81,7 @@ def _usual(query: TipQuery) -> Model:
 def _oriented(query: TipQuery, aperture: Aperture) -> tuple[Calibration, Response, bool]:
     """Calibration and answer, every reflection conjugated where that alone makes sense of them."""
     read = np.stack([sample.read for sample in query.samples])
-    everything = np.stack([s.read for s in (*query.standards, *query.samples)])
+    everything = np.concatenate([np.stack([s.read for s in query.standards]), read])
     first = _solved(query, aperture, query.standards, read)
     loss, fits = _loss(first[1]), _fits(first[0], stated=query.standard_spread is not None)
     if loss >= -LOSS and fits and not rises(everything):

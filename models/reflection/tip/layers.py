@@ -44,7 +44,7 @@ class _Field:
         energy = (weight @ pairs.T).reshape(-1, size, size)
         own = energy[:, 1:, 1:] + self.fill * np.eye(size - 1)
         bent = np.linalg.solve(own, energy[:, 1:, :1])
-        return energy[:, 0, 0] - (energy[:, :1, 1:] @ bent)[:, 0, 0]
+        return np.asarray(energy[:, 0, 0] - (energy[:, :1, 1:] @ bent)[:, 0, 0], dtype=complex)
 
 
 @lru_cache(maxsize=32)
@@ -126,7 +126,7 @@ def without_gap(geometry: Geometry, read: ComplexArray, gap: float) -> ComplexAr
         flat = reading(geometry, eps, FAR * geometry.outer, eps)
         return reading(geometry, 1.0, gap, eps) * eps / flat
 
-    eps = np.where(np.isfinite(read), read, 1.0)
+    eps: ComplexArray = np.where(np.isfinite(read), read, 1.0 + 0j)
     for _ in range(MOST):
         here, step = through(eps), 1e-4 * eps
         slope = (through(eps + step) - here) / step

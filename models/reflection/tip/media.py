@@ -28,7 +28,7 @@ class Relaxation(NamedTuple):
 
     @np.errstate(all="ignore")
     def permittivity(self, frequency: Array) -> ComplexArray:
-        """eps' - j eps'' at a frequency, Hz."""
+        """Permittivity eps' - j eps'' at a frequency, Hz."""
         w = 2 * np.pi * frequency
         relaxed = self.infinite + (self.static - self.infinite) / (1 + 1j * w * self.time)
         return np.asarray(relaxed - 1j * self.conductivity / (w * VACUUM_PERMITTIVITY))
@@ -47,7 +47,8 @@ class Known:
         if relative == 0.0:
             return replace(self, variations=())
         eps = self.permittivity
-        return replace(self, variations=(relative * eps.real + 0j, 1j * relative * eps.imag))
+        parts = (np.asarray(relative * part, dtype=complex) for part in (eps.real, 1j * eps.imag))
+        return replace(self, variations=tuple(parts))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -42,11 +42,15 @@ def judged(calibration: Calibration, samples: Sequence[Sample], *, stated: bool)
     median = float(np.nanmedian(calibration.spread))
     if freedom <= 0:
         if stated:
-            return Misfit(known=True, noise=median, factor=1.0, value=np.nan, limit=np.nan, stated=stated)
+            return Misfit(
+                known=True, noise=median, factor=1.0, value=np.nan, limit=np.nan, stated=stated
+            )
         scatter = [s.scatter for s in samples if np.isfinite(s.scatter)]
         noise = float(np.median(scatter)) if scatter else 0.0
-        return Misfit(known=bool(scatter), noise=noise, factor=max(noise, NOTHING), value=np.nan, limit=np.nan,
-                      stated=stated)  # fmt: skip
+        return Misfit(
+            known=bool(scatter), noise=noise, factor=max(noise, NOTHING), value=np.nan,
+            limit=np.nan, stated=stated,
+        )  # fmt: skip
     reduced = calibration.chi_square / freedom
     media = _of_media(calibration) / freedom
     chance = 1 + MARGIN * np.sqrt(2 / freedom)

@@ -6,7 +6,7 @@ import numpy as np
 
 from models.flags import Flags
 from models.reflection.propagation import attenuation_length
-from models.reflection.sweep_flags import MARGIN, Finding, between, raised
+from models.reflection.sweep_flags import MARGIN, Finding, at_least, at_most, raised
 from models.reflection.tip.aperture import Geometry
 from models.reflection.tip.calibration import Calibration
 from models.reflection.tip.inversion import Response
@@ -66,16 +66,12 @@ def _of_misfit(misfit: Misfit) -> Iterator[Finding]:
         if misfit.stated
         else "residual reflection of the standards beyond three, root mean square of each part"
     )
-    holds = misfit.value <= misfit.limit
-    yield Finding("standards-inconsistent", holds=holds, value=misfit.value, limit=misfit.limit, unit="1", about= about)
+    yield at_most("standards-inconsistent", about, misfit.value, misfit.limit)
 
 
 def _of_closeness(frequency: Array, closeness: Array) -> Finding:
-    bad = closeness > CLOSE
-    worst = float(np.nanmax(closeness)) if np.isfinite(closeness).any() else float("nan")
     about = f"largest relative change of permittivity by {READING_ERROR:g} in the standards"
-    return Finding("standards-too-close", holds=not bad.any(), value=worst, limit=CLOSE, unit="1", about= about,
-                   between(frequency, bad))  # fmt: skip
+    return at_most("standards-too-close", about, closeness, CLOSE, frequency)
 
 
 def _of_sample(
@@ -84,29 +80,25 @@ def _of_sample(
     usable = eps[np.isfinite(eps)]
     if geometry is None or not usable.size:
         return
-    middle = complex(np.median(usable.real) - 1j * np.median(-usable.imag))
+    middle = complex(np.median(usable.real), np.median(usable.imag))
     if sample.grain_size is not None:
-        ratio = geometry.width / sample.grain_size
-        yield Finding("grain-size", holds=ratio >= GRAINS, value=ratio, limit=GRAINS, unit="1", about=
-                      "width of the aperture over the largest grain")  # fmt: skip
+        about = "width of the aperture over the largest grain"
+        yield at_least("grain-size", about, geometry.width / sample.grain_size, GRAINS)
     if sample.thickness is not None:
         yield from _of_thickness(frequency, eps, middle, sample.thickness, geometry)
     gap = USUAL_GAP if sample.gap is None else sample.gap
     if gap > 0:
-        change = float(np.abs(gap_error(geometry, middle, gap))[0])
-        yield Finding("air-gap", holds=change <= ERROR, value=change, limit=ERROR, unit="1", about=
-                      f"relative change of eps' by an air gap of {1e6 * gap:.3g} um")  # fmt: skip
+        about = f"relative change of eps' by an air gap of {1e6 * gap:.3g} um"
+        yield at_most("air-gap", about, np.abs(gap_error(geometry, middle, gap)), ERROR)
 
 
 def _of_thickness(
     frequency: Array, eps: ComplexArray, middle: complex, thickness: float, geometry: Geometry
 ) -> Iterator[Finding]:
-    depth = sensing_depth(geometry, ERROR)
-    yield Finding("sample-thickness", holds=thickness >= depth, value=thickness, limit=depth, unit="m", about=
-                  "thickness beside that from which its back changes eps' by less than 1 %")  # fmt: skip
-    error = backing_error(geometry, middle.real, thickness)
-    yield Finding("sample-thickness", holds=error <= ERROR, value=error, limit=ERROR, unit="1", about=
-                  "relative change of eps' by metal or air behind the sample")  # fmt: skip
-    length = float(np.nanmin(attenuation_length(eps, frequency)))
-    yield Finding("sample-thickness", holds=True, value=thickness / length, limit=float("inf"), unit="1", about=
-                  "thickness in the shortest attenuation length of the band")  # fmt: skip
+    """The number of attenuation lengths has no limit: a tip sees less deep than a wave goes."""
+    about = "thickness of the sample; its back changes eps' by less than 1 % from the limit on"
+    yield at_least("sample-thickness", about, thickness, sensing_depth(geometry, ERROR), unit="m")
+    about = "relative change of eps' by metal or air behind the sample, the larger"
+    yield at_most("sample-thickness", about, backing_error(geometry, middle.real, thickness), ERROR)
+    about = "thickness in attenuation lengths, largest"
+    yield at_most("sample-thickness", about, thickness / attenuation_length(eps, frequency), np.inf)

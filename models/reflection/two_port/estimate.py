@@ -66,7 +66,8 @@ def estimate_constants(query: TwoPortQuery) -> TwoPortEstimate:
     """Permittivity, and permeability where it is not 1, over frequency."""
     s = query.parameters
     loss = _loss(query)
-    turned = replace(query, parameters=tuple(np.conj(part) for part in s))
+    s11, s21, s12, s22 = (np.conj(part) for part in s)
+    turned = replace(query, parameters=(s11, s21, s12, s22))
     through = np.stack([s[1], s[2]])
     doubt = rises(through) or (loss < -LOSS and not falls(through))
     conjugated = doubt and _loss(turned) > max(loss, -LOSS)
@@ -179,9 +180,7 @@ def _numerically(query: TwoPortQuery, eps: ComplexArray, noise: Array) -> Array:
     step, planes = 1e-6, _planes(query, 1e-3)[0]
     total = np.zeros(eps.shape)
     for pair in ((0, 3), (1, 2)):
-        moved = [
-            part + step * (place in pair) for place, part in enumerate(query.parameters)
-        ]
+        moved = [part + step * (place in pair) for place, part in enumerate(query.parameters)]
         there, _ = _seen(
             replace(query, parameters=(moved[0], moved[1], moved[2], moved[3])),
             "non-iterative", planes, query.length,

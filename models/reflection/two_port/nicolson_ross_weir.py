@@ -29,12 +29,12 @@ class Constants:
 
     @property
     def permittivity(self) -> ComplexArray:
-        """eps"""
+        """Relative permittivity eps."""
         return self.index / self.impedance
 
     @property
     def permeability(self) -> ComplexArray:
-        """mu"""
+        """Relative permeability mu."""
         return self.index * self.impedance
 
 

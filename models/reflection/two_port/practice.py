@@ -7,7 +7,7 @@ import numpy as np
 
 from models.flags import Flags
 from models.reflection.propagation import attenuation_length, propagation_constant
-from models.reflection.sweep_flags import MARGIN, Finding, between, raised
+from models.reflection.sweep_flags import MARGIN, Finding, at_least, at_most, raised
 from models.reflection.two_port.nicolson_ross_weir import Constants
 from models.relation import Array, ComplexArray
 
@@ -51,12 +51,10 @@ def magnetic_finding(frequency: Array, both: Constants, mu_u: Array) -> Finding:
     seen = np.isfinite(mu) & (mu_u < KNOWN) & np.isfinite(mu_u)
     about = "median departure of permeability from 1 where it is known to 0.1"
     if seen.sum() < max(3, frequency.size // 20):
-        return Finding("magnetic", holds=True, value=float("nan"), limit=MAGNETIC, unit="1",
-                       about=about)  # fmt: skip
-    departure = abs(complex(np.median(mu[seen].real) + 1j * np.median(mu[seen].imag)) - 1)
+        return at_most("magnetic", about, np.nan, MAGNETIC)
+    middle = complex(np.median(mu[seen].real), np.median(mu[seen].imag))
     limit = max(MAGNETIC, MARGIN * float(np.median(mu_u[seen])))
-    return Finding("magnetic", holds=departure <= limit, value=departure, limit=limit, unit="1",
-                   about=about)  # fmt: skip
+    return at_most("magnetic", about, abs(middle - 1), limit)
 
 
 @np.errstate(all="ignore")
@@ -99,28 +97,18 @@ def findings_of(
 def _of_power(frequency: Array, s: Parameters) -> Finding:
     with np.errstate(all="ignore"):
         size = np.sqrt(np.square(np.abs(s[0])) + np.square(np.abs(s[1])))
-    above = size > 1 + ABOVE_ONE
-    return Finding("reflection-above-one", holds=not above.any(), value=float(np.nanmax(size)),
-                   limit=1 + ABOVE_ONE, unit="1", about="largest sqrt(|S11|^2 + |S21|^2)",
-                   frequencies=between(frequency, above))  # fmt: skip
+    about = "largest sqrt(|S11|^2 + |S21|^2)"
+    return at_most("reflection-above-one", about, size, 1 + ABOVE_ONE, frequency)
 
 
 def _of_sample(query: Described, eps: ComplexArray, mu: ComplexArray | None) -> Iterator[Finding]:
-    length = attenuation_length(eps, query.frequency, 1.0 if mu is None else mu)
-    if np.isfinite(eps).any():
-        thick = query.length / length
-        bad = thick > THICK
-        yield Finding("sample-thickness", holds=not bad.any(), value=float(np.nanmax(thick)),
-                      limit=THICK, unit="1", about="thickness in attenuation lengths, largest",
-                      frequencies=between(query.frequency, bad))  # fmt: skip
-        with np.errstate(all="ignore"):
-            way = propagation_constant(eps, query.frequency, 1.0 if mu is None else mu)
-        turns = np.abs(way.imag) * query.length / (2 * np.pi)
-        short = turns < SHORT
-        yield Finding("electrically-short", holds=not short.any(), value=float(np.nanmin(turns)),
-                      limit=SHORT, unit="1", about="thickness in wavelengths, smallest",
-                      frequencies=between(query.frequency, short))  # fmt: skip
+    f, permeability = query.frequency, 1.0 if mu is None else mu
+    about = "thickness in attenuation lengths, largest"
+    thick = query.length / attenuation_length(eps, f, permeability)
+    yield at_most("sample-thickness", about, thick, THICK, f)
+    turns = np.abs(propagation_constant(eps, f, permeability).imag) * query.length / (2 * np.pi)
+    about = "thickness in wavelengths, smallest"
+    yield at_least("electrically-short", about, turns, SHORT, f)
     if query.grain_size is not None and query.gap_width is not None:
-        ratio = query.gap_width / query.grain_size
-        yield Finding("grain-size", holds=ratio >= GRAINS, value=ratio, limit=GRAINS, unit="1",
-                      about="gap between the conductors over the largest grain")  # fmt: skip
+        about = "gap between the conductors over the largest grain"
+        yield at_least("grain-size", about, query.gap_width / query.grain_size, GRAINS)

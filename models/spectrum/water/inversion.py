@@ -113,13 +113,15 @@ class Band:
     @property
     def conductivities(self) -> tuple[float, float]:
         """Of the pore water and of the whole soil for a direct current, S/m at soil temperature."""
-        free = self.value("free_water_content")
-        path = path_of_current(self.scene, free, self.value("bound_water_content"))
-        if self.variant.beside:
-            bulk = self.value("bulk_conductivity")
+        if self.variant.beside:  # on no path of the mixture's, so all water takes part
+            bulk, path = self.value("bulk_conductivity"), self._path(self.water_content)
             return (bulk / path if path > 0 else np.nan), bulk
+        path = self._path(self.value("free_water_content"), self.value("bound_water_content"))
         water = self.value("water_conductivity")
         return water, water * path
+
+    def _path(self, free: float, bound: float = 0.0) -> float:
+        return path_of_current(self.scene, free, bound)
 
 
 def invert(

@@ -1,4 +1,4 @@
-"""application/vnd.apache.arrow.stream and application/vnd.apache.parquet: rows out of typed columns.
+"""Arrow streams and Parquet files: rows out of typed columns.
 
 The end of a Parquet file says where its columns are, so the body is kept in a file first; so is
 that of an Arrow stream, because one record batch may hold all of it. From there, a few thousand

@@ -2,13 +2,18 @@
 
 from typing import Any
 
+import anyio.to_thread
 from fastapi import APIRouter, Request, Response
 
+from service.negotiate import VARY, choose
+from service.page.chart import MEDIA_TYPE as SVG
+from service.routes.etag import tagged
 from service.routes.stored.documents import Name
 from service.routes.stored.paging import answered
 from service.series_edges import EVERY
 from service.stations.asked import asked_of
-from service.stations.questions import estimates_page, profile_page
+from service.stations.charting import chart_of
+from service.stations.questions import estimates_page, profile_page, scene_of
 from service.stations.resampled import resampled_page
 
 router = APIRouter(prefix="/v1/stations/{name}", tags=["stations"])
@@ -26,6 +31,8 @@ _TOLD = {
     "every": f"means over {', '.join(EVERY)} instead of rows",
     "zone": "IANA zone that days and hours are counted in; the station's unless given",
     "mean": "plain or time-weighted",
+    "quantity": "water_content, bulk_conductivity_25, pore_water_conductivity, "
+    "saturation_extract_conductivity: one or several, comma-separated",
     "time": "moment, RFC 3339; now unless given",
     "within": "how old a reading may be: 90m, 1h, 2d; 1h unless given",
 }
@@ -43,6 +50,7 @@ def described(names: tuple[str, ...]) -> dict[str, Any]:
 
 
 SERIES = (*RANGE, "every", "zone", "mean")
+CHART = ("start", "end", "probe", "depth", "zone", "quantity", "at_revision")
 PROFILE = ("time", "within", "probe", "depth", "at_revision", "shape")
 
 
@@ -63,6 +71,28 @@ async def get_estimates(request: Request, name: Name) -> Response:
     )
     question = estimates_page if asked.every is None else resampled_page
     return await answered(request, name, asked, question, "estimates")
+
+
+@router.get(
+    "/chart.svg",
+    summary="Chart of water content and salinity",
+    openapi_extra=described(CHART),
+    response_class=Response,
+)
+async def get_chart(request: Request, name: Name) -> Response:
+    """SVG with bands, flags and gaps visible; the week up to the last reading unless asked."""
+    choose(request.headers.get("accept"), request.query_params.get("format"), {"svg": SVG})
+    asked = asked_of(
+        request.query_params.multi_items(), CHART, request.app.state.settings.page_rows
+    )
+
+    def work() -> Response:
+        scene = scene_of(request.app.state.shelf, name, asked)
+        headers = {**VARY, "Store-Revision": str(scene.revision)}
+        headers["Content-Security-Policy"] = "default-src 'none'; style-src 'unsafe-inline'"
+        return tagged(request, chart_of(scene, asked).encode(), SVG, headers)
+
+    return await anyio.to_thread.run_sync(work)
 
 
 @router.get(

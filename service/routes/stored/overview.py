@@ -91,7 +91,7 @@ async def list_changes(request: Request, after: int = 0) -> Response:
     choose(request.headers.get("accept"), request.query_params.get("format"), {"json": JSON})
     after = max(0, min(after, 2**62))
     changes = await anyio.to_thread.run_sync(request.app.state.shelf.store.documents, after)
-    told = {"changes": [_told(change) for change in changes[:MOST]]}
+    told: dict[str, Any] = {"changes": [_told(change) for change in changes[:MOST]]}
     headers = dict(VARY)
     if len(changes) > MOST:
         told["next"] = f"{request.url.path}?after={changes[MOST - 1].revision}"

@@ -1,6 +1,7 @@
 """POST and GET /v1/stations/{name}/readings: what loggers send, and what is kept of it."""
 
-from collections.abc import Mapping
+from collections.abc import Callable, Iterable, Mapping
+from functools import partial
 from typing import Any
 
 import anyio.to_thread
@@ -164,8 +165,8 @@ async def _keep_table(
         raise Unprocessable(fault, [Fault(fault, "?probe")])
     reader = TableReader(rules, probe, _depth(depth))
     decoder = table.decoder((), block_bytes=settings.block_bytes, line_bytes=settings.line_bytes)
-    async def take(blocks: list[Block]) -> None:
-        for block in blocks:
+    async def take(decode: Callable[[], Iterable[Block]]) -> None:
+        for block in await anyio.to_thread.run_sync(lambda: list(decode())):
             arrival = await anyio.to_thread.run_sync(reader, block)
             await keep(state.writer, state.shelf, name, arrival, documents, tally)
 
@@ -173,11 +174,11 @@ async def _keep_table(
     async for piece in request.stream():
         waiting += piece
         if len(waiting) >= settings.block_bytes:
-            await take(await anyio.to_thread.run_sync(decoder.feed, bytes(waiting)))
+            await take(partial(decoder.feed, bytes(waiting)))
             waiting.clear()
     if waiting:
-        await take(await anyio.to_thread.run_sync(decoder.feed, bytes(waiting)))
-    await take(await anyio.to_thread.run_sync(decoder.close))
+        await take(partial(decoder.feed, bytes(waiting)))
+    await take(decoder.close)
 
 
 def _rules(

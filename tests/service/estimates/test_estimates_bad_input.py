@@ -30,9 +30,11 @@ def told(answer, status):
     [
         ({"soil": {"clay": 22, "porosity": 0.45}}, "looks like %; send 0.22", "#/soil/clay"),
         ({"soil": {"bulk_density": 1420}}, "looks like kg/m3; send 1.42", "#/soil/bulk_density"),
-        ({"mixing_model": "crimm"}, 'no mixing model is called "crimm"; did you mean crim?', "#/mixing_model"),
+        ({"mixing_model": "crimm"}, 'no mixing model is called "crimm"; did you mean crim?',
+         "#/mixing_model"),
         ({"soil": {}}, "needs porosity", "#/soil/porosity"),
-        ({"soil": {"texture": "lome"}}, 'no soil texture is called "lome"; did you mean loam?', "#/soil/texture"),
+        ({"soil": {"texture": "lome"}}, 'no soil texture is called "lome"; did you mean loam?',
+         "#/soil/texture"),
         ({"soil": {"texture": "loam", "cly": 0.2}}, "did you mean clay?", "#/soil/cly"),
         ({"soil": {"texture": "loam", "clay": True}}, "expected a number, found true",
          "#/soil/clay"),

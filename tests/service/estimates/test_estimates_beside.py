@@ -230,3 +230,13 @@ def test_what_only_json_can_say_is_refused_for_a_table(server):
     )
     assert answer.status_code == 422
     assert "Accept: application/json" in answer.json()["detail"]
+
+
+def test_an_echoed_soil_sent_again_is_no_measured_one(server):
+    """A default stays a default: the advisory holds as long as its condition does."""
+    first = answered(server, soil={"texture": "loam"})
+    again = answered(server, soil=first["soil"])
+    assert again["estimates"] == first["estimates"]
+    assert again["soil"] == first["soil"]
+    for answer in (first, again):
+        assert "texture-defaults" in {said["code"] for said in answer["advisories"]}

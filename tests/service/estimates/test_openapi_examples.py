@@ -29,6 +29,8 @@ NAMES = [f"{operation}.{name}" for operation, name, _ in EXAMPLES]
 @pytest.mark.parametrize("example", [example for _, _, example in EXAMPLES], ids=NAMES)
 def test_an_example_is_answered_as_shown(server, example):
     request, expected = example["request"], example["response"]
+    for earlier in example.get("before", ()):
+        server.client.request(earlier["method"], earlier["path"], json=earlier["json"])
     body = {"json": request["json"]} if "json" in request else {}
     if "file" in request:
         body = {"content": (FOLDER / request["file"]).read_bytes()}

@@ -1,15 +1,16 @@
 """The medium around the rods from a whole trace, where its end reflection is gone as well."""
 
+import math
 from dataclasses import dataclass, field, replace
-from math import log
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.numerics.least_squares import Fit, least_squares
-from models.reflection.tdr.identification import Identified
-from models.reflection.tdr.medium import Medium
 from models.reflection.tdr.probe import System
-from models.reflection.tdr.whole_trace import DELAY_UNIT, SYSTEM, Experiment, Layers
+from models.reflection.tdr.whole.experiment import DELAY_UNIT, SYSTEM, Experiment, Layers
+from models.reflection.tdr.whole.identification import Identified
+from models.reflection.tdr.whole.medium import Medium
 from models.relation import Array
 
 MOST_TERMS = 3
@@ -30,8 +31,6 @@ EXPECTED_U = {"ln_static_permittivity": 1.5, "ln_strength_over_high_permittivity
 WATER_U = {"ln_strength_over_high_permittivity_1": 1.0, "ln_relaxation_time_1": 0.5}
 """But the first relaxation is that of water, which is faster than any trace: left free, it would
 take up noise as dispersion, which is always downward."""
-TRIGGER_U = 0.05
-"""Of the start of the step from trace to trace, in units of 0.1 ns."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -68,7 +67,7 @@ class Inversion:
 
 
 def _width(slopes: Array, covariance: Array) -> float:
-    return float(np.sqrt(max(slopes @ covariance @ slopes, 0.0)))
+    return math.sqrt(max(float(slopes @ covariance @ slopes), 0.0))
 
 
 def invert(
@@ -119,7 +118,7 @@ def invert_layers(
     first: the first medium, if it is known, as air is.
     """
     sigma = max(conductivity, 1e-4)
-    logit = log(share / (1.0 - share))
+    logit = math.log(share / (1.0 - share))
 
     def start(upper: float, lower: float) -> Layers:
         return Layers((first or _moist(upper, sigma), _moist(lower, sigma)), logit)
@@ -149,7 +148,7 @@ def _with_term(layers: Layers, time: float) -> Layers:
     return Layers((richer,))
 
 
-Found = tuple[Layers, Fit, Array, Array]
+Found = tuple[Layers, Fit, NDArray[np.bool_], Array]
 """Layers, fit (trigger first), which values were free, and 1 / u of them beforehand."""
 
 
@@ -166,7 +165,7 @@ def _fitted(
     if placed:
         free[-1] = False
     prior = np.array([1.0 / _expected_u(name) for name in names])
-    weights = np.append(1.0 / TRIGGER_U, prior[free])
+    weights = np.append(1.0 / known.trigger_u, prior[free])
     columns = np.append(SYSTEM.index("delay"), len(SYSTEM) + np.flatnonzero(free))
     base = known.values
 
@@ -208,7 +207,12 @@ def _criterion(fit: Fit) -> float:
 
 
 def _told(
-    trace: Experiment, known: Identified, layers: Layers, fit: Fit, free: Array, weights: Array
+    trace: Experiment,
+    known: Identified,
+    layers: Layers,
+    fit: Fit,
+    free: NDArray[np.bool_],
+    weights: Array,
 ) -> Inversion:
     """Covariance from noise, widened by what is unexplained, and from the system."""
     chi_square = _chi_square(fit)

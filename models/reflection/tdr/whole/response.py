@@ -41,7 +41,7 @@ class Grid:
     shift: float
 
     def to_time(self, spectra: ComplexArray) -> Array:
-        """Time functions from their Laplace transforms: shape (..., frequencies) to (..., points)."""
+        """Time functions from Laplace transforms: (..., frequencies) to (..., points)."""
         full = irfft(spectra * np.exp(self.s * self.shift), self.period_points, axis=-1)
         last = self.first + self.every * self.growth.size
         return full[..., self.first : last : self.every] * self.growth

@@ -5,16 +5,15 @@ from dataclasses import dataclass
 import numpy as np
 
 from models.numerics.least_squares import least_squares
-from models.reflection.tdr.line import OPEN, SHORT
-from models.reflection.tdr.medium import Medium
 from models.reflection.tdr.probe import System
-from models.reflection.tdr.whole_trace import (
+from models.reflection.tdr.whole.experiment import (
     SYSTEM,
     Experiment,
     Layers,
     system_of,
     system_values,
 )
+from models.reflection.tdr.whole.medium import Medium
 from models.relation import Array
 from models.water.kaatze_1989 import debye
 
@@ -40,6 +39,8 @@ class Identified:
     covariance: Array
     """Of ``values``, in the order of SYSTEM."""
     reduced_chi_square: float
+    trigger_u: float = 0.05
+    """Of the moment of the step from trace to trace, in units of 0.1 ns."""
 
 
 def described(system: System, relative_u: float = 0.0) -> Identified:
@@ -91,6 +92,3 @@ def identify(
     covariance = fit.covariance(known)[:places, :places] * max(chi_square, 1.0)
     system = system_of(fit.values[:places], guess.instrument_impedance)
     return Identified(system, fit.values[:places], covariance, chi_square)
-
-
-__all__ = ["AIR", "OPEN", "SHORT", "Identified", "described", "identify", "water"]

@@ -19,8 +19,8 @@ import numpy as np
 
 from models.conductivity.loss import VACUUM_PERMITTIVITY
 from models.relation import Array, ComplexArray
+from models.spectrum.circuits.ladder import rungs
 from models.spectrum.form import ELECTRODE_FREQUENCY, Form
-from models.spectrum.ladder import rungs
 from models.spectrum.views import UNIT_CUBE
 
 RC, RLC, PHASE = "series-rc", "series-rlc", "series-c-phase-element"

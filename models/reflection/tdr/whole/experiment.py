@@ -7,7 +7,8 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.special import expit
 
-from models.reflection.tdr.line import (
+from models.reflection.tdr.probe import Cable, Head, Rods, System
+from models.reflection.tdr.whole.line import (
     OPEN,
     Sensitivity,
     cable_parts,
@@ -16,9 +17,8 @@ from models.reflection.tdr.line import (
     reflection,
     rod_section,
 )
-from models.reflection.tdr.medium import Medium
-from models.reflection.tdr.probe import Cable, Head, Rods, System
-from models.reflection.tdr.response import Grid, late_frequencies, late_value
+from models.reflection.tdr.whole.medium import Medium
+from models.reflection.tdr.whole.response import Grid, late_frequencies, late_value
 from models.relation import Array, ComplexArray
 
 SYSTEM = (
@@ -46,9 +46,18 @@ def system_values(system: System) -> Array:
 def system_of(values: Array, instrument_impedance: float) -> System:
     """The system with these numbers."""
     numbers = np.exp(np.clip(values, -80.0, 80.0)).tolist()
-    spread, _, cable_impedance, delay, resistance, skin, head_impedance, head_delay, rods, length = (
-        numbers
-    )
+    (
+        spread,
+        _,
+        cable_impedance,
+        delay,
+        resistance,
+        skin,
+        head_impedance,
+        head_delay,
+        rods,
+        length,
+    ) = numbers
     return System(
         Rods(length, rods),
         Head(head_impedance, head_delay),

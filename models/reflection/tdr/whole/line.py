@@ -95,7 +95,7 @@ def cable_parts(s: ComplexArray, cable: Cable) -> tuple[ComplexArray, ComplexArr
 
 def head_section(s: ComplexArray, head: Head) -> Section:
     """A lossless piece between cable and rods."""
-    return Section(np.asarray(head.impedance + 0j), 2 * s * head.delay)
+    return Section(np.asarray(head.impedance, dtype=np.complex128), 2 * s * head.delay)
 
 
 @np.errstate(all="ignore")
@@ -103,8 +103,9 @@ def rod_section(
     s: ComplexArray, permittivity: ComplexArray, impedance: float, length: float
 ) -> Section:
     """Rods in a medium; impedance: theirs in air, ohm. length: m."""
-    index = np.sqrt(permittivity)
-    return Section(impedance / index, 2 * s * index * (length / speed_of_light))
+    index: ComplexArray = np.sqrt(permittivity)
+    here: ComplexArray = impedance / index
+    return Section(here, 2 * s * index * (length / speed_of_light))
 
 
 def conducting(s: ComplexArray, conductivity: float) -> ComplexArray:

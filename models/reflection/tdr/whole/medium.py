@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from models.reflection.tdr.line import conducting
+from models.reflection.tdr.whole.line import conducting
 from models.relation import Array, ComplexArray
 
 LARGEST = 80.0

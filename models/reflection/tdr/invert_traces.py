@@ -1,0 +1,146 @@
+"""Traces by inversion of the whole line, one after another, in the form of a measurement."""
+
+from collections.abc import Mapping
+from dataclasses import replace
+
+import numpy as np
+
+from models.errors import Complaint, ParameterError
+from models.flags import BIT
+from models.reflection.tdr.bench import DESCRIBED_U, Bench, Record, experiment, guess, identified
+from models.reflection.tdr.calibration import rise_of
+from models.reflection.tdr.measure import Known, Measured, conductivity
+from models.reflection.tdr.whole.identification import Identified, described
+from models.reflection.tdr.whole.inversion import Inversion, invert, invert_layers
+from models.reflection.tdr.whole.medium import Medium
+
+FREQUENCY = 1e9
+"""Hz, at which the fitted permittivity is stated unless the caller says another."""
+AIR = Medium(1.0006)
+UNTIMED_U = 1.0
+"""Standard uncertainty of the moment of the step where no calibration tells it, 0.1 ns."""
+
+
+def by_whole_trace(
+    record: Record,
+    bench: Bench,
+    known: Known,
+    *,
+    frequency: float = FREQUENCY,
+    terms: int | None = None,
+    sections: int = 1,
+    inserted: float | None = None,
+) -> Measured:
+    """Permittivity and conductivity of the medium that explains each trace.
+
+    frequency: Hz, at which the permittivity is stated. terms: relaxations; None: as few as explain
+    the trace. sections: media along the rods, 1 or 2; of two the columns are the lower one, whose
+    conductivity is its own. inserted: m, of the rods in the medium, the rest in air.
+    Raises ParameterError when neither calibration traces nor the description tell the system.
+    """
+    flags = np.zeros(record.trace.count, dtype=np.uint64)
+    system = known() or _described(record, bench)
+    rough, levels = conductivity(record, bench, lambda: system, flags)
+    rows: list[dict[str, float]] = []
+    details: list[Mapping[str, object]] = []
+    for row in range(record.trace.count):
+        trace = experiment(record, row, system.system.spread)
+        start = float(np.nan_to_num(rough["bulk_conductivity"][row], nan=0.02))
+        if inserted is not None and inserted < bench.length:
+            share = 1.0 - inserted / bench.length
+            found = invert_layers(
+                trace, system, conductivity=start / (1.0 - share), share=share, fixed=True,
+                first=AIR,
+            )  # fmt: skip
+        elif sections == 2:
+            found = invert_layers(trace, system, conductivity=start, share=0.5, fixed=False)
+        else:
+            found = invert(trace, system, conductivity=start, terms=terms)
+        rows.append(_row(found, frequency))
+        details.append(_detail(found, frequency, bench.length))
+        if found.too_simple or not np.isfinite(found.reduced_chi_square):
+            flags[row] |= BIT["model-too-simple"]
+    columns = {name: np.array([row[name] for row in rows]) for name in rows[0]}
+    chi_square = columns.pop("reduced_chi_square")
+    return Measured(columns, {"reduced_chi_square": chi_square, **levels}, flags, tuple(details))
+
+
+def _described(record: Record, bench: Bench) -> Identified:
+    """The system as it is described, its delays from the first rise of the traces.
+
+    Raises ParameterError that names what the description lacks.
+    """
+    probe = bench.probe
+    lacking = [
+        Complaint(name, f"{name} is missing: a whole trace needs it, or calibration traces in air "
+                  "and water", ("probe", name))
+        for name, given in (("probe_impedance", probe.impedance), ("head", probe.head),
+                            ("cable", probe.cable_length))
+        if given is None
+    ]  # fmt: skip
+    if lacking:
+        raise ParameterError("probe", lacking)
+    arrival, rise = rise_of((record.trace,))
+    return replace(described(guess(bench, arrival, rise), DESCRIBED_U), trigger_u=UNTIMED_U)
+
+
+def _row(found: Inversion, frequency: float) -> dict[str, float]:
+    """Columns of one trace: of the last layer."""
+    last = len(found.layers.media) - 1
+    medium = found.layers.media[last]
+    value, u, shared = found.apparent(frequency, last)
+    eps = complex(medium.permittivity(np.array([2j * np.pi * frequency]))[0])
+    place = sum(len(m.names) for m in found.layers.media) - 1
+    relative, relative_shared = found.relative(place)
+    return {
+        "apparent_permittivity": value,
+        "apparent_permittivity_u": u,
+        "apparent_permittivity_u_shared": shared,
+        "real_permittivity": eps.real,
+        "imaginary_permittivity": -eps.imag,
+        "frequency": frequency,
+        "bulk_conductivity": medium.conductivity,
+        "bulk_conductivity_u": medium.conductivity * relative,
+        "bulk_conductivity_u_shared": medium.conductivity * relative_shared,
+        "reduced_chi_square": found.reduced_chi_square,
+    }
+
+
+def _detail(found: Inversion, frequency: float, length: float) -> Mapping[str, object]:
+    """Parameters, their covariance, and every section on its own."""
+    sections = []
+    for k, (medium, share) in enumerate(zip(found.layers.media, found.layers.shares, strict=True)):
+        value, u, _ = found.apparent(frequency, k)
+        sections.append(
+            {
+                "length": share * length,
+                "apparent_permittivity": value,
+                "apparent_permittivity_u": u,
+                "bulk_conductivity": medium.conductivity,
+                "static_permittivity": medium.static,
+                "high_permittivity": medium.high,
+                "relaxation_strengths": medium.strengths,
+                "relaxation_times": medium.times,
+            }
+        )
+    return {
+        "sections": sections,
+        "parameters": found.names,
+        "values": found.layers.values,
+        "covariance": found.covariance,
+        "converged": found.converged,
+    }
+
+
+def system_behind(bench: Bench) -> Known:
+    """The system from calibration traces, worked out at most once; None where there are none."""
+    kept: list[Identified] = []
+
+    def known() -> Identified | None:
+        if bench.calibration.air is None or bench.calibration.water is None:
+            return None
+        if not kept:
+            kept.append(identified(bench))
+        return kept[0]
+
+    return known

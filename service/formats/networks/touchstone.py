@@ -1,0 +1,239 @@
+"""Touchstone 1.1 and 2.0: S-parameters of one or two ports, as network analysers write them."""
+
+import re
+from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from models.relation import Array, ComplexArray
+from service.formats.errors import FormatError, shown
+
+HERTZ: Mapping[str, float] = {"HZ": 1.0, "KHZ": 1e3, "MHZ": 1e6, "GHZ": 1e9}
+FORMS = ("DB", "MA", "RI")
+PARAMETERS = ("S", "Y", "Z", "G", "H")
+LONGEST = 1_000_000
+"""Numbers that a file may hold."""
+_KEYWORD = re.compile(r"\[\s*([^\]]*?)\s*\]\s*(.*)")
+
+
+@dataclass(frozen=True, slots=True)
+class Network:
+    """What a file holds."""
+
+    frequency: Array
+    """Shape (f,), Hz."""
+    parameters: ComplexArray
+    """Shape (f, n, n): parameters[:, 1, 0] is S21."""
+    impedance: float
+    """Reference of the first port, ohm."""
+
+    @property
+    def ports(self) -> int:
+        """One or two."""
+        return self.parameters.shape[1]
+
+
+@dataclass(slots=True)
+class _Header:
+    """What the lines before the data say."""
+
+    scale: float = 1e9
+    form: str = "MA"
+    impedance: float = 50.0
+    options: bool = False
+    version: str = "1.1"
+    ports: int | None = None
+    points: int | None = None
+    order: str = "21_12"
+    matrix: str = "full"
+    references: list[float] = field(default_factory=list)
+
+
+def read(text: str, ports: int) -> Network:
+    """The S-parameters in a Touchstone file of so many ports, 1 or 2.
+
+    Version 1.1 does not say how many ports it is about: its numbers must fit.
+    Raises FormatError with the line of what does not fit, and how to mend it.
+    """
+    header = _Header()
+    numbers, lines = _numbers(text, header)
+    if not header.options:
+        raise FormatError("an option line that starts with #", "none", mend="# Hz S RI R 50")
+    if header.ports is not None and header.ports != ports:
+        found = f"[Number of Ports] {header.ports}"
+        raise FormatError(f"a file of {ports} port{'s' * (ports > 1)}", found)
+    width = 1 + 2 * _held(ports, header.matrix)
+    rows = _rows(numbers, lines, width, header)
+    frequency = rows[:, 0] * header.scale
+    _refuse_order(frequency, lines, width, header)
+    impedance = header.references[0] if header.references else header.impedance
+    return Network(frequency, _matrices(rows[:, 1:], ports, header), impedance)
+
+
+def _numbers(text: str, header: _Header) -> tuple[Array, Sequence[int]]:
+    """All numbers of the network data, and the line each stands on."""
+    found: list[float] = []
+    lines: list[int] = []
+    expecting_references = False
+    for number, line in _stripped(text):
+        if line.startswith("#"):
+            _read_options(line, number, header)
+            continue
+        keyword = _KEYWORD.fullmatch(line)
+        if keyword:
+            name, value = keyword[1].lower(), keyword[2]
+            if name in {"noise data", "end"}:
+                break
+            expecting_references = name == "reference"
+            if name == "begin information":
+                expecting_references = False
+            _read_keyword(name, value, number, header)
+            continue
+        cells = _cells(line, number)
+        if expecting_references:
+            header.references += cells
+            continue
+        found += cells
+        lines += [number] * len(cells)
+        if len(found) > LONGEST:
+            raise FormatError(f"at most {LONGEST} numbers", "more", line=number)
+    return np.array(found), lines
+
+
+def _stripped(text: str) -> Iterator[tuple[int, str]]:
+    """Lines that say something, without comments and without what is only information."""
+    informing = False
+    for number, line in enumerate(text.splitlines(), 1):
+        bare = line.partition("!")[0].strip()
+        lowered = re.sub(r"\s+", " ", bare).lower()
+        if lowered.startswith(("[begin information]", "[end information]")):
+            informing = lowered.startswith("[begin")
+        elif bare and not informing:
+            yield number, bare
+
+
+def _cells(line: str, number: int) -> list[float]:
+    try:
+        cells = [float(cell) for cell in line.split()]
+    except ValueError:
+        raise FormatError(
+            "numbers", shown(line), line=number, mend="comments start with !"
+        ) from None
+    if not np.isfinite(cells).all():
+        raise FormatError("finite numbers", shown(line), line=number)
+    return cells
+
+
+def _read_options(line: str, number: int, header: _Header) -> None:
+    """Unit, parameter, format and R, in any order; only the first such line counts."""
+    if header.options:
+        return
+    header.options = True
+    words = iter(line[1:].upper().split())
+    for word in words:
+        if word in HERTZ:
+            header.scale = HERTZ[word]
+        elif word in FORMS:
+            header.form = word
+        elif word == "R":
+            header.impedance = _positive(next(words, ""), number)
+        elif word in PARAMETERS and word != "S":
+            raise FormatError("S-parameters", f"{word}-parameters", line=number,
+                              mend="export S-parameters")  # fmt: skip
+        elif word != "S":
+            raise FormatError("a unit, S, a format and R", shown(word), line=number,
+                              mend="# Hz S RI R 50")  # fmt: skip
+
+
+def _positive(word: str, number: int) -> float:
+    try:
+        value = float(word)
+    except ValueError:
+        value = -1.0
+    if not 0 < value < 1e6:
+        raise FormatError("an impedance in ohm above 0 after R", shown(word), line=number)
+    return value
+
+
+def _read_keyword(name: str, value: str, number: int, header: _Header) -> None:
+    if name == "version":
+        if value not in {"2.0", "2.1"}:
+            raise FormatError("[Version] 2.0", shown(value), line=number)
+        header.version = "2.0"
+    elif name in {"number of ports", "number of frequencies"}:
+        if not value.isdecimal():
+            raise FormatError("a whole number", shown(value), line=number)
+        if name == "number of ports":
+            header.ports = int(value)
+        else:
+            header.points = int(value)
+    elif name == "two-port data order":
+        header.order = _one_of(value, ("21_12", "12_21"), number)
+    elif name == "matrix format":
+        header.matrix = _one_of(value.lower(), ("full", "lower", "upper"), number)
+    elif name == "reference":
+        header.references += _cells(value, number)
+    elif name == "mixed-mode order":
+        raise FormatError("single-ended ports", "[Mixed-Mode Order]", line=number)
+
+
+def _one_of(value: str, known: tuple[str, ...], number: int) -> str:
+    if value not in known:
+        raise FormatError(f"one of {', '.join(known)}", shown(value), line=number)
+    return value
+
+
+def _held(ports: int, matrix: str) -> int:
+    return ports * ports if matrix == "full" else ports * (ports + 1) // 2
+
+
+def _rows(numbers: Array, lines: Sequence[int], width: int, header: _Header) -> Array:
+    """Shape (f, width). Noise data of version 1.1 follow where frequency falls back."""
+    if header.version == "1.1":
+        per_line = np.bincount(np.asarray(lines, dtype=int)) if lines else np.zeros(1, int)
+        wrong = [n for n in dict.fromkeys(lines) if per_line[n] != width]
+        if wrong and _is_noise(numbers, lines, wrong, width, int(per_line[wrong[0]])):
+            numbers = numbers[: lines.index(wrong[0])]
+        elif wrong:
+            found = f"{per_line[wrong[0]]}"
+            raise FormatError(f"{width} numbers", found, line=wrong[0],
+                              mend="a frequency and two numbers for each S-parameter")  # fmt: skip
+    if not numbers.size or numbers.size % width:
+        line = lines[-1] if lines else 1
+        raise FormatError(f"a multiple of {width} numbers", str(numbers.size), line=line)
+    rows = numbers.reshape(-1, width)
+    if header.points is not None and header.points != len(rows):
+        raise FormatError(f"{header.points} frequencies, as announced", str(len(rows)))
+    return rows
+
+
+def _is_noise(
+    numbers: Array, lines: Sequence[int], wrong: Sequence[int], width: int, held: int
+) -> bool:
+    place = lines.index(wrong[0])
+    return held == 5 and place >= width and numbers[place] <= numbers[place - width]
+
+
+def _refuse_order(frequency: Array, lines: Sequence[int], width: int, header: _Header) -> None:
+    if frequency.size > 1 and np.any(np.diff(frequency) <= 0):
+        place = int(np.argmax(np.diff(frequency) <= 0)) + 1
+        raise FormatError("frequencies that rise", f"{frequency[place] / header.scale:g}",
+                          line=lines[place * width])  # fmt: skip
+
+
+def _matrices(cells: Array, ports: int, header: _Header) -> ComplexArray:
+    first, second = cells[:, 0::2], cells[:, 1::2]
+    if header.form == "RI":
+        values = first + 1j * second
+    else:
+        size = first if header.form == "MA" else 10.0 ** (np.clip(first, -600, 600) / 20)
+        values = size * np.exp(1j * np.radians(second))
+    if ports == 1:
+        return np.asarray(values.reshape(-1, 1, 1))
+    if header.matrix != "full":
+        values = values[:, [0, 1, 1, 2]]
+    matrices = values.reshape(-1, 2, 2)
+    # S21 before S12, unless a file of version 2.0 says otherwise.
+    ordered = matrices if header.order == "12_21" else matrices.swapaxes(1, 2)
+    return np.asarray(ordered)

@@ -1,0 +1,1 @@
+"""Sweeps of network analysers: what is sent, what is asked, what is answered."""
