@@ -70,6 +70,10 @@ ADVISORIES: Registry[Advisory] = Registry(
              text="No frequency was given: {frequency} GHz was assumed, and nothing was corrected "
              "for conduction. Give probe.frequency or a frequency column: below 0.3 GHz clay and "
              "conduction make a soil read too wet, which the band does not hold otherwise."),
+    Advisory(key="draws-of-water-content", condition="Monte Carlo propagation was asked for and "
+             "there are conductivities among the answers.",
+             text="Draws were made of the water content alone; conductivities keep first-order "
+             "bands of the logarithm."),
     Advisory(key="temperature-assumed", condition="The caller said assume.temperature.",
              text="Temperature was assumed to be {temperature} Cel, to {u} K (k = 1), where the "
              "reading has none."),
@@ -87,6 +91,21 @@ ADVISORIES: Registry[Advisory] = Registry(
              'such as {value}: name the unit, for example "units": {{"{name}": "{other}"}}.'),
     Advisory(key="frozen-readings", condition="A reading is at or below 0 Cel.",
              text="{count} readings were taken at or below 0 Cel: unfrozen water only."),
+    Advisory(key="probe-not-calibrated", condition="A waveform came without traces of its probe in "
+             "air and in water.",
+             text="Length and offset of the rods are as described, or as a single trace shows "
+             "them: traces of the same probe in air and in water tell what both really are."),
+    Advisory(key="effective-length", condition="The effective length of rods differs from their "
+             "own by more than 5 %.",
+             text="Air and water give the rods an effective length of {length} m, their own is "
+             "{own} m: a long cable, a wrong temperature of the water, or another probe."),
+    Advisory(key="series-resistance-assumed", condition="A waveform came without a trace of "
+             "its shorted rods and without series_resistance.",
+             text="The resistance of the cable was assumed: shorting the end of the rods shows it, "
+             "and matters more the better the soil conducts."),
+    Advisory(key="probe-constant-missing", condition="Nothing tells the probe constant.",
+             text="There is no conductivity: give probe_constant, probe_impedance or rods, or "
+             "traces in air and in water."),
     Advisory(key="permittivities-beside", condition="More than one kind of permittivity came.",
              text="Several kinds of permittivity came ({names}); {used} was used."),
 )  # fmt: skip

@@ -16,7 +16,7 @@ from service.store.keys import Key, KeyFile, Reach
 GUARDED = "/v1/"
 """What lies elsewhere says nothing about anyone's soil: health, documentation, problem types."""
 
-READS: frozenset[str] = frozenset({"/v1/estimates"})
+READS: frozenset[str] = frozenset({"/v1/reflections", "/v1/scattering", "/v1/estimates"})
 """Paths whose POST computes and keeps nothing."""
 
 STATIONS, CHANGES = "/v1/stations/", "/v1/changes"

@@ -15,8 +15,19 @@ from service.access import LimitRate, RequireKey, keys_of
 from service.batch.workers import yield_to_requests
 from service.errors import add_error_handlers
 from service.limits import LimitBody
-from service.observe import Observe
-from service.routes import catalogues, estimates, health, pages, problems, spectra
+from service.metrics import count
+from service.observe import Observe, write_access_log
+from service.routes import (
+    catalogues,
+    estimates,
+    health,
+    pages,
+    problems,
+    reflections,
+    scattering,
+    spectra,
+    waveforms,
+)
 from service.routes.stored import documents, overview, readings
 from service.routes.stored import estimates as stored_estimates
 from service.schemas.openapi import Api, operation_id
@@ -73,7 +84,8 @@ def create_api(settings: Settings) -> Api:
     api.state.settings = settings
     api.state.draining = False
     api.state.tables = 0
-    main = (estimates.router, spectra.router, health.router, problems.router, pages.router)
+    main = (estimates.router, spectra.router, waveforms.router, reflections.router,
+            scattering.router, health.router, problems.router, pages.router)  # fmt: skip
     kept = (readings.router, stored_estimates.router, overview.router, *documents.routers)
     for router in (*main, *kept, *catalogues.routers):
         api.include_router(router)
@@ -85,7 +97,8 @@ def surrounded(api: Api, settings: Settings) -> ASGIApp:
     """The layers of every request, outermost last to be added."""
     keys = keys_of(settings)
     limited = LimitRate(LimitBody(api, settings), settings.requests_per_minute)
-    return Observe(RequireKey(limited, keys, on_loopback=settings.on_loopback))
+    guarded = RequireKey(limited, keys, on_loopback=settings.on_loopback)
+    return Observe(guarded, (write_access_log, count))
 
 
 def _lifespan(api: FastAPI) -> AbstractAsyncContextManager[None]:

@@ -9,6 +9,8 @@ from models.estimate.beside.ensemble import COLUMNS, EveryModel
 from models.quantity import band_names
 from models.readings import Readings
 from service.answers.effort import refuse_effort
+from service.errors import Unprocessable
+from service.faults import Fault, nearest, shown
 from service.formats.block import Answer, Block
 from service.schemas.echo import echo_of, headers_of, units_of_answer
 from service.schemas.echo_beside import ensemble_echo
@@ -24,6 +26,25 @@ APPENDED = frozenset({
     *band_names("saturation_extract_conductivity"),
 })  # fmt: skip
 """Every column an answer may append, so that no table already has one of the name."""
+
+
+def wanted_columns(text: str | None) -> tuple[str, ...] | None:
+    """Names of the columns to append; None: all of them.
+
+    Raises Unprocessable for a name that no answer has.
+    """
+    if text is None:
+        return None
+    names = tuple(name.strip() for name in text.split(",") if name.strip())
+    faults = []
+    for name in names:
+        if name not in APPENDED:
+            meant = nearest(name, APPENDED)
+            hint = f"; did you mean {meant}?" if meant else ""
+            faults.append(Fault(f"no answer has a column {shown(name)}{hint}", "?columns"))
+    if faults:
+        raise Unprocessable("columns names what no answer has", faults)
+    return names
 
 
 class TableEstimates:

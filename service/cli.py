@@ -19,6 +19,7 @@ from service.access import keys_of
 from service.convert import convert
 from service.demo.run import demo
 from service.logs import logging_config
+from service.metrics import shared_by
 from service.settings import Settings, SettingsError, data_folder, misspelt, read_settings, variable
 from service.store.command import store
 from service.store.errors import StoreError
@@ -73,6 +74,7 @@ def serve(**given: str | None) -> None:
         ws="none",
         log_config=logging_config(settings.log_format),
         timeout_graceful_shutdown=int(settings.request_seconds) + 1,
+        limit_concurrency=settings.connections,
     )
     for sentence in misspelt(os.environ):
         log.warning("%s", sentence)
@@ -84,7 +86,8 @@ def serve(**given: str | None) -> None:
     server = uvicorn.Server(config)
     try:
         if settings.workers > 1:
-            Multiprocess(config, sockets=[listener]).run()
+            with shared_by(settings.workers):
+                Multiprocess(config, sockets=[listener]).run()
         else:
             server.run(sockets=[listener])
             if not server.started:

@@ -29,6 +29,9 @@ class Exchange:
     started: float = field(default_factory=time.perf_counter)
     status: int = 0
     sent_bytes: int = 0
+    rows: int = 0
+    """Readings that were answered, and those of them that carry a flag."""
+    flagged: int = 0
     complete: bool = False
 
     @property
@@ -128,7 +131,11 @@ def _sender(exchange: Exchange, send: Send) -> Send:
             exchange.scope["method"] = exchange.method  # the server frames the answer by it
             headers = MutableHeaders(scope=message)
             headers["X-Request-Id"] = exchange.request_id
-            headers["Server-Timing"] = f"total;dur={exchange.milliseconds:.1f}"
+            exchange.rows = int(headers.get("row-count", "0"))
+            exchange.flagged = int(headers.get("flagged-count", "0"))
+            stages = headers.get("server-timing")
+            total = f"total;dur={exchange.milliseconds:.1f}"
+            headers["Server-Timing"] = f"{stages}, {total}" if stages else total
             headers["X-Content-Type-Options"] = "nosniff"
         elif message["type"] == "http.response.body":
             if head:

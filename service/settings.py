@@ -93,6 +93,9 @@ class Settings(BaseSettings):
     page_rows: int = Field(
         default=150_000, ge=1, description="most rows of an answer from the store"
     )
+    connections: int = Field(
+        default=4096, ge=2, description="connections of each process, idle ones included; then 503"
+    )
     queued_batches: int = Field(
         default=16, ge=1, description="batches that are taken on at a time; further ones get 503"
     )
@@ -115,7 +118,8 @@ class Settings(BaseSettings):
 LIMITS = (
     "json_body_bytes", "json_readings", "drawn_values", "batch_body_bytes", "wire_body_bytes",
     "batch_rows", "answer_bytes", "header_bytes", "line_bytes", "body_stall_seconds",
-    "request_seconds", "queued_batches", "requests_per_minute", "future_seconds", "page_rows",
+    "request_seconds", "queued_batches", "connections", "requests_per_minute", "future_seconds",
+    "page_rows",
 )  # fmt: skip
 """Settings that a client meets."""
 

@@ -126,6 +126,8 @@ def _advice(basis: Basis) -> tuple[Advice, ...]:
     said += [*_of_soil(basis), *_of_probe(basis)]
     if basis.salinity is not None:
         said.extend(basis.salinity.advice)
+        if basis.query.draws is not None:
+            said.append(advise("draws-of-water-content"))
     return tuple(said)
 
 

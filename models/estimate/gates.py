@@ -163,7 +163,14 @@ _SPOILING = np.bitwise_or.reduce(
         bit
         for slug, bit in BIT.items()
         if slug.partition(":")[0]
-        in {"unreadable", "out-of-gate", "unreadable-row", "outside-water-range", "loss-missing"}
+        in {
+            "unreadable",
+            "out-of-gate",
+            "unreadable-row",
+            "outside-water-range",
+            "loss-missing",
+            "no-end-reflection",
+        }
     ]
 )
 

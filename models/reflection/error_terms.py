@@ -10,7 +10,7 @@ import numpy as np
 
 from models.relation import Array, ComplexArray
 
-PASSES = 3
+PASSES = 2
 """Gauss-Newton steps from the weighted linear solution; each adds digits."""
 
 
@@ -69,7 +69,7 @@ def fit(read: ComplexArray, true: ComplexArray, spread: Array) -> Fit:
     NaN where a standard has no number or two of them are one.
     """
     usable = np.isfinite(read).all(axis=0) & np.isfinite(true).all(axis=0)
-    usable &= np.isfinite(spread).all(axis=0) & (spread > 0).all(axis=0)
+    usable = np.atleast_1d(usable & (np.isfinite(spread) & (spread > 0)).all(axis=0))
     rho, gamma = (np.where(usable, column, 0.0) for column in (read, true))
     weight = np.where(usable, 1 / spread, 0.0).T[:, :, None]
     rows = np.stack([np.ones_like(rho), rho * gamma, gamma], axis=-1).swapaxes(0, 1)

@@ -40,6 +40,8 @@ class SweepEstimate:
     permeability: ComplexArray | None = None
     """mu' - j mu''; None where it was taken to be 1."""
     permeability_band: Band | None = None
+    noise_known: bool = True
+    """Whether the bands hold noise: it was stated, or the sweeps themselves show it."""
 
 
 def coverage_factor(probability: float, degrees_of_freedom: Array) -> Array:

@@ -7,7 +7,7 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from models.flags import Flags
+from models.flags import Flag, Flags
 from models.registry import Registry
 from models.relation import Array, column
 
@@ -15,92 +15,94 @@ MARGIN = 3.0
 """Standard uncertainties by which a bound must be broken."""
 
 
-@dataclass(frozen=True, slots=True, kw_only=True)
-class SweepFlag:
-    """One thing that can be said of a sweep, or of one of its frequencies."""
-
-    key: str
-    condition: str
-    text: str
-    reason: str
-    keeps_number: bool = True
-    """False: a frequency has no number because of it."""
-
-
-SWEEP_FLAGS: Registry[SweepFlag] = Registry(
+SWEEP_FLAGS: Registry[Flag] = Registry(
     "sweep flag",
-    SweepFlag(key="reflection-above-one", condition="The reflection at the reference plane exceeds "
-              "1, or more power leaves a two-port than enters it, by more than three standard "
-              "uncertainties and 0.02.",
-              text="More comes back than went in.",
-              reason="Degrees read as radians, a poor calibration, or cables that moved."),
-    SweepFlag(key="negative-loss", condition="The loss is below zero by more than three standard "
-              "uncertainties.",
-              text="A medium that gives energy is none: the loss has the wrong sign here.",
-              reason="Calibration, a standard that is not what it is taken for, or noise that was "
-              "not stated."),
-    SweepFlag(key="conjugated", condition="Loss is of the wrong sign as sent and of the right one "
-              "after conjugating every reflection.",
-              text="The sweeps were written for exp(-j w t): all of them were conjugated, once.",
-              reason="Two time conventions are in use; phase falls with frequency in one and rises "
-              "in the other."),
-    SweepFlag(key="standards-too-close", condition="An error of 0.001 in the standards' "
-              "reflections changes the permittivity by more than 5 %.",
-              text="The standards are too much alike here to tell permittivities apart.",
-              reason="At low frequency a tip reads air and water nearly alike; short of that, two "
-              "standards are the same."),
-    SweepFlag(key="standards-inconsistent", condition="More than three standards contradict one "
-              "another beyond what noise and the stated uncertainties explain.",
-              text="One of the standards is not what it is taken for, or the aperture model does "
-              "not hold; uncertainties are widened by the misfit.",
-              reason="A bad short, another liquid, a wrong temperature, a bubble, a moved cable."),
-    SweepFlag(key="no-root", condition="No permittivity gives this reflection.",
-              text="The equation has no answer here.",
-              reason="The reflection is outside the domain of the model, or two standards are one.",
-              keeps_number=False),
-    SweepFlag(key="too-uncertain", condition="The relative standard uncertainty exceeds the limit "
-              "of the caller.",
-              text="Less certain than was asked for.",
-              reason="The limit is the caller's own.", keeps_number=False),
-    SweepFlag(key="outside-standard-range", condition="Frequency or temperature is outside the "
-              "range of the source of a standard's permittivity.",
-              text="The permittivity of a standard is less well known here.",
-              reason="Its equation goes on smoothly; give its permittivity to be sure."),
-    SweepFlag(key="grain-size", condition="The largest grain is more than a fiftieth of the "
-              "aperture or of the gap between the conductors.",
-              text="Grains are not small beside what the field spans: repeat with the sample "
-              "packed anew.",
-              reason="Common practice: a mixture is one medium when its parts are at least 50 "
-              "times smaller than the transverse dimension."),
-    SweepFlag(key="sample-thickness", condition="A tip's sample is thinner than where what lies "
-              "behind it changes the reading by 1 %; a filled line taken as endless is shorter "
-              "than 2.3 attenuation lengths; a two-port sample is longer than 4.6 of them.",
-              text="The thickness of the sample does not suit its loss, or the aperture.",
-              reason="Endless means that less than 1 % comes back from the end; a sample that "
-              "passes less than 1 % is measured by its face alone."),
-    SweepFlag(key="electrically-short", condition="The sample is thinner than a hundredth of the "
-              "wavelength in it.",
-              text="The sample is electrically short: reflection errors weigh more here.",
-              reason="What a wave does on the way through is not much more than the noise."),
-    SweepFlag(key="half-wave", condition="The sample reflects less than 0.05 where it is a whole "
-              "number of half wavelengths long.",
-              text="Reflection vanishes here: permittivity and permeability cannot be told apart.",
-              reason="Only their product is seen in what passes; with a permeability of 1 it is "
-              "enough."),
-    SweepFlag(key="air-gap", condition="An air gap of 10 um, or of what was stated, changes the "
-              "real part by more than 1 %.",
-              text="An air gap matters: press the sample on, or take fluid ones.",
-              reason="A tip sees first what touches it; a gap along a conductor is in series with "
-              "the sample."),
-    SweepFlag(key="branch-uncertain", condition="The number of whole wavelengths in the sample "
-              "does not follow from the sweep: steps in frequency are too long, or its first "
-              "point is too high.",
-              text="The phase may be a whole turn off.",
-              reason="Phase repeats; give a guess of the permittivity, or sweep from lower down."),
-    SweepFlag(key="magnetic", condition="The permeability differs from 1 by more than three "
-              "standard uncertainties and 0.05 in the middle of the band.",
-              text="The sample is magnetic: with a permeability of 1 the permittivity is wrong.",
-              reason="Iron oxides; reflection and transmission together tell."),
+    Flag(key="reflection-above-one", condition="The reflection at the reference plane exceeds "
+         "1, or more power leaves a two-port than enters it, by more than three standard "
+         "uncertainties and 0.02.",
+         text="More comes back than went in.",
+         reason="Degrees read as radians, a poor calibration, or cables that moved.",
+         keeps_number=True),
+    Flag(key="negative-loss", condition="The loss is below zero by more than three standard "
+         "uncertainties.",
+         text="A medium that gives energy is none: the loss has the wrong sign here.",
+         reason="Calibration, a standard that is not what it is taken for, or noise that was "
+         "not stated.",
+         keeps_number=True),
+    Flag(key="conjugated", condition="Loss is of the wrong sign as sent and of the right one "
+         "after conjugating every reflection.",
+         text="The sweeps were written for exp(-j w t): all of them were conjugated, once.",
+         reason="Two time conventions are in use; phase falls with frequency in one and rises "
+         "in the other.",
+         keeps_number=True),
+    Flag(key="standards-too-close", condition="An error of 0.001 in the standards' "
+         "reflections changes the permittivity by more than 5 %.",
+         text="The standards are too much alike here to tell permittivities apart.",
+         reason="At low frequency a tip reads air and water nearly alike; short of that, two "
+         "standards are the same.",
+         keeps_number=True),
+    Flag(key="standards-inconsistent", condition="More than three standards contradict one "
+         "another beyond what noise and the stated uncertainties explain.",
+         text="One of the standards is not what it is taken for, or the aperture model does "
+         "not hold; uncertainties are widened by the misfit.",
+         reason="A bad short, another liquid, a wrong temperature, a bubble, a moved cable.",
+         keeps_number=True),
+    Flag(key="no-root", condition="No permittivity gives this reflection.",
+         text="The equation has no answer here.",
+         reason="The reflection is outside the domain of the model, or two standards are one.",
+         keeps_number=False),
+    Flag(key="too-uncertain", condition="The relative standard uncertainty exceeds the limit "
+         "of the caller.",
+         text="Less certain than was asked for.",
+         reason="The limit is the caller's own.",
+         keeps_number=False),
+    Flag(key="outside-standard-range", condition="Frequency or temperature is outside the "
+         "range of the source of a standard's permittivity.",
+         text="The permittivity of a standard is less well known here.",
+         reason="Its equation goes on smoothly; give its permittivity to be sure.",
+         keeps_number=True),
+    Flag(key="grain-size", condition="The largest grain is more than a fiftieth of the "
+         "aperture or of the gap between the conductors.",
+         text="Grains are not small beside what the field spans: repeat with the sample "
+         "packed anew.",
+         reason="Common practice: a mixture is one medium when its parts are at least 50 "
+         "times smaller than the transverse dimension.",
+         keeps_number=True),
+    Flag(key="sample-thickness", condition="A tip's sample is thinner than where what lies "
+         "behind it changes the reading by 1 %; a filled line taken as endless is shorter "
+         "than 2.3 attenuation lengths; a two-port sample is longer than 4.6 of them.",
+         text="The thickness of the sample does not suit its loss, or the aperture.",
+         reason="Endless means that less than 1 % comes back from the end; a sample that "
+         "passes less than 1 % is measured by its face alone.",
+         keeps_number=True),
+    Flag(key="electrically-short", condition="The sample is thinner than a hundredth of the "
+         "wavelength in it.",
+         text="The sample is electrically short: reflection errors weigh more here.",
+         reason="What a wave does on the way through is not much more than the noise.",
+         keeps_number=True),
+    Flag(key="half-wave", condition="The sample reflects less than 0.05 where it is a whole "
+         "number of half wavelengths long.",
+         text="Reflection vanishes here: permittivity and permeability cannot be told apart.",
+         reason="Only their product is seen in what passes; with a permeability of 1 it is "
+         "enough.",
+         keeps_number=True),
+    Flag(key="air-gap", condition="An air gap of 10 um, or of what was stated, changes the "
+         "real part by more than 1 %.",
+         text="An air gap matters: press the sample on, or take fluid ones.",
+         reason="A tip sees first what touches it; a gap along a conductor is in series with "
+         "the sample.",
+         keeps_number=True),
+    Flag(key="branch-uncertain", condition="The number of whole wavelengths in the sample "
+         "does not follow from the sweep: steps in frequency are too long, or its first "
+         "point is too high.",
+         text="The phase may be a whole turn off.",
+         reason="Phase repeats; give a guess of the permittivity, or sweep from lower down.",
+         keeps_number=True),
+    Flag(key="magnetic", condition="The permeability differs from 1 by more than three "
+         "standard uncertainties and 0.05 in the middle of the band.",
+         text="The sample is magnetic: with a permeability of 1 the permittivity is wrong.",
+         reason="Iron oxides; reflection and transmission together tell.",
+         keeps_number=True),
 )  # fmt: skip
 
 BIT: Mapping[str, np.uint64] = MappingProxyType(

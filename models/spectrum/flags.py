@@ -14,11 +14,7 @@ from models.spectrum.spectrum import Spectrum
 
 SPECTRUM_FLAGS: Registry[Flag] = Registry(
     "flag",
-    Flag(key="conjugated", condition="Most of the loss came below zero.",
-         text="The spectrum was written for exp(-j w t) and was conjugated, once and as a whole.",
-         reason="No soil gains energy; the other time convention turns the sign of every loss.",
-         keeps_number=True),
-    Flag(key="loss-below-zero", condition="Single points have a loss below zero.",
+    Flag(key="loss-below-zero", condition="Single points of a spectrum have a loss below zero.",
          text="Some points have a loss below zero; they were kept as noise.",
          reason="Noise about a small loss falls on both sides of zero; cutting it off would make a "
          "loss of it.", keeps_number=True),
@@ -68,14 +64,6 @@ SPECTRUM_FLAGS: Registry[Flag] = Registry(
          text="The mixing model does not describe the whole band.",
          reason="What it leaves over went into whatever parameter could take it; water content "
          "leans on the upper end of the band.", keeps_number=True),
-    Flag(key="wetter-than-pores", condition="Water content exceeds the porosity.",
-         text="The whole band asks for more water than there are pores: the value is the porosity, "
-         "or lies within what its uncertainty allows.",
-         reason="A wrong porosity, or a mixing model that does not fit this soil.",
-         keeps_number=True),
-    Flag(key="missing:temperature", condition="A soil was described and no temperature given.",
-         text="There is no water content: the permittivity of water depends on temperature.",
-         reason="The service invents no reading.", keeps_number=False),
 )  # fmt: skip
 
 RUNS = 4.0

@@ -16,7 +16,7 @@ from models.spectrum.form import Form, evaluate
 from models.spectrum.spectrum import Spectrum
 from models.spectrum.views import UNIT_CUBE
 from models.spectrum.water.band import Soil, Told, told_by
-from models.spectrum.water.inversion import POINTS, Band, invert, salty_water
+from models.spectrum.water.inversion import AT_BEST, POINTS, Band, invert, salty_water
 from models.spectrum.water.soil import Scene
 from models.spectrum.weights import MAGNITUDE, stated_noise, unit_noise
 
@@ -115,9 +115,11 @@ def soil_of(choice: Choice, question: Question, soil: Soil) -> SoilAnswer:
     best = choice.fit
     few = best.spectrum.thinned(POINTS)
     size = evaluate(best.form, best.vector, few.frequency)[0]
-    noise = stated_noise(few)
-    if noise is None:
+    stated = stated_noise(few)
+    if stated is None:
         noise = unit_noise(best.noise_shape or MAGNITUDE, size)
+    else:
+        noise = np.hypot(stated, AT_BEST * np.abs(size))
     scene = Scene(
         few.frequency, question.mixing_model, question.parameters or {},
         salty_water(soil.temperature),

@@ -1,6 +1,7 @@
 """The answer to a JSON document of readings: as JSON, or as a table of the estimates alone."""
 
 from collections.abc import Mapping
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -16,6 +17,7 @@ from service.errors import Unprocessable
 from service.faults import Fault
 from service.formats.json_estimates import encode, encode_members, laid_out, tabulate
 from service.formats.json_readings import JsonReadings, decode
+from service.formats.raw_records import take_in
 from service.negotiate import VARY
 from service.schemas.echo import echo_of, headers_of, units_of_answer
 from service.schemas.echo_beside import (
@@ -36,21 +38,24 @@ def answer_document(document: dict[str, Any], answered: str, limits: Settings) -
 
     answered: media type of the answer.
     """
-    sent = decode(document.pop("readings"), most=limits.json_readings)
+    raw = take_in(document)
+    sent = replace(decode(document.pop("readings"), most=limits.json_readings), told=raw.told)
     settings = settings_of(document)
     refuse_effort(settings, sent.count, limits.drawn_values)
     basis = basis_of(settings, (*sent.numbers, *sent.texts))
     readings = read(sent.numbers, settings.units, {}, sent.absent)
+    raw.mark(readings.flags)
     if isinstance(basis, EveryModel):
         return _of_every_model(basis, readings, sent, settings, answered)
     result = estimate(readings, basis)
     remarks = _remarks(sent, settings, result)
-    echo = echo_of(basis, settings, remarks.advice(settings.units))
+    echo = {**echo_of(basis, settings, remarks.advice(settings.units)), **raw.echo}
     if answered != JSON:
         return _table(result, sent, settings, answered, echo)
     answer = laid_out(result, sent, settings.units)
     rest = {"units": _units(answer.names, settings), **echo, **_beside(settings, readings, basis)}
-    return Response(encode(answer, sent.shape, rest), media_type=JSON, headers=VARY)
+    body = encode(answer, sent.shape, rest)
+    return Response(body, media_type=JSON, headers={**VARY, **_counted(result)})
 
 
 def _beside(settings: EstimatesSettings, readings: Readings, basis: Basis) -> dict[str, Any]:
@@ -86,7 +91,7 @@ def _of_every_model(
     return Response(
         body[:-1] + b"," + encode_members(_members(found, sent, settings), sent.shape) + b"}",
         media_type=JSON,
-        headers=VARY,
+        headers={**VARY, **_counted(result)},
     )
 
 
@@ -112,6 +117,11 @@ def _refuse_beside(settings: EstimatesSettings) -> None:
     ]
     if faults:
         raise Unprocessable("not told of all models at once", faults)
+
+
+def _counted(result: Estimates) -> dict[str, str]:
+    flagged = int(np.count_nonzero(result.flags))
+    return {"Row-Count": str(len(result.flags)), "Flagged-Count": str(flagged)}
 
 
 def _remarks(sent: JsonReadings, settings: EstimatesSettings, result: Estimates) -> Remarks:

@@ -39,5 +39,7 @@ def _spelt(flags: Flags, spell: Callable[[tuple[str, ...]], str]) -> pl.Series:
 
 def _masks(flags: Flags) -> tuple[Flags, NDArray[np.intp]]:
     """The few different masks there are, and which of them each row has."""
+    if flags.size < 100:
+        return np.unique(flags, return_inverse=True)
     masks: Flags = np.sort(pl.Series(flags).unique().to_numpy())
     return masks, np.searchsorted(masks, flags)

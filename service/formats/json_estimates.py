@@ -20,6 +20,10 @@ PASSED = ("time", "depth")
 """What of a reading an estimate repeats, so that it can be told whose it is."""
 
 
+FEW = 200
+"""Rows up to which they are written one by one."""
+
+
 @dataclass(frozen=True, slots=True)
 class JsonEstimates:
     """Columns of an answer in the caller's units, in order; the flags come last."""
@@ -41,7 +45,8 @@ class JsonEstimates:
 
 def laid_out(estimates: Estimates, readings: JsonReadings, units: Units) -> JsonEstimates:
     """What tells each reading apart, and its estimates in the caller's units."""
-    numbers = {name: readings.numbers[name] for name in PASSED if name in readings.numbers}
+    passed = (*PASSED, *readings.told)
+    numbers = {name: readings.numbers[name] for name in passed if name in readings.numbers}
     for name, values in estimates.columns.items():
         numbers[name] = np.ascontiguousarray(from_si(name, values, units))
     texts = {name: readings.texts[name] for name in PASSED if name in readings.texts}
@@ -76,7 +81,14 @@ def tabulate(answer: JsonEstimates, media_type: str) -> bytes:
 
 
 def _rows(answer: JsonEstimates) -> bytes:
-    return _frame(answer).write_json().encode()
+    """Row by row; a frame is worth its price only for many."""
+    if len(answer.flags) > FEW:
+        return _frame(answer).write_json().encode()
+    words, places = combinations(answer.flags)
+    told = [words[place] for place in places.tolist()]
+    cells = [*answer.texts.values(), *(values.tolist() for values in answer.numbers.values()), told]
+    names = (*answer.names, "flags")
+    return orjson.dumps([dict(zip(names, row, strict=True)) for row in zip(*cells, strict=True)])
 
 
 def _columns(answer: JsonEstimates) -> bytes:

@@ -35,6 +35,8 @@ class JsonReadings:
     texts: Mapping[str, Sequence[str | None]]
     absent: Mapping[str, NDArray[np.bool_]]
     """Rows that do not have a key which others have."""
+    told: tuple[str, ...] = ()
+    """Columns that the answer repeats: what raw records were turned into."""
 
 
 def decode(readings: Any, *, most: int) -> JsonReadings:

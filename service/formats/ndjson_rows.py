@@ -1,8 +1,9 @@
 """application/x-ndjson: one JSON object a line, one line a row (RFC 8259).
 
 A row is kept as the text it came as, and the answer is inserted before its closing brace. Keys
-may differ from line to line; those on lines that begin in the first 64 KiB decide what the table
-is taken to hold, such as whether it has a conductivity to answer for.
+may differ from line to line. Those on lines that begin in the first 64 KiB decide what is read of
+the table, such as whether it has a conductivity to answer for; any that first occur later pass
+through like a stranger's, whatever the size of a block.
 """
 
 from collections import Counter
@@ -73,6 +74,8 @@ class NdjsonDecoder:
         unreadable: dict[str, Marks] = {}
         absent: dict[str, Marks] = dict.fromkeys(self._known, everywhere)
         for name, key in keys.items():
+            if name not in self._known:
+                continue
             absent.pop(name, None)
             if any(key not in shape for shape in shapes):
                 absent[name] = np.array([key not in row for row in rows], dtype=np.bool_)

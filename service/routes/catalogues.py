@@ -12,8 +12,10 @@ from models.conductivity import TEMPERATURE_COMPENSATIONS
 from models.flags import FLAGS
 from models.mixing import MIXING_MODELS
 from models.quantity import QUANTITIES
+from models.reflection.sweep_flags import SWEEP_FLAGS
 from models.salinity import PORE_WATER_MODELS
 from models.soil import TEXTURES
+from models.spectrum.flags import SPECTRUM_FLAGS
 from models.water import WATER_MODELS
 from service.errors import NotFound
 from service.faults import hint, shortened
@@ -57,7 +59,8 @@ CATALOGUES = (
     Catalogue("temperature-compensations", "Temperature compensations of conductivity",
               (TEMPERATURE_COMPENSATIONS,)),
     Catalogue("soil-textures", "Texture classes and what they stand for", (TEXTURES,)),
-    Catalogue("flags", "Flags of rows and advisories of answers", (FLAGS, ADVISORIES)),
+    Catalogue("flags", "Flags of rows and advisories of answers",
+              (FLAGS, SWEEP_FLAGS, SPECTRUM_FLAGS, ADVISORIES)),
     Catalogue("quantities", "The vocabulary: names, units, gates", (QUANTITIES,)),
 )  # fmt: skip
 

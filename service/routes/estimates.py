@@ -20,7 +20,7 @@ router = APIRouter(tags=["estimates"])
 JSON = "application/json"
 INLINE = 10_000
 """Readings up to which the answer is worked out at once; more of them go to a thread."""
-COSTLY = frozenset({"propagation", "budget", "validate", "explain"})
+COSTLY = frozenset({"raw_records", "propagation", "budget", "validate", "explain"})
 """Keys that may make few readings costly."""
 
 

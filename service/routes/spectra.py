@@ -8,6 +8,7 @@ import orjson
 from fastapi import APIRouter, Request
 from fastapi.responses import Response
 
+from models.conversion import refuse_units, unit_of
 from models.spectrum import Interpretation, interpret
 from models.spectrum.views import UNIT_CUBE
 from service.errors import Malformed, Unprocessable, UnsupportedMediaType
@@ -17,6 +18,7 @@ from service.page.svg import MEDIA_TYPE as SVG
 from service.spectra.answer import answer_of
 from service.spectra.bodies import SPECTRA, SpectraBody
 from service.spectra.chart import chart_of
+from service.spectra.circuits import CircuitBody, circuit_from, material_echo
 from service.spectra.question import body_of, question_of, sent_spectrum
 
 router = APIRouter(tags=["records"])
@@ -77,15 +79,39 @@ def _parsed(body: bytes) -> dict[str, Any]:
 
 def _answer(document: dict[str, Any], answered: str) -> Response:
     body = body_of(document)
+    if body.circuit is not None:
+        return _of_circuit(body, body.circuit, answered)
     found, cell = interpreted(body)
     if answered == SVG:
         return Response(chart_of(found, body, cell), media_type=SVG, headers=VARY)
-    told = orjson.dumps(answer_of(found, body, cell), option=orjson.OPT_SERIALIZE_NUMPY)
-    return Response(told, media_type=JSON, headers=VARY)
+    return _json(answer_of(found, body, cell))
+
+
+def _of_circuit(body: SpectraBody, circuit: CircuitBody, answered: str) -> Response:
+    if body.spectrum is not None:
+        raise _refusal("a request holds a spectrum or a circuit, found both", "#/circuit")
+    if answered == SVG:
+        raise _refusal("a circuit is answered in JSON: send Accept: application/json", "Accept")
+    refuse_units(body.units)
+    frequency = unit_of("frequency", body.units).to_si(body.frequency or [])
+    if frequency.size and not frequency.min() > 0:
+        raise _refusal("frequency must be above 0", "#/frequency")
+    return _json(material_echo(circuit_from(circuit), frequency, body.units))
+
+
+def _json(told: dict[str, Any]) -> Response:
+    body = orjson.dumps(told, option=orjson.OPT_SERIALIZE_NUMPY)
+    return Response(body, media_type=JSON, headers=VARY)
+
+
+def _refusal(detail: str, place: str) -> Unprocessable:
+    return Unprocessable(detail, [Fault(detail, place)])
 
 
 def interpreted(body: SpectraBody) -> tuple[Interpretation, float]:
     """The interpretation of a request's spectrum, and its cell, F."""
+    if body.spectrum is None:
+        raise _refusal("spectrum is missing", "#/spectrum")
     question = question_of(body)
     cell = body.cell.capacitance if body.cell else None
     spectrum = sent_spectrum(body.spectrum, body.units, cell)

@@ -6,11 +6,12 @@ from contextlib import contextmanager
 from fastapi import FastAPI, Request
 from fastapi.responses import Response
 
-from service.batch import Conversion, Spool, SpooledResponse, convert_stream, deadline
-from service.batch_estimates import APPENDED, TableEstimates
+from service.batch import Conversion, Spool, SpooledResponse, Stages, convert_stream, deadline
+from service.batch_estimates import APPENDED, TableEstimates, wanted_columns
 from service.errors import Problem, Stalled, TooLarge, Unavailable, Unprocessable
-from service.faults import Fault, nearest, shown
+from service.faults import Fault
 from service.formats import FORMATS, MEDIA_TYPES, Format
+from service.metrics import SPOOLED, TABLES
 from service.negotiate import VARY, choose
 from service.schemas.batch_query import document_of
 from service.schemas.query import settings_of
@@ -31,29 +32,10 @@ async def answer_table(request: Request, sent: Format) -> Response:
         target.encoder(),
         table,
         strict=_is_true(query.get("strict")),
-        columns=wanted(query.get("columns")),
+        columns=wanted_columns(query.get("columns")),
     )
     with _place_for(request.app):
         return await _converted(request, conversion, table, answered)
-
-
-def wanted(text: str | None) -> tuple[str, ...] | None:
-    """Names of the columns to append; None: all of them.
-
-    Raises Unprocessable for a name that no answer has.
-    """
-    if text is None:
-        return None
-    names = tuple(name.strip() for name in text.split(",") if name.strip())
-    faults = []
-    for name in names:
-        if name not in APPENDED:
-            meant = nearest(name, APPENDED)
-            hint = f"; did you mean {meant}?" if meant else ""
-            faults.append(Fault(f"no answer has a column {shown(name)}{hint}", "?columns"))
-    if faults:
-        raise Unprocessable("columns names what no answer has", faults)
-    return names
 
 
 @contextmanager
@@ -64,10 +46,12 @@ def _place_for(app: FastAPI) -> Iterator[None]:
         detail = f"{most} tables are being worked on, which is as many as are taken on at a time"
         raise Unavailable(detail, retry_after=5)
     app.state.tables += 1
+    TABLES.inc()
     try:
         yield
     finally:
         app.state.tables -= 1
+        TABLES.dec()
 
 
 async def _converted(
@@ -87,23 +71,30 @@ async def _converted(
 
     def check() -> None:
         within_time()
+        SPOOLED.set(Spool.waiting)
         if conversion.counts.rows > limits.batch_rows:
             raise TooLarge(f"the table has more than {limits.batch_rows} rows; send it in parts")
 
     try:
         counts = await convert_stream(request.stream(), conversion, spool, check)
         check()
-        request.scope["state"]["table"] = conversion
         headers: Mapping[str, str] = {
             **VARY,
             **table.headers(),
             "Row-Count": str(counts.rows),
             "Flagged-Count": str(counts.flagged),
+            "Server-Timing": _timing(conversion.stages),
         }
         return SpooledResponse(spool, answered, headers)
     except BaseException:
         spool.close()
         raise
+
+
+def _timing(stages: Stages) -> str:
+    """Milliseconds of each stage; estimates are made beside the other two."""
+    spent = {"decode": stages.decode, "estimate": stages.estimate, "encode": stages.encode}
+    return ", ".join(f"{name};dur={1e3 * seconds:.1f}" for name, seconds in spent.items())
 
 
 def _is_true(text: str | None) -> bool:

@@ -1,6 +1,7 @@
 """What POST /v1/estimates takes beside its readings, and the example of what it answers."""
 
 from collections.abc import Mapping
+from types import MappingProxyType
 from typing import Annotated, Any, Literal
 
 from pydantic import ConfigDict, Field, TypeAdapter, WithJsonSchema
@@ -99,6 +100,7 @@ class Propagation(Body):
 
     First order (JCGM 100) with the equation's own quantiles where it bends, or draws (JCGM 101):
     the same draws for every reading, so that a reading's band does not depend on its neighbours.
+    Draws are made of the water content; conductivities keep first-order bands of the logarithm.
     """
 
     method: Literal["first-order", "monte-carlo"] = "first-order"
@@ -159,6 +161,13 @@ ESTIMATED = ("water_content", "bulk_conductivity_25", "pore_water_conductivity",
              "saturation_extract_conductivity")  # fmt: skip
 """What an answer holds with a band: conductivities where the readings hold bulk_conductivity."""
 SETTINGS = TypeAdapter(EstimatesSettings)
+RAW = MappingProxyType({
+    "waveform": "/v1/waveforms",
+    "reflection": "/v1/reflections",
+    "scattering": "/v1/scattering",
+    "spectrum": "/v1/spectra",
+})  # fmt: skip
+"""Raw records a reading may carry, and the path that describes them."""
 
 
 def reading_schema() -> Mapping[str, Any]:
@@ -171,6 +180,9 @@ def reading_schema() -> Mapping[str, Any]:
         cells[name] = {**kind, "description": described(name)}
         if name in NOISE:
             cells[f"{name}_u"] = {**number, "description": f"standard uncertainty of {name}"}
+    for name, where in RAW.items():
+        told = f"raw record in place of a permittivity: an item of {where}"
+        cells[name] = {"type": ["object", "null"], "description": told}
     row = {"type": "object", "properties": cells, "additionalProperties": False}
     columns = {
         "type": "object",
@@ -187,6 +199,12 @@ def request_schema() -> dict[str, Any]:
     schema = SETTINGS.json_schema(ref_template="#/components/schemas/{model}")
     schema.pop("$defs", None)
     schema["properties"] = {**schema["properties"], "readings": reading_schema()}
+    told = "what the raw records of a kind have in common, as their own path takes it beside them"
+    schema["properties"]["raw_records"] = {
+        "type": "object",
+        "description": told,
+        "properties": {name: {"type": "object"} for name in RAW},
+    }
     schema["required"] = ["readings"]
     return schema
 

@@ -12,9 +12,11 @@ from service.examples import examples, show
 from service.schemas.estimates import SETTINGS
 from service.spectra.bodies import SPECTRA
 from service.stations.bodies import BODIES as STORED
+from service.sweeps.bodies import REFLECTIONS, SCATTERING
+from service.waveforms.bodies import WAVEFORMS
 
 REFERENCE = "#/components/schemas/{model}"
-BODIES: tuple[TypeAdapter[Any], ...] = (SETTINGS, SPECTRA)
+BODIES: tuple[TypeAdapter[Any], ...] = (SETTINGS, SPECTRA, WAVEFORMS, REFLECTIONS, SCATTERING)
 """Bodies that routes describe themselves; their parts stand among the components."""
 
 PROBLEM: dict[str, Any] = {

@@ -11,7 +11,7 @@ from models.quantity import QUANTITIES
 from models.relation import Array, ComplexArray
 from models.spectrum import Interpretation
 from models.spectrum.circuits.circuit import UNITS as ELEMENT_UNITS
-from models.spectrum.circuits.circuit import Branch, Circuit
+from models.spectrum.circuits.circuit import Branch, Circuit, constants_of
 from models.spectrum.description import Banded, spread
 from models.spectrum.doubts import TERM as UNRESOLVED
 from models.spectrum.doubts import doubts
@@ -20,6 +20,7 @@ from models.spectrum.form import ELECTRODE_FREQUENCY, Form
 from models.spectrum.views import VIEWS, seen_as, sensitivity
 from models.spectrum.weights import NOISES
 from service.spectra.bodies import SpectraBody
+from service.spectra.circuits import materials_echo, two_units_echo
 from service.spectra.soil_answer import soil_echo
 
 SHOWN_RUNGS = 12
@@ -32,14 +33,23 @@ def answer_of(found: Interpretation, body: SpectraBody, cell: float) -> dict[str
     answer: dict[str, Any] = {
         "fit": fit_echo(found, body.units),
         "alternatives": [
-            {**form_echo(other.fit.form), "parameters": len(other.fit.vector),
-             "aicc_difference": other.difference, "weight": other.weight,
-             "relative_residual": other.fit.relative_residual}
+            {
+                **form_echo(other.fit.form),
+                "parameters": len(other.fit.vector),
+                "aicc_difference": other.difference,
+                "weight": other.weight,
+                "relative_residual": other.fit.relative_residual,
+            }
             for other in found.choice.alternatives
         ],
         "curve": _curve(found, body.units),
         "circuit": circuit_echo(found.circuit, fit.form),
-    }  # fmt: skip
+    }
+    constants = constants_of(found.circuit)
+    if pair := two_units_echo(constants, cell):
+        answer["circuit"]["two_units"] = pair
+    if body.geometry is not None:
+        answer["circuit"]["materials"] = materials_echo(constants, body.geometry, body.units)
     if body.views:
         answer["views"] = {view: _view(fit, view, cell) for view in dict.fromkeys(body.views)}
     advisories = [{"code": f.flag, "text": f"{f.text}."} for f in found.findings]

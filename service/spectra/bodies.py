@@ -9,6 +9,7 @@ from models.spectrum.views import VIEWS
 from models.spectrum.water.mixtures import DEFAULT_MIXTURE, MIXTURES
 from service.schemas.estimates import Assume, ModelChoice, SoilBody
 from service.schemas.words import Body, Number, described
+from service.spectra.circuits import CircuitBody, GeometryBody
 
 Numbers = list[Number]
 Kind = Annotated[str, WithJsonSchema({"type": "string", "enum": list(RELAXATIONS)})]
@@ -96,7 +97,20 @@ class ChartBody(Body):
 class SpectraBody(Body):
     """A spectrum, and what is asked of it."""
 
-    spectrum: SpectrumBody
+    spectrum: SpectrumBody | None = None
+    circuit: CircuitBody | None = Field(
+        None,
+        description="In place of a spectrum: the answer is the material behind it, and its "
+        "spectrum at the frequencies given beside it.",
+    )
+    frequency: Annotated[Numbers, Field(max_length=20_000)] | None = Field(
+        None, description="at which the spectrum of a circuit is wanted [Hz]"
+    )
+    geometry: GeometryBody | None = Field(
+        None,
+        description="Of two materials in three paths: adds the pairs of materials that make "
+        "the fitted relaxation, where it is one Debye term with conduction.",
+    )
     model: FormBody = Field(
         default_factory=FormBody,
         description="Left out, the simplest form within 4 of the smallest AICc.",

@@ -3,6 +3,7 @@
 import json
 import sqlite3
 from collections.abc import Iterator, Sequence
+from contextlib import closing, suppress
 from pathlib import Path
 from typing import Any
 
@@ -45,8 +46,8 @@ class SqliteStore(SqlStore):
 
     def close(self) -> None:
         """See Store."""
-        with self.engine.connect() as connection:
-            connection.exec_driver_sql("PRAGMA wal_checkpoint(TRUNCATE)")
+        with suppress(sqlite3.Error):  # another process may be reading: it will do it then
+            self._outside("PRAGMA wal_checkpoint(TRUNCATE)")
         super().close()
 
     def _lock(self, connection: Connection) -> None:
@@ -81,8 +82,15 @@ class SqliteStore(SqlStore):
         """See Store."""
         if target.exists():
             raise StoreUnavailable(f"{target} is there already; name a new file")
-        with self.engine.connect() as connection:
-            connection.exec_driver_sql("VACUUM INTO ?", (str(target),))
+        try:
+            self._outside("VACUUM INTO ?", str(target))
+        except sqlite3.Error as error:
+            raise StoreUnavailable(f"the copy cannot be made: {error}") from None
+
+    def _outside(self, statement: str, *parameters: str) -> None:
+        """What SQLite does outside of any transaction."""
+        with closing(self.engine.raw_connection()) as connection:
+            connection.cursor().execute(statement, parameters)
 
 
 _INSERTS: dict[tuple[str, ...], tuple[str, list[int] | None]] = {}

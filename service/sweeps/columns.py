@@ -1,6 +1,6 @@
 """Sweeps as columns: complex numbers, Touchstone text, one frequency axis; checked on the way."""
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -22,8 +22,8 @@ LARGEST = 10.0
 """Magnitude of a reflection that is none: ohm, decibels."""
 PARTS = (("real", "imaginary"), ("magnitude", "degrees"))
 SAME = 1e-9
-TURN = 2.5
-"""Radians: a whole sweep of degrees that stays below pi and passes this both ways is none."""
+TURN = 4.0
+"""Range of a phase that stays within -pi and pi, from which it is in radians."""
 
 Place = tuple[int | str, ...]
 
@@ -62,7 +62,7 @@ class Axes:
     """One axis for all sweeps of a request, taken from the first that brings one."""
 
     def __init__(self, given: Numbers | None, units: Units) -> None:
-        self._units = units
+        self.units = units
         self._known: Axis | None = None
         self._common: Axis | None = None
         if given is not None:
@@ -78,7 +78,7 @@ class Axes:
 
     def checked(self, given: Numbers, place: Place) -> Array:
         """An axis in Hz that rises all along, within what is possible."""
-        unit = unit_of("frequency", self._units)
+        unit = unit_of("frequency", self.units)
         hertz = unit.to_si(given)
         if not 1 <= hertz.size <= MOST_POINTS:
             raise refuse(f"expected 1 to {MOST_POINTS} frequencies, found {hertz.size}", place)
@@ -125,8 +125,9 @@ def one_port(body: OnePortSweep, axes: Axes, common: float | Numbers | None, pla
     if (body.reflection is None) == (body.touchstone is None):
         found = "both" if body.reflection is not None else "neither"
         raise refuse(f"expected reflection or touchstone, found {found}", place)
+    axis: Axis | None
     if body.touchstone is not None:
-        axis, sweeps = _files(body, axes, (*place, "touchstone"))
+        axis, sweeps = _files(body, (*place, "touchstone"))
     else:
         own = body.frequency
         here = (*place, "frequency")
@@ -158,7 +159,7 @@ def spread_of(given: float | Numbers | None, count: int, place: Place) -> Array 
     return np.broadcast_to(values, (count,)).astype(np.float64)
 
 
-def _files(body: OnePortSweep, axes: Axes, place: Place) -> tuple[Axis, list[ComplexArray]]:
+def _files(body: OnePortSweep, place: Place) -> tuple[Axis, list[ComplexArray]]:
     if body.frequency is not None:
         detail = "a Touchstone file brings its frequencies: leave frequency out"
         raise refuse(detail, (*place[:-1], "frequency"))
@@ -170,7 +171,7 @@ def _files(body: OnePortSweep, axes: Axes, place: Place) -> tuple[Axis, list[Com
         if not np.array_equal(one.frequency, networks[0].frequency):
             raise refuse("repeated sweeps have the same frequencies", place)
     for one in networks:
-        _refuse_large(one.parameters, place)
+        refuse_large(one.parameters, place)
     return first, [one.parameters[:, 0, 0] for one in networks]
 
 
@@ -219,22 +220,23 @@ def complex_of(body: ComplexColumn, place: Place) -> ComplexArray:
     else:
         _refuse_radians(second, (*place, "degrees"))
         values = first * np.exp(1j * np.radians(second))
-    _refuse_large(values, place)
+    refuse_large(values, place)
     return np.asarray(values, dtype=np.complex128)
 
 
 def _refuse_radians(phase: Array, place: Place) -> None:
-    """A sweep that fills -pi to pi and no more was written in radians."""
-    if phase.size > 3 and np.abs(phase).max() <= np.pi + 1e-3:
-        if phase.min() < -TURN and phase.max() > TURN:
-            detail = (
-                "every phase lies between -3.1416 and 3.1416: these look like radians; send "
-                "degrees (radians times 57.29578), or real and imaginary parts"
-            )
-            raise refuse(detail, place)
+    """A sweep that runs through all of -pi to pi, and no further, was written in radians."""
+    within = phase.size > 3 and float(np.abs(phase).max()) <= np.pi + 1e-3
+    if within and float(np.ptp(phase)) > TURN:
+        detail = (
+            "every phase lies between -3.1416 and 3.1416: these look like radians; send "
+            "degrees (radians times 57.29578), or real and imaginary parts"
+        )
+        raise refuse(detail, place)
 
 
-def _refuse_large(values: ComplexArray, place: Place) -> None:
+def refuse_large(values: ComplexArray, place: Place) -> None:
+    """Refuse what is no reflection coefficient: ohm, decibels, degrees read as a part."""
     if values.size and np.abs(values).max() > LARGEST:
         detail = (
             f"a reflection coefficient is about 1 at most, found {np.abs(values).max():.4g}: "
@@ -242,6 +244,3 @@ def _refuse_large(values: ComplexArray, place: Place) -> None:
             "degrees as degrees"
         )
         raise refuse(detail, place)
-
-
-Named = Mapping[str, Sweep]

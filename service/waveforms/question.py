@@ -22,7 +22,7 @@ from models.reflection.tdr.record import Traces, even_axis, from_distance, trace
 from models.relation import column
 from models.units import UNITS
 from service.errors import Unprocessable
-from service.faults import problems_of
+from service.faults import pointer, problems_of
 from service.waveforms.bodies import (
     TraceBody,
     WaveformBody,
@@ -33,12 +33,16 @@ from service.waveforms.bodies import (
 Place = tuple[int | str, ...]
 
 
-def checked(adapter: TypeAdapter[Any], document: Any) -> Any:
-    """A part of a request as its schema has it. Raises Unprocessable with every fault."""
+def checked(adapter: TypeAdapter[Any], document: Any, place: Place = ()) -> Any:
+    """A part of a request as its schema has it; place: the steps to it.
+
+    Raises Unprocessable with every fault.
+    """
     try:
         return adapter.validate_python(document)
     except ValidationError as error:
-        faults = problems_of(error, document, adapter)
+        faults = [replace(fault, pointer=pointer(place) + fault.pointer[1:])
+                  for fault in problems_of(error, document, adapter)]  # fmt: skip
         raise Unprocessable("the request holds what cannot be used", faults) from None
 
 
@@ -50,7 +54,7 @@ class Group:
     record: Record
 
 
-def groups_of(bodies: Mapping[int, WaveformBody], where: Sequence[Place]) -> list[Group]:
+def groups_of(bodies: Mapping[int, WaveformBody], where: Mapping[int, Place]) -> list[Group]:
     """Waveforms sorted by axis, each group as one set of columns.
 
     bodies: by place in the request. where: the steps to each place in it.

@@ -94,12 +94,12 @@ class EveryModel:
         weights = np.array([member.weight for member in members.values()])
         flags = np.array([member.estimates.flags for member in members.values()])
         heard = np.any(weights > 0, axis=0)
-        said = np.bitwise_or.reduce(flags, axis=0)
-        common = np.bitwise_and.reduce(flags, axis=0)
+        said: Flags = np.bitwise_or.reduce(flags, axis=0)
+        common: Flags = np.bitwise_and.reduce(flags, axis=0)
         most = max(most_water(basis) for basis in self.bases.values())
         columns = _combined(members, weights, most, self.query.probability)
-        settled: Flags = np.where(heard, common, said)
-        return Ensemble(members, columns, settled)
+        common[~heard] = said[~heard]
+        return Ensemble(members, columns, common)
 
 
 def prepare_all(query: Query) -> EveryModel:

@@ -45,8 +45,13 @@ def validate(readings: Readings, basis: Basis) -> Validated:
     )
     holds = np.zeros(readings.count, dtype=np.bool_)
     holds[known] = found.holds
-    ends = (found.lower_difference, found.upper_difference, found.tolerance)
-    return Validated(holds, *(_spread(values, known) for values in ends), DRAWS)
+    return Validated(
+        holds,
+        lower_difference=_spread(found.lower_difference, known),
+        upper_difference=_spread(found.upper_difference, known),
+        tolerance=_spread(found.tolerance, known),
+        draws=DRAWS,
+    )
 
 
 def _told(readings: Readings, basis: Basis) -> NDArray[np.bool_]:

@@ -208,7 +208,7 @@ def _estimated(query: LineQuery, face: _Face, here: _Solution, *, conjugated: bo
     freedom = min(read.freedom for read in query.reads.values())
     estimate = SweepEstimate(
         f, kept(eps[None], flags), band, flags, (findings,), np.full((1, f.size), freedom),
-        conjugated,
+        conjugated, noise_known=known,
     )  # fmt: skip
     return LineEstimate(estimate, float(np.median(face.spread)) if known else 0.0, known)
 

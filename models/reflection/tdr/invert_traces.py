@@ -89,7 +89,7 @@ def _row(found: Inversion, frequency: float) -> dict[str, float]:
     last = len(found.layers.media) - 1
     medium = found.layers.media[last]
     value, u, shared = found.apparent(frequency, last)
-    eps = complex(medium.permittivity(np.array([2j * np.pi * frequency]))[0])
+    eps, real_u, loss_u = found.permittivity(frequency, last)
     place = sum(len(m.names) for m in found.layers.media) - 1
     relative, relative_shared = found.relative(place)
     return {
@@ -97,7 +97,9 @@ def _row(found: Inversion, frequency: float) -> dict[str, float]:
         "apparent_permittivity_u": u,
         "apparent_permittivity_u_shared": shared,
         "real_permittivity": eps.real,
+        "real_permittivity_u": real_u,
         "imaginary_permittivity": -eps.imag,
+        "imaginary_permittivity_u": loss_u,
         "frequency": frequency,
         "bulk_conductivity": medium.conductivity,
         "bulk_conductivity_u": medium.conductivity * relative,

@@ -5,7 +5,7 @@ Levine and Papas (1951), Misra (1987): the integral over the aperture field, her
 series of its exponential, so that capacitance and radiation are its first two terms.
 """
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from functools import lru_cache
 from types import MappingProxyType
@@ -36,6 +36,7 @@ UNIT = 1e9  # Hz, of the fitted coefficients
 WAVE_NUMBER = 2 * np.pi * UNIT / speed_of_light
 FOLLOWING = 12
 """Powers up to which a fitted aperture is carried on."""
+STARTS = (0.75e-3, 1.5e-3, 3e-3, 6e-3)  # m, outer radii
 USUAL = 3.3
 """Ratio of the radii of a 50 ohm line filled with PTFE."""
 
@@ -152,6 +153,31 @@ class Aperture:
             slope = slope * x + value
             value = value * x + coefficient
         return permittivity * value, np.asarray(value + 0.5 * x * slope, dtype=complex)
+
+    def by_coefficient(
+        self, permittivity: ComplexArray, frequency: Array, steps: Array
+    ) -> ComplexArray:
+        """Derivative of the relative admittance by h and g, shape (..., 2).
+
+        steps: of h and of g, over which half-differences are taken.
+        """
+        columns = []
+        for place, step in enumerate(steps.tolist()):
+            ends = [
+                self.moved(place, sign * step).admittance(permittivity, frequency)[0]
+                for sign in (1, -1)
+            ]
+            columns.append((ends[0] - ends[1]) / (2 * step))
+        return np.stack(columns, axis=-1)
+
+    def starts(self) -> Iterator["Aperture"]:
+        """Where a fit may begin: a capacitance, and apertures from narrow to wide."""
+        yield self
+        for outer in STARTS if self.geometry is None else (self.geometry.outer,):
+            _, _, square, cube = Geometry(outer / USUAL, outer).series[:4] * WAVE_NUMBER ** (
+                np.arange(4)
+            )
+            yield replace(self, fitted=(-float(square), -float(cube)))
 
     def moved(self, place: int, step: float) -> "Aperture":
         """The same with one of the fitted coefficients moved."""

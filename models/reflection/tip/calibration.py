@@ -1,6 +1,6 @@
 """Error terms of a tip and, from four or more standards, the two coefficients of its aperture."""
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -81,40 +81,37 @@ def calibrate(
     """
     read = np.stack([standard.read for standard in standards])
 
-    def residual(tip: Aperture) -> tuple[Fit, ComplexArray]:
+    def solved(tip: Aperture) -> Calibration:
         true = reflections(frequency, standards, tip)
-        return fit(read, true, spread), true
+        none = np.zeros((*read.shape, 0), dtype=complex)
+        found = fit(read, true, spread)
+        return Calibration(
+            frequency, tuple(standards), tip, spread, true, found, none, np.zeros((0, 0))
+        )
 
-    found, true = residual(aperture)
-    none = np.zeros((*read.shape, 0), dtype=complex)
-    plain = Calibration(
-        frequency, tuple(standards), aperture, spread, true, found, none, np.zeros((0, 0))
-    )
     if aperture.model != "fitted" or len(standards) < 4:
-        return plain
-    damping, cost = 1e-3, _sum(found.residual / spread)
+        return solved(aperture)
+    here = min((solved(start) for start in aperture.starts()), key=lambda c: c.chi_square)
+    damping = 1e-3
     for _ in range(MOST):
-        jacobian = _jacobian(residual, aperture, spread)
+        jacobian = _jacobian(here)
         normal = np.real(np.einsum("nfp,nfq->pq", np.conj(jacobian), jacobian))
-        slope = np.real(np.einsum("nfp,nf->p", np.conj(jacobian), _known(found.residual / spread)))
+        left = _known(here.fitted.residual / spread)
+        slope = np.real(np.einsum("nfp,nf->p", np.conj(jacobian), left))
         step = -np.linalg.lstsq(normal + damping * np.diag(np.diag(normal)), slope)[0]
-        trial = aperture.moved(0, float(step[0])).moved(1, float(step[1]))
-        there, true_there = residual(trial)
-        new = _sum(there.residual / spread)
-        if new <= cost:
-            small = np.all(np.abs(step) <= 1e-10 * np.abs(trial.fitted) + 1e-15)
-            aperture, found, true, damping = trial, there, true_there, damping * 0.1
-            done, cost = bool(small or cost - new <= 1e-13 * cost), new
+        there = solved(here.aperture.moved(0, float(step[0])).moved(1, float(step[1])))
+        if there.chi_square <= here.chi_square:
+            small = np.all(np.abs(step) <= 1e-10 * np.abs(there.aperture.fitted) + 1e-15)
+            gain = here.chi_square - there.chi_square
+            done = bool(small or gain <= 1e-12 * here.chi_square)
+            here, damping = there, damping * 0.1
         else:
             done, damping = damping > 1e6, damping * 30
         if done:
             break
-    jacobian = _jacobian(residual, aperture, spread)
+    jacobian = _jacobian(here)
     normal = np.real(np.einsum("nfp,nfq->pq", np.conj(jacobian), jacobian))
-    return replace(
-        plain, aperture=aperture, fitted=found, true=true, jacobian=jacobian,
-        covariance=np.linalg.pinv(normal, hermitian=True),
-    )  # fmt: skip
+    return replace(here, jacobian=jacobian, covariance=np.linalg.pinv(normal, hermitian=True))
 
 
 def scale(frequency: Array, aperture: Aperture) -> ComplexArray:
@@ -139,23 +136,32 @@ def reflections(
     return rows
 
 
-def moved(calibration: Calibration, place: int, step: float) -> Calibration:
-    """The calibration with one coefficient moved, everything else following."""
-    aperture = calibration.aperture.moved(place, step)
-    true = reflections(calibration.frequency, calibration.standards, aperture)
-    read = np.stack([standard.read for standard in calibration.standards])
-    found = fit(read, true, calibration.spread)
-    return replace(calibration, aperture=aperture, true=true, fitted=found)
+@np.errstate(all="ignore")
+def as_readings(calibration: Calibration) -> ComplexArray:
+    """By how much readings would be off if the coefficients were: shape (n, f, p).
+
+    A standard that is not what it is taken for acts like a reading that is off by as much.
+    """
+    frequency, aperture = calibration.frequency, calibration.aperture
+    unit, terms = scale(frequency, aperture), calibration.fitted.terms
+    rows = np.zeros((*calibration.true.shape, len(STEPS)), dtype=complex)
+    for place, standard in enumerate(calibration.standards):
+        if standard.known is not None:
+            eps = standard.known.permittivity
+            relative, _ = aperture.admittance(eps, frequency)
+            turn = 2 * unit / np.square(1 + relative * unit)
+            off = terms.slope(calibration.true[place]) * turn
+            rows[place] = off[:, None] * aperture.by_coefficient(eps, frequency, STEPS)
+    return rows
 
 
-def _jacobian(
-    residual: Callable[[Aperture], tuple[Fit, ComplexArray]], aperture: Aperture, spread: Array
-) -> ComplexArray:
-    columns = []
-    for place, step in enumerate(STEPS):
-        ends = [residual(aperture.moved(place, sign * step))[0].residual for sign in (1, -1)]
-        columns.append(_known((ends[0] - ends[1]) / (2 * step * spread)))
-    return np.stack(columns, axis=-1)
+@np.errstate(all="ignore")
+def _jacobian(calibration: Calibration) -> ComplexArray:
+    """Of the weighted residuals by the coefficients, error terms following; shape (n, f, p)."""
+    off = as_readings(calibration)
+    rows = calibration.fitted.terms.gradient(calibration.true)
+    followed = np.einsum("nft,ftm,mfp->nfp", rows, calibration.fitted.response, off)
+    return _known((off - followed) / calibration.spread[:, :, None])
 
 
 def _known(values: ComplexArray) -> ComplexArray:

@@ -119,6 +119,7 @@ def _cut(standard: Standard, band: Points) -> Standard:
         known = replace(
             known,
             permittivity=known.permittivity[band],
+            outside=None,
             variations=tuple(variation[band] for variation in known.variations),
         )
     return replace(standard, read=standard.read[band], known=known)

@@ -67,7 +67,14 @@ def estimate_permittivity(query: TipQuery) -> TipEstimate:
     findings = findings_of(calibration, answer, query.samples, misfit, query.geometry)
     freedom = np.stack([np.full(query.frequency.size, s.freedom) for s in query.samples])
     estimate = SweepEstimate(
-        query.frequency, kept(eps, flags), band, flags, findings, freedom, conjugated
+        query.frequency,
+        kept(eps, flags),
+        band,
+        flags,
+        findings,
+        freedom,
+        conjugated,
+        noise_known=misfit.known,
     )
     return TipEstimate(estimate, calibration, departures(calibration), misfit)
 

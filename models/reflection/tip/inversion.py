@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from models.reflection.tip.calibration import STEPS, Calibration, moved, scale
+from models.reflection.tip.calibration import STEPS, Calibration, as_readings, scale
 from models.relation import Array, ComplexArray
 
 
@@ -41,20 +41,12 @@ def invert(calibration: Calibration, read: ComplexArray) -> Response:
     by_standard = -np.einsum(
         "mf,mft,ftn->mfn", by_sample, terms.gradient(true), calibration.fitted.response
     )
-    columns = []
-    for place in range(len(calibration.covariance)):
-        step = STEPS[place]
-        ends = [_only(moved(calibration, place, sign * step), read) for sign in (1, -1)]
-        columns.append((ends[0] - ends[1]) / (2 * step))
-    empty = np.zeros((*read.shape, 0), dtype=complex)
-    by_coefficient = np.stack(columns, axis=-1) if columns else empty
+    by_coefficient = np.zeros((*read.shape, 0), dtype=complex)
+    if len(calibration.covariance):
+        own = aperture.by_coefficient(eps, frequency, STEPS) / slope[:, :, None]
+        off = as_readings(calibration)
+        by_coefficient = np.einsum("mfn,nfp->mfp", by_standard, off) - own
     return Response(eps, true, by_sample, by_standard, by_coefficient)
-
-
-def _only(calibration: Calibration, read: ComplexArray) -> ComplexArray:
-    true = calibration.fitted.terms.corrected(read)
-    relative = (1 - true) / ((1 + true) * scale(calibration.frequency, calibration.aperture))
-    return calibration.aperture.permittivity(relative, calibration.frequency)
 
 
 @dataclass(frozen=True, slots=True)

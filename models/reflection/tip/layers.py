@@ -29,19 +29,18 @@ DEEPEST = 8.0
 
 @dataclass(frozen=True, slots=True)
 class _Field:
-    """Radial fields of the modes over the wave number across the aperture."""
+    """Energies of the pairs of modes, wave number by wave number across the aperture."""
 
     wave_number: Array
-    spectrum: Array
-    """Shape (modes, waves); all but the first are scaled to unit energy in the line."""
+    """Shape (waves,)."""
+    energy: Array
+    """Shape (waves, modes^2); all modes but the first are scaled to unit energy in the line."""
     fill: float
 
     def capacitance(self, effective: ComplexArray) -> ComplexArray:
         """Up to a factor, on media of effective permittivity, shape (k, waves) to (k,)."""
-        size = len(self.spectrum)
-        pairs = (self.spectrum[:, None, :] * self.spectrum).reshape(size * size, -1)
-        weight = effective * np.gradient(self.wave_number)
-        energy = (weight @ pairs.T).reshape(-1, size, size)
+        size = MODES + 1
+        energy = (effective @ self.energy).reshape(-1, size, size)
         own = energy[:, 1:, 1:] + self.fill * np.eye(size - 1)
         bent = np.linalg.solve(own, energy[:, 1:, :1])
         return np.asarray(energy[:, 0, 0] - (energy[:, :1, 1:] @ bent)[:, 0, 0], dtype=complex)
@@ -63,7 +62,9 @@ def _field(inner: float, outer: float, fill: float) -> _Field:
         energy = 0.5 * ((outer * at[0]) ** 2 - (inner * at[1]) ** 2) / k
         edges = outer * at[0] * j0(wave * outer) - inner * at[1] * j0(wave * inner)
         rows.append(wave / (k**2 - wave**2) * edges / np.sqrt(energy))
-    return _Field(wave, np.stack(rows), fill)
+    spectra = np.stack(rows)
+    pairs = (spectra[:, None, :] * spectra).reshape(-1, wave.size).T
+    return _Field(wave, pairs * np.gradient(wave)[:, None], fill)
 
 
 @np.errstate(all="ignore")

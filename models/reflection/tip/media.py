@@ -5,12 +5,13 @@ from dataclasses import dataclass, replace
 from typing import NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.conductivity.corwin_lesch_2005 import CORWIN_LESCH_2005
 from models.conductivity.loss import VACUUM_PERMITTIVITY
 from models.conductivity.sodium_chloride import concentration
 from models.registry import Registry
-from models.relation import Array, Citation, ComplexArray, Relation, column, ranges
+from models.relation import Array, Citation, ComplexArray, Relation, ranges
 from models.water import kaatze_1989, peyman_2007
 
 ROOM = 25.0  # Cel, of the constants below
@@ -41,6 +42,8 @@ class Known:
     permittivity: ComplexArray
     variations: tuple[ComplexArray, ...] = ()
     """What one standard uncertainty of each thing that is not known changes, shape (f,) each."""
+    outside: NDArray[np.bool_] | None = None
+    """Where its source does not vouch for it, shape (f,); None: nowhere."""
 
     def within(self, relative: float) -> "Known":
         """The same with one relative standard uncertainty, real part and loss apart."""
@@ -81,7 +84,14 @@ class Medium(Relation):
         )
         eps = here.permittivity(frequency)
         changes = (other.permittivity(frequency) - eps for other in moved if other != here)
-        return Known(eps, tuple(changes))
+        return Known(eps, tuple(changes), self._outside(frequency, temperature))
+
+    def _outside(self, frequency: Array, temperature: float) -> NDArray[np.bool_] | None:
+        found = np.zeros(frequency.shape, dtype=bool)
+        for name, value in (("frequency", frequency), ("temperature", temperature)):
+            if name in self.validity:
+                found |= self.validity[name].excludes(value)
+        return found if found.any() else None
 
 
 def _air(_temperature: float, _conductivity: float) -> Relaxation:
@@ -158,10 +168,3 @@ MEDIA: Registry[Medium] = Registry(
            validity=ranges(temperature=(0.0, 40.0), frequency=(1e7, 10e9)), source=_LIQUIDS),
 )  # fmt: skip
 """What may stand before a tip under its name alone."""
-
-
-def outside(medium: Medium, frequency: Array, temperature: float) -> tuple[str, ...]:
-    """What of frequency and temperature the source of a medium does not vouch for."""
-    at = {"frequency": column(frequency), "temperature": column(temperature)}
-    return tuple(n for n, known in medium.validity.items() if n in at and
-                 bool(np.any(known.excludes(at[n]))))  # fmt: skip

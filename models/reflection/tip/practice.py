@@ -30,6 +30,10 @@ def flag(calibration: Calibration, answer: Response, spread: Array, flags: Flags
         excess = np.abs(answer.reflection) - 1
         raised(flags, (excess > MARGIN * noise) & (excess > ABOVE_ONE), "reflection-above-one")
         raised(flags, _closeness(answer) > CLOSE, "standards-too-close")
+    for standard in calibration.standards:
+        if standard.known is not None and standard.known.outside is not None:
+            raised(flags, np.broadcast_to(standard.known.outside, flags.shape),
+                   "outside-standard-range")  # fmt: skip
 
 
 def findings_of(

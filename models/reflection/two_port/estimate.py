@@ -30,6 +30,8 @@ class TwoPortQuery:
     parameters: Parameters
     spread: Array | None = None
     """Standard uncertainty of each part of the S-parameters, shape (f,); None: not known."""
+    both_ways: bool = True
+    """False: S12 and S22 stand in for what was not measured, and lessen no noise."""
     length: float
     length_u: float = 0.0
     holder: float | None = None
@@ -125,11 +127,12 @@ def _estimated(query: TwoPortQuery, *, conjugated: bool) -> TwoPortEstimate:
         None if query.guess is None else complex(np.sqrt(query.guess)),
     )  # fmt: skip
     response = nicolson_ross_weir.response(both.permittivity, both.permeability, f, length)
-    mu_u = np.sqrt(np.square(np.abs(response[:, 1])).sum(axis=-1) / 2) * noise
+    fewer = 1.0 if query.both_ways else np.sqrt(2.0)
+    mu_u = np.sqrt(np.square(np.abs(response[:, 1])).sum(axis=-1) / 2) * noise * fewer
     magnetic = magnetic_finding(f, both, mu_u)
     method = query.method or ("least-squares" if magnetic.holds else "nicolson-ross-weir")
     eps, mu = _seen(query, method, planes, length)
-    own = _own(query, method, eps, response[:, 0], noise)
+    own = _own(query, method, eps, response[:, 0], noise) * fewer
     shared, shared_mu = _shared(query, method, planes, position_u, (eps, mu))
     band = _band(own, shared)
     flags = np.zeros((1, f.size), dtype=np.uint64)
@@ -140,7 +143,7 @@ def _estimated(query: TwoPortQuery, *, conjugated: bool) -> TwoPortEstimate:
     estimate = SweepEstimate(
         f, kept(eps[None], flags), band, flags, (found_here,), np.full((1, f.size), np.inf),
         conjugated, None if mu is None else kept(mu[None], flags),
-        None if shared_mu is None else _band(mu_u, shared_mu),
+        None if shared_mu is None else _band(mu_u, shared_mu), known,
     )  # fmt: skip
     level = float(np.median(noise))
     return TwoPortEstimate(estimate, method, planes, position_u, level, known, both.turns)
@@ -151,6 +154,8 @@ def _noise(query: TwoPortQuery) -> tuple[Array, bool]:
     f = query.frequency
     if query.spread is not None:
         return query.spread, True
+    if not query.both_ways:
+        return np.full(f.size, 1e-15), False
     planes, _ = _planes(query, 1e-3)
     s = at_faces(query.parameters, f, planes)
     apart = np.stack([s[0] - s[3], s[1] - s[2]])

@@ -20,7 +20,6 @@ from models.spectrum.choice import CLOSE
 from models.spectrum.fit import FINE, ROUGH
 from models.spectrum.spectrum import Spectrum
 from models.spectrum.water.soil import Scene, Variant, path_of_current, permittivity
-from models.spectrum.weights import FLOOR
 from models.water import kaatze_1989, peyman_2007
 from models.water.relaxation import Debye
 
@@ -34,6 +33,9 @@ BOUND_TIMES = (4e-11, 3e-10)
 """s, of bound water, from which fits start."""
 POINTS = 400
 """Of a longer spectrum, as many as an inversion takes."""
+AT_BEST = 1e-3
+"""Relative: no mixing model, and no model of the water in it, is nearer to a soil than that, and
+what is left below it must not decide between variants."""
 SALT_ROUNDS = 3
 """Salt lowers the permittivity of water a little, and how much salt there is is found here: each
 round brings the answer nearer by two digits."""
@@ -85,7 +87,7 @@ class Band:
         surprise = float(np.sum(np.square(self.residuals)))
         if not self.noise_stated:
             k += 1
-            surprise = n * float(np.log(surprise / n + FLOOR**2))
+            surprise = n * float(np.log(surprise / n + AT_BEST**2))
         return surprise + 2 * k + 2 * k * (k + 1) / max(n - k - 1, 1e-9)
 
     @cached_property

@@ -158,16 +158,12 @@ def _positive(word: str, number: int) -> float:
 
 def _read_keyword(name: str, value: str, number: int, header: _Header) -> None:
     if name == "version":
-        if value not in {"2.0", "2.1"}:
-            raise FormatError("[Version] 2.0", shown(value), line=number)
+        _one_of(value, ("2.0", "2.1"), number)
         header.version = "2.0"
-    elif name in {"number of ports", "number of frequencies"}:
-        if not value.isdecimal():
-            raise FormatError("a whole number", shown(value), line=number)
-        if name == "number of ports":
-            header.ports = int(value)
-        else:
-            header.points = int(value)
+    elif name == "number of ports":
+        header.ports = _whole(value, number)
+    elif name == "number of frequencies":
+        header.points = _whole(value, number)
     elif name == "two-port data order":
         header.order = _one_of(value, ("21_12", "12_21"), number)
     elif name == "matrix format":
@@ -176,6 +172,12 @@ def _read_keyword(name: str, value: str, number: int, header: _Header) -> None:
         header.references += _cells(value, number)
     elif name == "mixed-mode order":
         raise FormatError("single-ended ports", "[Mixed-Mode Order]", line=number)
+
+
+def _whole(value: str, number: int) -> int:
+    if not value.isdecimal():
+        raise FormatError("a whole number", shown(value), line=number)
+    return int(value[:9])
 
 
 def _one_of(value: str, known: tuple[str, ...], number: int) -> str:

@@ -67,14 +67,13 @@ def router_of(kind: Kind) -> APIRouter:
 
     async def delete(request: Request, name: Name) -> Response:
         wish = Wish(kind, name, _author(request), request.headers.get("if-match"), None, None)
-        await anyio.to_thread.run_sync(apply, request.app.state.shelf, wish)
-        return Response(None, 204)
+        change = await anyio.to_thread.run_sync(apply, request.app.state.shelf, wish)
+        return _json({**told(change.document), "deleted": True})
 
     def add(path: str, method: str, route: Callable[..., Any], name: str, summary: str) -> None:
         router.add_api_route(
             path, route, methods=[method], name=name, summary=summary, description=MANNERS,
-            response_class=Response, responses=_answers(kind, method),
-            status_code=204 if method == "DELETE" else 200,
+            response_class=Response, responses=_answers(kind, method, path),
             openapi_extra=_described(kind, method, path),
         )  # fmt: skip
 
@@ -146,15 +145,25 @@ def _json(body: Any, status: int = 200, headers: Mapping[str, str] | None = None
     return Response(orjson.dumps(body), status, {**VARY, **(headers or {})}, JSON)
 
 
-def _answers(kind: Kind, method: str) -> dict[int | str, dict[str, Any]]:
-    schema: dict[str, Any] = {"type": "object"}
+def _answers(kind: Kind, method: str, path: str) -> dict[int | str, dict[str, Any]]:
+    example: dict[str, Any] = {**dict(zip(ADDED, _ADDED, strict=True)), **_EXAMPLES[kind]}
     if method == "DELETE":
-        return {204: {"description": f"The {kind} is gone; its revisions stay."}}
-    content = {JSON: {"schema": schema}}
+        example = {**dict(zip(ADDED, _ADDED, strict=True)), "deleted": True}
+    if not path:
+        example = {f"{kind}s": [example], "revision": 17}
+    content = {JSON: {"schema": {"type": "object"}, "example": example}}
     answers: dict[int | str, dict[str, Any]] = {200: {"content": content}}
     if method == "PUT":
         answers[201] = {"description": f"The {kind} is new.", "content": content}
     return answers
+
+
+_ADDED = ("north", 17, "2026-05-04T06:00:00Z", "office")
+_EXAMPLES: Mapping[Kind, Mapping[str, Any]] = {
+    "soil": {"texture": "loam", "bulk_density": 1.42, "mixing_model": "crim"},
+    "probe": {"frequency": 1.0e9, "apparent_permittivity_u": 0.3},
+    "station": {"zone": "UTC", "installations": []},
+}
 
 
 def _described(kind: Kind, method: str, path: str) -> dict[str, Any]:

@@ -11,10 +11,10 @@ from service.routes.etag import tagged
 from service.routes.stored.documents import Name
 from service.routes.stored.paging import answered
 from service.series_edges import EVERY
-from service.stations.asked import asked_of
-from service.stations.charting import chart_of
-from service.stations.questions import estimates_page, profile_page, scene_of
-from service.stations.resampled import resampled_page
+from service.stations.ask.asked import asked_of
+from service.stations.ask.charting import chart_of
+from service.stations.ask.questions import estimates_page, profile_page, scene_of
+from service.stations.ask.resampled import resampled_page
 
 router = APIRouter(prefix="/v1/stations/{name}", tags=["stations"])
 
@@ -77,6 +77,7 @@ async def get_estimates(request: Request, name: Name) -> Response:
     "/chart.svg",
     summary="Chart of water content and salinity",
     openapi_extra=described(CHART),
+    responses={200: {"content": {SVG: {"schema": {"type": "string"}, "example": "<svg/>"}}}},
     response_class=Response,
 )
 async def get_chart(request: Request, name: Name) -> Response:

@@ -9,10 +9,10 @@ from fastapi import APIRouter, Request, Response
 from service.negotiate import VARY, choose
 from service.routes.stored.documents import Name, absent
 from service.routes.stored.estimates import described
-from service.stations.answers import OFFERED, encoded
-from service.stations.asked import asked_of
+from service.stations.ask.answers import OFFERED, encoded
+from service.stations.ask.asked import asked_of
 from service.stations.ingest.keeping import told_place
-from service.stations.overview import features_of, latest_page
+from service.stations.ask.overview import features_of, latest_page
 from service.stations.times import rfc3339
 from service.store.interface import Document
 
@@ -22,9 +22,18 @@ MOST = 1000
 
 router = APIRouter(prefix="/v1", tags=["stations"])
 
+_REST = {"revision": 17, "units": {"water_content": "m3/m3"}, "advisories": []}
+
+
+def _shown(media_type: str, example: Any) -> dict[int | str, dict[str, Any]]:
+    return {200: {"content": {media_type: {"schema": {"type": "object"}, "example": example}}}}
+
 
 @router.get("/latest", summary="The last values of all stations", response_class=Response,
-            openapi_extra=described(("shape",)))  # fmt: skip
+            openapi_extra=described(("shape",)), responses=_shown(JSON, {
+                "latest": [{"station": "north-1", "time": "2026-05-04T06:00:00Z",
+                            "probe": "rod-1", "depth": 0.2, "water_content": 0.315,
+                            "age_seconds": 41.0, "flags": []}], **_REST}))  # fmt: skip
 async def get_latest(request: Request) -> Response:
     """One row for each series of each station: its last reading, estimated, and its age."""
     media_type = choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
@@ -40,7 +49,9 @@ async def get_latest(request: Request) -> Response:
     return await anyio.to_thread.run_sync(work)
 
 
-@router.get("/stations.geojson", summary="Stations on a map", response_class=Response)
+@router.get("/stations.geojson", summary="Stations on a map", response_class=Response,
+            responses=_shown(GEOJSON, {"type": "FeatureCollection", "features": [], **_REST})
+            )  # fmt: skip
 async def get_stations_geojson(request: Request) -> Response:
     """A point for each station (RFC 7946), with the last values of each depth."""
     choose(request.headers.get("accept"), None, {"geojson": GEOJSON, "json": JSON})
@@ -82,7 +93,7 @@ async def get_conflicts(request: Request, name: Name) -> Response:
 
 
 @router.get("/changes", summary="Who changed what", response_class=Response,
-            openapi_extra={"parameters": [{
+            responses=_shown(JSON, {"changes": []}), openapi_extra={"parameters": [{
                 "name": "after", "in": "query", "required": False,
                 "description": "the last revision that is known already",
                 "schema": {"type": "integer", "minimum": 0}}]})  # fmt: skip

@@ -8,9 +8,9 @@ from fastapi import Request, Response
 
 from service.negotiate import VARY, choose
 from service.routes.etag import matches
-from service.stations.answers import OFFERED, encoded
-from service.stations.asked import Asked
-from service.stations.questions import Page, Scene, scene_of, tag_of
+from service.stations.ask.answers import OFFERED, encoded
+from service.stations.ask.asked import Asked
+from service.stations.ask.questions import Page, Scene, scene_of, tag_of
 
 
 async def answered(

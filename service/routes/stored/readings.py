@@ -17,7 +17,7 @@ from service.negotiate import VARY, choose
 from service.routes.stored.documents import Name, absent
 from service.routes.stored.paging import answered
 from service.schemas.batch_query import document_of
-from service.stations.asked import asked_of, now
+from service.stations.ask.asked import asked_of, now
 from service.stations.documents import Documents, Shelf
 from service.stations.ingest.arrival import Rules
 from service.stations.ingest.json_rows import check_rows, taken_apart
@@ -25,7 +25,7 @@ from service.stations.ingest.keeping import Tally, keep
 from service.stations.ingest.senml import MEDIA_TYPE as SENML
 from service.stations.ingest.senml import resolved
 from service.stations.ingest.tables import TableReader
-from service.stations.questions import readings_page
+from service.stations.ask.questions import readings_page
 
 JSON = "application/json"
 OFFERED: Mapping[str, str] = {"json": JSON}

@@ -77,6 +77,12 @@ def test_impossible_draws_are_counted_and_said(server):
     assert row["water_content_lower"] >= 0.0
 
 
+def test_draws_say_what_they_are_not_made_of(server):
+    salty = [{"apparent_permittivity": 17.2, "temperature": 14.1, "bulk_conductivity": 0.6}]
+    answer = answered(server, propagation=drawn(1000), readings=salty)
+    assert "draws-of-water-content" in {said["code"] for said in answer["advisories"]}
+
+
 def test_more_draws_than_one_request_may_have_are_refused_before_they_are_made(server):
     many = {"apparent_permittivity": [17.2] * 2000, "temperature": [14.1] * 2000}
     answer = ask(server, readings=many, propagation=drawn(1_000_000))

@@ -5,10 +5,9 @@ import logging
 import pytest
 
 from service.errors import PROBLEMS, Unprocessable, as_problem
-from service.schemas.problem import MOST_FAULTS
-from service.schemas.problem import MOST_FAULTS
 from service.faults import Fault
 from service.formats.errors import CellError, FormatError, HeaderError, RecordTooLong
+from service.schemas.problem import MOST_FAULTS
 
 
 def assert_problem(answer, status):

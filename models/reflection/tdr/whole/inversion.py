@@ -59,6 +59,16 @@ class Inversion:
         full[before : before + slopes.size] = slopes
         return value, _width(full, self.covariance), _width(full, self.shared)
 
+    def permittivity(self, frequency: float, layer: int = 0) -> tuple[complex, float, float]:
+        """Permittivity of a layer at a frequency, Hz; the u of its real part and of its loss."""
+        medium = self.layers.media[layer]
+        before = sum(len(above.names) for above in self.layers.media[:layer])
+        s = np.array([2j * np.pi * frequency])
+        slopes = np.zeros(self.covariance.shape[0], dtype=np.complex128)
+        slopes[before : before + len(medium.names)] = medium.derivatives(s)[:, 0]
+        widths = (_width(slopes.real, self.covariance), _width(slopes.imag, self.covariance))
+        return complex(medium.permittivity(s)[0]), *widths
+
     def relative(self, place: int) -> tuple[float, float]:
         """Relative standard uncertainty of one of the numbers, and the shared part."""
         unit = np.zeros(self.covariance.shape[0])
@@ -218,9 +228,8 @@ def _told(
     chi_square = _chi_square(fit)
     own = fit.covariance(weights)
     _, slopes = trace.explained(_at(known, fit.values[0]), layers)
-    kept = [k for k in range(len(SYSTEM)) if SYSTEM[k] != "delay"]
-    gain = own @ fit.jacobian.T @ slopes[:, kept]
-    shared = gain @ known.covariance[np.ix_(kept, kept)] @ gain.T
+    gain = own @ fit.jacobian.T @ slopes[:, : len(SYSTEM)]
+    shared = gain @ known.covariance @ gain.T
     total = own * max(chi_square, 1.0) + shared
     full, full_shared = (np.zeros((free.size, free.size)) for _ in range(2))
     places = np.ix_(np.flatnonzero(free), np.flatnonzero(free))

@@ -15,10 +15,10 @@ from service.errors import Unprocessable
 from service.faults import Fault
 from service.schemas.estimates import ESTIMATED
 from service.series_edges import EVERY, bin_edges, zone_of
-from service.stations.answers import frame_of, numbers, slugs
-from service.stations.asked import Asked, cursor_of
-from service.stations.estimating import Estimated, Stored, estimated, stored
-from service.stations.questions import Page, Scene, rest_of
+from service.stations.ask.answers import frame_of, numbers, slugs
+from service.stations.ask.asked import Asked, cursor_of
+from service.stations.ask.estimating import Estimated, Stored, estimated, stored
+from service.stations.ask.questions import Page, Scene, rest_of
 from service.stations.times import SECOND, text_of
 from service.store.interface import Span
 

@@ -144,7 +144,7 @@ def _series(
 ) -> Iterator[tuple[Channel, list[Installation], Places]]:
     """Each channel with its installations and the places of its rows."""
     numbers, firsts = np.unique(rows.number, return_index=True)
-    ends = np.append(firsts[1:], len(rows))
+    ends = np.append(firsts[1:], len(rows))[: len(firsts)]
     for number, first, end in zip(numbers.tolist(), firsts.tolist(), ends.tolist(), strict=True):
         channel = rows.channels[number]
         station = documents.station(channel.station)

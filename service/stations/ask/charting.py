@@ -11,10 +11,10 @@ from service.faults import Fault, hint
 from service.page.chart import Line, Panel, lines_by_depth, time_chart
 from service.schemas.estimates import ESTIMATED
 from service.series_edges import zone_of
-from service.stations.asked import Asked, now
-from service.stations.estimating import Estimated, Stored, estimated, stored
-from service.stations.questions import Scene
-from service.stations.resampled import GAP_STEPS, MOST_READINGS
+from service.stations.ask.asked import Asked, now
+from service.stations.ask.estimating import Estimated, Stored, estimated, stored
+from service.stations.ask.questions import Scene
+from service.stations.ask.resampled import GAP_STEPS, MOST_READINGS
 from service.stations.times import SECOND
 from service.store.interface import Span
 

@@ -15,10 +15,10 @@ from service.errors import Unprocessable
 from service.faults import Fault, hint
 from service.routes.stored.documents import absent, revision_of
 from service.schemas.echo import units_of_answer
-from service.stations.answers import frame_of, numbers, slugs
-from service.stations.asked import Asked, cursor_of, now
+from service.stations.ask.answers import frame_of, numbers, slugs
+from service.stations.ask.asked import Asked, cursor_of, now
 from service.stations.documents import Documents, Shelf
-from service.stations.estimating import Estimated, Stored, estimated, stored
+from service.stations.ask.estimating import Estimated, Stored, estimated, stored
 from service.stations.station import Station
 from service.stations.times import text_of
 from service.store.append import unpacked

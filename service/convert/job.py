@@ -1,0 +1,123 @@
+"""One file on its way to its answer: what has to be known for it, in whatever process."""
+
+import hashlib
+import json
+import sys
+from collections.abc import Callable, Iterator
+from concurrent.futures import Executor
+from contextlib import contextmanager, suppress
+from dataclasses import asdict, dataclass
+from pathlib import Path
+from typing import IO
+
+from models.errors import ModelError
+from service.batch import Conversion, Counts, convert_file
+from service.batch_estimates import APPENDED, TableEstimates
+from service.errors import Problem
+from service.formats import FORMATS
+from service.formats.errors import FormatError, SpoolFull
+from service.schemas.batch_query import document_of
+from service.schemas.query import settings_of
+
+
+class Refused(Exception):
+    """A file or an option the caller can mend."""
+
+
+@dataclass(frozen=True, slots=True)
+class Wish:
+    """How tables are to be answered: the same for all files of a command."""
+
+    pairs: tuple[tuple[str, str], ...]
+    """As in the query of POST /v1/estimates."""
+    strict: bool = False
+    columns: tuple[str, ...] | None = None
+
+    def digest(self) -> str:
+        """The same for the same wishes."""
+        text = json.dumps(asdict(self), sort_keys=True)
+        return hashlib.sha256(text.encode()).hexdigest()[:16]
+
+
+@dataclass(frozen=True, slots=True)
+class Job:
+    """One table and where its answer goes; None: standard input or output."""
+
+    source: Path | None
+    target: Path | None
+    read: str
+    written: str
+    """Formats by their short names."""
+
+    @property
+    def size(self) -> int:
+        """Bytes to be read; 0 where that is not known."""
+        return 0 if self.source is None else self.source.stat().st_size
+
+
+@dataclass(frozen=True, slots=True)
+class Outcome:
+    """What became of a file."""
+
+    counts: Counts
+    advice: tuple[str, ...]
+
+
+def run(
+    job: Job,
+    wish: Wish,
+    progress: Callable[[int], object] = lambda _: None,
+    beside: Executor | None = None,
+) -> Outcome:
+    """Answer one table. Raises Refused.
+
+    progress: called with the number of bytes that were read, after each piece.
+    beside: where estimates are made while another part of the table is read and written.
+    """
+    try:
+        estimates = TableEstimates(settings_of(document_of(wish.pairs)))
+        conversion = Conversion(
+            FORMATS[job.read].decoder(APPENDED),
+            FORMATS[job.written].encoder(),
+            estimates,
+            strict=wish.strict,
+            columns=wish.columns,
+            beside=beside,
+        )
+        with _opened(job.source) as source, _complete_or_absent(job.target) as target:
+            counts = convert_file(source, target, conversion, progress)
+    except Problem as problem:
+        faults = "".join(f"\n  {fault.pointer}: {fault.detail}" for fault in problem.errors)
+        raise Refused(f"{problem.detail}{faults}") from None
+    except (FormatError, ModelError, SpoolFull) as error:
+        raise Refused(str(error)) from None
+    advice = tuple(f"{said.code}: {said.text}" for said in estimates.advice)
+    return Outcome(counts, advice)
+
+
+@contextmanager
+def _opened(path: Path | None) -> Iterator[IO[bytes]]:
+    if path is None:
+        yield sys.stdin.buffer
+        return
+    with path.open("rb") as file:
+        yield file
+
+
+@contextmanager
+def _complete_or_absent(path: Path | None) -> Iterator[IO[bytes]]:
+    """A file beside the one that is meant, renamed once it is complete."""
+    if path is None:
+        yield sys.stdout.buffer
+        sys.stdout.buffer.flush()
+        return
+    path.parent.mkdir(parents=True, exist_ok=True)
+    beside = path.with_name(f"{path.name}.part")
+    try:
+        with beside.open("wb") as file:
+            yield file
+        beside.replace(path)
+    except BaseException:
+        with suppress(FileNotFoundError):
+            beside.unlink()
+        raise

@@ -1,0 +1,91 @@
+"""POST /v1/reflections and POST /v1/scattering: sweeps in, permittivity over frequency out."""
+
+from collections.abc import Callable, Mapping
+from typing import Any
+
+import anyio.to_thread
+import orjson
+from fastapi import APIRouter, Request
+from fastapi.responses import Response
+from pydantic import TypeAdapter
+
+from models.reflection.line.estimate import estimate_line
+from models.reflection.tip.estimate import estimate_permittivity
+from service.errors import Malformed, Unprocessable, UnsupportedMediaType
+from service.faults import Fault
+from service.negotiate import VARY, choose
+from service.sweeps.answer import line_answer, tip_answer
+from service.sweeps.bodies import REFLECTIONS, ReflectionsBody, request_schema
+from service.sweeps.question import body_of, line_question, tip_question
+
+router = APIRouter(tags=["records"])
+
+JSON = "application/json"
+OFFERED: Mapping[str, str] = {"json": JSON}
+
+
+def description_of(adapter: TypeAdapter[Any], sent: str, answered: str) -> dict[str, Any]:
+    """How OpenAPI describes a route that takes and answers JSON."""
+    return {
+        "requestBody": {
+            "required": True,
+            "description": sent,
+            "content": {JSON: {"schema": request_schema(adapter)}},
+        },
+        "responses": {
+            "200": {"description": answered, "content": {JSON: {"schema": {"type": "object"}}}}
+        },
+    }
+
+
+DESCRIPTION = description_of(
+    REFLECTIONS,
+    "Sweeps of one port as complex numbers or Touchstone text, all at the same frequencies. "
+    "Sweeps of the other time convention are conjugated once, with an advisory that says so.",
+    "The spectrum with standard uncertainties: `_u` all of it, `_u_shared` what repeating the "
+    "sweep does not lessen (standards, lengths); flags of each frequency; every check of practice "
+    "with its number and limit. `departure` of a standard: how far it reads from what it is "
+    "taken for when the others are taken at their word.",
+)
+
+
+@router.post("/v1/reflections", summary="Permittivity from reflections of one port",
+             openapi_extra=DESCRIPTION)  # fmt: skip
+async def post_reflections(request: Request) -> Response:
+    """Permittivity spectrum of a sample before a coaxial tip, in a filled line or in a cell."""
+    return await answered(request, _answer)
+
+
+async def answered(
+    request: Request, answer: Callable[[dict[str, Any]], dict[str, Any]]
+) -> Response:
+    """Answer a JSON request with JSON, worked out beside the event loop."""
+    media_type = request.headers.get("content-type", "").partition(";")[0].strip().lower()
+    if media_type != JSON:
+        raise UnsupportedMediaType(
+            f"expected a Content-Type of {JSON}, found {media_type[:80] or 'none'}; Touchstone "
+            "text stands in the JSON, as touchstone",
+            headers={"Accept": JSON},
+        )
+    choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
+    document = _parsed(await request.body())
+    told = await anyio.to_thread.run_sync(answer, document)
+    body = orjson.dumps(told, option=orjson.OPT_SERIALIZE_NUMPY)
+    return Response(body, media_type=JSON, headers=VARY)
+
+
+def _parsed(body: bytes) -> dict[str, Any]:
+    try:
+        document = orjson.loads(body)
+    except orjson.JSONDecodeError as error:
+        raise Malformed(f"the body is not JSON: {error}") from None
+    if not isinstance(document, dict):
+        raise Unprocessable("expected an object", [Fault("expected an object", "#")])
+    return document
+
+
+def _answer(document: dict[str, Any]) -> dict[str, Any]:
+    body: ReflectionsBody = body_of(document, REFLECTIONS)
+    if body.kind == "tip":
+        return tip_answer(body, estimate_permittivity(tip_question(body)))
+    return line_answer(body, estimate_line(line_question(body)))

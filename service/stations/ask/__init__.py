@@ -1,0 +1,1 @@
+"""Questions about what is kept: taken apart, worked out, laid out as tables and charts."""

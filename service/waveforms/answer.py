@@ -1,0 +1,163 @@
+"""What an answer to POST /v1/waveforms tells: rows, what they were read from, the probe as used."""
+
+from collections.abc import Mapping, Sequence
+from types import MappingProxyType
+from typing import Any
+
+import numpy as np
+
+from models.advisories import Advice, advise
+from models.conversion import Units, from_si
+from models.flags import slugs_of
+from models.quantity import QUANTITIES
+from models.reflection.tdr.bench import Bench, circuit
+from models.reflection.tdr.calibration import SUSPECT_LENGTH
+from models.reflection.tdr.probe import System
+from models.relation import Array
+from models.uncertainty.coverage import coverage_factor
+from service.waveforms.bodies import WaveformBody
+from service.waveforms.measuring import Answered
+
+FIGURE_UNITS: Mapping[str, str] = MappingProxyType({
+    "start_by_tangents": "ns", "start_by_steepest_slope": "ns", "end_by_tangents": "ns",
+    "end_by_steepest_slope": "ns", "permittivity_by_tangents": "1",
+    "permittivity_by_steepest_slope": "1", "rise_time": "ns", "signal_to_noise": "1",
+    "smoothing": "ns", "noise": "1", "late_level": "1", "late_level_u": "1",
+    "late_level_from": "ns", "reduced_chi_square": "1",
+})  # fmt: skip
+"""Of what the numbers were read from."""
+BANDED = ("apparent_permittivity", "bulk_conductivity")
+FLOORS: Mapping[str, float] = MappingProxyType(
+    {"apparent_permittivity": 1.0, "bulk_conductivity": 0.0}
+)
+"""No medium has less: bands end there."""
+SCALES: Mapping[str, float] = MappingProxyType({"ns": 1e9, "1": 1.0})
+
+
+def rows_of(
+    found: Answered, bodies: Sequence[WaveformBody], units: Units, probability: float
+) -> list[dict[str, Any]]:
+    """One object per waveform, null where there is no number."""
+    columns = banded(found.columns, probability)
+    told = {name: _plain(from_si(name, values, units)) for name, values in columns.items()}
+    seen = {
+        name: _plain(values * SCALES[FIGURE_UNITS[name]]) for name, values in found.figures.items()
+    }
+    rows: list[dict[str, Any]] = []
+    for place, body in enumerate(bodies):
+        row: dict[str, Any] = {
+            name: value for name in ("time", "depth") if (value := getattr(body, name)) is not None
+        }
+        row |= {name: values[place] for name, values in told.items()}
+        row["read_from"] = {name: values[place] for name, values in seen.items()}
+        if place in found.details:
+            row["whole_trace"] = _detail(found.details[place], units)
+        row["flags"] = list(slugs_of(int(found.flags[place])))
+        rows.append(row)
+    return rows
+
+
+def banded(columns: Mapping[str, Array], probability: float) -> dict[str, Array]:
+    """The columns, and the ends of the coverage interval after each quantity that has a band."""
+    k = coverage_factor(probability)
+    full: dict[str, Array] = {}
+    for name, values in columns.items():
+        full[name] = values
+        stem = name.removesuffix("_u_shared")
+        if stem != name and stem in BANDED:
+            value, u = columns[stem], columns[f"{stem}_u"]
+            full[f"{stem}_lower"] = np.maximum(value - k * u, np.minimum(value, FLOORS[stem]))
+            full[f"{stem}_upper"] = value + k * u
+    return full
+
+
+def _plain(values: Array) -> list[float | None]:
+    """As JSON has it: null for NaN and what is not finite."""
+    return [value if np.isfinite(value) else None for value in values.tolist()]
+
+
+def _detail(detail: Mapping[str, Any], units: Units) -> dict[str, Any]:
+    """Sections, parameters and covariance of one inversion."""
+    sections = []
+    for section in detail["sections"]:
+        shown = dict(section)
+        for name in ("bulk_conductivity",):
+            shown[name] = float(from_si(name, section[name], units))
+        shown["relaxation_strengths"] = list(section["relaxation_strengths"])
+        shown["relaxation_times"] = [1e9 * time for time in section["relaxation_times"]]
+        sections.append(shown)
+    return {
+        "sections": sections,
+        "parameters": list(detail["parameters"]),
+        "values": np.asarray(detail["values"]).tolist(),
+        "covariance": np.asarray(detail["covariance"]).tolist(),
+        "converged": bool(detail["converged"]),
+    }
+
+
+def probe_echo(found: Answered, units: Units) -> dict[str, Any]:
+    """The probe as it was used, calibrated values included."""
+    bench = found.bench
+    echo: dict[str, Any] = {"probe_length": float(from_si("probe_length", bench.length, units))}
+    if bench.timing is not None:
+        tangent, steepest = bench.timing.effective_length
+        offset = bench.timing.offset
+        echo |= {
+            "effective_length": 0.5 * (tangent + steepest),
+            "effective_length_u": 0.5 * abs(tangent - steepest),
+            "probe_offset": 0.25 * 299792458.0 * (offset[0] + offset[1]),
+            "probe_offset_u": 0.25 * 299792458.0 * abs(offset[0] - offset[1]),
+        }
+    begin = float(np.nanmax(found.figures["late_level_from"]))
+    between = circuit(bench, begin, found.system)
+    if between is not None:
+        for name, known in (("probe_constant", between.constant),
+                            ("series_resistance", between.series_resistance),
+                            ("open_level", between.open_level)):  # fmt: skip
+            echo |= {name: known.value, f"{name}_u": known.standard_uncertainty}
+    if found.system is not None:
+        echo["line"] = _line(found.system.system)
+        chi_square = found.system.reduced_chi_square
+        echo["line"]["reduced_chi_square"] = chi_square if np.isfinite(chi_square) else None
+    return echo
+
+
+def _line(system: System) -> dict[str, Any]:
+    """The line that calibration traces tell, s and ohm as ns and Ohm."""
+    return {
+        "rise_time": 1e9 * system.rise_time,
+        "cable_impedance": system.cable.impedance,
+        "cable_delay": 1e9 * system.cable.delay,
+        "cable_resistance": system.cable.resistance,
+        "cable_skin_resistance": system.cable.skin_resistance,
+        "head_impedance": system.head.impedance,
+        "head_delay": 1e9 * system.head.delay,
+        "probe_impedance": system.rods.impedance,
+        "probe_length": system.rods.length,
+    }
+
+
+def advice_of(bench: Bench, found: Answered) -> list[Advice]:
+    """What the caller should know of how the probe was described."""
+    said: list[Advice] = []
+    if bench.timing is None or bench.calibration.air is None or bench.calibration.water is None:
+        said.append(advise("probe-not-calibrated"))
+    else:
+        length = sum(bench.timing.effective_length) / 2
+        if abs(length / bench.length - 1) > SUSPECT_LENGTH:
+            said.append(advise("effective-length", length=f"{length:.4g}",
+                               own=f"{bench.length:.4g}"))  # fmt: skip
+    if bench.calibration.short is None and bench.probe.series_resistance is None:
+        said.append(advise("series-resistance-assumed"))
+    if np.isnan(found.columns["bulk_conductivity"]).all():
+        said.append(advise("probe-constant-missing"))
+    return said
+
+
+def units_of(
+    columns: Mapping[str, Array], figures: Mapping[str, Array], units: Units
+) -> dict[str, str]:
+    """The unit of every number of the rows."""
+    stems = {name.removesuffix("_u_shared").removesuffix("_u") for name in columns}
+    told = {name: units.get(name, QUANTITIES[name].unit) for name in QUANTITIES if name in stems}
+    return {**told, **{name: FIGURE_UNITS[name] for name in figures}}

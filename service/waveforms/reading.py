@@ -1,0 +1,48 @@
+"""Waveforms as the raw records of readings: what an estimate takes from them."""
+
+from collections.abc import Mapping
+from typing import Any
+
+import numpy as np
+
+from models.conversion import Units
+from models.flags import Flags
+from models.relation import Array
+from service.errors import Unprocessable
+from service.faults import Fault, pointer
+from service.waveforms.answer import advice_of, probe_echo
+from service.waveforms.bodies import SETTINGS, WAVEFORM
+from service.waveforms.measuring import measured, refuse_many
+from service.waveforms.question import Place, bench_of, checked, groups_of
+
+TAKEN = ("apparent_permittivity", "apparent_permittivity_u", "bulk_conductivity",
+         "bulk_conductivity_u", "frequency", "frequency_u")  # fmt: skip
+
+
+def columns_of_waveforms(
+    records: Mapping[int, Any], count: int, where: Mapping[int, Place], settings: Any, units: Units
+) -> tuple[Mapping[str, Array], Flags, Mapping[str, Any]]:
+    """Columns in SI, flags, and the probe as it was used.
+
+    records: parsed JSON by row. where: the steps to each in the request. settings: parsed JSON.
+    Raises ModelError or Unprocessable with the place of what cannot be used.
+    """
+    place: Place = ("raw_records", "waveform")
+    if settings is None:
+        detail = "a waveform needs its probe: give raw_records.waveform.probe in the request"
+        raise Unprocessable(detail, [Fault(detail, pointer(place))])
+    asked = checked(SETTINGS, settings, place)
+    refuse_many(len(records), asked, "#/readings")
+    bodies = {row: checked(WAVEFORM, record, where[row]) for row, record in records.items()}
+    groups = groups_of(bodies, where)
+    bench = bench_of(asked, units, place)
+    found = measured(groups, count, asked, bench)
+    columns = {name: found.columns[name] for name in TAKEN if name in found.columns}
+    if np.isnan(columns["bulk_conductivity"]).all():
+        columns = {name: values for name, values in columns.items() if "bulk" not in name}
+    echo = {
+        "method": asked.method,
+        "probe": probe_echo(found, units),
+        "advisories": [{"code": said.code, "text": said.text} for said in advice_of(bench, found)],
+    }
+    return columns, found.flags, echo
