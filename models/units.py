@@ -4,6 +4,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from types import MappingProxyType
 
+import numpy as np
 from numpy.typing import ArrayLike
 
 from models.relation import Array, column
@@ -20,7 +21,8 @@ class Unit:
 
     def to_si(self, values: ArrayLike) -> Array:
         """Values of this unit in SI."""
-        return column(values) * self.scale + self.offset
+        with np.errstate(over="ignore"):  # what becomes infinite is outside every gate
+            return column(values) * self.scale + self.offset
 
     def from_si(self, values: ArrayLike) -> Array:
         """SI values in this unit."""
@@ -28,7 +30,8 @@ class Unit:
 
     def width_to_si(self, values: ArrayLike) -> Array:
         """Differences and uncertainties: the scale without the offset."""
-        return column(values) * self.scale
+        with np.errstate(over="ignore"):
+            return column(values) * self.scale
 
     def width_from_si(self, values: ArrayLike) -> Array:
         """Differences and uncertainties: the scale without the offset."""

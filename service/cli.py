@@ -62,8 +62,10 @@ def serve(**given: str | None) -> None:
         settings = read_settings(**{name: text for name, text in given.items() if text is not None})
         keys_of(settings)
         open_store(settings).close()
-    except (SettingsError, KeyFileError, StoreError) as error:
+    except (SettingsError, KeyFileError) as error:
         raise click.ClickException(str(error)) from None
+    except StoreError as error:
+        raise click.ClickException(error.told()) from None
     os.environ.update(settings.as_environment())  # what each server process reads
     config = uvicorn.Config(
         "service.app:create_app",

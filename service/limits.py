@@ -14,7 +14,10 @@ from service.settings import Settings
 
 BATCH_PATHS = ("/v1/estimates", "/v1/stations/")
 """Paths that take a table of any length as their body."""
+RECORD_PATHS = ("/v1/waveforms", "/v1/reflections", "/v1/scattering", "/v1/spectra")
+"""Paths that take raw records: longer documents than readings make."""
 JSON = "JSON"
+RECORDS = "JSON records"
 JSON_SUFFIXES = ("/json", "+json")
 
 PIECE = 64 * 1024
@@ -41,6 +44,8 @@ def limit_of(path: str, media_type: str, settings: Settings) -> BodyLimit:
     kind = media_type.partition(";")[0].strip().lower()
     if path.startswith(BATCH_PATHS) and kind and not kind.endswith(JSON_SUFFIXES):
         return BodyLimit(settings.wire_body_bytes, settings.batch_body_bytes, kind)
+    if path.startswith(RECORD_PATHS):
+        return BodyLimit(settings.record_body_bytes, settings.record_body_bytes, RECORDS)
     return BodyLimit(settings.json_body_bytes, settings.json_body_bytes, JSON)
 
 

@@ -52,6 +52,9 @@ class Settings(BaseSettings):
         default="text", description="how log lines are written"
     )
     json_body_bytes: int = Field(default=4 * MIB, ge=1024, description="largest JSON body")
+    record_body_bytes: int = Field(
+        default=64 * MIB, ge=1024, description="largest JSON body of raw records"
+    )
     json_readings: int = Field(default=20_000, ge=1, description="most readings in a JSON body")
     batch_body_bytes: int = Field(
         default=4096 * MIB, ge=1024, description="largest table, after decompression"
@@ -116,7 +119,8 @@ class Settings(BaseSettings):
 
 
 LIMITS = (
-    "json_body_bytes", "json_readings", "drawn_values", "batch_body_bytes", "wire_body_bytes",
+    "json_body_bytes", "record_body_bytes", "json_readings", "drawn_values", "batch_body_bytes",
+    "wire_body_bytes",
     "batch_rows", "answer_bytes", "header_bytes", "line_bytes", "body_stall_seconds",
     "request_seconds", "queued_batches", "connections", "requests_per_minute", "future_seconds",
     "page_rows",

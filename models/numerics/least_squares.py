@@ -56,7 +56,10 @@ def least_squares(model: Model, start: Array, expected: Array, known: Array) -> 
         damped = normal.copy()
         damped.flat[:: values.size + 1] *= 1 + damping
         damped.flat[:: values.size + 1] += 1e-12 * np.max(np.diagonal(normal))
-        step = np.linalg.solve(damped, slope)
+        try:
+            step = np.linalg.solve(damped, slope)
+        except np.linalg.LinAlgError:
+            break  # nothing moves the residuals: here is as good as anywhere
         there = values - np.clip(step, -1.0, 1.0)
         new_residuals, new_jacobian = model(there)
         new_cost = _cost(new_residuals, there, expected, known)

@@ -12,7 +12,7 @@ import numpy as np
 
 from models.relation import Array
 from models.spectrum.fit import Fit, fit
-from models.spectrum.form import Form, evaluate
+from models.spectrum.form import Form, evaluate, material
 from models.spectrum.spectrum import Spectrum
 from models.spectrum.weights import MAGNITUDE, likeliest_noise
 
@@ -27,6 +27,9 @@ NEAR = 12.0
 """Difference up to which variants of a form are tried."""
 ELECTRODES_BELOW = 20e6
 """Hz, above which polarised electrodes are not looked for unasked."""
+NO_ELECTRODE = 0.05
+"""Share of the permittivity at the upper end of the band from which a form's electrodes are none:
+what hinders there is a lead, or a relaxation."""
 POINTS = 160
 """Of a longer spectrum, as many as a choice is made with; the fit itself takes them all."""
 RICHEST = ("cole-cole", "debye", "debye")
@@ -69,7 +72,8 @@ def choose(
             [Form(f.form.terms, conduction=False, electrode=bare[1]) for f in _near(tried)],
         )
     if electrode is None and few.frequency.min() < ELECTRODES_BELOW:
-        tried += _fitted(few, noise, _behind_electrodes(tried))
+        hindered = _fitted(few, noise, _behind_electrodes(tried))
+        tried += [one for one in hindered if at_top(one) < NO_ELECTRODE]
     if not tried:
         tried = [fit(Form((), *bare), few, noise)]
     chosen = _simplest(tried)
@@ -103,6 +107,13 @@ def _behind_electrodes(tried: Sequence[Fit]) -> list[Form]:
     forms = [Form((kind,), electrode=True) for kind in ("debye", "cole-cole")]
     forms += [Form(one.form.terms, one.form.conduction, electrode=True) for one in best]
     return list(dict.fromkeys(forms))
+
+
+def at_top(fit: Fit) -> float:
+    """Share of the permittivity that a form's electrodes change at the upper end of the band."""
+    top = np.array([fit.spectrum.frequency.max()])
+    behind = evaluate(*material(fit.form, fit.vector), top)[0]
+    return float(np.abs(evaluate(fit.form, fit.vector, top)[0] / behind - 1)[0])
 
 
 def _near(tried: Sequence[Fit]) -> list[Fit]:
@@ -139,3 +150,42 @@ def left_open(choice: Choice, frequency: Array) -> tuple[Array, Array]:
             real += other.weight * np.square(off.real)
             loss += other.weight * np.square(off.imag)
     return real, loss
+
+
+def disagreement(choice: Choice, name: str) -> float:
+    """Variance of what all forms have in common that the choice among them leaves.
+
+    name: infinite_permittivity, static_permittivity or bulk_conductivity.
+
+    Forms that put more terms outside the band than the chosen one do not count: what they say of
+    these is made up by terms that nothing there speaks for.
+    """
+    own, astray = common(choice.fit)[name], outside(choice.fit)
+    return sum(
+        other.weight * (common(other.fit)[name] - own) ** 2
+        for other in choice.alternatives
+        if other.difference <= NEAR and outside(other.fit) <= astray
+    )
+
+
+def common(fit: Fit) -> dict[str, float]:
+    """What every form tells, SI; no conduction is a conductivity of 0."""
+    slots, values = fit.form.slots, fit.form.values(fit.vector)
+    named = {slot.name: float(value) for slot, value in zip(slots, values, strict=True)}
+    strengths = [float(value) for slot, value in zip(slots, values, strict=True)
+                 if slot.name == "relaxation_strength"]  # fmt: skip
+    infinite = named["infinite_permittivity"]
+    return {
+        "infinite_permittivity": infinite,
+        "static_permittivity": infinite + sum(strengths),
+        "bulk_conductivity": named.get("bulk_conductivity", 0.0),
+    }
+
+
+def outside(fit: Fit) -> int:
+    """How many terms relax outside the band."""
+    f = fit.spectrum.frequency
+    times = np.array([value for slot, value in zip(fit.form.slots, fit.vector, strict=True)
+                      if slot.name == "relaxation_time"])  # fmt: skip
+    relaxes = 1 / (2 * np.pi * np.exp(times))
+    return int(np.count_nonzero((relaxes < f.min()) | (relaxes > f.max())))

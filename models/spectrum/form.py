@@ -6,7 +6,7 @@ capacitor (m = 0) raises the permittivity seen with 1 / f^2, the series form tha
 steep; w1 is 2 pi 1 MHz.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property
 
 import numpy as np
@@ -70,7 +70,7 @@ class Form:
             slots.append(Slot("bulk_conductivity", 0.0, 1e3))
         if self.electrode:
             slots += [Slot("electrode_permittivity", 1e-3, 1e12, logarithmic=True),
-                      Slot("electrode_exponent", 0.0, 0.8)]  # fmt: skip
+                      Slot("electrode_exponent", 0.0, 0.5)]  # fmt: skip
         return tuple(slots)
 
     def bounds(self, lowest: float, highest: float) -> tuple[Array, Array]:
@@ -138,6 +138,12 @@ def evaluate(form: Form, vector: Array, frequency: Array) -> tuple[ComplexArray,
     if form.electrode:
         eps, derivatives = _behind_electrodes(eps, derivatives, w, vector[at:])
     return eps, derivatives.T
+
+
+def material(form: Form, vector: Array) -> tuple[Form, Array]:
+    """The same form without its electrodes, and its vector: what lies behind them."""
+    bare = replace(form, electrode=False)
+    return bare, vector[: len(bare.slots)]
 
 
 def per_conductivity(angular_frequency: Array) -> ComplexArray:

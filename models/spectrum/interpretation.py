@@ -7,9 +7,9 @@ from typing import Any
 import numpy as np
 
 from models.spectrum import flags
-from models.spectrum.choice import Choice, choose, left_open, noise_of
+from models.spectrum.choice import Choice, choose, disagreement, left_open, noise_of
 from models.spectrum.circuits.circuit import Circuit, circuit_of
-from models.spectrum.description import Banded, Curve, curve, parameters
+from models.spectrum.description import Banded, Curve, curve, factor_of, parameters, restricted
 from models.spectrum.fit import Fit, fit
 from models.spectrum.flags import Finding
 from models.spectrum.form import Form, evaluate
@@ -19,6 +19,7 @@ from models.spectrum.water.band import Soil, Told, told_by
 from models.spectrum.water.inversion import AT_BEST, POINTS, Band, invert, salty_water
 from models.spectrum.water.soil import Scene
 from models.spectrum.weights import MAGNITUDE, stated_noise, unit_noise
+from models.uncertainty.coverage import coverage_factor
 
 WORSE, NEGLIGIBLE = 2.0, 1e-3
 """Residuals of a soil over those of the relaxation terms that are a misfit, and relative ones that
@@ -81,7 +82,7 @@ def interpret(spectrum: Spectrum, question: Question) -> Interpretation:
         findings += _of_soil(soil, choice, question.soil)
     return Interpretation(
         choice=choice,
-        parameters=parameters(best, question.probability),
+        parameters=whole_parameters(choice, question.probability),
         curve=whole_curve(choice, question.probability),
         circuit=circuit_of(best.form, best.form.values(best.vector), question.cell),
         soil=soil,
@@ -94,6 +95,24 @@ def fitted(spectrum: Spectrum, question: Question) -> Choice:
     if question.form is None:
         return choose(spectrum, conduction=question.conduction, electrode=question.electrode)
     return Choice(fit(question.form, spectrum, noise_of(spectrum, question.form)), ())
+
+
+COMMON = ("infinite_permittivity", "static_permittivity", "bulk_conductivity")
+
+
+def whole_parameters(choice: Choice, probability: float) -> tuple[Banded, ...]:
+    """Every parameter; those that all forms have with what the choice of the form leaves open."""
+    factor = factor_of(choice.fit, probability) / coverage_factor(probability)
+    found = []
+    for one in parameters(choice.fit, probability):
+        if one.name in COMMON and choice.alternatives:
+            u = float(np.hypot(one.standard_uncertainty, np.sqrt(disagreement(choice, one.name))))
+            low = 0.0 if one.name == "bulk_conductivity" else 1.0
+            lower, upper = restricted(one.value, u * factor, low, np.inf, probability)
+            found.append(Banded(one.name, one.value, u, lower, upper))
+        else:
+            found.append(one)
+    return tuple(found)
 
 
 def whole_curve(choice: Choice, probability: float) -> Curve:

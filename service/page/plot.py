@@ -95,7 +95,8 @@ def plot(
     height = bottom + 17.0 * len(said) + 6.0
     drawing = Drawing(WIDTH, height, title=title, description=_described(panels))
     drawing.text(LEFT, 30, shortened(title, 70), font_size=19, font_weight=600, fill=INK)
-    drawing.text(LEFT, 51, shortened(subtitle, 110), font_size=13, fill=QUIET)
+    if subtitle:
+        drawing.text(LEFT, 51, shortened(subtitle, 110), font_size=13, fill=QUIET)
     for number, place in enumerate(placed):
         _draw(drawing, place, looks, f"panel-{number}")
     _draw_key(drawing, looks, measured, banded=banded)

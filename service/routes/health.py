@@ -33,6 +33,8 @@ def _example(value: dict[str, Any]) -> dict[int | str, dict[str, Any]]:
 
 
 ALIVE, READY = {"status": "alive"}, {"status": "ready"}
+TEXT = MEDIA_TYPE.partition(";")[0]
+NUMBERS = 'gleyline_requests_total{method="GET",route="/livez",status="200"} 3.0\n'
 VERSIONS = versions()
 DEFAULT_LIMITS = limits_of(Settings.model_construct())
 
@@ -56,7 +58,7 @@ async def readyz(request: Request) -> dict[str, str]:
     "/metrics",
     summary="Numbers of this service",
     response_class=Response,
-    responses={200: {"content": {MEDIA_TYPE.partition(";")[0]: {"schema": {"type": "string"}}}}},
+    responses={200: {"content": {TEXT: {"schema": {"type": "string"}, "example": NUMBERS}}}},
 )
 async def show_metrics() -> Response:
     """For Prometheus: requests and their time by route, rows, tables under way, spooled bytes."""

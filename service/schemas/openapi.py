@@ -78,8 +78,9 @@ class Api(FastAPI):
                 "key": {"type": "http", "scheme": "bearer",
                         "description": "a key made by `gleyline key add`"},
             }  # fmt: skip
-            for path, operation in _operations(document):
-                _complete(path, operation)
+            for path, methods in document["paths"].items():
+                for method, operation in methods.items():
+                    _complete(path, method, operation)
             by_id = {operation["operationId"]: operation for _, operation in _operations(document)}
             for owner, name, example in examples():
                 show(by_id[owner], name, example)
@@ -97,17 +98,21 @@ def _operations(document: dict[str, Any]) -> Iterator[tuple[str, dict[str, Any]]
             yield path, operation
 
 
-def _complete(path: str, operation: dict[str, Any]) -> None:
+def _complete(path: str, method: str, operation: dict[str, Any]) -> None:
     """Add the problems an operation can answer with, and whether it asks for a key."""
     slugs = [*EVERYWHERE, *(WITH_BODY if "requestBody" in operation else ())]
     if "{" in path:
         slugs.append("not-found")
+    if operation.get("parameters"):
+        slugs += ["malformed", "unprocessable"]
+    if method in {"put", "delete"}:
+        slugs += ["conflict", "changed-meanwhile", "if-match-needed"]
     if "requestBody" in operation or path.startswith("/v1/"):
         slugs.append("not-acceptable")
     responses = operation["responses"]
     if "application/json" in responses.get("422", {}).get("content", ()):
         del responses["422"]  # FastAPI's own, which is never answered
-    for kind in sorted((PROBLEMS[slug] for slug in slugs), key=lambda kind: kind.status):
+    for kind in sorted({PROBLEMS[slug] for slug in slugs}, key=lambda kind: kind.status):
         content = {MEDIA_TYPE: {"schema": {"$ref": REFERENCE.format(model="Problem")}}}
         responses.setdefault(str(kind.status), {"description": kind.title(), "content": content})
     operation["security"] = [{}, {"key": []}] if path.startswith("/v1/") else []

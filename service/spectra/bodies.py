@@ -103,7 +103,7 @@ class SpectraBody(Body):
         description="In place of a spectrum: the answer is the material behind it, and its "
         "spectrum at the frequencies given beside it.",
     )
-    frequency: Annotated[Numbers, Field(max_length=20_000)] | None = Field(
+    frequency: Annotated[Numbers, Field(max_length=10_000)] | None = Field(
         None, description="at which the spectrum of a circuit is wanted [Hz]"
     )
     geometry: GeometryBody | None = Field(

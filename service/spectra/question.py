@@ -24,8 +24,8 @@ from service.faults import Fault, hint, problems_of
 from service.schemas.query import model_of, soil_of
 from service.spectra.bodies import SPECTRA, ComplexNumbers, SpectraBody, SpectrumBody
 
-MOST_POINTS = 20_000
-"""Of one spectrum; network analysers sweep a tenth of it."""
+MOST_POINTS = 10_000
+"""Of one spectrum; network analysers sweep far fewer."""
 PARTS = (("real", "imaginary"), ("magnitude", "degrees"))
 
 

@@ -47,8 +47,10 @@ def _opened(given: dict[str, Any], *, prepared: bool = True) -> Iterator[SqlStor
             yield opened
         finally:
             opened.close()
-    except (SettingsError, StoreError) as error:
+    except SettingsError as error:
         raise click.ClickException(str(error)) from None
+    except StoreError as error:
+        raise click.ClickException(error.told()) from None
 
 
 @store.command()

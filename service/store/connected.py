@@ -1,5 +1,6 @@
 """A database by its engine: transactions, and tables of the right version."""
 
+import logging
 from abc import ABC, abstractmethod
 from collections.abc import Iterator
 from contextlib import contextmanager
@@ -9,9 +10,10 @@ from sqlalchemy import Connection, Engine, text
 from sqlalchemy.exc import SQLAlchemyError
 
 from service.store import schema
-from service.store.errors import StoreUnavailable
+from service.store.errors import StoreUnavailable, reason_of
 from service.store.interface import Head
 
+log = logging.getLogger("gleyline.store")
 _HEAD = text("SELECT revision, documents FROM store")
 
 
@@ -43,6 +45,7 @@ class Connected(ABC):
             ):
                 yield connection
         except SQLAlchemyError as error:
+            log.error("the store failed: %s", reason_of(error))  # noqa: TRY400 - one line will do
             raise StoreUnavailable(f"the store failed: {type(error).__name__}") from error
 
     def prepare(self) -> None:

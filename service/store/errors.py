@@ -12,6 +12,15 @@ StoreError
 class StoreError(Exception):
     """A store did not do as it was asked."""
 
+    def told(self) -> str:
+        """With what the database said: for whoever runs the service, not for its clients."""
+        return f"{self} ({reason_of(self.__cause__)})" if self.__cause__ else str(self)
+
+
+def reason_of(error: BaseException) -> str:
+    """The first line of what a database driver says."""
+    return str(getattr(error, "orig", None) or error).partition("\n")[0][:300]
+
 
 class StoreUnavailable(StoreError):
     """The database cannot be reached, or failed; nothing of the request was kept."""

@@ -65,7 +65,7 @@ class SqliteStore(SqlStore):
         sql, order = statement
         if order is not None:
             rows = [tuple([row[place] for place in order]) for row in rows]
-        return connection.exec_driver_sql(sql, list(rows)).rowcount
+        return connection.exec_driver_sql(sql, rows).rowcount
 
     def _kept(self, connection: Connection, number: int, times: Sequence[int]) -> list[Row]:
         found = connection.exec_driver_sql(_KEPT, (number, json.dumps(list(times))))

@@ -12,7 +12,7 @@ from collections.abc import Sequence
 from service.store.errors import StoreError, StoreUnavailable
 from service.store.interface import Batch, Outcome, Store
 
-MOST_ROWS = 5_000
+MOST_ROWS = 20_000
 """Readings in one transaction, so that a small post does not wait long behind a large one."""
 MOST_WAITING = 200_000
 """Readings that may wait; more are not taken on."""

@@ -14,6 +14,7 @@ from models.reflection.tip.aperture import MODELS, Geometry, Model
 from models.reflection.tip.calibration import Standard
 from models.reflection.tip.estimate import TipQuery
 from models.reflection.tip.sample import Sample
+from models.relation import Array
 from service.errors import Unprocessable
 from service.faults import hint, problems_of
 from service.sweeps.bodies import ReflectionsBody, SampleBody, StandardBody
@@ -63,20 +64,32 @@ def tip_question(body: ReflectionsBody) -> TipQuery:
         _tip_standard(standard, sweep, axes, geometry, n)
         for n, (standard, sweep) in enumerate(zip(body.standards, sweeps, strict=True))
     )
-    spreads = [sweep.spread for sweep in sweeps]
-    known = [spread for spread in spreads if spread is not None]
-    if known and len(known) < len(spreads):
-        detail = "state reflection_u of this standard too, once for all, or of none"
-        raise refuse(detail, ("standards", spreads.index(None), "reflection_u"))
     return TipQuery(
         frequency=axes.hertz,
         standards=standards,
-        standard_spread=np.stack(known) if known else None,
+        standard_spread=_spreads(sweeps),
         samples=tuple(_tip_sample(*item, geometry) for item in read),
         model=_model(body, geometry, len(standards)),
         geometry=geometry,
         largest_relative_uncertainty=body.largest_relative_uncertainty,
     )
+
+
+def _spreads(sweeps: list[Sweep]) -> Array | None:
+    """Of all standards; None where nothing tells it of any.
+
+    A standard that was read once among others that were repeated is as noisy as one of theirs.
+    """
+    spreads = [sweep.spread for sweep in sweeps]
+    known = [spread for spread in spreads if spread is not None]
+    if not known:
+        return None
+    if len(known) < len(spreads) and any(sweep.stated is not None for sweep in sweeps):
+        detail = "state reflection_u of this standard too, once for all, or of none"
+        raise refuse(detail, ("standards", spreads.index(None), "reflection_u"))
+    single = np.nanmedian([sweep.repeats.scatter for sweep in sweeps])
+    size = known[0].size
+    return np.stack([np.full(size, single) if row is None else row for row in spreads])
 
 
 def line_question(body: ReflectionsBody) -> LineQuery:

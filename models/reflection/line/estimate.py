@@ -72,6 +72,7 @@ class LineEstimate:
     noise_known: bool
 
 
+@np.errstate(all="ignore")
 def estimate_line(query: LineQuery) -> LineEstimate:
     """Permittivity over frequency; permeability too where both ends of a cell show one."""
     reads = [*query.reads.values(), *query.standards.values()]

@@ -1,7 +1,6 @@
 """Traces by inversion of the whole line, one after another, in the form of a measurement."""
 
 from collections.abc import Mapping
-from dataclasses import replace
 
 import numpy as np
 
@@ -17,8 +16,6 @@ from models.reflection.tdr.whole.medium import Medium
 FREQUENCY = 1e9
 """Hz, at which the fitted permittivity is stated unless the caller says another."""
 AIR = Medium(1.0006)
-UNTIMED_U = 1.0
-"""Standard uncertainty of the moment of the step where no calibration tells it, 0.1 ns."""
 
 
 def by_whole_trace(
@@ -81,7 +78,7 @@ def _described(record: Record, bench: Bench) -> Identified:
     if lacking:
         raise ParameterError("probe", lacking)
     arrival, rise = rise_of((record.trace,))
-    return replace(described(guess(bench, arrival, rise), DESCRIBED_U), trigger_u=UNTIMED_U)
+    return described(guess(bench, arrival, rise), DESCRIBED_U)
 
 
 def _row(found: Inversion, frequency: float) -> dict[str, float]:

@@ -16,6 +16,8 @@ SHARPER = 1.12
 """A window of half the width that shows a slope steeper by this was too wide."""
 WIDEST_SHARE = 1 / 24
 """Of a trace, for the widest window that is tried."""
+LEAST = 1e-6
+"""Noise of a point that no record is below: they are rounded to five or six decimals."""
 NORMAL = 0.67448975
 """Median of the absolute value of a standard normal number."""
 
@@ -95,7 +97,7 @@ def noise_of(given: Traces) -> Array:
     level, _, _, _, left = kernels(2 * half + 1)
     rest = np.abs(given.rho - correlate1d(given.rho, level, axis=-1, mode="nearest"))
     found = np.median(rest[:, half:-half], axis=-1) / (NORMAL * left)
-    return np.where(np.isnan(stated), found, stated)
+    return np.where(np.isnan(stated), np.maximum(found, LEAST), stated)
 
 
 def smooth(given: Traces, width: int) -> Smoothed:

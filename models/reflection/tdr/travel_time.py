@@ -161,7 +161,7 @@ def _end(given: Traces, smoothed: Smoothed, timing: Timing, begin: Array, within
         given,
         smoothed,
         rods + 0.5 * smoothed.width,
-        rods + np.maximum(within[0] * unit, smoothed.width),
+        rods + np.maximum(within[0] * unit, 0.75 * smoothed.width),
         rods + within[1] * unit,
     )
 

@@ -16,6 +16,8 @@ CAPACITANCE = 0.02e-12
 STEPS = np.array((1e-6, 1e-8))
 """Of the coefficients h and g at 1 GHz: a hundredth of those of a 3.6 mm line."""
 MOST = 30
+CHANCE = 2.0
+"""Standard deviations of the likeness of neighbours that noise makes."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +48,22 @@ class Calibration:
     """Of the weighted residuals by the coefficients, shape (n, f, p)."""
     covariance: Array
     """Of the coefficients, shape (p, p), for the spread as it stands."""
+
+    @property
+    def kinship(self) -> float:
+        """How many frequencies err as one: 1 for noise, up to all of them for a wrong standard.
+
+        From the likeness of neighbouring residuals at the aperture, less what chance makes.
+        """
+        with np.errstate(all="ignore"):
+            left = _known(self.fitted.residual / self.fitted.terms.slope(self.true))
+        points = left.shape[1]
+        total = float(np.square(np.abs(left)).sum())
+        if points < 3 or self.degrees_of_freedom <= 0 or total == 0:
+            return 1.0
+        product = float(np.real(np.conj(left[:, :-1]) * left[:, 1:]).sum())
+        likeness = min(max(product / total - CHANCE / np.sqrt(points), 0.0), 1 - 1 / points)
+        return (1 + likeness) / (1 - likeness)
 
     @property
     def degrees_of_freedom(self) -> int:

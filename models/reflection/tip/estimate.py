@@ -49,6 +49,7 @@ class TipEstimate:
     misfit: Misfit
 
 
+@np.errstate(all="ignore")
 def estimate_permittivity(query: TipQuery) -> TipEstimate:
     """Permittivity of every sample over frequency, its uncertainty, flags and findings."""
     aperture = Aperture(query.model or _usual(query), query.geometry)
@@ -63,7 +64,7 @@ def estimate_permittivity(query: TipQuery) -> TipEstimate:
     flags = np.zeros(eps.shape, dtype=np.uint64)
     flag_loss(eps, band, flags)
     flag_uncertain(eps, band, flags, query.largest_relative_uncertainty)
-    flag(calibration, answer, spread, flags)
+    flag(calibration, answer, spread, misfit, flags)
     findings = findings_of(calibration, answer, query.samples, misfit, query.geometry)
     freedom = np.stack([np.full(query.frequency.size, s.freedom) for s in query.samples])
     estimate = SweepEstimate(

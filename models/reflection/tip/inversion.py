@@ -67,7 +67,8 @@ def of_noise(calibration: Calibration, answer: Response, sample_spread: Array) -
     sample_spread: standard uncertainty of each part of the sample's reflection, shape (m, f).
 
     A standard's noise acts through the error terms at its own frequency and, a little, through
-    the fitted coefficients at every frequency; both ways are added before squaring.
+    the fitted coefficients at every frequency; both ways are added before squaring. Residuals
+    that are alike from frequency to frequency are no noise: they do not average out.
     """
     own = np.square(np.abs(answer.by_sample) * sample_spread)
     total = Variance(own, own)
@@ -85,7 +86,8 @@ def of_noise(calibration: Calibration, answer: Response, sample_spread: Array) -
             np.square(moved_by.real).sum(axis=-1) - np.square(shared.real).sum(axis=-1),
             np.square(moved_by.imag).sum(axis=-1) - np.square(shared.imag).sum(axis=-1),
         )
-    return total + Variance(_form(through.real, inverse), _form(through.imag, inverse))
+    coefficients = inverse * calibration.kinship
+    return total + Variance(_form(through.real, coefficients), _form(through.imag, coefficients))
 
 
 def _form(rows: Array, matrix: Array) -> Array:

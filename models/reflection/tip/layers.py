@@ -33,14 +33,15 @@ class _Field:
 
     wave_number: Array
     """Shape (waves,)."""
-    energy: Array
+    energy: ComplexArray
     """Shape (waves, modes^2); all modes but the first are scaled to unit energy in the line."""
     fill: float
 
     def capacitance(self, effective: ComplexArray) -> ComplexArray:
         """Up to a factor, on media of effective permittivity, shape (k, waves) to (k,)."""
         size = MODES + 1
-        energy = (effective @ self.energy).reshape(-1, size, size)
+        # Not by @: threads of a busy machine wait for one another longer than this takes.
+        energy = np.einsum("kw,wp->kp", effective, self.energy).reshape(-1, size, size)
         own = energy[:, 1:, 1:] + self.fill * np.eye(size - 1)
         bent = np.linalg.solve(own, energy[:, 1:, :1])
         return np.asarray(energy[:, 0, 0] - (energy[:, :1, 1:] @ bent)[:, 0, 0], dtype=complex)
@@ -64,7 +65,7 @@ def _field(inner: float, outer: float, fill: float) -> _Field:
         rows.append(wave / (k**2 - wave**2) * edges / np.sqrt(energy))
     spectra = np.stack(rows)
     pairs = (spectra[:, None, :] * spectra).reshape(-1, wave.size).T
-    return _Field(wave, pairs * np.gradient(wave)[:, None], fill)
+    return _Field(wave, pairs * np.gradient(wave)[:, None] + 0j, fill)
 
 
 @np.errstate(all="ignore")
@@ -81,9 +82,17 @@ def reading(
     thin = np.tanh(field.wave_number * thickness)
     mixed = front * (back + front * thin) / (front + back * thin)
     effective = np.where(np.isinf(back), front / thin, mixed)
-    low, high = (field.capacitance(np.full((1, WAVES), r + 0j)) for r in REFERENCES)
+    low, high = _references(geometry)
     share = (field.capacitance(effective) - low) / (high - low)
     return np.asarray(REFERENCES[0] + (REFERENCES[1] - REFERENCES[0]) * share)
+
+
+@lru_cache(maxsize=32)
+def _references(geometry: Geometry) -> tuple[complex, complex]:
+    """Capacitances on the media between which a tip is calibrated."""
+    field = _field(geometry.inner, geometry.outer, geometry.fill)
+    low, high = (field.capacitance(np.full((1, WAVES), r + 0j))[0] for r in REFERENCES)
+    return complex(low), complex(high)
 
 
 def backing_error(geometry: Geometry, permittivity: float, thickness: float) -> float:
@@ -93,6 +102,7 @@ def backing_error(geometry: Geometry, permittivity: float, thickness: float) -> 
     return max(float(np.abs(end / whole - 1)[0]) for end in ends)
 
 
+@lru_cache(maxsize=32)
 def sensing_depth(geometry: Geometry, error: float = 0.01, permittivity: float = 20.0) -> float:
     """Thickness, m, from which what lies behind a sample changes the reading by less than that.
 

@@ -30,6 +30,11 @@ class Misfit:
     """Of the value, what is not known of the standards' media included."""
     stated: bool
 
+    @property
+    def consistent(self) -> bool:
+        """Whether the standards agree, as far as more than three of them can tell."""
+        return not self.value > self.limit
+
 
 def judged(calibration: Calibration, samples: Sequence[Sample], *, stated: bool) -> Misfit:
     """Noise of a calibration: as stated, as the residuals show it, as repeats of samples do.

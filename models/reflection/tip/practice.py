@@ -23,13 +23,17 @@ ERROR = 0.01
 USUAL_GAP = 10e-6  # m, under a tip that is set on a solid with care
 
 
-def flag(calibration: Calibration, answer: Response, spread: Array, flags: Flags) -> None:
+def flag(
+    calibration: Calibration, answer: Response, spread: Array, misfit: Misfit, flags: Flags
+) -> None:
     """Mark, in place, the frequencies at which a reading or the standards are doubtful."""
     with np.errstate(all="ignore"):
         noise = spread / np.abs(calibration.fitted.terms.slope(answer.reflection))
         excess = np.abs(answer.reflection) - 1
         raised(flags, (excess > MARGIN * noise) & (excess > ABOVE_ONE), "reflection-above-one")
         raised(flags, _closeness(answer) > CLOSE, "standards-too-close")
+    if not misfit.consistent:
+        raised(flags, np.ones(flags.shape, dtype=bool), "standards-inconsistent")
     for standard in calibration.standards:
         if standard.known is not None and standard.known.outside is not None:
             raised(flags, np.broadcast_to(standard.known.outside, flags.shape),

@@ -64,6 +64,7 @@ class TwoPortEstimate:
     turns: int
 
 
+@np.errstate(all="ignore")
 def estimate_constants(query: TwoPortQuery) -> TwoPortEstimate:
     """Permittivity, and permeability where it is not 1, over frequency."""
     s = query.parameters

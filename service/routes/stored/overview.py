@@ -11,8 +11,8 @@ from service.routes.stored.documents import Name, absent
 from service.routes.stored.estimates import described
 from service.stations.ask.answers import OFFERED, encoded
 from service.stations.ask.asked import asked_of
-from service.stations.ingest.keeping import told_place
 from service.stations.ask.overview import features_of, latest_page
+from service.stations.ingest.keeping import told_place
 from service.stations.times import rfc3339
 from service.store.interface import Document
 

@@ -20,9 +20,7 @@ async def answered(
 
     key: under which JSON holds the rows.
     """
-    media_type = choose(
-        request.headers.get("accept"), request.query_params.get("format"), OFFERED
-    )
+    media_type = choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
 
     def work() -> Response:
         scene = scene_of(request.app.state.shelf, name, asked)

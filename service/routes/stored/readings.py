@@ -1,7 +1,6 @@
 """POST and GET /v1/stations/{name}/readings: what loggers send, and what is kept of it."""
 
-from collections.abc import Callable, Iterable, Mapping
-from functools import partial
+from collections.abc import Coroutine, Mapping
 from typing import Any
 
 import anyio.to_thread
@@ -12,20 +11,20 @@ from models.conversion import refuse_units
 from service.errors import Malformed, Unprocessable, UnsupportedMediaType
 from service.faults import Fault
 from service.formats import FORMATS, Format, format_of
-from service.formats.block import Block
 from service.negotiate import VARY, choose
 from service.routes.stored.documents import Name, absent
 from service.routes.stored.paging import answered
 from service.schemas.batch_query import document_of
 from service.stations.ask.asked import asked_of, now
+from service.stations.ask.questions import readings_page
 from service.stations.documents import Documents, Shelf
-from service.stations.ingest.arrival import Rules
+from service.stations.ingest.arrival import Arrival, Rules
 from service.stations.ingest.json_rows import check_rows, taken_apart
 from service.stations.ingest.keeping import Tally, keep
 from service.stations.ingest.senml import MEDIA_TYPE as SENML
 from service.stations.ingest.senml import resolved
+from service.stations.ingest.streaming import keep_stream
 from service.stations.ingest.tables import TableReader
-from service.stations.ask.questions import readings_page
 
 JSON = "application/json"
 OFFERED: Mapping[str, str] = {"json": JSON}
@@ -131,8 +130,8 @@ async def _keep_json(
         document = orjson.loads(body)
     except orjson.JSONDecodeError as error:
         raise Malformed(f"the body is not JSON: {error}") from None
-    rules = _rules(name, documents, settings.future_seconds, {})
     if media_type == SENML:
+        rules = _rules(name, documents, settings.future_seconds, {})
         rows, point = resolved(document, rules, now())
         shared: Mapping[str, Any] = {}
     else:
@@ -165,25 +164,14 @@ async def _keep_table(
         raise Unprocessable(fault, [Fault(fault, "?probe")])
     reader = TableReader(rules, probe, _depth(depth))
     decoder = table.decoder((), block_bytes=settings.block_bytes, line_bytes=settings.line_bytes)
-    async def take(decode: Callable[[], Iterable[Block]]) -> None:
-        for block in await anyio.to_thread.run_sync(lambda: list(decode())):
-            arrival = await anyio.to_thread.run_sync(reader, block)
-            await keep(state.writer, state.shelf, name, arrival, documents, tally)
 
-    waiting = bytearray()
-    async for piece in request.stream():
-        waiting += piece
-        if len(waiting) >= settings.block_bytes:
-            await take(partial(decoder.feed, bytes(waiting)))
-            waiting.clear()
-    if waiting:
-        await take(partial(decoder.feed, bytes(waiting)))
-    await take(decoder.close)
+    def kept(arrival: Arrival) -> Coroutine[None, None, None]:
+        return keep(state.writer, state.shelf, name, arrival, documents, tally)
+
+    await keep_stream(request.stream(), decoder, reader, kept, settings.block_bytes)
 
 
-def _rules(
-    name: str, documents: Documents, allowance: float, units: Mapping[str, str]
-) -> Rules:
+def _rules(name: str, documents: Documents, allowance: float, units: Mapping[str, str]) -> Rules:
     station = documents.station(name)
     if station is None:
         raise absent("station", name, documents)

@@ -91,5 +91,3 @@ def _panel(name: str, found: Stored, result: Estimated, asked: Asked) -> Panel:
         result.depth, found.time / SECOND, band, result.flags != 0
     )
     return Panel(TITLES[name], unit, lines)
-
-

@@ -9,9 +9,9 @@ import polars as pl
 from service.schemas.echo import units_of_answer
 from service.stations.ask.answers import slugs
 from service.stations.ask.asked import Asked, now
-from service.stations.documents import Documents, Shelf
 from service.stations.ask.estimating import estimated, stored
 from service.stations.ask.questions import Page, table_of
+from service.stations.documents import Documents, Shelf
 from service.store.interface import VALUES, Span
 
 

@@ -17,8 +17,8 @@ from service.routes.stored.documents import absent, revision_of
 from service.schemas.echo import units_of_answer
 from service.stations.ask.answers import frame_of, numbers, slugs
 from service.stations.ask.asked import Asked, cursor_of, now
-from service.stations.documents import Documents, Shelf
 from service.stations.ask.estimating import Estimated, Stored, estimated, stored
+from service.stations.documents import Documents, Shelf
 from service.stations.station import Station
 from service.stations.times import text_of
 from service.store.append import unpacked
@@ -127,9 +127,7 @@ def profile_page(scene: Scene, asked: Asked) -> Page:
     span = Span(scene.channels, columns, end=moment + 1, upto=scene.upto)
     rows = [row for row in scene.shelf.store.newest(span) if row[1] > moment - asked.within]
     found, result = _estimated(scene, asked, rows, columns)
-    table = table_of(found, result).with_columns(
-        age_seconds=pl.Series((moment - found.time) / 1e6)
-    )
+    table = table_of(found, result).with_columns(age_seconds=pl.Series((moment - found.time) / 1e6))
     told = {"time": text_of([moment])[0]}
     return Page(table.sort("depth", nulls_last=True), {**told, **rest_of(scene, asked, result)})
 

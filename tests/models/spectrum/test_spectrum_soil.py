@@ -134,14 +134,14 @@ def test_what_is_assumed_of_the_soil_is_in_the_shared_part():
 
 
 def test_bands_of_the_fit_hold_the_truth():
-    """150 draws of noise of 1 % of |eps|, stated; what is shared between spectra is not drawn."""
+    """100 draws of noise of 1 % of |eps|, stated; what is shared between spectra is not drawn."""
     variant = Variant(bound=True)
     vector, eps = made(variant)
     noise = 0.01 * np.abs(eps)
     random = np.random.default_rng(9)
     scene = Scene(BAND, "complex-refractive", KNOWN, salty_water(20.0))
     held = []
-    for _ in range(150):
+    for _ in range(100):
         noisy = spectrum(BAND, eps, noise, random)
         (band,) = invert(noisy, scene, np.array([noise, noise]), 20.0, [variant])
         held.append(np.abs(band.vector - vector) < 1.96 * np.sqrt(np.diag(band.covariance)))

@@ -69,9 +69,9 @@ def test_days_are_those_of_the_zone(day):
 
 
 def test_pages_hold_every_row_once_and_keep_the_question(day):
-    for words in ({}, {"every": "15m", "zone": "UTC"}):
+    for own in ({}, {"every": "15m", "zone": "UTC"}):
         found, address = [], "/v1/stations/asked/estimates"
-        words = {**DAY, **words, "limit": 50, "units": "water_content:%", "format": "json"}
+        words = {**DAY, **own, "limit": 50, "units": "water_content:%", "format": "json"}
         while address:
             answer = day.get(address, params=words)
             found += answer.json()["estimates"]

@@ -39,8 +39,6 @@ class Identified:
     covariance: Array
     """Of ``values``, in the order of SYSTEM."""
     reduced_chi_square: float
-    trigger_u: float = 0.01
-    """Of the moment of the step from trace to trace, in units of 0.1 ns."""
 
 
 def described(system: System, relative_u: float = 0.0) -> Identified:

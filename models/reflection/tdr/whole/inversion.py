@@ -28,9 +28,13 @@ WATER_SHARE = 2.0
 EXPECTED_U = {"ln_static_permittivity": 1.5, "ln_strength_over_high_permittivity": 2.0,
               "ln_relaxation_time": 2.0, "ln_bulk_conductivity": 4.0, "logit": 2.0}  # fmt: skip
 """What is known of each number before the trace: next to nothing."""
-WATER_U = {"ln_strength_over_high_permittivity_1": 1.0, "ln_relaxation_time_1": 0.5}
+WATER_U = {"ln_strength_over_high_permittivity_1": 0.7, "ln_relaxation_time_1": 0.4}
 """But the first relaxation is that of water, which is faster than any trace: left free, it would
 take up noise as dispersion, which is always downward."""
+
+TRIGGER_U = 10.0
+"""Of the moment of the step from trace to trace, in units of 0.1 ns: cables warm and triggers
+wander, and the trace shows by itself when the cable ends."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -175,7 +179,7 @@ def _fitted(
     if placed:
         free[-1] = False
     prior = np.array([1.0 / _expected_u(name) for name in names])
-    weights = np.append(1.0 / known.trigger_u, prior[free])
+    weights = np.append(1.0 / TRIGGER_U, prior[free])
     columns = np.append(SYSTEM.index("delay"), len(SYSTEM) + np.flatnonzero(free))
     base = known.values
 

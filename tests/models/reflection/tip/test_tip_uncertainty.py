@@ -66,7 +66,7 @@ def test_the_variance_by_noise_is_that_of_many_draws():
     spread = np.full((1, FREQUENCY.size), 1e-4)
     told = of_noise(calibration, here, spread)
     generator, found = np.random.default_rng(2), []
-    for _ in range(300):
+    for _ in range(150):
         drawn = [
             replace(s, read=s.read + 1e-4 * (generator.standard_normal(FREQUENCY.size)
                                              + 1j * generator.standard_normal(FREQUENCY.size)))
@@ -76,5 +76,5 @@ def test_the_variance_by_noise_is_that_of_many_draws():
                                 + 1j * generator.standard_normal(FREQUENCY.size))  # fmt: skip
         found.append(solved(drawn, sample, 4)[1].permittivity[0])
     seen = np.var([eps.real for eps in found], axis=0)
-    np.testing.assert_allclose(np.mean(seen / told.real[0]), 1.0, atol=0.05)
-    np.testing.assert_allclose(seen, told.real[0], rtol=0.4)
+    np.testing.assert_allclose(np.mean(seen / told.real[0]), 1.0, atol=0.08)
+    np.testing.assert_allclose(seen, told.real[0], rtol=0.5)

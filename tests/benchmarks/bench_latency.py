@@ -1,0 +1,121 @@
+"""Single readings while a table is worked on, and beside an endpoint that does nothing.
+
+Open loop: requests are due at fixed instants, and each counts from when it was due.
+Run: python -m tests.benchmarks.bench_latency
+"""
+
+import asyncio
+import json
+import statistics
+import tempfile
+import threading
+import time
+from pathlib import Path
+
+from tests.benchmarks.bench_batch import BANDS, QUERY, ROWS, posted, served, table
+from tests.benchmarks.interleaved import quiet, report
+
+RATE = 200
+SECONDS = 4.0
+READING = {"apparent_permittivity": 17.2, "temperature": 14.1}
+BODY = json.dumps({
+    "mixing_model": "crim", "soil": {"texture": "loam", "bulk_density": 1.42},
+    "probe": {"frequency": 1.0e9, "apparent_permittivity_u": 0.3}, "readings": [READING],
+}).encode()  # fmt: skip
+
+
+def request(path, body):
+    """The bytes of a POST."""
+    head = f"POST {path} HTTP/1.1\r\nHost: x\r\nContent-Type: application/json\r\n"
+    return f"{head}Content-Length: {len(body)}\r\n\r\n".encode() + body
+
+
+class Line:
+    """One connection that is kept open."""
+
+    def __init__(self, reader, writer):
+        self.reader, self.writer = reader, writer
+
+    async def ask(self, message):
+        self.writer.write(message)
+        head = await self.reader.readuntil(b"\r\n\r\n")
+        assert head.startswith(b"HTTP/1.1 200"), head
+        length = int(head.lower().partition(b"content-length: ")[2].split()[0])
+        await self.reader.readexactly(length)
+
+
+async def at_a_rate(port, message, until):
+    """Latencies, s, from the instant each request was due; idle connections are used again."""
+    idle, taken, tasks = [], [], set()
+
+    async def one(due):
+        line = idle.pop() if idle else Line(*await asyncio.open_connection("127.0.0.1", port))
+        await line.ask(message)
+        taken.append(time.perf_counter() - due)
+        idle.append(line)
+
+    due = time.perf_counter()
+    while not until():
+        due += 1 / RATE
+        await asyncio.sleep(max(0.0, due - time.perf_counter()))
+        task = asyncio.create_task(one(due))
+        tasks.add(task)
+        task.add_done_callback(tasks.discard)
+    await asyncio.gather(*tasks)
+    for line in idle:
+        line.writer.close()
+    return taken
+
+
+async def as_fast_as_possible(port, message, clients, seconds):
+    """Requests per second of so many connections."""
+    end, count = time.perf_counter() + seconds, 0
+
+    async def client():
+        nonlocal count
+        line = Line(*await asyncio.open_connection("127.0.0.1", port))
+        while time.perf_counter() < end:
+            await line.ask(message)
+            count += 1
+        line.writer.close()
+
+    await asyncio.gather(*(client() for _ in range(clients)))
+    return count / seconds
+
+
+def p99(taken):
+    return statistics.quantiles(taken, n=100)[98]
+
+
+def beside_a_table(port, sent):
+    """The 99th percentile idle, and while a table is worked on."""
+    message = request("/v1/estimates", BODY)
+    end = time.perf_counter() + SECONDS
+    idle = asyncio.run(at_a_rate(port, message, lambda: time.perf_counter() > end))
+    batch = threading.Thread(target=posted, args=(port, sent, f"{QUERY}&columns={BANDS}"))
+    batch.start()
+    busy = asyncio.run(at_a_rate(port, message, lambda: not batch.is_alive()))
+    batch.join()
+    return p99(idle), p99(busy)
+
+
+def main():
+    with tempfile.TemporaryDirectory() as name:
+        folder = Path(name)
+        table(folder / "sent.csv", ROWS)
+        server, port = served(folder)
+        try:
+            posted(port, folder / "sent.csv", QUERY)
+            calm = quiet()
+            pairs = [beside_a_table(port, folder / "sent.csv") for _ in range(5)]
+            idle, busy = (statistics.median(side) for side in zip(*pairs, strict=True))
+            report("99th percentile of single readings during a table, in idle ones",
+                   statistics.median(b / i for i, b in pairs), "at most 4",
+                   idle_ms=1e3 * idle, busy_ms=1e3 * busy, calm=calm)  # fmt: skip
+        finally:
+            server.terminate()
+            server.wait()
+
+
+if __name__ == "__main__":
+    main()

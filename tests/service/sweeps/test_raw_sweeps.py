@@ -1,0 +1,137 @@
+"""A sweep as the raw record of a reading: water content with a band in one call."""
+
+import copy
+
+import numpy as np
+import pytest
+
+from tests.models.reflection.sweep_records import tip_text, truths
+from tests.service.sweeps.asking import STANDARDS, refused, two_port_text
+
+TIP, TWO = truths("tip"), truths("two_port")
+SOIL = {"porosity": 0.45, "solid_permittivity": 4.7}
+
+
+def request(**changes):
+    return copy.deepcopy({
+        "mixing_model": "crim",
+        "soil": SOIL,
+        "raw_records": {"reflection": {"standards": STANDARDS, "at_frequency": 0.9e9,
+                                       "reflection_u": 5e-4}},
+        "readings": [{"temperature": 25, "reflection": {"touchstone": tip_text("loam")}},
+                     {"temperature": 25, "reflection": {"touchstone": tip_text("drysand")}}],
+        **changes,
+    })  # fmt: skip
+
+
+def ask(server, body):
+    return server.client.post("/v1/estimates", json=body)
+
+
+def test_a_tip_sweep_becomes_water_content(server):
+    answer = ask(server, request())
+    assert answer.status_code == 200, answer.text
+    loam, sand = answer.json()["estimates"]
+    frequency, truth = TIP["loam"]
+    eps = truth[frequency == 0.9e9][0]
+    assert loam["real_permittivity"] == pytest.approx(eps.real, rel=1e-3)
+    assert loam["imaginary_permittivity"] == pytest.approx(-eps.imag, rel=1e-2)
+    assert loam["frequency"] == 0.9e9
+    # the loam was made of 0.25 m3/m3 of water, the sand of 0.02 at a porosity of 0.40
+    assert loam["water_content"] == pytest.approx(0.25, abs=0.002)
+    assert loam["water_content_lower"] < 0.25 < loam["water_content_upper"]
+    assert sand["water_content"] < 0.06
+
+
+def test_the_uncertainty_of_the_sweep_is_in_the_band(server):
+    narrow = ask(server, request()).json()["estimates"][0]
+    body = request()
+    body["raw_records"]["reflection"]["reflection_u"] = 2e-2
+    wide = ask(server, body).json()["estimates"][0]
+    assert wide["real_permittivity_u"] > 5 * narrow["real_permittivity_u"]
+    assert wide["water_content_u"] > 1.2 * narrow["water_content_u"]
+
+
+def test_readings_as_columns_are_answered_as_columns(server):
+    rows = request()["readings"]
+    body = request(readings={name: [row[name] for row in rows] for name in rows[0]})
+    answer = ask(server, body).json()["estimates"]
+    expected = ask(server, request()).json()["estimates"]
+    assert answer["water_content"] == [row["water_content"] for row in expected]
+
+
+def test_a_two_port_sweep_becomes_water_content(server):
+    body = request(
+        raw_records={"scattering": {"at_frequency": 1.0, "line": {"sample_length": 0.03}}},
+        readings=[{"temperature": 22, "scattering": {"touchstone": two_port_text("loam_30mm")}}],
+        units={"frequency": "GHz"},
+    )
+    answer = ask(server, body)
+    assert answer.status_code == 200, answer.text
+    (row,) = answer.json()["estimates"]
+    frequency, truth = TWO["loam_30mm"]
+    assert row["real_permittivity"] == pytest.approx(
+        float(np.interp(1e9, frequency, truth.real)), rel=1e-4
+    )
+    assert row["frequency"] == pytest.approx(1.0)
+    assert row["water_content"] == pytest.approx(0.25, abs=0.002)
+
+
+def test_a_cell_becomes_water_content_like_a_tip(server):
+    text = "# GHz S RI R 50\n" + "".join(f"{f} -0.5 0.0\n" for f in (0.5, 1.0, 1.5))
+    body = request(
+        raw_records={"reflection": {"kind": "filled-line", "at_frequency": 1e9}},
+        readings=[{"temperature": 20, "reflection": {"touchstone": text}}],
+    )
+    answer = ask(server, body).json()
+    # R = -0.5 from an air line: eps = (1.5 / 0.5)^2 = 9
+    assert answer["estimates"][0]["real_permittivity"] == pytest.approx(9.0)
+    told = answer["raw_records"]["reflection"]["advisories"]
+    assert "no-uncertainty-stated" in {advisory["code"] for advisory in told}
+
+
+def test_a_row_without_a_sweep_has_no_number(server):
+    body = request()
+    body["readings"].append({"temperature": 25})
+    answer = ask(server, body).json()["estimates"]
+    assert answer[2]["water_content"] is None
+    assert answer[0]["water_content"] is not None
+
+
+def changed(steps, value):
+    body = request()
+    place = body
+    for step in steps[:-1]:
+        place = place[step]
+    if value is None:
+        place.pop(steps[-1])
+    else:
+        place[steps[-1]] = value
+    return body
+
+
+@pytest.mark.parametrize(
+    ("steps", "value", "sentence", "pointer"),
+    [
+        (("raw_records",), None, "give raw_records.reflection", "#/raw_records/reflection"),
+        (("raw_records", "reflection", "at_frequency"), None, "at_frequency is missing",
+         "#/raw_records/reflection/at_frequency"),
+        (("raw_records", "reflection", "at_frequency"), 9e9, "the sweeps span",
+         "#/raw_records/reflection/at_frequency"),
+        (("raw_records", "reflection", "at_frequency"), True, "at_frequency is missing",
+         "#/raw_records/reflection/at_frequency"),
+        (("raw_records", "reflection", "standards", 2, "temperature"), None,
+         "temperature is missing", "#/raw_records/reflection/standards/2/temperature"),
+        (("raw_records", "reflection", "standrds"), [], "did you mean standards?",
+         "#/raw_records/reflection/standrds"),
+        (("raw_records", "reflection", "sample"), {}, "stands in the readings",
+         "#/raw_records/reflection/sample"),
+        (("readings", 1, "reflection", "touchstone"), "# GHz S RI R 50\n1 2\n",
+         "expected 3 numbers", "#/readings/1/reflection/touchstone"),
+        (("readings", 1, "reflection"), 7, "expected an object", "#/readings/1/reflection"),
+    ],
+)  # fmt: skip
+def test_what_cannot_be_used_is_named_where_it_stands(server, steps, value, sentence, pointer):
+    text, places = refused(ask(server, changed(steps, value)))
+    assert sentence in text
+    assert pointer in places
