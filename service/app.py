@@ -14,6 +14,7 @@ from service import __version__
 from service.access import LimitRate, RequireKey, keys_of
 from service.batch.workers import yield_to_requests
 from service.errors import add_error_handlers
+from service.formats.arrow import load_ahead
 from service.limits import LimitBody
 from service.metrics import count
 from service.observe import Observe, write_access_log
@@ -54,6 +55,7 @@ TAGS = [
 WARMING: tuple[Callable[[FastAPI], object], ...] = (
     lambda api: api.openapi(),
     lambda _: yield_to_requests(),
+    lambda _: load_ahead(),
 )
 """Called before the first request, so that no request waits for them."""
 

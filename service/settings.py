@@ -67,7 +67,8 @@ class Settings(BaseSettings):
         default=16384 * MIB, ge=1024, description="longest answer to a table, kept until it ends"
     )
     drawn_values: int = Field(
-        default=1_000_000_000, ge=1_000_000,
+        default=1_000_000_000,
+        ge=1_000_000,
         description="most draws times readings times models of one request",
     )
     header_bytes: int = Field(default=64 * 1024, ge=1024, description="largest headers in all")
@@ -81,7 +82,8 @@ class Settings(BaseSettings):
         default=30.0, gt=0, description="longest pause while a body arrives; then 408"
     )
     request_seconds: float = Field(
-        default=3600.0, gt=0,
+        default=3600.0,
+        gt=0,
         description="longest time for a body to arrive and be worked out; then 408",
     )
     drain_seconds: float = Field(

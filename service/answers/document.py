@@ -46,7 +46,7 @@ def answer_document(document: dict[str, Any], answered: str, limits: Settings) -
     readings = read(sent.numbers, settings.units, {}, sent.absent)
     raw.mark(readings.flags)
     if isinstance(basis, EveryModel):
-        return _of_every_model(basis, readings, sent, settings, answered)
+        return _of_every_model(basis, readings, sent, settings, answered, raw.echo)
     result = estimate(readings, basis)
     remarks = _remarks(sent, settings, result)
     echo = {**echo_of(basis, settings, remarks.advice(settings.units)), **raw.echo}
@@ -76,13 +76,14 @@ def _of_every_model(
     sent: JsonReadings,
     settings: EstimatesSettings,
     answered: str,
+    told: Mapping[str, Any],
 ) -> Response:
     """All models side by side: their combination as ``estimates``, each one under ``models``."""
     _refuse_beside(settings)
     found = basis.estimate(readings)
     result = Estimates(found.columns, found.flags)
     remarks = _remarks(sent, settings, result)
-    echo = ensemble_echo(basis, settings, remarks.advice(settings.units))
+    echo = {**ensemble_echo(basis, settings, remarks.advice(settings.units)), **told}
     if answered != JSON:
         return _table(result, sent, settings, answered, echo)
     answer = laid_out(result, sent, settings.units)

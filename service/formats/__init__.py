@@ -9,8 +9,7 @@ from types import MappingProxyType
 from typing import Protocol
 
 from models.registry import Registry
-from service.formats import csv_rows, ndjson_rows
-from service.formats.arrow import decode, encode
+from service.formats import arrow, csv_rows, ndjson_rows
 from service.formats.block import Decoder, Encoder
 
 
@@ -54,15 +53,15 @@ FORMATS: Registry[Format] = Registry(
         "arrow",
         "application/vnd.apache.arrow.stream",
         ".arrows",
-        decode.ArrowDecoder,
-        encode.ArrowEncoder,
+        arrow.ArrowDecoder,
+        arrow.ArrowEncoder,
     ),
     Format(
         "parquet",
         "application/vnd.apache.parquet",
         ".parquet",
-        decode.ParquetDecoder,
-        encode.ParquetEncoder,
+        arrow.ParquetDecoder,
+        arrow.ParquetEncoder,
     ),
 )
 

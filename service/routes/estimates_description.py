@@ -13,17 +13,23 @@ def _parameter(name: str) -> dict[str, Any]:
             "schema": kind}  # fmt: skip
 
 
-_TABLE = {"schema": {"type": "string"}}
+_TEXT, _BYTES = {"schema": {"type": "string"}}, {"schema": {"type": "string", "format": "binary"}}
+_TABLES: dict[str, Any] = {
+    media_type: _TEXT if key in {"csv", "ndjson"} else _BYTES
+    for key, media_type in MEDIA_TYPES.items()
+}
 
 DESCRIPTION: dict[str, Any] = {
     "parameters": [_parameter(name) for name in (*PLACES, *ASIDE)],
     "requestBody": {
         "required": True,
-        "description": "JSON says everything in its body. A table (CSV, NDJSON) holds readings "
-        "only, everything else stands in the query; its other columns pass through.",
+        "description": "JSON says everything in its body. A table (CSV, NDJSON, Arrow, "
+        "Parquet) holds readings only, everything else stands in the query; its other columns pass "
+        "through. NDJSON: keys on lines that begin in the first 64 KiB decide what is read. "
+        "`columns` names what a table is to get.",
         "content": {
             "application/json": {"schema": request_schema()},
-            **dict.fromkeys(MEDIA_TYPES.values(), _TABLE),
+            **_TABLES,
         },
     },
     "responses": {
@@ -35,7 +41,7 @@ DESCRIPTION: dict[str, Any] = {
             },
             "content": {
                 "application/json": {"schema": answer_schema()},
-                **dict.fromkeys(MEDIA_TYPES.values(), _TABLE),
+                **_TABLES,
             },
         }
     },

@@ -16,7 +16,8 @@ from service.faults import Fault
 from service.negotiate import VARY, choose
 from service.sweeps.answer import line_answer, tip_answer
 from service.sweeps.bodies import REFLECTIONS, ReflectionsBody, request_schema
-from service.sweeps.question import body_of, line_question, tip_question
+from service.sweeps.question import body_of, line_question
+from service.sweeps.tip import tip_question
 
 router = APIRouter(tags=["records"])
 

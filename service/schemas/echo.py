@@ -43,7 +43,7 @@ def surroundings_echo(query: Query, settings: EstimatesSettings) -> dict[str, An
     }
 
 
-NOT_BRIEF = frozenset({"advisories", "mixing_models", "not_answering"})
+NOT_BRIEF = frozenset({"advisories", "mixing_models", "not_answering", "raw_records"})
 """Too long for a header, many of which end at 4 or 8 KiB on their way."""
 
 

@@ -21,12 +21,13 @@ from service.errors import Unprocessable
 from service.faults import Fault, pointer
 from service.sweeps.bodies import REFLECTIONS, SCATTERING
 from service.sweeps.columns import Place, refuse
-from service.sweeps.question import body_of, line_question, tip_question
+from service.sweeps.question import body_of, line_question
+from service.sweeps.tip import tip_question
 from service.sweeps.two_port import two_port_question
 
 AT = "at_frequency"
-MOST = 200
-"""Raw sweeps in one request."""
+MOST, MOST_SEARCHED = 200, 40
+"""Raw sweeps in one request; fewer where each of them is searched for its roots."""
 TAKEN = ("real_permittivity", "real_permittivity_u", "imaginary_permittivity",
          "imaginary_permittivity_u", "frequency")  # fmt: skip
 Answer = tuple[Mapping[str, Array], Flags, Mapping[str, Any]]
@@ -95,8 +96,9 @@ def _settings(
     if not isinstance(settings, dict):
         name = pointer(place).removeprefix("#/").replace("/", ".")
         raise refuse(f"give {name}: {AT}, and what its own path takes beside a sample", place)
-    if count > MOST:
-        raise refuse(f"expected at most {MOST} raw sweeps in a request, found {count}", place)
+    most = MOST_SEARCHED if settings.get("kind") == "cell" else MOST
+    if count > most:
+        raise refuse(f"expected at most {most} raw sweeps in a request, found {count}", place)
     shared = {name: value for name, value in settings.items() if name != AT}
     for name in ("sample", "units"):
         if name in shared:

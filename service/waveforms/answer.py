@@ -100,14 +100,7 @@ def probe_echo(found: Answered, units: Units) -> dict[str, Any]:
     bench = found.bench
     echo: dict[str, Any] = {"probe_length": float(from_si("probe_length", bench.length, units))}
     if bench.timing is not None:
-        tangent, steepest = bench.timing.effective_length
-        offset = bench.timing.offset
-        echo |= {
-            "effective_length": 0.5 * (tangent + steepest),
-            "effective_length_u": 0.5 * abs(tangent - steepest),
-            "probe_offset": 0.25 * 299792458.0 * (offset[0] + offset[1]),
-            "probe_offset_u": 0.25 * 299792458.0 * abs(offset[0] - offset[1]),
-        }
+        echo |= bench.timing.told
     begin = float(np.nanmax(found.figures["late_level_from"]))
     between = circuit(bench, begin, found.system)
     if between is not None:
@@ -143,7 +136,7 @@ def advice_of(bench: Bench, found: Answered) -> list[Advice]:
     if bench.timing is None or bench.calibration.air is None or bench.calibration.water is None:
         said.append(advise("probe-not-calibrated"))
     else:
-        length = sum(bench.timing.effective_length) / 2
+        length = bench.timing.told["effective_length"]
         if abs(length / bench.length - 1) > SUSPECT_LENGTH:
             said.append(advise("effective-length", length=f"{length:.4g}",
                                own=f"{bench.length:.4g}"))  # fmt: skip

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from models.flags import Flags
-from models.reflection.tdr.bench import Bench, Description
+from models.reflection.tdr.bench import Bench
 from models.reflection.tdr.invert_traces import FREQUENCY, by_whole_trace, system_behind
 from models.reflection.tdr.measure import Known, Measured, by_travel_time
 from models.reflection.tdr.whole.identification import Identified
@@ -93,8 +93,3 @@ def _group(group: Group, settings: WaveformSettings, bench: Bench, known: Known)
         sections=settings.sections,
         inserted=settings.inserted_length,
     )
-
-
-def described(bench: Bench) -> Description:
-    """What the caller said of the probe, SI."""
-    return bench.probe

@@ -28,6 +28,9 @@ USUAL_RESISTANCE, USUAL_SKIN, USUAL_SPEED = 0.05, 1e-4, 2e8
 """ohm/m, ohm s^0.5/m and m/s of thin coaxial cable, there and back."""
 SERIES_SHARE_U = 0.5
 """Relative standard uncertainty of a series resistance that was not measured with a short."""
+SHORT_U = 0.1
+"""Relative standard uncertainty of one that was: at late times current still sinks into the
+conductors, and not in the same way before a short as before a soil."""
 UNKNOWN_SERIES = Known(0.3, 0.3)
 """ohm, of a cable nobody says anything of: some metres, and its contacts."""
 OPEN_U = 2e-3
@@ -159,7 +162,8 @@ def _series(bench: Bench, from_time: float, open_level: Known) -> Known:
     if short is not None:
         level, level_u = level_after(short.settled, from_time)
         value = resistance(level, open_level.value, probe.instrument_impedance)
-        return Known(value, 0.5 * probe.instrument_impedance * level_u)
+        noise = 0.5 * probe.instrument_impedance * level_u
+        return Known(value, float(np.hypot(noise, SHORT_U * value)))
     if probe.cable_length is None:
         return UNKNOWN_SERIES
     cable = _cable(probe, 0.0)

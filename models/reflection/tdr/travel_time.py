@@ -1,5 +1,6 @@
 """Travel time along the rods, in two ways, and the apparent permittivity that follows."""
 
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -61,6 +62,18 @@ class Timing:
             for low, length in zip(self.low, self.effective_length, strict=True)
         )
         return a, b
+
+    @property
+    def told(self) -> Mapping[str, float]:
+        """Effective length and apparent offset, m: the mean of both ways, half their difference."""
+        lengths = self.effective_length
+        offsets = [0.5 * speed_of_light * time for time in self.offset]
+        return {
+            "effective_length": 0.5 * sum(lengths),
+            "effective_length_u": 0.5 * abs(lengths[0] - lengths[1]),
+            "probe_offset": 0.5 * sum(offsets),
+            "probe_offset_u": 0.5 * abs(offsets[0] - offsets[1]),
+        }
 
 
 def plain_timing(

@@ -1,6 +1,5 @@
 """`gleyline convert`: files, folders, standard input; goes on where it was interrupted."""
 
-import os
 import subprocess
 import sys
 from pathlib import Path
@@ -109,7 +108,7 @@ def test_an_answer_that_is_not_complete_is_not_there(folder):
     assert code == 2
     assert "line 3, column apparent_permittivity: expected a number, found 'warm'" in told
     assert target.read_bytes() == b"of yesterday"
-    assert sorted(os.listdir(folder)) == ["a_out.csv", "in"]
+    assert sorted(path.name for path in folder.iterdir()) == ["a_out.csv", "in"]
 
 
 def test_progress_tells_rate_and_time_left(tmp_path):

@@ -6,7 +6,7 @@ import os
 import socket
 import threading
 import time
-from contextlib import ExitStack, contextmanager
+from contextlib import ExitStack, contextmanager, suppress
 from pathlib import Path
 
 import numpy as np
@@ -109,11 +109,11 @@ def posted(address, headers, body):
     """The status, whether or not the body was read to its end."""
     line = http.client.HTTPConnection(*address, timeout=60)
     try:
-        try:
-            line.request("POST", PATH if headers.get("Content-Type") != "application/json"
-                         else "/v1/estimates", body, headers)  # fmt: skip
-        except (BrokenPipeError, ConnectionResetError):
-            pass  # the answer may be there all the same
+        path = "/v1/estimates" if headers == JSON else PATH
+        with suppress(
+            BrokenPipeError, ConnectionResetError
+        ):  # the answer may be there all the same
+            line.request("POST", path, body, headers)
         return line.getresponse().status
     finally:
         line.close()

@@ -93,7 +93,7 @@ def test_wanted_columns_come_in_the_order_of_the_answer_and_flags_with_them():
 def test_every_format_has_the_same_numbers():
     rows = [(17.2, 14.0, 0.62), (3.1, 2.5, 0.05), (31.7, 25.0, 1.4)]
     body = (
-        "apparent_permittivity,temperature,bulk_conductivity\n".encode()
+        b"apparent_permittivity,temperature,bulk_conductivity\n"
         + "".join(f"{a},{b},{c}\n" for a, b, c in rows).encode()
     )
     as_arrow = answered([body], "csv", "arrow", 1 << 20, ("water_content",))
