@@ -132,9 +132,7 @@ def key() -> None:
 @click.option("--station", "stations", multiple=True, metavar="NAME",
               help="the only station it reaches; repeatable  [default: all]")  # fmt: skip
 @data_option
-def add_key(
-    label: str, scopes: tuple[Reach, ...], stations: tuple[str, ...], data: Path
-) -> None:
+def add_key(label: str, scopes: tuple[Reach, ...], stations: tuple[str, ...], data: Path) -> None:
     """Make a key and print it: it cannot be shown again."""
     try:
         secret = KeyFile(data / "keys.json").add(label, tuple(dict.fromkeys(scopes)), stations)

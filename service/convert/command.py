@@ -5,7 +5,7 @@ import sys
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import ThreadPoolExecutor
 from pathlib import Path
-from typing import NoReturn
+from typing import Any, NoReturn
 
 import click
 
@@ -18,6 +18,11 @@ from service.errors import Problem
 from service.formats import FORMATS
 from service.schemas.batch_query import PLACES, document_of, meaning
 from service.schemas.query import settings_of
+from service.settings import SettingsError, read_settings
+from service.stations.documents import Shelf
+from service.stations.named import names_something, with_stored
+from service.store.errors import StoreError
+from service.store.opening import open_store
 
 BAD_INPUT = 2
 """Exit code for what the caller can mend."""
@@ -56,6 +61,8 @@ def one_option_per_word(command: Callable[..., None]) -> Callable[..., None]:
 @click.option("--parameter", "extra", multiple=True, metavar="NAME=VALUE",
               help="a parameter of the mixing model's own; may be given several times")  # fmt: skip
 @click.option("--strict", is_flag=True, help="stop a file at the first cell that cannot be read")
+@click.option("--data", type=click.Path(path_type=Path), metavar="DIR",
+              help="folder of the store in which --soil and --probe are looked up")  # fmt: skip
 @one_option_per_word
 def convert(  # noqa: PLR0913, PLR0917 - click passes every option by name
     files: tuple[str, ...],
@@ -67,6 +74,7 @@ def convert(  # noqa: PLR0913, PLR0917 - click passes every option by name
     columns: str | None,
     extra: tuple[str, ...],
     strict: bool,  # noqa: FBT001
+    data: Path | None,
     **words: str | None,
 ) -> None:
     """Append water content and its band to every row of FILES: tables, folders of them, or -.
@@ -81,18 +89,32 @@ def convert(  # noqa: PLR0913, PLR0917 - click passes every option by name
     pairs = [(name, text) for name, text in words.items() if text is not None]
     try:
         pairs += [_split(pair) for pair in extra]
-        wish = Wish(tuple(pairs), strict, wanted_columns(columns))
-        settings_of(document_of(pairs))
+        document = _described(document_of(pairs), data)
+        settings_of(document)
+        wish = Wish(document, strict, wanted_columns(columns))
         jobs = plan(files, output, read, written)
     except Problem as problem:
         faults = "".join(f"\n  {fault.pointer}: {fault.detail}" for fault in problem.errors)
         _fail(f"{problem.detail}{faults}")
-    except Refused as refusal:
+    except (Refused, SettingsError, StoreError) as refusal:
         _fail(str(refusal))
     if into_folder(files):
         _several(jobs, wish, Path(str(output)), processes, again=again)
     else:
         _told(_alone(jobs[0], wish), named=False)
+
+
+def _described(document: dict[str, Any], data: Path | None) -> dict[str, Any]:
+    """The request with stored soils and probes in place of their names."""
+    if not names_something(document):
+        return document
+    settings = read_settings(**({} if data is None else {"data": data}))
+    store = open_store(settings)
+    try:
+        _, documents = Shelf(store).fresh()
+    finally:
+        store.close()
+    return with_stored(document, documents)
 
 
 def _several(jobs: Sequence[Job], wish: Wish, folder: Path, processes: int | None, *, again: bool

@@ -3,12 +3,12 @@
 import hashlib
 import json
 import sys
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Mapping
 from concurrent.futures import Executor
 from contextlib import contextmanager, suppress
 from dataclasses import asdict, dataclass
 from pathlib import Path
-from typing import IO
+from typing import IO, Any
 
 from models.errors import ModelError
 from service.batch import Conversion, Counts, convert_file
@@ -16,7 +16,6 @@ from service.batch_estimates import APPENDED, TableEstimates
 from service.errors import Problem
 from service.formats import FORMATS
 from service.formats.errors import FormatError, SpoolFull
-from service.schemas.batch_query import document_of
 from service.schemas.query import settings_of
 
 
@@ -28,8 +27,8 @@ class Refused(Exception):
 class Wish:
     """How tables are to be answered: the same for all files of a command."""
 
-    pairs: tuple[tuple[str, str], ...]
-    """As in the query of POST /v1/estimates."""
+    document: Mapping[str, Any]
+    """As the JSON body of POST /v1/estimates, without readings."""
     strict: bool = False
     columns: tuple[str, ...] | None = None
 
@@ -75,7 +74,7 @@ def run(
     beside: where estimates are made while another part of the table is read and written.
     """
     try:
-        estimates = TableEstimates(settings_of(document_of(wish.pairs)))
+        estimates = TableEstimates(settings_of(wish.document))
         conversion = Conversion(
             FORMATS[job.read].decoder(APPENDED),
             FORMATS[job.written].encoder(),

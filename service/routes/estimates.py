@@ -13,7 +13,7 @@ from service.faults import Fault
 from service.formats import MEDIA_TYPES, format_of
 from service.negotiate import choose
 from service.routes.estimates_description import DESCRIPTION
-from service.routes.tables import answer_table
+from service.routes.tables import answer_table, described
 
 router = APIRouter(tags=["estimates"])
 
@@ -40,7 +40,7 @@ async def post_estimates(request: Request) -> Response:
     offered = {"json": JSON, **MEDIA_TYPES}
     answered = choose(request.headers.get("accept"), request.query_params.get("format"), offered)
     _refuse_query(request)
-    document = _parsed(await request.body())
+    document = await described(request, _parsed(await request.body()))
     limits = request.app.state.settings
     if _count(document["readings"]) <= INLINE and not COSTLY & document.keys():
         return answer_document(document, answered, limits)

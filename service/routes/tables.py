@@ -2,7 +2,9 @@
 
 from collections.abc import Iterator, Mapping
 from contextlib import contextmanager
+from typing import Any
 
+import anyio.to_thread
 from fastapi import FastAPI, Request
 from fastapi.responses import Response
 
@@ -16,6 +18,7 @@ from service.negotiate import VARY, choose
 from service.schemas.batch_query import document_of
 from service.schemas.query import settings_of
 from service.settings import Settings
+from service.stations.named import names_something, with_stored
 
 
 async def answer_table(request: Request, sent: Format) -> Response:
@@ -24,7 +27,8 @@ async def answer_table(request: Request, sent: Format) -> Response:
     query = request.query_params
     preferred = {sent.key: sent.media_type, **MEDIA_TYPES}
     answered = choose(request.headers.get("accept"), query.get("format"), preferred)
-    settings = settings_of(document_of(query.multi_items()))
+    document = await described(request, document_of(query.multi_items()))
+    settings = settings_of(document)
     table = TableEstimates(settings, limits.drawn_values)
     target = next(f for f in FORMATS.values() if f.media_type == answered)
     conversion = Conversion(
@@ -36,6 +40,14 @@ async def answer_table(request: Request, sent: Format) -> Response:
     )
     with _place_for(request.app):
         return await _converted(request, conversion, table, answered)
+
+
+async def described(request: Request, document: dict[str, Any]) -> dict[str, Any]:
+    """The request with stored soils and probes in place of their names."""
+    if not names_something(document):
+        return document
+    _, documents = await anyio.to_thread.run_sync(request.app.state.shelf.fresh)
+    return with_stored(document, documents)
 
 
 @contextmanager

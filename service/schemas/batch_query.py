@@ -34,8 +34,9 @@ def document_of(pairs: Iterable[tuple[str, str]]) -> dict[str, Any]:
             faults.append(Fault(f"{name} is given twice", f"?{name}"))
         given[name] = text
     places = {**PLACES, **_model_places(given)}
+    faults += _described_twice(given, places)
     document: dict[str, Any] = {}
-    for name, text in given.items():
+    for name, text in [] if faults else given.items():
         if name not in ASIDE:
             faults += _put(document, places, name, text)
     if faults:
@@ -45,6 +46,16 @@ def document_of(pairs: Iterable[tuple[str, str]]) -> dict[str, Any]:
         if own is not None:
             document[section] = {"name": given.get(section), **own}
     return document
+
+
+def _described_twice(given: Mapping[str, str], places: Mapping[str, Place]) -> list[Fault]:
+    """Words about a soil or probe that is named."""
+    return [
+        Fault(f"{kind} names a stored one, which {name} would describe again", f"?{name}")
+        for kind in NAMED & given.keys()
+        for name in given
+        if name != kind and name in places and places[name][0] == kind
+    ]
 
 
 def _put(
@@ -123,11 +134,16 @@ def _stranger(name: str, known: Iterable[str]) -> Fault:
     return Fault(f"unknown parameter {shown(name)}; {hint}", f"?{name[:80]}")
 
 
+NAMED = frozenset({"soil", "probe"})
+"""Parameters that name what is stored, in place of the words that describe it."""
+
 PLACES: Mapping[str, Place] = MappingProxyType(
     {name: ("soil", name, _number) for name in _with_u(SOIL, SOIL)}
     | {name: ("probe", name, _number) for name in _with_u(PROBE, (*PROBE, *NOISE))}
     | {
         "texture": ("soil", "texture", _text),
+        "soil": ("", "soil", _text),
+        "probe": ("", "probe", _text),
         "mixing_model": ("", "mixing_model", _text),
         "pore_water_model": ("", "pore_water_model", _text),
         "temperature_compensation": ("", "temperature_compensation", _text),
@@ -156,6 +172,8 @@ _MEANINGS: Mapping[str, str] = MappingProxyType(
         "bulk_conductivity",
         "temperature_compensation": "brings conductivities to 25 Cel",
         "pore_water_standard_error": "replaces the pore-water model's own uncertainty [1]",
+        "soil": "name of a stored soil, in place of its description",
+        "probe": "name of a stored probe, in place of its description",
         "texture": "USDA texture class of the soil, or peat",
         "standard_error": "replaces the model's own uncertainty [m3/m3]",
         "coverage_probability": "of the interval; 0.95 unless given",

@@ -162,10 +162,8 @@ ESTIMATED = ("water_content", "bulk_conductivity_25", "pore_water_conductivity",
 """What an answer holds with a band: conductivities where the readings hold bulk_conductivity."""
 SETTINGS = TypeAdapter(EstimatesSettings)
 RAW = MappingProxyType({
-    "waveform": "/v1/waveforms",
-    "reflection": "/v1/reflections",
-    "scattering": "/v1/scattering",
-    "spectrum": "/v1/spectra",
+    "waveform": "/v1/waveforms", "reflection": "/v1/reflections",
+    "scattering": "/v1/scattering", "spectrum": "/v1/spectra",
 })  # fmt: skip
 """Raw records a reading may carry, and the path that describes them."""
 
@@ -205,6 +203,11 @@ def request_schema() -> dict[str, Any]:
         "description": told,
         "properties": {name: {"type": "object"} for name in RAW},
     }
+    for kind in ("soil", "probe"):
+        inline = schema["properties"][kind]
+        stored = {"type": "string", "description": f"name of a stored {kind}"}
+        about = {key: inline.pop(key) for key in ("description", "default") if key in inline}
+        schema["properties"][kind] = {"anyOf": [inline, stored], **about}
     schema["required"] = ["readings"]
     return schema
 

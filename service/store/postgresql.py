@@ -6,12 +6,14 @@ from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 
-from sqlalchemy import Connection, create_engine, make_url, text
+from sqlalchemy import Connection, create_engine, make_url, select, text, true
 from sqlalchemy.exc import ArgumentError
 
+from service.store.append import columns_of
 from service.store.base import SqlStore
 from service.store.errors import StoreUnavailable
-from service.store.interface import COLUMNS, RAW, Row
+from service.store.interface import COLUMNS, RAW, Row, Span
+from service.store.schema import channel, reading
 
 COPY_FROM = 500
 """Rows from which on COPY into a table of its own is faster than arrays."""
@@ -99,6 +101,20 @@ class PostgresqlStore(SqlStore):
     def _kept(self, connection: Connection, number: int, times: Sequence[int]) -> list[Row]:
         found = connection.exec_driver_sql(_KEPT, (number, list(times)))
         return list(map(tuple, found.fetchall()))
+
+    def newest(self, span: Span) -> list[Row]:
+        """See Store: one step into the newest partition for each series, not a search for both."""
+        numbers = [known.number for known in span.channels]
+        last = select(*columns_of(span)).where(reading.c.channel == channel.c.id)
+        if span.end is not None:
+            last = last.where(reading.c.time < span.end)
+        if span.upto is not None:
+            last = last.where(reading.c.revision <= span.upto)
+        each = last.order_by(reading.c.time.desc()).limit(1).correlate(channel).lateral("last")
+        wanted = select(each).select_from(channel.join(each, true()))
+        wanted = wanted.where(channel.c.id.in_(numbers)).order_by(each.c.channel)
+        with self._transaction(write=False) as connection:
+            return list(map(tuple, connection.execute(wanted).fetchall()))
 
     def check(self) -> Iterator[str]:
         """See Store."""

@@ -9,7 +9,6 @@ from functools import lru_cache
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.optimize import brentq
 from scipy.special import j0, j1, y0, y1
 
 from models.numerics.inverse import increasing_inverse
@@ -51,11 +50,15 @@ class _Field:
 def _field(inner: float, outer: float, fill: float) -> _Field:
     width = outer - inner
 
-    def crossing(k: float) -> float:
-        return float(j0(k * inner) * y0(k * outer) - j0(k * outer) * y0(k * inner))
+    def crossing(k: Array) -> Array:
+        return np.asarray(j0(k * inner) * y0(k * outer) - j0(k * outer) * y0(k * inner))
 
-    guesses = [n * np.pi / width for n in range(1, MODES + 1)]
-    own = [brentq(crossing, k * (1 - 0.3 / n), k * (1 + 0.3 / n)) for n, k in enumerate(guesses, 1)]
+    orders = np.arange(1, MODES + 1)
+    near, share = orders * np.pi / width, 0.3 / orders
+    rising = np.sign(crossing(near * (1 + share)))
+    own = increasing_inverse(
+        lambda k: rising * crossing(k), np.zeros(MODES), near * (1 - share), near * (1 + share)
+    ).tolist()
     wave = np.geomspace(1e-3 / outer, 40 * MODES / width, WAVES)
     rows = [(j0(wave * inner) - j0(wave * outer)) / wave]
     for k in own:

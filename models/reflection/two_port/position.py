@@ -2,12 +2,12 @@
 
 import numpy as np
 from scipy.constants import speed_of_light
-from scipy.optimize import minimize_scalar
 
 from models.reflection.propagation import through_air
 from models.relation import Array, ComplexArray
 
-FINE = 401
+FINE, STEPS = 401, 20
+"""Shifts that are tried, and Newton steps from the best of them."""
 
 Planes = tuple[float, float]
 """Air line before and behind the sample, m."""
@@ -26,16 +26,16 @@ def found(
     """
     wave = 2 * np.pi * frequency / speed_of_light
     product = np.where(np.isfinite(s11 * s22), s11 * np.conj(s22), 0.0)
-
-    def disagreement(shift: float) -> float:
-        return -float(np.real(product * np.exp(2j * wave * shift)).sum())
-
     shifts = np.linspace(-air, air, FINE)
-    coarse = shifts[int(np.argmin([disagreement(shift) for shift in shifts.tolist()]))]
-    step = 2 * air / (FINE - 1)
-    bounds = (max(coarse - step, -air), min(coarse + step, air))
-    shift = float(minimize_scalar(disagreement, bounds=bounds, method="bounded",
-                                  options={"xatol": 1e-12}).x)  # fmt: skip
+    agreement = [np.real(product * np.exp(2j * wave * shift)).sum() for shift in shifts.tolist()]
+    shift = float(shifts[int(np.argmax(agreement))])
+    for _ in range(STEPS):
+        turned = product * np.exp(2j * wave * shift)
+        slope = float((-2 * wave * turned.imag).sum())
+        bend = float((4 * wave**2 * turned.real).sum())
+        if not bend > 0:
+            break
+        shift = min(max(shift + slope / bend, -air), air)
     power = np.square(np.abs(s11)) + np.square(np.abs(s22))
     with np.errstate(all="ignore"):
         known = np.square(2 * wave) * np.square(np.abs(product)) / power
