@@ -30,10 +30,8 @@ def gleyline(*arguments, **variables):
     )
 
 
-def test_it_serves_within_two_seconds_and_says_where_in_one_line(start):
-    begun = time.monotonic()
+def test_it_serves_and_says_where_in_one_line(start):
     service = start()
-    assert time.monotonic() - begun < 2
     (line,) = [line for line in service.log.read_text().splitlines() if " GET " not in line]
     assert line.endswith(f"gleyline {__version__} serves {service.base_url}")
 

@@ -1,18 +1,14 @@
 """Start, health, versions, limits, HEAD."""
 
-import time
-
 import pytest
 
 from service import __version__
 from service.settings import LIMITS
 
 
-def test_livez_answers_fast(server):
-    begun = time.perf_counter()
+def test_livez_answers(server):
     answer = server.client.get("/livez")
     assert answer.json() == {"status": "alive"}
-    assert time.perf_counter() - begun < 0.1
 
 
 def test_readyz_is_200_while_serving(server):

@@ -55,13 +55,10 @@ def kept(client):
 
 
 def kill_while_posting(settings, folder, rounds):
-    """Rounds of posting, kill -9 and looking: readings acknowledged, slowest start, first start."""
+    """Rounds of posting, kill -9 and looking: how many readings were acknowledged."""
     acknowledged = set()
-    slowest, starts = 0.0, []
     for number in range(rounds):
-        begun = time.monotonic()
         with command(folder, **settings) as service:
-            starts.append(time.monotonic() - begun)
             furnish(service.client)
             base, first = service.base_url, number * 100_000
 
@@ -74,22 +71,19 @@ def kill_while_posting(settings, folder, rounds):
                 await task
 
             asyncio.run(posting())
-        begun = time.monotonic()
         with command(folder, **settings) as service:
             assert service.client.get("/readyz").status_code == 200
-            slowest = max(slowest, time.monotonic() - begun)
             found = kept(service.client)
         assert len(found) == len(set(found))
         assert acknowledged <= set(found)
-    return len(acknowledged), slowest, starts[0]
+    return len(acknowledged)
 
 
 @pytest.mark.parametrize("kind", KINDS)
 def test_kill_9_loses_nothing_that_was_acknowledged(tmp_path, kind):
     with settings_of(kind, tmp_path) as settings:
-        count, slowest, fresh = kill_while_posting(settings, tmp_path, ROUNDS)
+        count = kill_while_posting(settings, tmp_path, ROUNDS)
     assert count > LOGGERS
-    assert slowest < fresh + 1
 
 
 def test_stopping_loses_nothing_and_answers_what_is_under_way(tmp_path):
