@@ -16,6 +16,7 @@ from fastapi.exceptions import RequestValidationError
 from fastapi.responses import Response
 from starlette.exceptions import HTTPException
 from starlette.requests import ClientDisconnect
+from starlette.routing import compile_path
 from starlette.types import Scope
 
 from models.errors import ModelError, ParameterError
@@ -142,7 +143,8 @@ def _of_http(error: HTTPException) -> Problem:
         return NotFound("no operation has this address", headers=headers)
     if error.status_code == MethodNotAllowed.status:
         methods = headers.get("Allow", "").split(", ")
-        headers["Allow"] = ", ".join([*methods, "HEAD"] if "GET" in methods else methods)
+        every = {*methods, "HEAD"} if "GET" in methods else set(methods)
+        headers["Allow"] = ", ".join(sorted(every))
         return MethodNotAllowed(f"this address takes {headers['Allow']}", headers=headers)
     return _BY_STATUS.get(error.status_code, InternalError)(str(error.detail), headers=headers)
 
@@ -206,10 +208,22 @@ def answer(scope: Scope, error: Exception) -> Response:
     return Response(json.dumps(body), problem.status, headers, MEDIA_TYPE)
 
 
+def _methods(request: Request, told: str) -> list[str]:
+    """All methods that the address of a request takes; the router tells those of one route."""
+    taken = {word for word in told.split(", ") if word}
+    for template, operations in request.app.openapi()["paths"].items():
+        if compile_path(template)[0].match(request.url.path):
+            taken |= {word.upper() for word in operations}
+    return sorted(taken)
+
+
 def add_error_handlers(api: FastAPI) -> None:
     """Let routes raise what the layers below raise."""
 
     async def handle(request: Request, error: Exception) -> Response:
+        if isinstance(error, HTTPException) and error.status_code == MethodNotAllowed.status:
+            told = (error.headers or {}).get("Allow", "")
+            error.headers = {"Allow": ", ".join(_methods(request, told))}
         return answer(request.scope, error)
 
     for kind in (*TRANSLATIONS, Exception):

@@ -9,6 +9,9 @@ from models.flags import Flags
 from models.reflection.sweep_flags import MARGIN, Finding, raised, withheld
 from models.relation import Array, ComplexArray
 
+BELOW_VACUUM = 0.1
+"""By how much eps' may be below 1 before it counts as impossible, beside its uncertainty."""
+
 
 @dataclass(frozen=True, slots=True)
 class Band:
@@ -57,6 +60,8 @@ def flag_loss(permittivity: ComplexArray, band: Band, flags: Flags) -> None:
     raised(flags, ~np.isfinite(permittivity), "no-root")
     floor = MARGIN * np.maximum(band.loss, 1e-4 * np.abs(permittivity))
     raised(flags, -permittivity.imag < -floor, "negative-loss")
+    short = 1.0 - permittivity.real
+    raised(flags, short > np.maximum(MARGIN * band.real, BELOW_VACUUM), "below-vacuum")
 
 
 def flag_uncertain(
@@ -71,4 +76,4 @@ def flag_uncertain(
 
 def kept(permittivity: ComplexArray, flags: Flags) -> ComplexArray:
     """The permittivity without what the flags withhold."""
-    return np.where(withheld(flags), np.nan, permittivity)
+    return np.where(withheld(flags), complex(np.nan, np.nan), permittivity)

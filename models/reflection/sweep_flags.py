@@ -35,6 +35,11 @@ SWEEP_FLAGS: Registry[Flag] = Registry(
          reason="Two time conventions are in use; phase falls with frequency in one and rises "
          "in the other.",
          keeps_number=True),
+    Flag(key="below-vacuum", condition="The permittivity is below 1 by more than three standard "
+         "uncertainties and 0.1.",
+         text="Less than the permittivity of nothing: no medium has it.",
+         reason="A length in another unit (mm for m), a poor calibration, a record of something "
+         "else.", keeps_number=False),
     Flag(key="standards-too-close", condition="An error of 0.001 in the standards' "
          "reflections changes the permittivity by more than 5 %.",
          text="The standards are too much alike here to tell permittivities apart.",

@@ -95,7 +95,7 @@ def named_in(registry: Registry[Any], name: str, place: tuple[str, ...]) -> Any:
     if name in registry:
         return registry[name]
     known = [*registry, *([ALL] if registry is MIXING_MODELS else ())]
-    meant = hint(name, known) or f"; choose one of {', '.join(known)}"
+    meant = hint(name.lower(), known) or f"; choose one of {', '.join(known)}"
     detail = f"no {registry.family} is called {shown(name)}{meant}"
     raise ParameterError(place[0], [Complaint(name, detail, place)])
 

@@ -57,6 +57,10 @@ def taken_apart(document: Any, most: int) -> tuple[list[Any], Callable[[int, str
     return rows, point, {"units": units, "shared": shared}
 
 
+EMPTY = frozenset({"missing", "ignored", "depth"})
+"""What a row may hold and still be no reading; one that says null or a sentinel is one."""
+
+
 def check_rows(
     rows: list[Any], point: Callable[[int, str], str], shared: Row, rules: Rules
 ) -> Arrival:
@@ -108,6 +112,8 @@ def _checked(
             found[RAW] = packed({key: value})
         elif key not in {"time", "probe"}:
             found["ignored"].append(key)
+    if not found["missing"] and not found.keys() - EMPTY:
+        raise RowError("", f"holds no value: expected one of {', '.join(VALUES[:4])} or another")
     return _place(row, found, rules), moment, found
 
 

@@ -38,6 +38,12 @@ def test_a_wrong_method_is_405_and_names_the_right_ones(server):
     assert answer.headers["allow"] == "GET, HEAD"
 
 
+def test_every_method_of_an_address_is_allowed(server):
+    answer = server.client.patch("/v1/stations/north-1")
+    assert_problem(answer, 405)
+    assert answer.headers["allow"] == "DELETE, GET, HEAD, PUT"
+
+
 def test_head_where_there_is_no_get_is_405(echo):
     answer = echo.head("/v1/estimates/echo")
     assert answer.status_code == 405

@@ -138,6 +138,12 @@ def test_a_row_that_cannot_be_kept_is_told_and_the_others_are_kept(client, form,
     assert answer["accepted"] + answer["duplicates"] == 1
 
 
+def test_a_row_that_says_nothing_is_no_reading(client):
+    answer = post(client, [{"time": "2026-06-03T00:00:00Z", "probe": "p1"}]).json()
+    assert answer["accepted"] == 0
+    assert "holds no value" in answer["rejected"][0]["detail"]
+
+
 def test_agreed_sentinels_are_gaps_and_zero_is_a_value(client):
     rows = [
         reading(0, -9999, day="2026-06-01", temperature=0),
