@@ -59,7 +59,15 @@ def by_whole_trace(
             flags[row] |= BIT["model-too-simple"]
     columns = {name: np.array([row[name] for row in rows]) for name in rows[0]}
     chi_square = columns.pop("reduced_chi_square")
+    value, spread = columns["apparent_permittivity"], columns["apparent_permittivity_u"]
+    lost = ~(spread <= UNSEEN * value)
+    flags[lost] |= BIT["no-end-reflection"]
+    columns = {name: np.where(lost, np.nan, cells) for name, cells in columns.items()}
     return Measured(columns, {"reduced_chi_square": chi_square, **levels}, flags, tuple(details))
+
+
+UNSEEN = 0.5
+"""Relative standard uncertainty of Ka from which the trace does not show the probe's end at all."""
 
 
 def _described(record: Record, bench: Bench) -> Identified:

@@ -23,7 +23,8 @@ VERSION = 10
 RELATIVE = 2**28
 """Seconds below which a time is relative to now (RFC 8428, section 4.5.3)."""
 UNITS: Mapping[str, str] = {
-    "": "", "/": "1", "1": "1", "Cel": "Cel", "K": "K", "S/m": "S/m", "mS/m": "mS/m", "s": "s", "ms": "ms",
+    "": "", "/": "1", "1": "1", "Cel": "Cel", "K": "K", "S/m": "S/m", "mS/m": "mS/m", "s": "s",
+    "ms": "ms",
     "Hz": "Hz", "MHz": "MHz", "m": "m", "mm": "mm", "cm": "cm",
 }  # fmt: skip
 """UCUM codes by SenML unit (RFC 8428, table 2; RFC 8798)."""
