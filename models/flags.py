@@ -147,11 +147,6 @@ FLAGS: Registry[Flag] = Registry(
          text="Too dry to tell the conductivity of the pore water.",
          reason="Water that is not continuous does not conduct as the equation says.",
          keeps_number=True, keeps_pore_water=False),
-    Flag(key="pore-water-open", condition="The ends of the band of the pore-water conductivity are "
-         "more than a factor of 100 apart.",
-         text="The conductivity of the pore water is hardly known.",
-         reason="Little bulk conductivity, little water or an uncertain soil leave it open: the "
-         "ends say more than the value.", keeps_number=True),
     Flag(key="offset-too-close", condition="The real permittivity is less than 3 above the offset "
          "of hilhorst-2000.",
          text="The permittivity is too near the offset of the pore-water model.",

@@ -2,6 +2,7 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from types import MappingProxyType
 
 import numpy as np
 
@@ -11,6 +12,9 @@ from models.flags import BIT, Flags
 from models.quantity import QUANTITIES
 from models.relation import Array
 from models.units import UNITS
+
+OPEN = 100.0
+"""Ratio of the ends of a band from which its conductivity is hardly known."""
 
 
 @dataclass(slots=True)
@@ -27,10 +31,20 @@ class Remarks:
 
     def __init__(self) -> None:
         self._suspicions: dict[str, _Suspicion] = {}
-        self._frozen = 0
+        self._frozen = self._open = 0
 
-    def note(self, columns: Mapping[str, Array], units: Units, flags: Flags) -> None:
-        """Look at one block: numbers as they were sent, and the flags they got."""
+    def note(
+        self,
+        columns: Mapping[str, Array],
+        units: Units,
+        flags: Flags,
+        answered: Mapping[str, Array] = MappingProxyType({}),
+    ) -> None:
+        """Look at one block: numbers as they were sent, the flags they got, what was answered."""
+        upper = answered.get("pore_water_conductivity_upper")
+        if upper is not None:
+            wide = upper > OPEN * answered["pore_water_conductivity_lower"]
+            self._open += int(np.count_nonzero(wide))
         frozen = BIT["frozen"]
         if np.bitwise_or.reduce(flags, initial=np.uint64(0)) & frozen:
             self._frozen += int(np.count_nonzero(flags & frozen))
@@ -45,6 +59,8 @@ class Remarks:
                    other=found.other, value=f"{found.example:g}")
             for name, found in self._suspicions.items()
         ]  # fmt: skip
+        if self._open:
+            said.append(advise("pore-water-open", count=self._open))
         if self._frozen:
             said.append(advise("frozen-readings", count=self._frozen))
         return tuple(said)

@@ -77,7 +77,7 @@ class TableEstimates:
             result = Estimates(together.columns, together.flags)
         else:
             result = estimate(readings, self.basis)
-        self.remarks.note(block.values, units, result.flags)
+        self.remarks.note(block.values, units, result.flags, result.columns)
         columns = {name: from_si(name, v, units) for name, v in result.columns.items()}
         return Answer(columns, result.flags)
 

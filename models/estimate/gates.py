@@ -20,7 +20,6 @@ from models.water.kaatze_1989 import static_permittivity
 
 CORRECTED = 0.01  # m3/m3 of correction for loss that is worth a flag
 SUSPECT = 55.0  # permittivity from which a comparison with water is worth its cost
-OPEN = 100.0  # ratio of the ends of a band that leaves its conductivity open
 LEFT_OUT = 0.05  # share of draws without an answer that is worth a flag
 NONE = np.uint64(0)
 AIR, COLD_WATER = 1.0, 88.0
@@ -99,8 +98,6 @@ def flag_pore_water(
     asked = ~np.isnan(content.computed) & ~(np.isnan(bulk) & (not pore.by_loss))
     explained = without_pore_water(flags)
     _set(flags, asked & np.isnan(value) & ~explained, "no-pore-water")
-    ends = salt["pore_water_conductivity_upper"] > OPEN * salt["pore_water_conductivity_lower"]
-    _set(flags, ends & ~explained, "pore-water-open")
     if basis.salinity is None:
         return
     soil = basis.query.soil.values

@@ -127,7 +127,7 @@ def _counted(result: Estimates) -> dict[str, str]:
 
 def _remarks(sent: JsonReadings, settings: EstimatesSettings, result: Estimates) -> Remarks:
     remarks = Remarks()
-    remarks.note(sent.numbers, settings.units, result.flags)
+    remarks.note(sent.numbers, settings.units, result.flags, result.columns)
     return remarks
 
 

@@ -14,12 +14,19 @@ import uvicorn
 
 from service.app import create_app
 from service.demo.post import Posted, post_json, post_table
+from service.demo.station import kept_week
 from service.demo.tables import STATION, embankment_document, farm_csv, farm_ndjson
+from service.examples import examples
 from service.settings import Settings
 
 FARM = "mixing_model=crim&texture=silt-loam&bulk_density=1.35&bulk_density_u=0.04" \
     "&frequency=0.8e9&apparent_permittivity_u=0.15&temperature_u=0.2"  # fmt: skip
 START_SECONDS = 20.0
+RAW = {
+    ("post_estimates", "waveform"): "a TDR trace in a loam",
+    ("post_estimates", "spectrum"): "a permittivity spectrum",
+}
+"""Examples that are shown as well: raw records, simulated."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,12 +63,17 @@ def _report(address: str) -> str:
     chosen = post_json(address, _unnamed())
     lines = [*_latest(table, f"farm {STATION}"), *_latest(wall, "embankment, downstream shoulder")]
     lines += _latest(chosen, f"one reading, model chosen: {chosen.model}")
+    for operation, name, example in examples():
+        if (operation, name) in RAW:
+            place = RAW[operation, name]
+            lines += _latest(post_json(address, example["request"]["json"]), place)
     told = [_HEAD, *(_line(line) for line in lines), ""]
     told.append(
         f"The farm's week: {len(table.rows)} rows in as CSV, {len(table.rows)} out, "
         f"{table.flagged} flagged; the same as NDJSON: {len(again.rows)} rows, "
         + ("the same numbers." if _same(table, again) else "other numbers!")
     )
+    told.append(kept_week(address))
     told += ["", *(f"- {text}" for text in wall.advisories)]
     return "\n".join(told)
 

@@ -13,6 +13,7 @@ from service.faults import Fault
 from service.formats import FORMATS, Format, format_of
 from service.negotiate import VARY, choose
 from service.routes.stored.documents import Name, absent
+from service.routes.stored.estimates import described
 from service.routes.stored.paging import answered
 from service.schemas.batch_query import document_of
 from service.stations.ask.asked import asked_of, now
@@ -30,6 +31,8 @@ JSON = "application/json"
 OFFERED: Mapping[str, str] = {"json": JSON}
 AT_ONCE = 200
 """Readings of a JSON body up to which they are checked without a thread."""
+
+KEPT = ("start", "end", "probe", "depth", "limit", "after", "at_revision", "shape")
 
 router = APIRouter(prefix="/v1/stations/{name}", tags=["stations"])
 
@@ -93,12 +96,17 @@ async def post_readings(request: Request, name: Name) -> Response:
     return Response(orjson.dumps(tally.document()), 200, VARY, JSON)
 
 
-@router.get("/readings", summary="Readings as they are kept", response_class=Response)
+@router.get(
+    "/readings",
+    summary="Readings as they are kept",
+    openapi_extra=described(KEPT),
+    response_class=Response,
+)
 async def get_readings(request: Request, name: Name) -> Response:
     """In the unit of the API, ordered by series, then time, with the revision that brought each."""
     asked = asked_of(
         request.query_params.multi_items(),
-        ("start", "end", "probe", "depth", "limit", "after", "at_revision", "shape"),
+        KEPT,
         request.app.state.settings.page_rows,
         estimates=False,
     )
