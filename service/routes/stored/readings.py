@@ -13,7 +13,7 @@ from service.faults import Fault
 from service.formats import FORMATS, Format, format_of
 from service.negotiate import VARY, choose
 from service.routes.stored.documents import Name, absent
-from service.routes.stored.estimates import described
+from service.routes.stored.estimates import RANGE, described
 from service.routes.stored.paging import answered
 from service.schemas.batch_query import document_of
 from service.stations.ask.asked import asked_of, now
@@ -31,8 +31,6 @@ JSON = "application/json"
 OFFERED: Mapping[str, str] = {"json": JSON}
 AT_ONCE = 200
 """Readings of a JSON body up to which they are checked without a thread."""
-
-KEPT = ("start", "end", "probe", "depth", "limit", "after", "at_revision", "shape")
 
 router = APIRouter(prefix="/v1/stations/{name}", tags=["stations"])
 
@@ -99,14 +97,14 @@ async def post_readings(request: Request, name: Name) -> Response:
 @router.get(
     "/readings",
     summary="Readings as they are kept",
-    openapi_extra=described(KEPT),
+    openapi_extra=described(RANGE),
     response_class=Response,
 )
 async def get_readings(request: Request, name: Name) -> Response:
     """In the unit of the API, ordered by series, then time, with the revision that brought each."""
     asked = asked_of(
         request.query_params.multi_items(),
-        KEPT,
+        RANGE,
         request.app.state.settings.page_rows,
         estimates=False,
     )
