@@ -70,7 +70,7 @@ ADVISORIES: Registry[Advisory] = Registry(
              "are more than a factor of 100 apart.",
              text="The conductivity of the pore water is hardly known in {count} readings: the "
              "ends of its band are more than a factor of 100 apart and say more than the value. "
-             "Little bulk conductivity or water, or a soil known by its texture alone, leave it so."),
+             "Little bulk conductivity or water, or a soil known by its texture alone, do that."),
     Advisory(key="frequency-assumed", condition="No frequency was given.",
              text="No frequency was given: {frequency} GHz was assumed, and nothing was corrected "
              "for conduction. Give probe.frequency or a frequency column: below 0.3 GHz clay and "

@@ -16,7 +16,7 @@ SOURCE = Citation(
     title="Crop salt tolerance: current assessment",
     where="Journal of the Irrigation and Drainage Division ASCE 103(IR2), 115-134",
     equation="Yr = 100 - b (ECe - a)",
-    note="equation and worked values read in lecture notes on ASCE Manual 71; citation from memory",
+    note="equation and worked values read in course notes on ASCE Manual 71; citation from memory",
 )
 CURVE_SOURCE = Citation(
     authors="Steppuhn, H.; van Genuchten, M. T.; Grieve, C. M.",
