@@ -228,11 +228,11 @@ def test_a_storm_of_resends_leaves_one_copy(farm):
         with httpx2.Client(base_url=farm.base_url, timeout=30) as client:
             told.extend(post(client, rows, "storm").json() for _ in range(5))
 
-    loggers = [threading.Thread(target=logger, args=(n,)) for n in range(20)]
+    loggers = [threading.Thread(target=logger, args=(n,)) for n in range(100)]
     for thread in loggers:
         thread.start()
     for thread in loggers:
         thread.join()
-    assert sum(t["accepted"] for t in told) == 20 * 96
-    assert sum(t["duplicates"] for t in told) == 20 * 96 * 4
+    assert sum(t["accepted"] for t in told) == 100 * 96
+    assert sum(t["duplicates"] for t in told) == 100 * 96 * 4
     assert not any(t["conflicts"] or t["rejected"] for t in told)
