@@ -98,9 +98,8 @@ def _of_every_model(
 
 def _members(found: Ensemble, sent: JsonReadings, settings: EstimatesSettings) -> Mapping[str, Any]:
     """Each model's own estimates, with its share of the combination."""
-    total = np.sum([member.weight for member in found.members.values()], axis=0)
     return {
-        key: laid_out(member.estimates, sent, settings.units).with_weight(member.weight, total)
+        key: laid_out(member.estimates, sent, settings.units).with_weight(member.share)
         for key, member in found.members.items()
     }
 

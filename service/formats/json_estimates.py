@@ -1,7 +1,7 @@
 """application/json estimates, as rows or as columns: NaN becomes null, flags become lists."""
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from io import BytesIO
 from typing import Any
 
@@ -37,10 +37,9 @@ class JsonEstimates:
         """All columns but the flags."""
         return (*self.texts, *self.numbers)
 
-    def with_weight(self, weight: Array, total: Array) -> "JsonEstimates":
+    def with_weight(self, share: Array) -> "JsonEstimates":
         """With each row's share of a combination as a further column."""
-        share = np.divide(weight, total, out=np.zeros_like(weight), where=total > 0)
-        return JsonEstimates(self.texts, {**self.numbers, "weight": share}, self.flags)
+        return replace(self, numbers={**self.numbers, "weight": share})
 
 
 def laid_out(estimates: Estimates, readings: JsonReadings, units: Units) -> JsonEstimates:

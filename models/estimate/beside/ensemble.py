@@ -35,10 +35,10 @@ OUTSIDE = (
 
 @dataclass(frozen=True, slots=True)
 class Member:
-    """One model's answer, and its weight at each reading."""
+    """One model's answer, and its share of the combination at each reading."""
 
     estimates: Estimates
-    weight: Array
+    share: Array
 
 
 @dataclass(frozen=True, slots=True)
@@ -90,14 +90,20 @@ class EveryModel:
 
     def estimate(self, readings: Readings) -> Ensemble:
         """Every model's estimates, and their combination."""
-        members = {key: _member(readings, basis) for key, basis in self.bases.items()}
-        weights = np.array([member.weight for member in members.values()])
-        flags = np.array([member.estimates.flags for member in members.values()])
-        heard = np.any(weights > 0, axis=0)
+        found = {key: estimate(readings, basis) for key, basis in self.bases.items()}
+        weights = np.array([_weight(found[key], basis) for key, basis in self.bases.items()])
+        total = weights.sum(axis=0)
+        shares = np.divide(weights, total, out=np.zeros_like(weights), where=total > 0)
+        members = {
+            key: Member(estimates, share)
+            for (key, estimates), share in zip(found.items(), shares, strict=True)
+        }
+        flags = np.array([estimates.flags for estimates in found.values()])
+        heard = total > 0
         said: Flags = np.bitwise_or.reduce(flags, axis=0)
         common: Flags = np.bitwise_and.reduce(flags, axis=0)
         most = max(most_water(basis) for basis in self.bases.values())
-        columns = _combined(members, weights, most, self.query.probability)
+        columns = _combined(members, shares, most, self.query.probability)
         common[~heard] = said[~heard]
         return Ensemble(members, columns, common)
 
@@ -120,35 +126,30 @@ def prepare_all(query: Query) -> EveryModel:
     return EveryModel(query, bases, silent)
 
 
-def _member(readings: Readings, basis: Basis) -> Member:
-    found = estimate(readings, basis)
+def _weight(found: Estimates, basis: Basis) -> Array:
+    """Inverse square of the model's own uncertainty where it holds; 0 elsewhere."""
     u = found.columns["water_content_u"]
     within = suits_soil(basis.model, basis.query.soil) and not basis.outside
     counts = within & np.isfinite(u) & (u > 0) & ((found.flags & OUTSIDE) == 0)
     with np.errstate(divide="ignore", invalid="ignore"):
-        weight = np.where(counts, 1.0 / np.square(u), 0.0)
-    return Member(found, weight)
+        return np.where(counts, 1.0 / np.square(u), 0.0)
 
 
 def _combined(
-    members: Mapping[str, Member], weights: Array, most: float, probability: float
+    members: Mapping[str, Member], share: Array, most: float, probability: float
 ) -> dict[str, Array]:
-    total = weights.sum(axis=0)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        share = np.where(total > 0, weights / total, 0.0)
-
     def of(name: str) -> Array:
         return np.nan_to_num(np.array([m.estimates.columns[name] for m in members.values()]))
 
     values, u, shared = of("water_content"), of("water_content_u"), of("water_content_u_shared")
-    known = total > 0
+    counted = share > 0
+    known = counted.any(axis=0)
     theta = np.where(known, (share * values).sum(axis=0), np.nan)
     between = (share * np.square(values - theta)).sum(axis=0)
     variance = (share * np.square(u)).sum(axis=0) + between
     common = (share * np.square(shared)).sum(axis=0) + between
     spread = np.sqrt(np.where(known, variance, np.nan))
     ends = shortest_interval(theta, spread, spread, low=0.0, high=most, probability=probability)
-    counted = weights > 0
     count = counted.sum(axis=0)
     with np.errstate(divide="ignore", invalid="ignore"):
         mean = np.where(counted, values, 0.0).sum(axis=0) / count

@@ -135,7 +135,7 @@ def test_first_order_is_validated_against_draws(server):
 
 
 def test_first_order_does_not_hold_where_the_equation_bends(server):
-    """Loose solids in a nearly dry peat by a strongly bent equation."""
+    """Solids hardly known, a wide permittivity, and an equation that bends."""
     model = {"name": "maxwell-garnett", "standard_error": 0.0}
     soil = {"porosity": 0.46, "porosity_u": 0.06, "solid_permittivity": 4.7,
             "solid_permittivity_u": 1.5}  # fmt: skip
@@ -246,3 +246,30 @@ def test_an_echoed_soil_sent_again_is_no_measured_one(server):
     assert again["soil"] == first["soil"]
     for answer in (first, again):
         assert "texture-defaults" in {said["code"] for said in answer["advisories"]}
+
+
+def test_a_pore_water_that_is_left_open_is_told(server):
+    """Little conduction in a soil known by its texture alone: the ends are decades apart."""
+    dry = [{"apparent_permittivity": 12.0, "temperature": 14.1, "bulk_conductivity": 0.15}]
+    answer = answered(server, soil={"texture": "silt-loam"}, readings=dry)
+    (row,) = answer["estimates"]
+    told = {said["code"] for said in answer["advisories"]}
+    ends = row["pore_water_conductivity_upper"] / row["pore_water_conductivity_lower"]
+    assert ("pore-water-open" in told) == (ends > 100)
+    assert ends > 100
+
+
+def test_a_table_names_the_columns_that_were_read(server):
+    answer = server.client.post(
+        "/v1/estimates?mixing_model=topp-1980",
+        content=b"apparent_permittivity,temperatur\n17.2,14.1\n",
+        headers={"Content-Type": "text/csv"},
+    )
+    assert answer.headers["Columns-Read"] == "apparent_permittivity"
+
+
+def test_a_flag_about_a_quantity_is_found_under_its_whole_name(server):
+    answer = server.client.get("/v1/flags/missing:temperature")
+    assert answer.status_code == 200
+    assert answer.json()["name"] == "missing"
+    assert server.client.get("/v1/mixing-models/crim:temperature").status_code == 404
