@@ -75,10 +75,11 @@ ADVISORIES: Registry[Advisory] = Registry(
              text="No frequency was given: {frequency} GHz was assumed, and nothing was corrected "
              "for conduction. Give probe.frequency or a frequency column: below 0.3 GHz clay and "
              "conduction make a soil read too wet, which the band does not hold otherwise."),
-    Advisory(key="draws-of-water-content", condition="Monte Carlo propagation was asked for and "
+    Advisory(key="bulk-not-drawn", condition="Monte Carlo propagation was asked for and "
              "there are conductivities among the answers.",
-             text="Draws were made of the water content alone; conductivities keep first-order "
-             "bands of the logarithm."),
+             text="Draws were made from the reading to the water content, to the pore water and to "
+             "the extract; the bulk conductivity at 25 Cel, a product of three factors, keeps its "
+             "first-order band."),
     Advisory(key="temperature-assumed", condition="The caller said assume.temperature.",
              text="Temperature was assumed to be {temperature} Cel, to {u} K (k = 1), where the "
              "reading has none."),

@@ -120,7 +120,7 @@ FLAGS: Registry[Flag] = Registry(
          reason="A wrong porosity, an air gap, a sensor out of the ground, or another model's "
          "permittivity.", keeps_number=False),
     Flag(key="band-from-curvature", condition="A first order would put an end of the band wrong by "
-         "more than three per cent of its half-width.",
+         "more than 1.5 per cent of its half-width, or the mixing model is said to be exact.",
          text="The band follows the curve of the equation: inverse first-order reliability.",
          reason="Rows without this flag and without band-from-draws have a first-order band.",
          keeps_number=True),
@@ -130,7 +130,7 @@ FLAGS: Registry[Flag] = Registry(
          reason="The same draws for every row: the same reading always gets the same band.",
          keeps_number=True),
     Flag(key="draws-left-out", condition="More than one in twenty of the draws asked for gave no "
-         "water content, or an impossible one.",
+         "water content, or an impossible one, or no conductivity of pore water.",
          text="The band is that of the draws that are left, and reaches to the value.",
          reason="Near the ends of the range part of the stated uncertainty is impossible; much of "
          "it says that reading, soil and model disagree.", keeps_number=True),
@@ -166,6 +166,18 @@ FLAGS: Registry[Flag] = Registry(
          text="There is no number for the conductivity of the pore water.",
          reason="Outside the domain of the equation.",
          keeps_number=True, keeps_pore_water=False),
+    Flag(key="no-upper-end", condition="Of the errors that are possible, more than the band leaves "
+         "out above leave the pore-water model without an end: a permittivity at its offset, or "
+         "water content at zero.",
+         text="The conductivity of the pore water, or of the extract, has no upper bound that "
+         "these readings could tell: that end of the band is empty.",
+         reason="Division by what may be zero; a finite end would be made up.",
+         keeps_number=True),
+    Flag(key="pore-water-from-draws", condition="The chain from the reading to the pore water "
+         "bends so much within its uncertainty that only draws tell the band.",
+         text="The bands of pore water and extract are those of shared quasi-random draws.",
+         reason="In rows without this flag they follow the curve of each input, taken together by "
+         "inverse first-order reliability.", keeps_number=True),
     Flag(key="outside-water-range", condition="The temperature or frequency is outside the range "
          "of the water model.",
          text="The permittivity of water is less well known here.",

@@ -127,7 +127,7 @@ def _advice(basis: Basis) -> tuple[Advice, ...]:
     if basis.salinity is not None:
         said.extend(basis.salinity.advice)
         if basis.query.draws is not None:
-            said.append(advise("draws-of-water-content"))
+            said.append(advise("bulk-not-drawn"))
     return tuple(said)
 
 

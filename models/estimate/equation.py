@@ -16,7 +16,7 @@ from models.estimate.permittivity import Permittivity
 from models.estimate.surroundings import Surroundings
 from models.mixing.physical.complex_refractive import relaxation_loss
 from models.relation import Array, column
-from models.uncertainty.distributions import Distribution, Normal, Symmetric
+from models.uncertainty.distributions import Distribution, Exact, Normal, Symmetric
 from models.uncertainty.first_order import Input
 
 RELAXATIONS = 6
@@ -24,6 +24,8 @@ DRY = 0.02
 """m3/m3, below which loss cannot be told from none: the answer without it is taken."""
 OWN = "mixing_model"
 """The model's own error, as an input."""
+CONDUCTION_ONLY = "conduction_only"
+"""Rows whose loss is that of conduction alone, as an input of an equation that takes all of it."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -50,8 +52,6 @@ class Equation:
 
     basis: Basis
     inputs: Sequence[Input]
-    conduction_only: NDArray[np.bool_] | None
-    """Rows whose loss is that of conduction alone; None: the equation takes no other loss."""
 
     @classmethod
     def of(
@@ -66,17 +66,18 @@ class Equation:
         inputs.extend(water.values())
         if "frequency" in basis.takes:
             inputs.append(Input("frequency", around.frequency))
-        takes_loss = "loss" in basis.takes
-        if takes_loss:
+        if "loss" in basis.takes:
             unknown = np.full(found.value.shape, np.nan)
             loss = unknown if found.loss is None else found.loss
             inputs.append(Input("loss", loss, 0.0 if found.loss_u is None else found.loss_u))
+            only = False if found.conduction_only is None else found.conduction_only
+            inputs.append(Input(CONDUCTION_ONLY, only))
         inputs.extend(
             Input(name, basis.values[name], shared=u)
             for name, u in basis.uncertainties.items()
             if name in basis.values
         )
-        return cls(basis, inputs, found.conduction_only if takes_loss else None)
+        return cls(basis, inputs)
 
     @property
     def at(self) -> dict[str, Any]:
@@ -86,38 +87,45 @@ class Equation:
     def __call__(self, **named: Array) -> Array:
         """Water content where the named inputs are as given; the model's own error adds to it."""
         permittivity, error = named.pop("permittivity"), named.pop(OWN, 0.0)
+        only = named.pop(CONDUCTION_ONLY, None)
         parameters = {**self.basis.values, **named}
-        if self.conduction_only is None:
+        if only is None:
             return self.basis.model.to_water_content(permittivity, **parameters) + error
-        return self._with_relaxation(permittivity, parameters) + error
+        return self._with_relaxation(permittivity, only, parameters) + error
 
     def rows(self, index: NDArray[np.intp]) -> Self:
         """The same for some of the rows."""
-        only = None if self.conduction_only is None else self.conduction_only[index]
-        return replace(self, inputs=[_some(g, index) for g in self.inputs], conduction_only=only)
+        return replace(self, inputs=[_some(g, index) for g in self.inputs])
 
     def distributions(self, below: Array, above: Array) -> dict[str, Distribution]:
         """All inputs as distributions, the model's own error with its two scales among them."""
-        every: dict[str, Distribution] = {g.name: Normal(g.value, g.total) for g in self.inputs}
+        every = {given.name: _distribution(given) for given in self.inputs}
         return every | {OWN: Leaning(0.0, np.maximum(below, above), below, above)}
 
-    def _with_relaxation(self, permittivity: Array, parameters: dict[str, Any]) -> Array:
+    def _with_relaxation(
+        self, permittivity: Array, only: Array, parameters: dict[str, Any]
+    ) -> Array:
         """Where the loss is that of conduction alone, relaxation depends on the answer.
 
         A fixed point from the water content without loss; a step shrinks the error a hundredfold.
         """
         told = parameters.pop("loss")
-        only = np.asarray(self.conduction_only)
-        if np.ndim(told) == 2:  # rows against draws
-            only = only[:, None]
         theta = without = self.basis.model.to_water_content(permittivity, **parameters)
         for _ in range(RELAXATIONS):
-            relaxing = np.where(only, relaxation_loss(theta, **parameters), 0.0)
+            relaxing = np.where(column(only) > 0, relaxation_loss(theta, **parameters), 0.0)
             theta = self.basis.model.to_water_content(
                 permittivity, loss=told + relaxing, **parameters
             )
         dry = np.isnan(theta) & (without <= DRY) & ~np.isnan(told)
         return np.where(dry, without, theta)
+
+
+def _distribution(given: Input) -> Distribution:
+    """Exact where it was never said to be uncertain, whatever the rows hold."""
+    scalars = np.ndim(given.per_reading) == np.ndim(given.shared) == 0
+    if scalars and given.per_reading == given.shared == 0.0:
+        return Exact(given.value)
+    return Normal(given.value, given.total)
 
 
 def _some(given: Input, index: NDArray[np.intp]) -> Input:

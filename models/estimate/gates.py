@@ -1,6 +1,5 @@
 """What an estimate must say about itself: flags from values, ranges and bounds."""
 
-from collections.abc import Mapping
 from functools import lru_cache
 
 import numpy as np
@@ -8,6 +7,7 @@ from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
 from models.estimate.permittivity import Permittivity
+from models.estimate.salt.conductivities import Conductivities
 from models.estimate.salt.pore_water import PoreWater
 from models.estimate.surroundings import Surroundings
 from models.estimate.water_content import CONSISTENT, WaterContent
@@ -15,7 +15,7 @@ from models.flags import BIT, Flags, without_pore_water
 from models.mixing.physical.bounds import hashin_shtrikman
 from models.relation import Array
 from models.uncertainty.coverage import coverage_factor
-from models.uncertainty.reliability import Method
+from models.uncertainty.quantiles.reliability import Method
 from models.water.kaatze_1989 import static_permittivity
 
 CORRECTED = 0.01  # m3/m3 of correction for loss that is worth a flag
@@ -85,7 +85,7 @@ def flag_results(
 
 def flag_pore_water(
     pore: PoreWater,
-    salt: Mapping[str, Array],
+    salt: Conductivities,
     content: WaterContent,
     basis: Basis,
     flags: Flags,
@@ -94,10 +94,11 @@ def flag_pore_water(
     for slug, where in pore.gates().items():
         _set(flags, where, slug)
     bulk = pore.inputs["bulk_conductivity"]
-    value = salt["pore_water_conductivity"]
+    value = salt.columns["pore_water_conductivity"]
     asked = ~np.isnan(content.computed) & ~(np.isnan(bulk) & (not pore.by_loss))
     explained = without_pore_water(flags)
     _set(flags, asked & np.isnan(value) & ~explained, "no-pore-water")
+    _flag_spreads(salt, ~np.isnan(value) & ~explained, basis, flags)
     if basis.salinity is None:
         return
     soil = basis.query.soil.values
@@ -107,6 +108,21 @@ def flag_pore_water(
         if at is not None and (name != "frequency" or basis.frequency_known):
             outside |= known.excludes(at) & ~np.isnan(at)
     _set(flags, outside & ~np.isnan(value), "outside-pore-water-range")
+
+
+def _flag_spreads(
+    salt: Conductivities, known: NDArray[np.bool_], basis: Basis, flags: Flags
+) -> None:
+    """How the ends of both bands were found, and where there is none."""
+    draws = basis.query.draws
+    for spread in (salt.pore, salt.extract):
+        if spread is None:
+            continue
+        _set(flags, known & spread.unbounded, "no-upper-end")
+        if draws is None:
+            _set(flags, known & (spread.method == Method.DRAWS), "pore-water-from-draws")
+        else:
+            _set(flags, known & (spread.outside > LEFT_OUT * draws.count), "draws-left-out")
 
 
 def _flag_ranges(

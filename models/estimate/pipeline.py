@@ -11,7 +11,6 @@ from models.estimate.gates import flag_inputs, flag_pore_water, flag_results
 from models.estimate.permittivity import Permittivity, permittivity_of
 from models.estimate.salt.conductivities import conductivities_of
 from models.estimate.salt.pore_water import PoreWater
-from models.estimate.sources import of_water_content
 from models.estimate.surroundings import Surroundings, frost, surroundings_of, water_inputs
 from models.estimate.water_content import WaterContent, water_content_of
 from models.flags import BIT, Flags, withheld, without_pore_water
@@ -107,9 +106,9 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
         if basis.model.permittivity == "apparent" and not basis.corrects_loss:
             real = _permittivity(readings, basis, around, "real")
         pore = PoreWater(readings, basis, basis.salinity, real, around, content)
-        through = of_water_content(found, water, content)
-        salt = conductivities_of(pore, basis.salinity, through, content, basis.query.probability)
-        flag_pore_water(pore, salt, content, basis, flags)
+        answer = conductivities_of(pore, found, water, basis)
+        salt = answer.columns
+        flag_pore_water(pore, answer, content, basis, flags)
         bulk = {n: v for n, v in salt.items() if n.startswith("bulk_conductivity_25")}
         columns |= salt | _without(bulk, (flags & BIT["unreadable-row"]) != 0)
         rest = {n: v for n, v in salt.items() if n not in bulk}

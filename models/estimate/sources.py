@@ -5,6 +5,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
+from models.estimate.moving import BULK, TEMPERATURE, WATER_MODEL, moving_permittivity
 from models.estimate.permittivity import Permittivity
 from models.estimate.water_content import WaterContent
 from models.relation import Array
@@ -78,3 +79,29 @@ def _of_water(effect: Array, given: Input) -> Sources:
     if np.any(given.shared):
         parts.shared["water_model"] = unit * given.shared
     return parts
+
+
+def bends_of_water_content(
+    found: Permittivity, water: Mapping[str, Input], content: WaterContent
+) -> dict[str, Array]:
+    """How far the middle over both signs of each source is off, m3/m3.
+
+    An input that several sources move bends by the square of what each has in it.
+    """
+    bends: dict[str, Array] = {}
+    for name, bend in content.bends.items():
+        if name == "permittivity":
+            moved = moving_permittivity(found).by
+        elif name == "loss":
+            moved = {BULK: 1.0}
+        elif name in water:
+            moved = {TEMPERATURE: water[name].per_reading, WATER_MODEL: water[name].shared}
+        else:
+            moved = {name: 1.0}
+        whole = sum(np.square(width) for width in moved.values()) + np.zeros_like(bend)
+        part = np.divide(bend, whole, out=np.zeros_like(bend), where=whole > 0)
+        part = np.nan_to_num(part)
+        for source, width in moved.items():
+            if np.any(width):
+                bends[source] = bends.get(source, 0.0) + part * np.square(width)
+    return bends

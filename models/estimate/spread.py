@@ -2,8 +2,9 @@
 
 First order (JCGM 100) is exact for an equation without curvature. What the curvature of each input
 does to the ends of the interval is known from the same evaluations, and moves both ends; rows in
-which that is more than three per cent of the half-width get the equation's own quantiles (inverse
-first-order reliability, or shared quasi-random draws where that will not do).
+which that is more than 1.5 per cent of the half-width, or whose model is said to be exact, get the
+equation's own quantiles (inverse first-order reliability, or shared quasi-random draws where that
+will not do).
 """
 
 from dataclasses import dataclass, replace
@@ -19,11 +20,11 @@ from models.uncertainty.distributions import Normal
 from models.uncertainty.draws import Draws
 from models.uncertainty.first_order import Propagated
 from models.uncertainty.monte_carlo import simulate
-from models.uncertainty.reliability import Method, band
+from models.uncertainty.quantiles.reliability import Method, band
 
-CURVED, BARE = 0.015, 0.003
-"""Shift of an end, in half-widths, from which a row is looked at again: with the model's own error
-in the band, which is normal and takes the most of what is left, and without."""
+CURVED = 0.015
+"""Shift of an end, in half-widths, from which a row is looked at again where the model's own error
+is in the band, which is normal and takes the most of what is left; without it every row is."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,7 +72,7 @@ def by_quantiles(
             weight += 1.0
             weight *= bend
             shift += weight
-    small = np.abs(shift) <= np.where(own > 0, CURVED * z, BARE * z) * plain.above
+    small = (np.abs(shift) <= CURVED * z * plain.above) & (own > 0)
     shift = np.where(small, shift, 0.0) / z
     plain = replace(plain, below=plain.below - shift, above=plain.above + shift)
     rows = np.flatnonzero(~small & ~np.isnan(computed) & (variance > 0))

@@ -49,13 +49,22 @@ class WaterContent:
     leans_for_clay: NDArray[np.bool_] | None
     """Rows whose band reaches down for clay at low frequency; None: none."""
     contributions: Mapping[str, Array]
-    """What one standard uncertainty of each input of the equation does to the value, signed."""
+    """What one standard uncertainty of each input of the equation does to the value, signed,"""
+    bends: Mapping[str, Array]
+    """and how far the middle over both signs is from the value."""
     of_model: Array
     """Standard uncertainty that is the mixing model's own, what it leaves of loss included."""
     equation: Equation
     own: Array
     """Standard uncertainty of the model's own error, both ways; ``lean`` adds to it downward."""
     lean: Array | None
+
+    @property
+    def scales(self) -> tuple[Array, Array]:
+        """Standard uncertainty of the model's own error, downward and upward."""
+        if self.lean is None:
+            return self.own, self.own
+        return np.sqrt(np.square(self.own) + np.square(self.lean)), self.own
 
     @property
     def standard_uncertainty(self) -> Array:
@@ -117,6 +126,7 @@ def water_content_of(
         ceiling_u=ceiling_u,
         leans_for_clay=_leans_for_clay(basis, around.known_frequency),
         contributions=first.contributions,
+        bends=first.bends,
         of_model=np.sqrt(np.maximum(np.square(own) + moment - variance, 0.0)),
         equation=equation,
         own=own,

@@ -74,6 +74,23 @@ class Distribution(ABC):
 
 
 @dataclass(frozen=True, slots=True)
+class Exact(Distribution):
+    """Known: the same wherever the others are. No derivative is taken along it."""
+
+    width: Any = 0.0
+
+    def from_normal(self, z: ArrayLike) -> Array:
+        """The value itself."""
+        del z
+        return column(self.mean)
+
+    @property
+    def standard_uncertainty(self) -> Array:
+        """None."""
+        return column(0.0)
+
+
+@dataclass(frozen=True, slots=True)
 class Lognormal(Distribution):
     """Of a positive quantity known by a factor; mean and width are its own, not its logarithm's.
 

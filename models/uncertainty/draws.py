@@ -69,34 +69,42 @@ _kept = lru_cache(maxsize=8)(_made)
 
 
 def interval_of(
-    ordered: Array, count: Counts, *, probability: float, kind: Interval
+    values: Array, count: Counts, *, probability: float, kind: Interval
 ) -> tuple[Array, Array]:
     """Ends of the coverage interval of each row (JCGM 101, 7.7).
 
-    ordered: shape (n, m), each row sorted, with what is no number at its end.
-    count: shape (n,), how many of a row are numbers; NaN where they are too few for the interval.
+    values: shape (n, m), what is no number as NaN. count: shape (n,), how many of a row are
+        numbers; the ends are NaN where they are too few for the interval.
+
+    Only the two tails are put in order: no end of the interval lies between them.
     """
-    held = np.floor(probability * count + 0.5).astype(np.intp)
-    enough = count - held >= 1
-    held = np.where(enough, held, 0)
-    if kind == "symmetric":
-        first = np.where(enough, (count - held + 1) // 2 - 1, 0)
-    else:
-        first = _shortest(ordered, count, held)
-    lower = np.take_along_axis(ordered, first[:, None], axis=1)[:, 0]
-    upper = np.take_along_axis(ordered, (first + held)[:, None], axis=1)[:, 0]
-    return np.where(enough, lower, np.nan), np.where(enough, upper, np.nan)
-
-
-def _shortest(ordered: Array, count: Counts, held: Counts) -> Counts:
-    """Where the shortest interval starts; rows with as many numbers are done together."""
-    first = np.zeros(count.shape, dtype=np.intp)
-    for number in np.unique(count[held > 0]):
+    lower, upper = np.full(count.shape, np.nan), np.full(count.shape, np.nan)
+    for number in np.unique(count):
+        held = int(np.floor(probability * number + 0.5))
+        spare = int(number) - held
+        if spare < 1:
+            continue
         rows = np.flatnonzero(count == number)
-        step = held[rows[0]]
-        widths = ordered[rows, step:number] - ordered[rows, : number - step]
-        first[rows] = np.argmin(widths, axis=1)
-    return first
+        low, high = _tails(values if rows.size == count.size else values[rows], int(number), spare)
+        if kind == "symmetric":
+            first = np.full(rows.shape, (spare + 1) // 2 - 1)
+        else:
+            first = np.argmin(high - low, axis=1)
+        at = first[:, None]
+        lower[rows] = np.take_along_axis(low, at, axis=1)[:, 0]
+        upper[rows] = np.take_along_axis(high, at, axis=1)[:, 0]
+    return lower, upper
+
+
+def _tails(values: Array, number: int, spare: int) -> tuple[Array, Array]:
+    """The ``spare`` smallest and the ``spare`` largest of ``number`` numbers a row, each sorted."""
+    if 4 * spare > number:
+        ordered = np.sort(values, axis=1)[:, :number]
+        return ordered[:, :spare], ordered[:, number - spare :]
+    parted = np.partition(values, spare, axis=1)  # NaN sorts last
+    low, rest = np.sort(parted[:, :spare], axis=1), parted[:, spare:]
+    rest.partition(number - 2 * spare, axis=1)
+    return low, np.sort(rest[:, number - 2 * spare : number - spare], axis=1)
 
 
 def moments_of(values: Array, count: Counts) -> tuple[Array, Array]:

@@ -6,7 +6,7 @@ inputs, with width 0 where it is exact; scalars may be held by the measurand its
 its domain give NaN, are left out, and are counted: they are never moved inside.
 """
 
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, fields
 from typing import Any
 
@@ -14,8 +14,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from models.relation import Array, column
-from models.uncertainty.correlation import correlation_matrix, triangular
-from models.uncertainty.distributions import Distribution, rows_of
+from models.uncertainty.distributions import Distribution
 from models.uncertainty.draws import (
     Counts,
     Draws,
@@ -24,10 +23,7 @@ from models.uncertainty.draws import (
     moments_of,
     numerical_tolerance,
 )
-from models.uncertainty.joint import outputs_of
-
-BLOCK = 2**16
-"""Values a measurand gives per call: its working columns stay near the processor."""
+from models.uncertainty.evaluation import blocks_of, scores_of, values_of
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,11 +73,11 @@ def simulate(
         their own correlation matrix. Raises ParameterError when it is none.
     """
     draws = draws or Draws()
-    scores = _scores(draws, len(inputs), correlation)
+    scores = scores_of(draws, inputs, correlation)
     return _stacked(
         [
-            _summary(_values(measurand, inputs, rows, scores)[0], probability, interval)
-            for rows in _blocks(inputs, draws.count)
+            _summary(values_of(measurand, inputs, rows, scores)[0], probability, interval)
+            for rows in blocks_of(inputs, draws.count)
         ]
     )
 
@@ -99,10 +95,10 @@ def simulate_jointly(
     A draw counts where all outputs are numbers.
     """
     draws = draws or Draws()
-    scores = _scores(draws, len(inputs), correlation)
+    scores = scores_of(draws, inputs, correlation)
     parts = []
-    for rows in _blocks(inputs, draws.count):
-        outputs = np.stack(_values(measurand, inputs, rows, scores), axis=1)
+    for rows in blocks_of(inputs, draws.count):
+        outputs = np.stack(values_of(measurand, inputs, rows, scores), axis=1)
         known = np.logical_and.reduce(np.isfinite(outputs), axis=1)
         count: Counts = known.sum(axis=1)
         outputs = np.where(known[:, None, :], outputs, 0.0)
@@ -137,11 +133,11 @@ def simulate_until_stable(
     batch = max(10_000, int(np.ceil(100.0 / (1.0 - probability))))
     draws = draws or Draws(batch, kind="pseudo-random")
     parts = []
-    for rows in _blocks(inputs, draws.count):
+    for rows in blocks_of(inputs, draws.count):
         run = _Run(np.arange(rows.start, rows.stop), probability, interval)
         for number in range(max(2, stopping.most // draws.count)):
-            scores = _scores(draws, len(inputs), correlation, number)
-            run.add(_values(measurand, inputs, run.going, scores)[0])
+            scores = scores_of(draws, inputs, correlation, number)
+            run.add(values_of(measurand, inputs, run.going, scores)[0])
             run.retire(run.stable(stopping.digits))
             if not run.going.size:
                 break
@@ -193,44 +189,10 @@ class _Run:
         return Simulated(*(getattr(together, each.name)[order] for each in fields(together)))
 
 
-def _scores(draws: Draws, inputs: int, correlation: ArrayLike | None, batch: int = 0) -> Array:
-    normal = draws.normal(inputs, batch)
-    if correlation is None:
-        return normal
-    return column(triangular(correlation_matrix(correlation, inputs)) @ normal)
-
-
-def _blocks(inputs: Mapping[str, Distribution], draws: int) -> Iterator[slice]:
-    count, step = rows_of(inputs.values()), max(1, BLOCK // draws)
-    return (slice(start, min(start + step, count)) for start in range(0, max(count, 1), step))
-
-
-def _values(
-    measurand: Callable[..., Any], inputs: Mapping[str, Distribution], rows: Any, scores: Array
-) -> list[Array]:
-    """Every output of the measurand at every draw, shape (rows, draws) each."""
-    some = {name: given.take((rows, None)) for name, given in inputs.items()}
-    count = rows.stop - rows.start if isinstance(rows, slice) else rows.size
-    parts = []
-    for start in range(0, scores.shape[1], BLOCK):
-        now = scores[:, start : start + BLOCK]
-        at = {
-            name: given.from_normal(0.0 if given.exact else z)
-            for (name, given), z in zip(some.items(), now, strict=True)
-        }
-        with np.errstate(all="ignore"):
-            outputs = outputs_of(measurand(**at))
-        parts.append([np.broadcast_to(one, (count, now.shape[1])) for one in outputs])
-    together = (np.concatenate(chunks, axis=1) for chunks in zip(*parts, strict=True))
-    return [np.where(np.isfinite(values), values, np.nan) for values in together]
-
-
 def _summary(values: Array, probability: float, interval: Interval) -> Simulated:
     count = np.isfinite(values).sum(axis=1)
     value, u = moments_of(values, count)
-    lower, upper = interval_of(
-        np.sort(values, axis=1), count, probability=probability, kind=interval
-    )
+    lower, upper = interval_of(values, count, probability=probability, kind=interval)
     made = np.full(count.shape, values.shape[1], dtype=np.intp)
     return Simulated(value, u, lower, upper, made - count, made)
 

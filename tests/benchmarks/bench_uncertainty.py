@@ -9,7 +9,7 @@ from models.uncertainty.distributions import Normal
 from models.uncertainty.draws import Draws
 from models.uncertainty.first_order import Input, propagate
 from models.uncertainty.monte_carlo import simulate
-from models.uncertainty.reliability import Method, band
+from models.uncertainty.quantiles.reliability import Method, band
 from tests.benchmarks.interleaved import medians, quiet, report
 
 ROWS, BLOCK = 1_000_000, 16_384

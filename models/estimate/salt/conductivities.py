@@ -1,58 +1,83 @@
 """Three conductivities of each reading, with bands: bulk at 25 Cel, pore water, saturation extract.
 
-Bands of the pore water and of the extract are those of a lognormal distribution, positive by
-construction: what is left open there is a factor. That of the bulk conductivity is a normal one
-restricted to what is not negative.
+Bands of the pore water and of the extract are those of a factor, positive by construction
+(``bands.py``). That of the bulk conductivity is a normal one restricted to what is not negative.
 """
+
+from collections.abc import Mapping
+from dataclasses import dataclass
 
 import numpy as np
 
+from models.estimate.basis import Basis
+from models.estimate.moving import Moving, moving
+from models.estimate.permittivity import Permittivity
+from models.estimate.salt.bands import Asked, Spread, Through, spread_of
+from models.estimate.salt.chain import Chain
 from models.estimate.salt.pore_water import PoreWater
-from models.estimate.salt.salinity import Salinity
-from models.estimate.sources import Sources
-from models.estimate.water_content import WaterContent
+from models.estimate.salt.stepped import Stepped
+from models.estimate.sources import bends_of_water_content, of_water_content
+from models.estimate.water_content import most_water
 from models.relation import Array
 from models.salinity.saturation_extract import to_extract
-from models.uncertainty.coverage import coverage_factor, shortest_interval
+from models.uncertainty.coverage import shortest_interval
+from models.uncertainty.first_order import Input
 
 Columns = dict[str, Array]
+PORE, EXTRACT = "pore_water_conductivity", "saturation_extract_conductivity"
+
+
+@dataclass(frozen=True, slots=True)
+class Conductivities:
+    """Columns of all three, S/m, NaN where an input is missing; how the ends were found."""
+
+    columns: Columns
+    pore: Spread
+    extract: Spread | None
 
 
 def conductivities_of(
-    pore: PoreWater, salinity: Salinity, through: Sources, content: WaterContent, probability: float
-) -> Columns:
-    """Columns of all three conductivities, S/m; NaN where an input is missing.
+    pore: PoreWater, found: Permittivity, water: Mapping[str, Input], basis: Basis
+) -> Conductivities:
+    """All three conductivities of a block.
 
-    through: what each source does to the water content.
+    found, water: the permittivity and the water that the water content came from.
     """
-    columns = _bulk_at_25(pore, probability)
-    value = pore.at_25()
-    slope, effects = pore.sensitivities(value)
-    effects = effects.plus(through, slope)
-    effects.shared["pore_water_model"] = pore.own_uncertainty(value)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        columns |= _lognormal("pore_water_conductivity", value, effects, probability)
-        if salinity.paste is None or salinity.density is None:
-            return columns
-        density, density_u = salinity.density
-        theta = content.computed
-        extract = to_extract(
-            value,
-            water_content=theta,
-            saturation_percentage=salinity.paste.value,
-            bulk_density=density,
-        )
-        every = np.ones(theta.shape)
-        paste = salinity.paste.standard_uncertainty / salinity.paste.value
-        dry = Sources(
-            shared={
-                "bulk_density": -density_u / density * every,
-                "saturation_percentage": -paste * every,
-            }
-        )
-        effects = effects.plus(through, 1.0 / theta).plus(dry)
-        columns |= _lognormal("saturation_extract_conductivity", extract, effects, probability)
-    return columns
+    value, content = pore.at_25(), pore.content
+    own = pore.own_uncertainty(value)
+    through = Through(
+        of_water_content(found, water, content), bends_of_water_content(found, water, content)
+    )
+    bare = basis.query.standard_error == pore.salinity.query.standard_error == 0.0
+    asked = Asked(basis.query.probability, basis.query.draws, bare)
+    most = np.inf if asked.draws is None else most_water(basis)
+    chain = Chain.of(pore, found, water, content, own, most=most)
+    stepped = Stepped.of(pore, value, own)
+    spread = spread_of(stepped, through, content, chain, asked)
+    columns = _bulk_at_25(pore, asked.probability)
+    columns |= _factor(PORE, value, spread)
+    paste = _paste(pore)
+    if not paste:
+        return Conductivities(columns, spread, None)
+    known = {name: each.value for name, each in paste.items()}
+    extract = to_extract(value, water_content=content.computed, **known)
+    stepped = stepped.of_extract(pore, extract, paste)
+    of_extract = spread_of(stepped, through, content, chain.of_extract(paste), asked)
+    columns |= _factor(EXTRACT, extract, of_extract)
+    return Conductivities(columns, spread, of_extract)
+
+
+def _paste(pore: PoreWater) -> dict[str, Moving]:
+    """Saturation percentage and bulk density; empty where either is not known."""
+    paste, density = pore.salinity.paste, pore.salinity.density
+    if paste is None or density is None:
+        return {}
+    return {
+        "saturation_percentage": moving(
+            paste.value, saturation_percentage=paste.standard_uncertainty
+        ),
+        "bulk_density": moving(density[0], bulk_density=density[1]),
+    }
 
 
 def _bulk_at_25(pore: PoreWater, probability: float) -> Columns:
@@ -71,12 +96,11 @@ def _bulk_at_25(pore: PoreWater, probability: float) -> Columns:
     }  # fmt: skip
 
 
-def _lognormal(name: str, value: Array, effects: Sources, probability: float) -> Columns:
-    total, shared = effects.uncertainties()
-    k = coverage_factor(probability)
+@np.errstate(all="ignore")
+def _factor(name: str, value: Array, spread: Spread) -> Columns:
+    """Value, standard uncertainty and ends; the second is the value's share times the value."""
     known = np.where(value > 0, value, np.nan)
     return {
-        name: known, f"{name}_u": known * total, f"{name}_u_shared": known * shared,
-        f"{name}_lower": known * np.exp(-k * np.asarray(total)),
-        f"{name}_upper": known * np.exp(k * np.asarray(total)),
+        name: known, f"{name}_u": known * spread.total, f"{name}_u_shared": known * spread.shared,
+        f"{name}_lower": np.exp(spread.lower), f"{name}_upper": np.exp(spread.upper),
     }  # fmt: skip

@@ -1,19 +1,20 @@
-"""Conductivity of the pore water of each reading, and what every input does to it.
+"""Conductivity of the pore water of each reading, and what every source does to it.
 
-Water content and pore-water conductivity come from the same reading, so their errors are one: what
-each source does to the logarithm of the conductivity is what it does through the water content plus
-what it does directly, signs kept, before anything is squared.
+Water content and pore-water conductivity come from the same reading, so their errors are one: a
+source is moved wherever it works, and what it does to the logarithm of the conductivity is what it
+does through the water content plus what it does directly, signs kept.
 """
 
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
+from functools import cached_property
 from typing import Any
 
 import numpy as np
 
 from models.estimate.basis import Basis
+from models.estimate.moving import BULK, TEMPERATURE, Moving, moving, moving_permittivity
 from models.estimate.permittivity import Permittivity, noise_of
 from models.estimate.salt.salinity import Salinity
-from models.estimate.sources import Sources
 from models.estimate.surroundings import Surroundings
 from models.estimate.water_content import WaterContent
 from models.readings import Readings
@@ -21,9 +22,11 @@ from models.relation import Array
 from models.salinity.complex_refractive import bulk_of_loss
 from models.water import kaatze_1989
 
+COMPENSATION = "temperature_compensation"
+
 
 class PoreWater:
-    """One block on its way from the bulk to the pore water; every input can be moved."""
+    """One block on its way from the bulk to the pore water; every source can be moved."""
 
     def __init__(
         self,
@@ -43,7 +46,6 @@ class PoreWater:
             "water_content": content.computed,
             "real_permittivity": real.value,
             "frequency": around.frequency,
-            "compensation": np.float64(1.0),
         }
         self.by_loss = "bulk_conductivity" not in readings.columns and real.loss is not None
         if self.by_loss:
@@ -56,28 +58,57 @@ class PoreWater:
             self.widths["loss"] = real.loss_u
         self.real, self.content = real, content
 
+    @cached_property
+    def moving(self) -> dict[str, Moving]:
+        """Everything the conductivity follows from but the water content."""
+        inputs, widths, bound = self.inputs, self.widths, self.salinity.bound
+        factor_u = self.salinity.compensation.relative_uncertainty(inputs["temperature"])
+        found = {
+            "temperature": moving(inputs["temperature"], **{TEMPERATURE: widths["temperature"]}),
+            "frequency": moving(inputs["frequency"]),
+            "compensation": moving(1.0, **{COMPENSATION: factor_u}),
+        }
+        source = "loss" if self.by_loss else "bulk_conductivity"
+        found[source] = moving(inputs[source], **{BULK: widths.get(source, 0.0)})
+        if "real_permittivity" in self.salinity.takes:
+            found["real_permittivity"] = moving_permittivity(self.real)
+        return found | {
+            name: moving(bound.values[name], **{name: u})
+            for name, u in bound.uncertainties.items()
+            if u > 0
+        }
+
+    @property
+    def sources(self) -> tuple[str, ...]:
+        """What moves the conductivity not only through the water content; in a fixed order."""
+        return tuple(dict.fromkeys(name for each in self.moving.values() for name in each.by))
+
     def factor(self, temperature: Array) -> Array:
         """From soil temperature to 25 Cel."""
         return self.salinity.compensation.factor(temperature)
 
     def at_25(self, **moved: Any) -> Array:
         """Conductivity of the pore water at 25 Cel, S/m, with some inputs or parameters moved."""
-        at = self.inputs | {n: v for n, v in moved.items() if n in self.inputs}
+        at = self.inputs | moved
+        takes = self.salinity.takes
         parameters = self.salinity.bound.values | {
-            n: v for n, v in moved.items() if n not in self.inputs
+            n: v for n, v in moved.items() if n in self.salinity.bound.values
         }
-        parameters |= {n: at[n] for n in self.salinity.takes if n in at}
-        if "water_loss" in self.salinity.takes:
+        parameters |= {n: at[n] for n in takes if n in at}
+        if "water_loss" in takes:
             water, water_loss = kaatze_1989.parts(at["frequency"], at["temperature"])
             parameters |= {"water_permittivity": water, "water_loss": water_loss}
-        to_25 = self.factor(at["temperature"]) * at["compensation"]
-        bulk = at["bulk_conductivity"]
-        if self.by_loss:
-            bulk = bulk_of_loss(at["loss"], **parameters)
+        to_25 = self.factor(at["temperature"]) * at.get("compensation", 1.0)
+        bulk = bulk_of_loss(at["loss"], **parameters) if self.by_loss else at["bulk_conductivity"]
         model = self.salinity.model
         if model.at == "25 Cel":
             return model.to_pore_water(bulk * to_25, **parameters)
         return model.to_pore_water(bulk, **parameters) * to_25
+
+    def logarithm(self, water_content: Array, scores: Mapping[str, Any]) -> Array:
+        """Of the conductivity, where sources are so many standard uncertainties off; NaN: none."""
+        moved = {name: each.at(scores) for name, each in self.moving.items()}
+        return logarithm(self.at_25(water_content=water_content, **moved))
 
     def gates(self) -> Mapping[str, Any]:
         """Rows in which the answer means nothing, by slug."""
@@ -89,52 +120,6 @@ class PoreWater:
         parameters = self.salinity.bound.values | taken | {"water_content": at["water_content"]}
         return model.gates(bulk, **parameters)
 
-    def sensitivities(self, value: Array) -> tuple[Array, Sources]:
-        """Slope of ln(sigma_w) over water content, and direct effects of everything else."""
-        here = np.log(np.where(value > 0, value, np.nan))
-
-        def effect(**steps: Array) -> Array:
-            """Half the difference of the logarithm over both signs of a step."""
-            return _half_difference(lambda sign: self._log(sign, steps), here)
-
-        reach = self.content.standard_uncertainty
-        slope = np.zeros(self.count)
-        if "water_content" in self.salinity.takes:
-            with np.errstate(invalid="ignore", divide="ignore"):
-                slope = np.where(reach > 0, effect(water_content=reach) / reach, 0.0)
-        direct = Sources()
-        for name, width in self.widths.items():
-            if np.any(width > 0):
-                source = "bulk_conductivity" if name == "loss" else name
-                direct.per_reading[source] = effect(**{name: width})
-        if "real_permittivity" in self.salinity.takes:
-            self._of_permittivity(direct, effect)
-        factor_u = self.salinity.compensation.relative_uncertainty(self.inputs["temperature"])
-        direct.shared["temperature_compensation"] = effect(compensation=factor_u)
-        for name, u in self.salinity.bound.uncertainties.items():
-            if u > 0:
-                direct.shared[name] = effect(**{name: np.full(self.count, u)})
-        return slope, direct
-
-    def _of_permittivity(self, direct: Sources, effect: Callable[..., Array]) -> None:
-        real = self.real
-        if np.any(real.per_reading > 0):
-            direct.per_reading["apparent_permittivity"] = effect(real_permittivity=real.per_reading)
-        if np.any(real.shared > 0):
-            direct.shared["probe_length"] = effect(real_permittivity=real.shared)
-        if real.from_loss is not None and np.any(real.from_loss != 0):
-            moved = effect(real_permittivity=real.from_loss)
-            through_loss = Sources({"bulk_conductivity": moved})
-            direct.per_reading = direct.plus(through_loss).per_reading
-
-    def _log(self, sign: float, steps: Mapping[str, Array]) -> Array:
-        moved = {
-            name: (self.inputs | self.salinity.bound.values)[name] + sign * step
-            for name, step in steps.items()
-        }
-        answer = self.at_25(**moved)
-        return np.log(np.where(answer > 0, answer, np.nan))
-
     def own_uncertainty(self, value: Array) -> Array:
         """The pore-water model's own, of the logarithm."""
         stated = self.salinity.query.standard_error
@@ -143,14 +128,10 @@ class PoreWater:
         own = self.salinity.model.discrepancy.standard_uncertainty(
             value, clay=self.salinity.clay, fitted=self.salinity.fitted
         )
-        with np.errstate(invalid="ignore", divide="ignore"):
-            return own / value
+        return own / np.where(value > 0, value, np.nan)
 
 
-def _half_difference(log: Callable[[float], Array], here: Array) -> Array:
-    above, below = log(1.0), log(-1.0)
-    both = 0.5 * (above - below)
-    astray = np.isnan(both)
-    if not astray.any():
-        return both
-    return np.where(astray, np.where(np.isnan(above), here - below, above - here), both)
+@np.errstate(all="ignore")
+def logarithm(conductivity: Array) -> Array:
+    """Elementwise; NaN where there is no conductivity above zero."""
+    return np.log(np.where(conductivity > 0, conductivity, np.nan))

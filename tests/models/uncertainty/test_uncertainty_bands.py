@@ -9,11 +9,11 @@ from scipy.special import ndtri
 from scipy.stats import chi2, norm, qmc
 
 from models.errors import ParameterError
-from models.uncertainty import reliability
 from models.uncertainty.distributions import Lognormal, Normal, Rectangular
 from models.uncertainty.draws import Draws
 from models.uncertainty.monte_carlo import simulate
-from models.uncertainty.reliability import Method, band
+from models.uncertainty.quantiles import reliability
+from models.uncertainty.quantiles.reliability import Method, band
 
 LEVELS = {
     "good": (0.01, 0.3, 0.02, 0.01, 0.2, 0.15),

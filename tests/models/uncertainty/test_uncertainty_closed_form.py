@@ -4,10 +4,10 @@ import numpy as np
 from numpy.testing import assert_allclose, assert_array_equal
 from scipy.stats import norm
 
-from models.uncertainty.closed_form import Reason, monotone_interval, ratio_interval
 from models.uncertainty.distributions import Normal
 from models.uncertainty.draws import Draws
 from models.uncertainty.monte_carlo import simulate
+from models.uncertainty.quantiles.closed_form import Reason, monotone_interval, ratio_interval
 
 
 def test_ratio_agrees_with_draws_where_it_is_bounded():

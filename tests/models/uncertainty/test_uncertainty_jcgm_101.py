@@ -17,7 +17,7 @@ from models.uncertainty.draws import Draws
 from models.uncertainty.first_order import Input, propagate
 from models.uncertainty.joint import propagate_jointly
 from models.uncertainty.monte_carlo import simulate, simulate_jointly
-from models.uncertainty.reliability import Method, band
+from models.uncertainty.quantiles.reliability import Method, band
 from models.uncertainty.second_order import propagate_to_second_order
 from models.uncertainty.validation import validate_first_order
 from tests.published import table

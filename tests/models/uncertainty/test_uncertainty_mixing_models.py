@@ -8,7 +8,7 @@ from models.mixing import MIXING_MODELS
 from models.uncertainty.distributions import Normal
 from models.uncertainty.draws import Draws
 from models.uncertainty.monte_carlo import simulate
-from models.uncertainty.reliability import Method, band
+from models.uncertainty.quantiles.reliability import Method, band
 from tests.models.soils import basis_for, frequency_for
 
 PERMITTIVITY = np.linspace(6.0, 26.0, 6)

@@ -8,7 +8,7 @@ from numpy.testing import assert_allclose, assert_array_equal
 from scipy import stats
 
 from models.errors import ParameterError
-from models.uncertainty import monte_carlo
+from models.uncertainty import evaluation
 from models.uncertainty.distributions import Normal, Rectangular
 from models.uncertainty.draws import Draws, interval_of, moments_of, numerical_tolerance
 from models.uncertainty.monte_carlo import (
@@ -42,7 +42,7 @@ def test_a_row_does_not_know_its_neighbours_nor_the_block_it_is_in(kind, interva
     how = {"draws": Draws(1024, seed=5, kind=kind), "interval": interval}
     together = simulate(measurand, inputs(), **how)
     backwards = simulate(measurand, inputs(X[::-1].copy()), **how)
-    monkeypatch.setattr(monte_carlo, "BLOCK", 3000)
+    monkeypatch.setattr(evaluation, "BLOCK", 3000)
     in_blocks = simulate(measurand, inputs(), **how)
     for whole, turned, cut in zip(
         figures(together), figures(backwards), figures(in_blocks), strict=True

@@ -15,13 +15,13 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from models.relation import Array
-from models.uncertainty.closed_form import monotone_interval
 from models.uncertainty.correlation import correlation_matrix, triangular
 from models.uncertainty.coverage import coverage_factor
 from models.uncertainty.distributions import Distribution, rows_of
 from models.uncertainty.draws import Counts, Draws
 from models.uncertainty.monte_carlo import simulate
-from models.uncertainty.standard_space import STEP, StandardSpace, along, direction_of
+from models.uncertainty.quantiles.closed_form import monotone_interval
+from models.uncertainty.quantiles.standard_space import STEP, StandardSpace, along, direction_of
 
 BLOCK = 16_384
 """Rows computed at a time."""
@@ -31,9 +31,9 @@ LOPSIDED = 0.08
 """how much longer one arm is than the mean of both, from which it is;"""
 UNEVEN = 0.005
 """how far that mean is from what the gradient promises: a curvature not seen at the centre."""
-ENTANGLED = 0.1
+ENTANGLED = 0.05
 """Terms of products of inputs, along one slanting line and by the number of inputs, likewise;"""
-OPPOSED = 0.14
+OPPOSED = 0.1
 """curvatures across the gradient, root of the sum of squares, in slopes, likewise."""
 LOST = 0.05
 """Curvature term or second step, in half-widths, from which only draws will do,"""
@@ -98,8 +98,7 @@ def band(
         some = {name: given.take(rows) for name, given in inputs.items()}
         space = StandardSpace(measurand, some, factor, rows.stop - start)
         with np.errstate(all="ignore"):
-            lone = len(inputs) == 1
-            found = _one_input(space, probability) if lone else _along_gradient(space, z)
+            found = _found(space, probability, z)
         needy = np.flatnonzero(found.method == Method.DRAWS)
         if needy.size:
             drawn = simulate(
@@ -120,9 +119,23 @@ def band(
     )
 
 
+def _found(space: StandardSpace, probability: float, z: float) -> Band:
+    """By the cheapest way that the number of variables allows."""
+    if not space.variables:
+        value = space({})
+        return _settled(value, value, value, np.full(value.shape, Method.EXACT, dtype=np.int_))
+    if len(space.variables) == 1:
+        return _one_input(space, probability)
+    return _along_gradient(space, z)
+
+
 def _one_input(space: StandardSpace, probability: float) -> Band:
-    ((name, given),) = space.inputs.items()
-    ends = monotone_interval(lambda x: space.measurand(**{name: x}), given, probability=probability)
+    (name,) = space.variables
+    given = space.inputs[name]
+    known = {n: d.mean for n, d in space.inputs.items() if n != name}
+    ends = monotone_interval(
+        lambda x: space.measurand(**known, **{name: x}), given, probability=probability
+    )
     method = np.where(np.isnan(ends.lower), Method.DRAWS, Method.EXACT)
     return _settled(space({}), ends.lower, ends.upper, method)
 

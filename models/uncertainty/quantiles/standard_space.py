@@ -1,4 +1,4 @@
-"""A measurand as a function of independent standard-normal variables, one per input."""
+"""A measurand as a function of independent standard-normal variables, one per uncertain input."""
 
 from collections.abc import Callable, Mapping
 from typing import Any, Self
@@ -6,7 +6,7 @@ from typing import Any, Self
 import numpy as np
 
 from models.relation import Array
-from models.uncertainty.distributions import Distribution
+from models.uncertainty.distributions import Distribution, Exact
 
 STEP = 0.1
 """Of differences: wide enough for second ones."""
@@ -34,7 +34,16 @@ class StandardSpace:
     ) -> None:
         self.measurand, self.inputs, self.factor, self.rows = measurand, inputs, factor, rows
         self._medians = {name: given.from_normal(0.0) for name, given in inputs.items()}
-        self._names = tuple(inputs)
+        self._names = tuple(
+            name
+            for name, given in inputs.items()
+            if factor is not None or not isinstance(given, Exact)
+        )
+
+    @property
+    def variables(self) -> tuple[str, ...]:
+        """The inputs that are variables, in the order of their numbers."""
+        return self._names
 
     def take(self, index: Any, rows: int) -> Self:
         """So many of the rows."""

@@ -1,0 +1,198 @@
+"""Bands of the pore water and of the extract: quantiles of the logarithm, or draws.
+
+What is left open of a conductivity of pore water is a factor, so all of it is done on logarithms.
+Rows in which nothing bends take first order and the shift of its curvature; the others the ends of
+the chain's own curves (``uncertainty/quantiles/additive.py``), or, where those will not do, those
+of shared draws. Where the caller says that both models are exact, nothing covers what is left of a
+curve: those rows go along the gradient of the whole chain.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from models.estimate.equation import OWN
+from models.estimate.salt.chain import Chain
+from models.estimate.salt.stepped import Stepped
+from models.estimate.sources import Sources
+from models.estimate.water_content import WaterContent
+from models.relation import Array
+from models.uncertainty.coverage import coverage_factor
+from models.uncertainty.draws import Draws
+from models.uncertainty.monte_carlo import simulate
+from models.uncertainty.quantiles.additive import Point, ends
+from models.uncertainty.quantiles.curves import Steps
+from models.uncertainty.quantiles.intermediate import Intermediate
+from models.uncertainty.quantiles.reliability import Method, band
+
+FEW = Draws(1024)
+"""For rows that nothing else settles."""
+CALM = 0.05
+"""Shift of an end by curvature, in half-widths, up to which first order and that shift will do;"""
+BARE = 0.002
+"""the same where neither model has an error of its own to cover it."""
+
+
+@dataclass(frozen=True, slots=True)
+class Through:
+    """What moves the water content: signed effects and bends of each source, m3/m3."""
+
+    effects: Sources
+    bends: Mapping[str, Array]
+
+
+@dataclass(frozen=True, slots=True)
+class Asked:
+    """How the band is to be: its probability, and draws where those are wanted."""
+
+    probability: float
+    draws: Draws | None = None
+    bare: bool = False
+    """Whether neither model has an error of its own, so that curvature is not covered by any."""
+
+
+@dataclass(frozen=True, slots=True)
+class Spread:
+    """Of a logarithm, shape (n,): ends, and how they were found."""
+
+    lower: Array
+    upper: Array
+    total: Array
+    """Standard uncertainty,"""
+    shared: Array
+    """and the part that all readings of a soil and probe share."""
+    unbounded: NDArray[np.bool_]
+    method: NDArray[np.uint8]
+    """Codes of ``Method`` for rows that the curves did not settle, 0 for the others."""
+    outside: NDArray[np.intp] = field(default_factory=lambda: np.zeros(1, dtype=np.intp))
+    """Draws without an answer, where those were asked for."""
+
+
+def spread_of(
+    stepped: Stepped, through: Through, content: WaterContent, chain: Chain, asked: Asked
+) -> Spread:
+    """Ends of one logarithm; NaN where it has no number."""
+    effects = stepped.effects(through.effects, content.standard_uncertainty)
+    total, shared = (np.asarray(each) for each in effects.uncertainties())
+    shift, calm = _shift(stepped, through, content, total, asked)
+    reach = coverage_factor(asked.probability) * total
+    lower, upper = stepped.value + shift - reach, stepped.value + shift + reach
+    unbounded = np.zeros(lower.shape, dtype=np.bool_)
+    method = np.zeros(lower.shape, dtype=np.uint8)
+    known = np.isfinite(stepped.value) & np.isfinite(content.standard_uncertainty)
+    rows = np.flatnonzero(known & ~calm)
+    plain = Spread(lower, upper, total, shared, unbounded, method)
+    if rows.size:
+        _curved(plain, rows, stepped, through, content, asked)
+        hard = rows if asked.bare else rows[np.isnan(lower[rows])]
+        if hard.size and asked.draws is None:
+            lower[hard], upper[hard], method[hard] = _by_chain(chain.rows(hard), asked)
+            upper[unbounded] = np.nan
+    if asked.draws is None:
+        return plain
+    return _drawn(plain, np.flatnonzero(known), stepped, chain, asked)
+
+
+def _shift(
+    stepped: Stepped, through: Through, content: WaterContent, total: Array, asked: Asked
+) -> tuple[Array, NDArray[np.bool_]]:
+    """How far curvature moves both ends, and rows in which that is all it does.
+
+    An input moves both by z^2 of its bend along the gradient, and by one of it across.
+    """
+    z = coverage_factor(asked.probability)
+    steeper = np.divide(z * z - 1.0, np.square(total), out=np.zeros_like(total), where=total > 0)
+    shift, size = np.zeros_like(total), np.zeros_like(total)
+    for steps in (*stepped.direct.values(), stepped.through):
+        moved = steps.bend * (1.0 + steeper * np.square(steps.slope))
+        shift += moved
+        size += np.abs(moved)
+    if through.bends:
+        slope = np.divide(
+            stepped.through.slope, content.standard_uncertainty,
+            out=np.zeros_like(total), where=content.standard_uncertainty > 0,
+        )  # fmt: skip
+        moved = slope * sum(through.bends.values())
+        shift += moved
+        size += np.abs(moved)
+    below, above = content.scales
+    limit = (BARE if asked.bare else CALM) * z * total
+    return shift, (size <= limit) & (below == above)
+
+
+def _curved(
+    plain: Spread,
+    rows: NDArray[np.intp],
+    stepped: Stepped,
+    through: Through,
+    content: WaterContent,
+    asked: Asked,
+) -> None:
+    """Put the ends of the curves into their rows; NaN where those will not do."""
+    count = plain.lower.size
+
+    def some(values: Any) -> Any:
+        whole = np.asarray(values)
+        return whole[rows] if whole.shape == (count,) else np.broadcast_to(whole, rows.shape)
+
+    def stepping(steps: Steps) -> Steps:
+        return Steps(some(steps.up), some(steps.down), some(steps.size))
+
+    def measurand(point: Point) -> Array:
+        whole = Point(_whole(point.intermediate), {n: _whole(s) for n, s in point.scores.items()})
+        return stepped.measurand(whole)[rows]
+
+    def _whole(values: Array) -> Array:
+        every = np.zeros(count)
+        every[rows] = values
+        return every
+
+    below, above = content.scales
+    effects = {**through.effects.per_reading, **through.effects.shared}
+    moved = Intermediate(
+        stepping(stepped.through),
+        content.standard_uncertainty[rows],
+        {name: some(effect) for name, effect in effects.items() if name != OWN},
+        {name: some(bend) for name, bend in through.bends.items()},
+        below[rows],
+        above[rows],
+    )
+    direct = {name: stepping(steps) for name, steps in stepped.direct.items()}
+    found = ends(measurand, stepped.value[rows], direct, moved, probability=asked.probability)
+    plain.lower[rows], plain.upper[rows] = found.lower, found.upper
+    plain.unbounded[rows] = found.unbounded
+
+
+def _by_chain(some: Chain, asked: Asked) -> tuple[Array, Array, NDArray[np.uint8]]:
+    """Ends by the whole chain: along its gradient where they must be sharp, else by few draws."""
+    every, probability = some.distributions(), asked.probability
+    if asked.bare:
+        sharp = band(some, every, probability=probability)
+        return sharp.lower, sharp.upper, sharp.method
+    told = simulate(some, every, draws=FEW, probability=probability)
+    method = np.full(told.lower.shape, Method.DRAWS, dtype=np.uint8)
+    return told.lower, told.upper, method
+
+
+def _drawn(
+    plain: Spread, rows: NDArray[np.intp], stepped: Stepped, chain: Chain, asked: Asked
+) -> Spread:
+    """JCGM 101 on the whole chain; the ends reach to the value where that lies outside them."""
+    lower, upper, total = (np.full(plain.lower.shape, np.nan) for _ in range(3))
+    outside = np.zeros(lower.shape, dtype=np.intp)
+    if rows.size:
+        some = chain.rows(rows)
+        told = simulate(
+            some, some.distributions(), draws=asked.draws, probability=asked.probability
+        )
+        lower[rows], upper[rows] = told.lower, told.upper
+        total[rows], outside[rows] = told.standard_uncertainty, told.outside
+    lower, upper = np.fmin(lower, stepped.value), np.fmax(upper, stepped.value)
+    share = np.divide(plain.shared, plain.total, out=np.ones_like(total), where=plain.total > 0)
+    return Spread(
+        lower, np.where(plain.unbounded, np.nan, upper), total, total * share, plain.unbounded,
+        np.where(np.isnan(total), 0, Method.DRAWS).astype(np.uint8), outside,
+    )  # fmt: skip

@@ -1,0 +1,136 @@
+"""From every source of uncertainty to the salt, as one measurand.
+
+A reading gives water content and conductivity of the pore water together: one error of its
+permittivity moves the water, the real permittivity and with them the salt. Each source is one
+standard-normal variable here, wherever it works; what differs from row to row and is not uncertain
+goes with the rows as exact columns.
+"""
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from typing import Any, Self
+
+import numpy as np
+from numpy.typing import NDArray
+
+from models.estimate.equation import OWN, Equation
+from models.estimate.moving import (
+    BULK,
+    TEMPERATURE,
+    WATER_MODEL,
+    Moving,
+    moving,
+    moving_permittivity,
+)
+from models.estimate.permittivity import Permittivity
+from models.estimate.salt.pore_water import PoreWater, logarithm
+from models.estimate.water_content import WaterContent
+from models.relation import Array, column
+from models.salinity.saturation_extract import to_extract
+from models.uncertainty.distributions import Distribution, Exact, Normal
+from models.uncertainty.first_order import Input
+
+OWN_OF_SALT = "pore_water_model"
+
+
+@dataclass(frozen=True, slots=True)
+class Chain:
+    """Logarithm of the conductivity of the pore water, or of the extract, of some rows."""
+
+    pore: PoreWater
+    equation: Equation
+    mixing: Mapping[str, Moving]
+    """What goes into the mixing model."""
+    paste: Mapping[str, Moving]
+    """What the extract follows from; empty: the answer is that of the pore water."""
+    columns: Mapping[str, Any]
+    """Every column by name, scalar or shape (n,)."""
+    most: float
+    """Most water there can be, m3/m3; more has no answer, nor has none."""
+
+    @classmethod
+    def of(
+        cls,
+        pore: PoreWater,
+        found: Permittivity,
+        water: Mapping[str, Input],
+        content: WaterContent,
+        own: Array,
+        *,
+        most: float = np.inf,
+    ) -> Self:
+        """The chain of a block.
+
+        found, water: what the water content came from. own: standard uncertainty of the pore-water
+        model itself, of the logarithm.
+        """
+        mixing = {g.name: _of_mixing(g, found, water) for g in content.equation.inputs}
+        below, above = content.scales
+        columns: dict[str, Any] = {
+            "own below": below, "own above": above, f"{OWN_OF_SALT} own": own,
+        }  # fmt: skip
+        chain = cls(pore, content.equation, mixing, {}, columns, most)
+        return replace(chain, columns=columns | chain._of_quantities())
+
+    def of_extract(self, paste: Mapping[str, Moving]) -> Self:
+        """The same to the conductivity of the saturation extract."""
+        chain = replace(self, paste=paste)
+        return replace(chain, columns={**self.columns, **chain._of_quantities()})
+
+    @property
+    def sources(self) -> tuple[str, ...]:
+        """Everything uncertain, in a fixed order."""
+        every = dict.fromkeys(s for _, each in self._quantities() for s in each.by)
+        return (*every, OWN, OWN_OF_SALT)
+
+    def rows(self, index: NDArray[np.intp]) -> Self:
+        """The same for some of the rows."""
+        some = {n: column(v)[index] if np.ndim(v) == 1 else v for n, v in self.columns.items()}
+        return replace(self, columns=some)
+
+    def distributions(self) -> dict[str, Distribution]:
+        """The sources, and every column they work on."""
+        every: dict[str, Distribution] = {name: Exact(v) for name, v in self.columns.items()}
+        return every | {source: Normal(0.0, 1.0) for source in self.sources}
+
+    @np.errstate(all="ignore")
+    def __call__(self, **columns: Array) -> Array:
+        """Logarithm of the conductivity at 25 Cel, in S/m; NaN where there is none above zero."""
+        at = {n: each.among(columns, f"mixing {n}") for n, each in self.mixing.items()}
+        z = columns[OWN]
+        error = z * np.where(z < 0, columns["own below"], columns["own above"])
+        theta = self.equation(**at) + error
+        theta = np.where((theta > 0.0) & (theta <= self.most), theta, np.nan)
+        at = {n: each.among(columns, f"salt {n}") for n, each in self.pore.moving.items()}
+        answer = self.pore.at_25(water_content=theta, **at)
+        if self.paste:
+            at = {n: _positive(each, columns, f"paste {n}") for n, each in self.paste.items()}
+            answer = to_extract(answer, water_content=theta, **at)
+        return logarithm(answer) + columns[f"{OWN_OF_SALT} own"] * columns[OWN_OF_SALT]
+
+    def _quantities(self) -> list[tuple[str, Moving]]:
+        kinds = {"mixing": self.mixing, "salt": self.pore.moving, "paste": self.paste}
+        return [(f"{k} {name}", each) for k, every in kinds.items() for name, each in every.items()]
+
+    def _of_quantities(self) -> dict[str, Any]:
+        named: dict[str, Any] = {}
+        for name, each in self._quantities():
+            named |= each.columns(name)
+        return named
+
+
+def _positive(each: Moving, columns: Mapping[str, Array], name: str) -> Array:
+    """A quantity that is known by a factor: lognormal, its value the median."""
+    value = columns[name]
+    return column(value * np.exp(each.among({**columns, name: 0.0 * value}, name) / value))
+
+
+def _of_mixing(given: Input, found: Permittivity, water: Mapping[str, Input]) -> Moving:
+    """What moves an input of the mixing model."""
+    if given.name == "permittivity":
+        return moving_permittivity(found)
+    if given.name == "loss":
+        return moving(given.value, **{BULK: given.per_reading})
+    if given.name in water:
+        return moving(given.value, **{TEMPERATURE: given.per_reading, WATER_MODEL: given.shared})
+    return moving(given.value, **{given.name: given.total})

@@ -1,0 +1,111 @@
+"""One conductivity's logarithm as a function of the water content and of every source beside it."""
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+
+from models.estimate.moving import PER_READING, Moving
+from models.estimate.salt.chain import OWN_OF_SALT
+from models.estimate.salt.pore_water import PoreWater, logarithm
+from models.estimate.sources import Sources
+from models.relation import Array
+from models.uncertainty.quantiles.additive import Point
+from models.uncertainty.quantiles.curves import Steps
+
+SHORT = 0.2
+"""Steps of rows in which a whole standard uncertainty leads out of the domain."""
+NONE = Steps(np.zeros(1), np.zeros(1))
+
+
+@dataclass(frozen=True, slots=True)
+class Stepped:
+    """The logarithm of one conductivity, and its steps along every source."""
+
+    value: Array
+    direct: Mapping[str, Steps]
+    """Of sources that work not only through the water content."""
+    through: Steps
+    """Of the water content, by its standard uncertainty."""
+    own: Array
+    """Standard uncertainty that is the pore-water model's own."""
+    measurand: Callable[[Point], Array]
+
+    @classmethod
+    def of(cls, pore: PoreWater, value: Array, own: Array) -> "Stepped":
+        """Of the pore water; value: its conductivity, own: the model's own uncertainty."""
+        here, theta = logarithm(value), pore.content.computed
+        reach = pore.content.standard_uncertainty
+
+        def at(scores: Mapping[str, Any], off: Array | float = 0.0) -> Array:
+            return pore.logarithm(theta + off, scores)
+
+        def along(name: str) -> Steps:
+            return _steps(lambda size: at({name: size}), here)
+
+        direct = {name: along(name) for name in pore.sources}
+        direct[OWN_OF_SALT] = Steps(own, -own)
+        through = NONE
+        if "water_content" in pore.salinity.takes:
+            through = _steps(lambda size: at({}, size * reach), here)
+
+        def measurand(point: Point) -> Array:
+            return at(point.scores, point.intermediate) + own * point.scores[OWN_OF_SALT]
+
+        return cls(here, direct, through, own, measurand)
+
+    def of_extract(self, pore: PoreWater, extract: Array, paste: Mapping[str, Moving]) -> "Stepped":
+        """Of the extract: the more water above one paste, the more salt in it."""
+        theta, reach = pore.content.computed, pore.content.standard_uncertainty
+        here = logarithm(extract)
+
+        def diluted(name: str, size: Array | float) -> Array | float:
+            return -_log(paste[name], size) if name in paste else 0.0
+
+        def along(name: str) -> Steps:
+            of = self.direct.get(name, NONE)
+            return Steps(of.up + diluted(name, of.size), of.down + diluted(name, -of.size), of.size)
+
+        step = self.through.size * reach / theta
+        through = Steps(
+            self.through.up + logarithm(1.0 + step),
+            self.through.down + logarithm(1.0 - step),
+            self.through.size,
+        )
+
+        def measurand(point: Point) -> Array:
+            moved = self.measurand(point) - self.value + here
+            moved = moved + logarithm(1.0 + point.intermediate / theta)
+            for name in paste:
+                moved = moved + diluted(name, point.scores[name])
+            return moved
+
+        direct = {name: along(name) for name in dict.fromkeys((*self.direct, *paste))}
+        return Stepped(here, direct, through, self.own, measurand)
+
+    def effects(self, through: Sources, reach: Array) -> Sources:
+        """First order, signs kept, of each source in all; ``through``: on the water content."""
+        zero = np.zeros_like(self.value)
+        slope = np.divide(self.through.slope + zero, reach, out=zero.copy(), where=reach > 0)
+        found = Sources()
+        for name, steps in self.direct.items():
+            kept = found.per_reading if name in PER_READING else found.shared
+            kept[name] = steps.slope + zero
+        return found.plus(through, slope)
+
+
+def _steps(at: Callable[[Any], Array], here: Array) -> Steps:
+    """Steps of 1; short ones in rows where one of those leads out of the domain."""
+    steps = Steps(at(1.0) - here, at(-1.0) - here)
+    out = np.isnan(steps.up + steps.down) & ~np.isnan(here)
+    if not out.any():
+        return steps
+    size = np.where(out, SHORT, 1.0)
+    return Steps(at(size) - here, at(-size) - here, size)
+
+
+def _log(each: Moving, score: Any) -> Any:
+    """Logarithm of a quantity over its value, where its one source is so far off; lognormal."""
+    (width,) = each.by.values() or (0.0,)
+    return width / each.value * score
