@@ -33,6 +33,13 @@ class Range:
         values = column(values)
         return ~((self.low <= values) & (values <= self.high))
 
+    def beyond(self, values: ArrayLike) -> NDArray[np.bool_]:
+        """Mark the values outside; NaN is not known to be."""
+        values = column(values)
+        outside = values < self.low
+        outside |= values > self.high
+        return outside
+
     def distance(self, values: ArrayLike) -> Array:
         """How far outside, in units of the range's own width; 0 inside."""
         values = column(values)

@@ -106,7 +106,7 @@ def flag_pore_water(
     for name, known in basis.salinity.model.validity.items():
         at = pore.inputs.get(name, soil.get(name))
         if at is not None and (name != "frequency" or basis.frequency_known):
-            outside |= known.excludes(at) & ~np.isnan(at)
+            outside |= known.beyond(at)
     _set(flags, outside & ~np.isnan(value), "outside-pore-water-range")
 
 
@@ -140,7 +140,7 @@ def _flag_ranges(
         value = at.get(name)
         if value is None:
             continue
-        outside |= known.excludes(value) & ~np.isnan(value)
+        outside |= known.beyond(value)
     _set(flags, outside & ~np.isnan(computed), "outside-model-range")
 
 

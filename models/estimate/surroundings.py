@@ -66,7 +66,7 @@ def water_inputs(
     if unexplained.any():
         flags[unexplained] |= BIT["missing:temperature"]
     known = basis.water.validity
-    cold = known["temperature"].excludes(around.temperature) & ~np.isnan(around.temperature)
+    cold = known["temperature"].beyond(around.temperature)
     fast = known["frequency"].excludes(around.frequency)
     beyond = np.broadcast_to(cold | fast, (count,))
     flags[beyond] |= BIT["outside-water-range"]

@@ -7,6 +7,7 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from models.numerics.added import added
 from models.relation import Array, column
 from models.uncertainty.correlation import correlation_matrix
 
@@ -49,7 +50,7 @@ def budget_of(contributions: Mapping[str, Array], correlation: ArrayLike | None 
         matrix = correlation_matrix(correlation, len(parts))
         together = sum(row[:, None] * part for row, part in zip(matrix.T, parts, strict=True))
     owned = parts * together
-    variance = owned.sum(axis=0)
+    variance = added(owned)
     variance = np.where(variance > 0, variance, np.nan)
     share = owned / variance
     left = np.maximum(1.0 - 2.0 * share + np.square(parts) / variance, 0.0)

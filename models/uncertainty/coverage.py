@@ -14,8 +14,9 @@ from scipy.special import ndtr, ndtri
 
 from models.relation import Array, column
 
-FAR = 4.75
-"""Scales from an end beyond which the end takes less than 1e-6 of the probability."""
+FAR = 4.0
+"""Scales from an end beyond which it takes so little of the probability, 3e-5, that the interval
+moves by less than 0.02 per cent of its half-width."""
 ASTRAY = 6.0
 """Scales outside the range beyond which all that is left is its end."""
 
@@ -76,7 +77,13 @@ def _restricted(
     held = np.clip(value, low, high)
     point = (low - value > ASTRAY * above) | (value - high > ASTRAY * below) | (below + above <= 0)
     below, above = np.where(below > 0, below, 1e-12), np.where(above > 0, above, 1e-12)
-    mass_low, mass_high = _mass(low, value, below, above), _mass(high, value, below, above)
+    mass_low, mass_high = np.zeros_like(value), np.ones_like(value)
+    for mass, end, near in (
+        (mass_low, low, value - FAR * below < low),
+        (mass_high, high, value + FAR * above > high),
+    ):
+        rows = np.flatnonzero(near)
+        mass[rows] = _mass(end[rows], value[rows], below[rows], above[rows])
     kept = probability * (mass_high - mass_low)
     h = ndtri(0.5 * (1.0 + kept))
     lower, upper = value - h * below, value + h * above

@@ -70,13 +70,16 @@ def propagate(measurand: Callable[..., Array], inputs: Sequence[Input], value: A
             continue
         above = measurand(**{**at, given.name: given.value + width})
         below = measurand(**{**at, given.name: given.value - width})
-        contribution = 0.5 * (above - below)
-        astray = np.isnan(contribution)
-        if astray.any():
+        contribution = above - below
+        contribution *= 0.5
+        if np.isnan(contribution.sum()):  # any of them
             one_sided = np.where(np.isnan(above), value - below, above - value)
-            contribution = np.where(astray, one_sided, contribution)
+            contribution = np.where(np.isnan(contribution), one_sided, contribution)
         contributions[given.name] = contribution
-        bends[given.name] = 0.5 * (above + below) - value
+        bend = above + below
+        bend *= 0.5
+        bend -= value
+        bends[given.name] = bend
         variance = np.square(contribution)
         if not np.any(given.shared):
             per_reading += variance

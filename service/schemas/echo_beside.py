@@ -4,7 +4,7 @@ from collections.abc import Iterable, Mapping
 from typing import Any
 
 from models.advisories import Advice
-from models.estimate.beside.budget import WaterBudget
+from models.estimate.beside.budget import Shares
 from models.estimate.beside.ensemble import EveryModel
 from models.estimate.beside.explanation import Explanation
 from models.estimate.beside.validation import Validated
@@ -25,9 +25,14 @@ def explanation_echo(found: Explanation) -> dict[str, Any]:
     }
 
 
-def budget_echo(found: WaterBudget) -> dict[str, Any]:
-    """Shares of the variance by source, and the sentence of each reading."""
-    return {"budget": {"share": _lists(found.shares), "largest": list(found.sentences)}}
+def budget_echo(found: Mapping[str, Shares]) -> dict[str, Any]:
+    """By quantity: shares of the variance by source, and the sentence of each reading."""
+    return {
+        "budget": {
+            name: {"share": _lists(of.shares), "largest": list(of.sentences)}
+            for name, of in found.items()
+        }
+    }
 
 
 def validation_echo(found: Validated) -> dict[str, Any]:

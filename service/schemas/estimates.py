@@ -1,14 +1,13 @@
-"""What POST /v1/estimates takes beside its readings, and the example of what it answers."""
+"""What POST /v1/estimates takes beside its readings."""
 
-from collections.abc import Mapping
 from types import MappingProxyType
-from typing import Annotated, Any, Literal
+from typing import Annotated, Any, Literal, get_args
 
-from pydantic import ConfigDict, Field, TypeAdapter, WithJsonSchema
+from pydantic import ConfigDict, Field, TypeAdapter, WithJsonSchema, model_validator
 
 from models.conductivity import DEFAULT_COMPENSATION, TEMPERATURE_COMPENSATIONS
 from models.mixing import MIXING_MODELS
-from models.quantity import NOISE, PROBE, QUANTITIES, READING, SOIL, band_names
+from models.quantity import NOISE, PROBE, QUANTITIES, SOIL
 from models.salinity import PORE_WATER_MODELS
 from models.soil import TEXTURES
 from service.schemas.words import Body, Number, body_of, described, quantity_fields
@@ -95,18 +94,41 @@ class Assume(Body):
     )
 
 
+Method = Literal["first-order", "monte-carlo"]
+
+
+def _or_its_method(schema: dict[str, Any]) -> None:
+    """Let a schema take the name of a method in place of the object."""
+    inner, named = dict(schema), {"type": "string", "enum": list(get_args(Method))}
+    schema.clear()
+    schema["anyOf"] = [inner, named]
+
+
 class Propagation(Body):
     """How uncertainty is carried to the answer.
 
     First order (JCGM 100) with the equation's own quantiles where it bends, or draws (JCGM 101):
     the same draws for every reading, so that a reading's band does not depend on its neighbours.
-    Draws are made of the water content; conductivities keep first-order bands of the logarithm.
+    Draws go from the reading to the water content, the pore water and the extract; the bulk
+    conductivity at 25 Cel keeps its first-order band.
+    The name of the method alone will do, too.
     """
 
-    method: Literal["first-order", "monte-carlo"] = "first-order"
+    model_config = ConfigDict(json_schema_extra=_or_its_method)
+
+    method: Method = "first-order"
     draws: Annotated[int, Field(strict=True, ge=100, le=1_000_000)] = 10_000
     seed: Annotated[int, Field(strict=True, ge=0, le=2**63 - 1)] = 1
-    interval: Literal["shortest"] = "shortest"
+    interval: Literal["shortest"] = Field("shortest", description="Of the water content.")
+    pore_water_interval: Literal["symmetric"] = Field(
+        "symmetric",
+        description="Of pore water and extract: the same probability is left on both sides.",
+    )
+
+    @model_validator(mode="before")
+    @classmethod
+    def _method_alone(cls, given: Any) -> Any:
+        return {"method": given} if isinstance(given, str) else given
 
 
 class EstimatesSettings(Body):
@@ -132,7 +154,8 @@ class EstimatesSettings(Body):
     propagation: Propagation = Propagation()
     budget: Annotated[bool, Field(strict=True)] = Field(
         default=False,
-        description="Adds each input's share of the variance, and what would narrow the band most.",
+        description="Adds each input's share of the variance of the water content, and of the "
+        "pore water where there is one, and what would narrow each band most.",
     )
     validate_first_order: Annotated[bool, Field(strict=True)] = Field(
         default=False,
@@ -166,84 +189,3 @@ RAW = MappingProxyType({
     "scattering": "/v1/scattering", "spectrum": "/v1/spectra",
 })  # fmt: skip
 """Raw records a reading may carry, and the path that describes them."""
-
-
-def reading_schema() -> Mapping[str, Any]:
-    """JSON schema of the readings: a list of objects, or one object of arrays."""
-    number = {"type": ["number", "null"]}
-    text = {"type": ["string", "null"]}
-    cells: dict[str, Any] = {}
-    for name in READING:
-        kind = number if QUANTITIES[name].unit else text
-        cells[name] = {**kind, "description": described(name)}
-        if name in NOISE:
-            cells[f"{name}_u"] = {**number, "description": f"standard uncertainty of {name}"}
-    for name, where in RAW.items():
-        told = f"raw record in place of a permittivity: an item of {where}"
-        cells[name] = {"type": ["object", "null"], "description": told}
-    row = {"type": "object", "properties": cells, "additionalProperties": False}
-    columns = {
-        "type": "object",
-        "properties": {
-            name: {"type": "array", "items": {"type": cell["type"]}} for name, cell in cells.items()
-        },
-        "additionalProperties": False,
-    }
-    return {"oneOf": [{"type": "array", "items": row, "minItems": 1}, columns]}
-
-
-def request_schema() -> dict[str, Any]:
-    """JSON schema of the whole JSON body."""
-    schema = SETTINGS.json_schema(ref_template="#/components/schemas/{model}")
-    schema.pop("$defs", None)
-    schema["properties"] = {**schema["properties"], "readings": reading_schema()}
-    told = "what the raw records of a kind have in common, as their own path takes it beside them"
-    schema["properties"]["raw_records"] = {
-        "type": "object",
-        "description": told,
-        "properties": {name: {"type": "object"} for name in RAW},
-    }
-    for kind in ("soil", "probe"):
-        inline = schema["properties"][kind]
-        stored = {"type": "string", "description": f"name of a stored {kind}"}
-        about = {key: inline.pop(key) for key in ("description", "default") if key in inline}
-        schema["properties"][kind] = {"anyOf": [inline, stored], **about}
-    schema["required"] = ["readings"]
-    return schema
-
-
-def answer_schema() -> dict[str, Any]:
-    """JSON schema of the JSON answer."""
-    row = {
-        "type": "object",
-        "properties": {
-            **{
-                name: {"type": ["number", "null"]}
-                for quantity in ESTIMATED
-                for name in band_names(quantity)
-            },
-            "flags": {"type": "array", "items": {"type": "string"}},
-        },
-    }
-    advisory = {
-        "type": "object",
-        "properties": {"code": {"type": "string"}, "text": {"type": "string"}},
-    }
-    return {
-        "type": "object",
-        "required": ["estimates", "units", "mixing_model", "soil", "advisories"],
-        "properties": {
-            "estimates": {
-                "description": "rows, or columns of equal length: as the readings came",
-                "oneOf": [{"type": "array", "items": row}, {"type": "object"}],
-            },
-            "units": {"type": "object", "additionalProperties": {"type": "string"}},
-            "mixing_model": {"type": "object"},
-            "soil": {"type": "object"},
-            "probe": {"type": "object"},
-            "assume": {"type": "object"},
-            "coverage_probability": {"type": "number"},
-            "propagation": {"type": "object"},
-            "advisories": {"type": "array", "items": advisory},
-        },
-    }

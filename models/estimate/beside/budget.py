@@ -4,10 +4,13 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
-from models.estimate.pipeline import work_out
-from models.estimate.sources import of_water_content
+from models.estimate.pipeline import pore_water_of, work_out
+from models.estimate.salt.stepped import Stepped
+from models.estimate.sources import Sources, of_water_content
+from models.flags import without_pore_water
 from models.readings import Readings
 from models.relation import Array
 from models.uncertainty.budget import NOBODY, Budget, budget_of
@@ -19,25 +22,45 @@ MEND: Mapping[str, str] = {
     "clay": "a measured clay content",
     "apparent_permittivity": "less noise in the permittivity, or a mean over several readings",
     "temperature": "a better temperature",
+    "pore_water_model": "coefficients of the pore-water model fitted to this soil",
+    "offset": "an offset fitted to this soil",
+    "bulk_conductivity": "less noise in the bulk conductivity",
+    "surface_conductivity": "a measured surface conductivity",
 }
 
 
 ROUNDING = 1e-9
-"""m3/m3: what is less in every reading is rounding, and no source."""
+"""m3/m3, or of the conductivity: what is less in every reading is rounding, and no source."""
 
 
 @dataclass(frozen=True, slots=True)
-class WaterBudget:
-    """Shares of the variance of the water content by source, and a sentence for each reading."""
+class Shares:
+    """Shares of the variance of one quantity by source, and a sentence for each reading."""
 
     shares: Mapping[str, Array]
     sentences: tuple[str | None, ...]
 
 
-def budget(readings: Readings, basis: Basis) -> WaterBudget:
-    """Where the band of each reading's water content comes from, to first order."""
+def budget(readings: Readings, basis: Basis) -> dict[str, Shares]:
+    """Where the bands of each reading come from, to first order, by quantity.
+
+    Of the conductivity of the pore water it is the logarithm, of which the band is a factor.
+    """
     worked = work_out(readings, basis)
-    sources = of_water_content(worked.found, worked.water, worked.content)
+    through = of_water_content(worked.found, worked.water, worked.content)
+    found = {"water_content": _shares(through, readings.count)}
+    pore = pore_water_of(worked, basis)
+    if pore is not None:
+        value, reach = pore.at_25(), worked.content.standard_uncertainty
+        stepped = Stepped.of(pore, value, pore.own_uncertainty(value))
+        sources = stepped.effects(through, reach)
+        nothing = without_pore_water(worked.flags) | np.isnan(stepped.value)
+        found["pore_water_conductivity"] = _shares(sources, readings.count, nothing)
+    return found
+
+
+def _shares(sources: Sources, count: int, nothing: NDArray[np.bool_] | None = None) -> Shares:
+    """nothing: rows that have no number."""
     names = dict.fromkeys((*sources.per_reading, *sources.shared))
     effects = {
         name: np.sqrt(
@@ -45,15 +68,16 @@ def budget(readings: Readings, basis: Basis) -> WaterBudget:
         )
         for name in names
     }
+    none = np.zeros(count, dtype=np.bool_) if nothing is None else nothing
     told = {
-        name: np.broadcast_to(effect, (readings.count,))
+        name: np.where(none, np.nan, effect)
         for name, effect in effects.items()
         if np.any(effect > ROUNDING)
     }
     if not told:
-        return WaterBudget({}, (None,) * readings.count)
+        return Shares({}, (None,) * count)
     found = budget_of(told)
-    return WaterBudget(found.share, tuple(_sentence(found, row) for row in range(readings.count)))
+    return Shares(found.share, tuple(_sentence(found, row) for row in range(count)))
 
 
 def _sentence(found: Budget, row: int) -> str | None:

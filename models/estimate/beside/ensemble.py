@@ -19,6 +19,7 @@ from models.estimate.pipeline import Estimates, estimate
 from models.estimate.water_content import most_water
 from models.flags import BIT, Flags
 from models.mixing import MIXING_MODELS
+from models.numerics.added import added
 from models.quantity import band_names
 from models.readings import Readings
 from models.relation import Array
@@ -92,7 +93,7 @@ class EveryModel:
         """Every model's estimates, and their combination."""
         found = {key: estimate(readings, basis) for key, basis in self.bases.items()}
         weights = np.array([_weight(found[key], basis) for key, basis in self.bases.items()])
-        total = weights.sum(axis=0)
+        total = added(weights)
         shares = np.divide(weights, total, out=np.zeros_like(weights), where=total > 0)
         members = {
             key: Member(estimates, share)
@@ -144,16 +145,16 @@ def _combined(
     values, u, shared = of("water_content"), of("water_content_u"), of("water_content_u_shared")
     counted = share > 0
     known = counted.any(axis=0)
-    theta = np.where(known, (share * values).sum(axis=0), np.nan)
-    between = (share * np.square(values - theta)).sum(axis=0)
-    variance = (share * np.square(u)).sum(axis=0) + between
-    common = (share * np.square(shared)).sum(axis=0) + between
+    theta = np.where(known, added(share * values), np.nan)
+    between = added(share * np.square(values - theta))
+    variance = added(share * np.square(u)) + between
+    common = added(share * np.square(shared)) + between
     spread = np.sqrt(np.where(known, variance, np.nan))
     ends = shortest_interval(theta, spread, spread, low=0.0, high=most, probability=probability)
     count = counted.sum(axis=0)
     with np.errstate(divide="ignore", invalid="ignore"):
-        mean = np.where(counted, values, 0.0).sum(axis=0) / count
-        apart = np.where(counted, np.square(values - mean), 0.0).sum(axis=0) / (count - 1)
+        mean = added(np.where(counted, values, 0.0)) / count
+        apart = added(np.where(counted, np.square(values - mean), 0.0)) / (count - 1)
     return {
         "water_content": ends.peak,
         "water_content_u": spread,

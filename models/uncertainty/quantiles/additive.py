@@ -18,6 +18,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy.special import ndtr, ndtri
 
+from models.numerics.added import added, dotted
 from models.relation import Array
 from models.uncertainty.coverage import coverage_factor
 from models.uncertainty.quantiles.curves import Curve, Steps, one_way
@@ -133,7 +134,7 @@ class _Sum:
             np.asarray(steps.size)[row] = of_input.size
             effects[row] = through.effects.get(name, zero)
             bends[row] = through.bends.get(name, zero)
-        noise = SLIGHT * np.nansum(np.abs(steps.up - steps.down), axis=0)
+        noise = SLIGHT * added(np.nan_to_num(np.abs(steps.up - steps.down)))
         sound = one_way(steps, noise).all(axis=0) & one_way(through.steps, noise)
         over = Curve.through(through.steps)
         unit = np.divide(1.0, through.reach, out=np.zeros_like(value), where=through.reach > 0)
@@ -147,7 +148,7 @@ class _Sum:
         """Probability beyond the ends of curves that run off downwards, and upwards."""
         over = Curve(self.over.bend, self.over.scale * self.through.reach)
         size = np.abs(self.curves.scale)
-        notable = NOTABLE * (size.sum(axis=0) + np.abs(over.scale))
+        notable = NOTABLE * (added(size) + np.abs(over.scale))
         low, high = np.zeros_like(self.value), np.zeros_like(self.value)
         of_inputs = zip(self.curves.bend, self.curves.scale, strict=True)
         for curve in (*(Curve(*each) for each in of_inputs), over):
@@ -175,13 +176,13 @@ class _Sum:
             slope *= inner
             slope += outer
             of_rest = inner * (rest.width + 2.0 * rest.bend * other)
-            length = np.sqrt(np.einsum("ij,ij->j", slope, slope) + np.square(of_rest))
+            length = np.sqrt(dotted(slope, slope) + np.square(of_rest))
             turn = np.divide(1.0, length, out=np.zeros_like(length), where=length > 0)
             if left:
                 scores, other = slope * (z * turn), of_rest * (z * turn)
         slope *= turn
         curvature = self._curvature(slope, of_rest * turn, rest, inner, outer)
-        value = self.value + over.at(moved, wedge) + curves.at(scores, wedges).sum(axis=0)
+        value = self.value + over.at(moved, wedge) + added(curves.at(scores, wedges))
         return _End(scores, moved, value, curvature)
 
     def point(self, end: _End) -> Point:
@@ -192,16 +193,16 @@ class _Sum:
         """The intermediate, less its value."""
         direct = self.bends * scores
         direct += self.effects
-        return np.einsum("ij,ij->j", direct, scores) + (rest.width + rest.bend * other) * other
+        return dotted(direct, scores) + (rest.width + rest.bend * other) * other
 
     def _curvature(
         self, at: Array, at_rest: Array, rest: Rest, inner: Array, outer: Array
     ) -> Array:
         """Half of (tr H - a'Ha) on the sum of curves, a the direction to the end."""
-        along = np.einsum("ij,ij->j", at, self.effects) + at_rest * rest.width
-        whole = np.einsum("ij,ij->j", self.effects, self.effects) + np.square(rest.width)
+        along = dotted(at, self.effects) + at_rest * rest.width
+        whole = dotted(self.effects, self.effects) + np.square(rest.width)
         found = -self.over.bend * np.square(inner) * (whole - np.square(along))
         bent = 2.0 * inner * self.bends
         bent -= self.curves.bend * np.square(outer)
-        found += np.einsum("ij,ij->j", bent, 1.0 - np.square(at))
+        found += dotted(bent, 1.0 - np.square(at))
         return 0.5 * found + inner * (rest.across + rest.bend * (1.0 - np.square(at_rest)))

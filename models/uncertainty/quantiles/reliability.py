@@ -14,6 +14,7 @@ from enum import IntEnum
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from models.numerics.added import added, dotted
 from models.relation import Array
 from models.uncertainty.correlation import correlation_matrix, triangular
 from models.uncertainty.coverage import coverage_factor
@@ -186,9 +187,9 @@ def _again(
     upper, up = _at_end(space, towards, z, half)
     hessian = space.hessian(value)
     a = np.stack(list(towards.values()))
-    turned = (hessian * a).sum(axis=1)
-    across = np.square(hessian).sum(axis=(0, 1)) - 2.0 * np.square(turned).sum(axis=0)
-    across += np.square((turned * a).sum(axis=0))
+    turned = np.stack([dotted(row, a) for row in hessian])
+    across = added(np.stack([dotted(row, row) for row in hessian])) - 2.0 * dotted(turned, turned)
+    across += np.square(dotted(turned, a))
     # Curvatures of both signs leave the middle where it is and add to the variance, tr H^2 / 2.
     wider = half * (np.sqrt(1.0 + 0.5 * across * np.square(z / half)) - 1.0)
     return lower - wider, upper + wider, down & up & (wider <= LOST * half)
