@@ -79,6 +79,23 @@ class Exact(Distribution):
 
     width: Any = 0.0
 
+    def __post_init__(self) -> None:
+        """Nothing can be wrong with it."""
+
+    def take(self, index: Any) -> Self:
+        """Some of the rows."""
+        return self if np.size(self.mean) == 1 else replace(self, mean=column(self.mean)[index])
+
+    @property
+    def rows(self) -> int:
+        """How many; 1 for a scalar."""
+        return int(np.size(self.mean))
+
+    @property
+    def exact(self) -> bool:
+        """It is."""
+        return True
+
     def from_normal(self, z: ArrayLike) -> Array:
         """The value itself."""
         del z

@@ -90,12 +90,15 @@ class Chain:
 
     def distributions(self) -> dict[str, Distribution]:
         """The sources, and every column they work on."""
-        every: dict[str, Distribution] = {name: Exact(v) for name, v in self.columns.items()}
+        every: dict[str, Distribution] = {
+            name: Exact(values) for name, values in self.columns.items() if np.ndim(values) == 1
+        }
         return every | {source: Normal(0.0, 1.0) for source in self.sources}
 
     @np.errstate(all="ignore")
     def __call__(self, **columns: Array) -> Array:
         """Logarithm of the conductivity at 25 Cel, in S/m; NaN where there is none above zero."""
+        columns = {**self.columns, **columns}
         at = {n: each.among(columns, f"mixing {n}") for n, each in self.mixing.items()}
         z = columns[OWN]
         error = z * np.where(z < 0, columns["own below"], columns["own above"])
