@@ -35,6 +35,11 @@ class Leaning(Symmetric):
     below: Any
     above: Any
 
+    def from_normal(self, z: ArrayLike) -> Array:
+        """The mean and so many of the scale on that side."""
+        score = column(z)
+        return self.mean + score * np.where(score < 0, self.below, self.above)
+
     def deviate(self, z: Array) -> Array:
         """In units of the width."""
         scale = np.where(z < 0, self.below, self.above)

@@ -35,13 +35,16 @@ def flag_inputs(
 ) -> None:
     """Flag readings that hold no permittivity, or an impossible one."""
     unseen = found.uncorrected if found.uncorrected is not None else found.value
-    if travel_time is not None:
-        _set(flags, np.isnan(unseen) & ~np.isnan(travel_time), "out-of-gate:travel_time")
-    _set(flags, np.isnan(unseen) & ~_spoiled(flags), "no-permittivity")
-    _set(flags, np.isnan(found.value) & ~np.isnan(unseen), "too-lossy")
+    lacking = np.isnan(unseen)
+    if lacking.any():
+        if travel_time is not None:
+            _set(flags, lacking & ~np.isnan(travel_time), "out-of-gate:travel_time")
+        _set(flags, lacking & ~_spoiled(flags), "no-permittivity")
+    if found.uncorrected is not None:
+        _set(flags, np.isnan(found.value) & ~lacking, "too-lossy")
     if "loss" in basis.takes:
         lossless = np.ones(flags.shape, bool) if found.loss is None else np.isnan(found.loss)
-        _set(flags, lossless & ~np.isnan(unseen), "loss-missing")
+        _set(flags, lossless & ~lacking, "loss-missing")
     spread = np.sqrt(np.square(found.of_reading) + np.square(found.shared))
     reach = coverage_factor(basis.query.probability) * spread
     with np.errstate(invalid="ignore"):
@@ -58,17 +61,13 @@ def flag_results(
 ) -> None:
     """Flag what the equation answered: no answer, outside its range, outside the pores."""
     computed = content.computed
-    unanswered = np.isnan(computed) & ~np.isnan(found.value)
-    known = ~np.isnan(_temperature(around, flags)) if basis.needs_temperature else True
-    slug = "too-lossy" if "loss" in basis.takes else "no-solution"
-    _set(flags, unanswered & known & ~_spoiled(flags), slug)
-    astray = (computed < -CONSISTENT * content.spread.above) | (
-        computed - content.ceiling
-        > CONSISTENT * np.sqrt(np.square(content.spread.below) + content.ceiling_u**2)
-    )
-    _set(flags, astray, "inconsistent")
-    _set(flags, (computed < 0.0) & ~astray, "drier-than-dry")
-    _set(flags, (computed > content.ceiling) & ~astray, "wetter-than-pores")
+    nothing = np.isnan(computed)
+    if nothing.any():
+        unanswered = nothing & ~np.isnan(found.value)
+        known = ~np.isnan(_temperature(around, flags)) if basis.needs_temperature else True
+        slug = "too-lossy" if "loss" in basis.takes else "no-solution"
+        _set(flags, unanswered & known & ~_spoiled(flags), slug)
+    _flag_impossible(content, flags)
     if content.spread.outside is not None and basis.query.draws is not None:
         left_out = content.spread.outside > LEFT_OUT * basis.query.draws.count
         _set(flags, left_out, "draws-left-out")
@@ -81,6 +80,21 @@ def flag_results(
     if content.leans_for_clay is not None:
         _set(flags, np.broadcast_to(content.leans_for_clay, flags.shape), "low-frequency")
     _flag_ranges(computed, found, around, basis, flags)
+
+
+def _flag_impossible(content: WaterContent, flags: Flags) -> None:
+    """Less water than none, or more than the pores hold: by the band, or beyond it."""
+    dry, wet = content.computed < 0.0, content.computed > content.ceiling
+    rows = np.flatnonzero(dry | wet)
+    if not rows.size:
+        return
+    off, spread = content.computed[rows], content.spread
+    room = np.sqrt(np.square(spread.below[rows]) + content.ceiling_u**2)
+    astray = off < -CONSISTENT * spread.above[rows]
+    astray |= off - content.ceiling > CONSISTENT * room
+    flags[rows[astray]] |= BIT["inconsistent"]
+    flags[rows[dry[rows] & ~astray]] |= BIT["drier-than-dry"]
+    flags[rows[wet[rows] & ~astray]] |= BIT["wetter-than-pores"]
 
 
 def flag_pore_water(

@@ -14,9 +14,9 @@ from scipy.special import ndtr, ndtri
 
 from models.relation import Array, column
 
-FAR = 4.0
-"""Scales from an end beyond which it takes so little of the probability, 3e-5, that the interval
-moves by less than 0.02 per cent of its half-width."""
+FAR = 3.5
+"""Scales from an end beyond which it takes so little of the probability, 2.3e-4, that the interval
+moves by 0.1 per cent of its half-width."""
 ASTRAY = 6.0
 """Scales outside the range beyond which all that is left is its end."""
 

@@ -28,7 +28,7 @@ from models.uncertainty.quantiles.curves import Steps
 from models.uncertainty.quantiles.intermediate import Intermediate
 from models.uncertainty.quantiles.reliability import Method, band
 
-FEW = Draws(1024)
+FEW = Draws(512)
 """For rows that nothing else settles."""
 CALM = 0.05
 """Shift of an end by curvature, in half-widths, up to which first order and that shift will do;"""
