@@ -14,6 +14,9 @@ from models.relation import Array
 
 VACUUM = 1.0
 """Nothing has less: below it there was no reading."""
+SHARED = "_u_shared"
+"""Suffix of the part of an uncertainty that readings of one probe share, SI: columns of raw records
+only."""
 KINDS = ("apparent_permittivity", "real_permittivity", "travel_time")
 
 
@@ -34,6 +37,8 @@ class Permittivity:
     """By how much one standard uncertainty of the loss moves the value; None: not at all."""
     uncorrected: Array | None = None
     """Apparent permittivity before its correction for loss, where one was made."""
+    shared_by: str = "probe_length"
+    """What the shared part comes from."""
 
     @property
     def of_reading(self) -> Array:
@@ -84,6 +89,7 @@ def permittivity_of(
             loss,
             loss_u,
             _conduction_only(readings),
+            shared_by=_shared_by(readings),
         )
     uncorrected = from_loss = None
     if loss is not None and loss_u is not None:
@@ -104,6 +110,7 @@ def permittivity_of(
         _conduction_only(readings),
         from_loss,
         uncorrected,
+        _shared_by(readings),
     )
 
 
@@ -129,6 +136,12 @@ class _Part:
         )
 
 
+def _shared_by(readings: Readings) -> str:
+    """The calibration of the probe and its method, where raw records tell what they leave open."""
+    calibrated = any(name.endswith(SHARED) for name in readings.columns)
+    return "probe_calibration" if calibrated else "probe_length"
+
+
 def _without_loss(apparent: _Part, loss: Array, loss_u: Array) -> tuple[_Part, Array]:
     """Real part: eps' = Ka - eps''^2 / (4 Ka), and what one u of the loss does to it."""
     ratio = loss / (2.0 * apparent.value)
@@ -143,8 +156,15 @@ def _real(readings: Readings, probe: Mapping[str, float]) -> _Part | None:
     """Real part as given."""
     if "real_permittivity" not in readings.columns:
         return None
-    u = noise_of(readings, "real_permittivity", probe)
-    return _Part(readings.columns["real_permittivity"], u, 0.0 * u)
+    return _given(readings, "real_permittivity", probe)
+
+
+def _given(readings: Readings, name: str, probe: Mapping[str, float]) -> _Part:
+    """A column as it came; what raw records of one probe share of its uncertainty stands apart."""
+    u = noise_of(readings, name, probe)
+    shared = np.nan_to_num(readings.columns.get(f"{name}{SHARED}", 0.0 * u))
+    shared = np.minimum(shared, u)
+    return _Part(readings.columns[name], np.sqrt(np.square(u) - np.square(shared)), shared)
 
 
 def noise_of(readings: Readings, name: str, probe: Mapping[str, float]) -> Array:
@@ -160,8 +180,7 @@ def _apparent(readings: Readings, probe: Mapping[str, float]) -> _Part | None:
     """Apparent permittivity as given, else from the travel time along the rods."""
     direct = None
     if "apparent_permittivity" in readings.columns:
-        u = noise_of(readings, "apparent_permittivity", probe)
-        direct = _Part(readings.columns["apparent_permittivity"], u, 0.0 * u)
+        direct = _given(readings, "apparent_permittivity", probe)
     time, length = readings.columns.get("travel_time"), probe.get("probe_length")
     if time is None or length is None:
         return direct

@@ -56,7 +56,7 @@ def of_water_content(
             unit = np.divide(effect, width, out=np.zeros_like(effect), where=width > 0)
             effects.per_reading["apparent_permittivity"] = unit * found.per_reading
             if np.any(found.shared):
-                effects.shared["probe_length"] = unit * found.shared
+                effects.shared[found.shared_by] = unit * found.shared
             if found.from_loss is not None:
                 effects.per_reading["bulk_conductivity"] = unit * found.from_loss
         elif name == "loss":

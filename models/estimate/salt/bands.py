@@ -7,7 +7,7 @@ of shared draws. Where the caller says that both models are exact, nothing cover
 curve: those rows go along the gradient of the whole chain.
 """
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -72,9 +72,16 @@ class Spread:
 
 
 def spread_of(
-    stepped: Stepped, through: Through, content: WaterContent, chain: Chain, asked: Asked
+    stepped: Stepped,
+    through: Through,
+    content: WaterContent,
+    chain: Callable[[], Chain],
+    asked: Asked,
 ) -> Spread:
-    """Ends of one logarithm; NaN where it has no number."""
+    """Ends of one logarithm; NaN where it has no number.
+
+    chain: makes the whole way to it, which most rows do not need.
+    """
     effects = stepped.effects(through.effects, content.standard_uncertainty)
     total, shared = (np.asarray(each) for each in effects.uncertainties())
     shift, calm = _shift(stepped, through, content, total, asked)
@@ -89,11 +96,11 @@ def spread_of(
         _curved(plain, rows, stepped, through, content, asked)
         hard = rows if asked.bare else rows[np.isnan(lower[rows])]
         if hard.size and asked.draws is None:
-            lower[hard], upper[hard], method[hard] = _by_chain(chain.rows(hard), asked)
+            lower[hard], upper[hard], method[hard] = _by_chain(chain().rows(hard), asked)
             upper[unbounded] = np.nan
     if asked.draws is None:
         return plain
-    return _drawn(plain, np.flatnonzero(known), stepped, chain, asked)
+    return _drawn(plain, np.flatnonzero(known), stepped, chain(), asked)
 
 
 def _shift(

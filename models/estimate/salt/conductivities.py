@@ -51,7 +51,11 @@ def conductivities_of(
     bare = basis.query.standard_error == pore.salinity.query.standard_error == 0.0
     asked = Asked(basis.query.probability, basis.query.draws, bare)
     most = np.inf if asked.draws is None else most_water(basis)
-    chain = Chain.of(pore, found, water, content, own, most=most)
+
+    def chain(paste: Mapping[str, Moving] | None = None) -> Chain:
+        whole = Chain.of(pore, found, water, content, own, most=most)
+        return whole.of_extract(paste) if paste else whole
+
     stepped = Stepped.of(pore, value, own)
     spread = spread_of(stepped, through, content, chain, asked)
     columns = _bulk_at_25(pore, asked.probability)
@@ -62,7 +66,7 @@ def conductivities_of(
     known = {name: each.value for name, each in paste.items()}
     extract = to_extract(value, water_content=content.computed, **known)
     stepped = stepped.of_extract(pore, extract, paste)
-    of_extract = spread_of(stepped, through, content, chain.of_extract(paste), asked)
+    of_extract = spread_of(stepped, through, content, lambda: chain(paste), asked)
     columns |= _factor(EXTRACT, extract, of_extract)
     return Conductivities(columns, spread, of_extract)
 

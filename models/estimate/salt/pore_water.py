@@ -83,6 +83,10 @@ class PoreWater:
         """What moves the conductivity not only through the water content; in a fixed order."""
         return tuple(dict.fromkeys(name for each in self.moving.values() for name in each.by))
 
+    def moves(self, source: str) -> bool:
+        """Whether the source is uncertain in any row."""
+        return any(np.any(each.by.get(source, 0.0)) for each in self.moving.values())
+
     def factor(self, temperature: Array) -> Array:
         """From soil temperature to 25 Cel."""
         return self.salinity.compensation.factor(temperature)

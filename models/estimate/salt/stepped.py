@@ -44,7 +44,7 @@ class Stepped:
         def along(name: str) -> Steps:
             return _steps(lambda size: at({name: size}), here)
 
-        direct = {name: along(name) for name in pore.sources}
+        direct = {name: along(name) for name in pore.sources if pore.moves(name)}
         direct[OWN_OF_SALT] = Steps(own, -own)
         through = NONE
         if "water_content" in pore.salinity.takes:

@@ -72,12 +72,10 @@ def scenario(model, permittivity, temperature, porosity, level):
     return found["water_content_lower"][0], found["water_content_upper"][0]
 
 
-@pytest.mark.parametrize(
-    ("model", "within"), [("topp-1980", 0.01), ("crim", 0.01), ("maxwell-garnett", 0.03)]
-)
+@pytest.mark.parametrize("model", ["topp-1980", "crim", "maxwell-garnett"])
 @pytest.mark.parametrize("level", list(LEVELS))
-def test_ends_are_those_of_draws(model, within, level):
-    """Where neither end is cut by the range. Maxwell Garnett bends most where it is dry."""
+def test_ends_are_those_of_draws(model, level):
+    """Where neither end is cut by the range."""
     compared = 0
     for permittivity, temperature, porosity in GRID:
         case = (model, permittivity, temperature, porosity, LEVELS[level])
@@ -90,7 +88,7 @@ def test_ends_are_those_of_draws(model, within, level):
         if np.isnan(ends).any():
             continue
         compared += 1
-        assert np.allclose(ends, (lower, upper), rtol=0.0, atol=within * half), case
+        assert np.allclose(ends, (lower, upper), rtol=0.0, atol=0.01 * half), case
     assert compared >= 10
 
 
