@@ -26,13 +26,12 @@ def explanation_echo(found: Explanation) -> dict[str, Any]:
 
 
 def budget_echo(found: Mapping[str, Shares]) -> dict[str, Any]:
-    """By quantity: shares of the variance by source, and the sentence of each reading."""
-    return {
-        "budget": {
-            name: {"share": _lists(of.shares), "largest": list(of.sentences)}
-            for name, of in found.items()
-        }
+    """Shares of the variance by source, and the sentence of each reading; salt by its name."""
+    told = {
+        name: {"share": _lists(of.shares), "largest": list(of.sentences)}
+        for name, of in found.items()
     }
+    return {"budget": told.pop("water_content") | told}
 
 
 def validation_echo(found: Validated) -> dict[str, Any]:
