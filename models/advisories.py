@@ -67,10 +67,11 @@ ADVISORIES: Registry[Advisory] = Registry(
              text="The extract follows from a balance of salt (saturation percentage: {origin}): "
              "nothing dissolves or settles as water is added. Gypsum adds up to about 2 dS/m."),
     Advisory(key="pore-water-open", condition="The ends of the band of a pore-water conductivity "
-             "are more than a factor of 100 apart.",
+             "are more than a factor of 100 apart, or it has no upper end.",
              text="The conductivity of the pore water is hardly known in {count} readings: the "
-             "ends of its band are more than a factor of 100 apart and say more than the value. "
-             "Little bulk conductivity or water, or a soil known by its texture alone, do that."),
+             "ends of its band are more than a factor of 100 apart, or there is no upper one, and "
+             "say more than the value. Little bulk conductivity or water, or a soil known by its "
+             "texture alone, do that."),
     Advisory(key="frequency-assumed", condition="No frequency was given.",
              text="No frequency was given: {frequency} GHz was assumed, and nothing was corrected "
              "for conduction. Give probe.frequency or a frequency column: below 0.3 GHz clay and "

@@ -43,7 +43,8 @@ class Remarks:
         """Look at one block: numbers as they were sent, the flags they got, what was answered."""
         upper = answered.get("pore_water_conductivity_upper")
         if upper is not None:
-            wide = upper > OPEN * answered["pore_water_conductivity_lower"]
+            lower = answered["pore_water_conductivity_lower"]
+            wide = (upper > OPEN * lower) | (np.isnan(upper) & ~np.isnan(lower))
             self._open += int(np.count_nonzero(wide))
         frozen = BIT["frozen"]
         if np.bitwise_or.reduce(flags, initial=np.uint64(0)) & frozen:

@@ -7,8 +7,8 @@ The measurand itself is then taken at the two points found, so that only the way
 approximate; how far both are apart says whether the sum is good enough.
 
 A curve that ends leaves some of its input's probability beyond: nothing can be there, so what is
-left counts as all. Where it runs off upwards and leaves out more than the interval does on that
-side, the interval has no upper end.
+left counts as all, once the measurand itself was seen to end there. Where it runs off upwards and
+leaves out more than the interval does on that side, there is no upper end.
 """
 
 from collections.abc import Callable, Mapping
@@ -32,6 +32,8 @@ NOTABLE = 0.05
 """Likewise: a curve of less cannot leave out any of the whole."""
 NEARLY = 5.0
 """Standard uncertainties to the end of a curve beyond which that end does not count."""
+BEYOND = 1.05
+"""Of the distance to the end of a curve: where there must be nothing, for the end to be real."""
 MOST = 0.45
 """Of the probability that is taken to lie beyond the ends on one side."""
 APART = 0.3
@@ -44,6 +46,9 @@ class Point:
 
     intermediate: Array
     scores: Mapping[str, Array]
+
+
+Measurand = Callable[[Point], Array]
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,7 +64,7 @@ class Ends:
 
 @np.errstate(all="ignore")
 def ends(
-    measurand: Callable[[Point], Array],
+    measurand: Measurand,
     value: Array,
     direct: Mapping[str, Steps],
     through: Intermediate,
@@ -75,7 +80,7 @@ def ends(
     within: of measurand and sum of curves at an end, in half-widths, for a row to be settled.
     """
     sums = _Sum.of(value, direct, through)
-    low, high = sums.left_out()
+    low, high = sums.left_out(measurand)
     tail = float(ndtr(-coverage_factor(probability)))
     left = 1.0 - low - high
     below = sums.end(ndtri(low + left * tail))
@@ -144,20 +149,36 @@ class _Sum:
             bends, Rest.of(through, others), through, sound,
         )  # fmt: skip
 
-    def left_out(self) -> tuple[Array, Array]:
-        """Probability beyond the ends of curves that run off downwards, and upwards."""
+    def left_out(self, measurand: Measurand) -> tuple[Array, Array]:
+        """Probability beyond the ends of curves that run off downwards, and upwards.
+
+        An end is real where the measurand has nothing just beyond it.
+        """
         over = Curve(self.over.bend, self.over.scale * self.through.reach)
         size = np.abs(self.curves.scale)
         notable = NOTABLE * (added(size) + np.abs(over.scale))
         low, high = np.zeros_like(self.value), np.zeros_like(self.value)
         of_inputs = zip(self.curves.bend, self.curves.scale, strict=True)
-        for curve in (*(Curve(*each) for each in of_inputs), over):
+        for place, curve in enumerate((*(Curve(*each) for each in of_inputs), over)):
             distance = curve.reach
             counts = np.flatnonzero((np.abs(curve.scale) > notable) & (distance < NEARLY))
-            mass, falls = ndtr(-distance[counts]), curve.bend[counts] > 0
+            if not counts.size:
+                continue
+            there = np.zeros_like(self.value)
+            there[counts] = -np.sign(curve.bend * curve.scale)[counts] * distance[counts] * BEYOND
+            real = np.isnan(measurand(self._only(place, there)))[counts]
+            mass, falls = np.where(real, ndtr(-distance[counts]), 0.0), curve.bend[counts] > 0
             low[counts] += np.where(falls, mass, 0.0)
             high[counts] += np.where(falls, 0.0, mass)
         return np.minimum(low, MOST), np.minimum(high, MOST)
+
+    def _only(self, place: int, score: Array) -> Point:
+        """Where one input is off, or, after the last of them, the intermediate."""
+        scores = {name: np.zeros_like(score) for name in self.names}
+        if place == len(self.names):
+            return Point(score * self.through.reach, scores)
+        scores[self.names[place]] = score
+        return Point(self.effects[place] * score, scores)
 
     def end(self, z: Array) -> _End:
         """Along the gradient of the sum, at distance z, with the curvature across it."""

@@ -159,3 +159,15 @@ def test_a_row_does_not_depend_on_its_neighbours():
         assert np.array_equal(getattr(shuffled, name), getattr(together, name)[order])
         single = [getattr(of(np.array([row])), name)[0] for row in (3, 17)]
         assert np.array_equal(single, getattr(together, name)[[3, 17]])
+
+
+def test_an_end_that_the_measurand_does_not_have_is_not_believed():
+    """Two steps as of 1 / (1 - 0.6 z), and a measurand that goes on beyond them all the same."""
+
+    def function(z):
+        return -np.log(np.maximum(1.0 - 0.6 * z, 0.4)) + np.maximum(z - 1.0, 0.0) * 0.2
+
+    value = np.zeros(1)
+    direct = {"a": Steps(function(ONE), function(-ONE))}
+    found = ends(lambda p: function(p.scores["a"]), value, direct, alone(value), probability=0.95)
+    assert not found.unbounded.any()
