@@ -16,7 +16,8 @@ from models.estimate.permittivity import Permittivity
 from models.estimate.surroundings import Surroundings
 from models.mixing.physical.complex_refractive import relaxation_loss
 from models.relation import Array, column
-from models.uncertainty.distributions import Distribution, Exact, Normal, Symmetric
+from models.uncertainty.distributions import Distribution, Normal, Symmetric
+from models.uncertainty.exact import Exact
 from models.uncertainty.first_order import Input
 
 RELAXATIONS = 6

@@ -74,40 +74,6 @@ class Distribution(ABC):
 
 
 @dataclass(frozen=True, slots=True)
-class Exact(Distribution):
-    """Known: the same wherever the others are. No derivative is taken along it."""
-
-    width: Any = 0.0
-
-    def __post_init__(self) -> None:
-        """Nothing can be wrong with it."""
-
-    def take(self, index: Any) -> Self:
-        """Some of the rows."""
-        return self if np.size(self.mean) == 1 else replace(self, mean=column(self.mean)[index])
-
-    @property
-    def rows(self) -> int:
-        """How many; 1 for a scalar."""
-        return int(np.size(self.mean))
-
-    @property
-    def exact(self) -> bool:
-        """It is."""
-        return True
-
-    def from_normal(self, z: ArrayLike) -> Array:
-        """The value itself."""
-        del z
-        return column(self.mean)
-
-    @property
-    def standard_uncertainty(self) -> Array:
-        """None."""
-        return column(0.0)
-
-
-@dataclass(frozen=True, slots=True)
 class Lognormal(Distribution):
     """Of a positive quantity known by a factor; mean and width are its own, not its logarithm's.
 

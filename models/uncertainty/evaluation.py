@@ -8,8 +8,9 @@ from numpy.typing import ArrayLike
 
 from models.relation import Array, column
 from models.uncertainty.correlation import correlation_matrix, triangular
-from models.uncertainty.distributions import Distribution, Exact, rows_of
+from models.uncertainty.distributions import Distribution, rows_of
 from models.uncertainty.draws import Draws
+from models.uncertainty.exact import Exact
 from models.uncertainty.joint import outputs_of
 
 BLOCK = 2**15

@@ -27,7 +27,8 @@ from models.estimate.salt.pore_water import PoreWater, logarithm
 from models.estimate.water_content import WaterContent
 from models.relation import Array, column
 from models.salinity.saturation_extract import to_extract
-from models.uncertainty.distributions import Distribution, Exact, Normal
+from models.uncertainty.distributions import Distribution, Normal
+from models.uncertainty.exact import Exact
 from models.uncertainty.first_order import Input
 
 OWN_OF_SALT = "pore_water_model"

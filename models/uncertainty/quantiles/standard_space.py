@@ -6,7 +6,8 @@ from typing import Any, Self
 import numpy as np
 
 from models.relation import Array
-from models.uncertainty.distributions import Distribution, Exact
+from models.uncertainty.distributions import Distribution
+from models.uncertainty.exact import Exact
 
 STEP = 0.1
 """Of differences: wide enough for second ones."""
