@@ -7,15 +7,15 @@ about: ``missing:temperature``.
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
-from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import NDArray
 
+from models.flagging import Bits, Flags, any_of
 from models.quantity import READING
 from models.registry import Registry
 
-Flags = NDArray[np.uint64]
+__all__ = ["BIT", "FLAGS", "SLUGS", "Flag", "Flags", "slugs_of", "withheld", "without_pore_water"]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -202,7 +202,8 @@ FLAGS: Registry[Flag] = Registry(
          reason="A wrong model can fit well where it looks and be far off in permittivity.",
          keeps_number=True),
     Flag(key="not-estimated", condition="A stored reading is from a time for which no one soil and "
-         "probe are on record, or what is on record does not suffice.",
+         "probe are on record, or what is on record does not suffice, or its raw record cannot be "
+         "read.",
          text="There is nothing on record by which to estimate this reading.",
          reason="Installations say which soil a probe was in, and when; the advisories of the "
          "answer say what is lacking.", keeps_number=False),
@@ -217,30 +218,28 @@ SLUGS: tuple[str, ...] = (
 )
 """Every slug a row can carry, in the order they are written."""
 
-BIT: Mapping[str, np.uint64] = MappingProxyType(
-    {slug: np.uint64(1) << np.uint64(place) for place, slug in enumerate(SLUGS)}
-)
+_BITS = Bits(SLUGS)
+BIT: Mapping[str, np.uint64] = _BITS.bit
 
 
 def slugs_of(mask: int) -> tuple[str, ...]:
     """The slugs of one row's bits."""
-    return tuple(slug for place, slug in enumerate(SLUGS) if mask >> place & 1)
+    return _BITS.names(mask)
 
 
 def withheld(flags: Flags) -> NDArray[np.bool_]:
     """Rows that must not have a number, whatever the model could say."""
-    return (flags & _WITHHOLD) != 0
+    return any_of(flags, _WITHHOLD)
 
 
 def without_pore_water(flags: Flags) -> NDArray[np.bool_]:
     """Rows that must not have a conductivity of their pore water."""
-    return (flags & (_WITHHOLD | _NO_PORE_WATER)) != 0
+    return any_of(flags, _WITHHOLD | _NO_PORE_WATER)
 
 
-def _bits(keeps: Callable[[Flag], bool]) -> np.uint64:
-    kept_back = [BIT[slug] for slug in SLUGS if not keeps(FLAGS[slug.partition(":")[0]])]
-    return np.uint64(np.bitwise_or.reduce(kept_back))
+def _kept_back(keeps: Callable[[Flag], bool]) -> np.uint64:
+    return _BITS.those(lambda slug: not keeps(FLAGS[slug.partition(":")[0]]))
 
 
-_WITHHOLD = _bits(lambda flag: flag.keeps_number)
-_NO_PORE_WATER = _bits(lambda flag: flag.keeps_pore_water)
+_WITHHOLD = _kept_back(lambda flag: flag.keeps_number)
+_NO_PORE_WATER = _kept_back(lambda flag: flag.keeps_pore_water)

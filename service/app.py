@@ -12,11 +12,12 @@ from starlette.types import ASGIApp
 
 from service import __version__
 from service.access import LimitRate, RequireKey, keys_of
+from service.answers.together import Together
 from service.batch.workers import yield_to_requests
 from service.errors import add_error_handlers
 from service.formats.arrow import load_ahead
 from service.limits import LimitBody
-from service.metrics import count
+from service.metrics import COMMITS, count
 from service.observe import Observe, write_access_log
 from service.routes import (
     catalogues,
@@ -29,6 +30,7 @@ from service.routes import (
     spectra,
     waveforms,
 )
+from service.routes.direct import Direct
 from service.routes.stored import documents, overview, readings
 from service.routes.stored import estimates as stored_estimates
 from service.schemas.openapi import Api, operation_id
@@ -86,6 +88,7 @@ def create_api(settings: Settings) -> Api:
     api.state.settings = settings
     api.state.draining = False
     api.state.tables = 0
+    api.state.together = Together()
     main = (estimates.router, spectra.router, waveforms.router, reflections.router,
             scattering.router, health.router, problems.router, pages.router)  # fmt: skip
     kept = (readings.router, stored_estimates.router, overview.router, *documents.routers)
@@ -98,7 +101,7 @@ def create_api(settings: Settings) -> Api:
 def surrounded(api: Api, settings: Settings) -> ASGIApp:
     """The layers of every request, outermost last to be added."""
     keys = keys_of(settings)
-    limited = LimitRate(LimitBody(api, settings), settings.requests_per_minute)
+    limited = LimitRate(LimitBody(Direct(api, api), settings), settings.requests_per_minute)
     guarded = RequireKey(limited, keys, on_loopback=settings.on_loopback)
     return Observe(guarded, (write_access_log, count))
 
@@ -118,6 +121,7 @@ def _lifespan(api: FastAPI) -> AbstractAsyncContextManager[None]:
 def _kept(api: FastAPI) -> Iterator[None]:
     """The store, open; at the end what was acknowledged or waits is written before it closes."""
     store = open_store(api.state.settings)
+    store.on_commit = COMMITS.inc
     writer = Writer(store)
     api.state.writer, api.state.shelf = writer, Shelf(store)
     try:
@@ -132,11 +136,11 @@ def _drained(api: FastAPI) -> Iterator[None]:
     """Between the stop signal and the server's own stop, let /readyz tell it for a while.
 
     The server stops listening as soon as it hears the signal; whoever balances the load would
-    find out by failing requests. A second signal stops at once.
+    find out by failing requests. A second signal stops at once, whatever is under way.
     """
     seconds = api.state.settings.drain_seconds
     stop = signal.getsignal(signal.SIGTERM)
-    if not seconds or not callable(stop) or threading.current_thread() != threading.main_thread():
+    if not callable(stop) or threading.current_thread() != threading.main_thread():
         yield
         return
     loop = asyncio.get_running_loop()
@@ -144,8 +148,12 @@ def _drained(api: FastAPI) -> Iterator[None]:
     def drain(number: int, frame: FrameType | None) -> None:
         if api.state.draining:
             stop(number, frame)
+            stop(signal.SIGINT, frame)  # the server leaves what is under way when told so twice
+        elif seconds:
+            loop.call_soon_threadsafe(loop.call_later, seconds, stop, number, None)
+        else:
+            stop(number, frame)
         api.state.draining = True
-        loop.call_soon_threadsafe(loop.call_later, seconds, stop, number, None)
 
     signal.signal(signal.SIGTERM, drain)
     try:

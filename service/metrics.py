@@ -8,6 +8,7 @@ import os
 import tempfile
 from collections.abc import Iterator
 from contextlib import contextmanager
+from pathlib import Path
 from typing import Any
 
 from service.formats.spool import Spool
@@ -51,6 +52,9 @@ SPOOLED = Gauge(
     "gleyline_spool_bytes", "Bytes of answers that wait for the end of their table",
     multiprocess_mode="livesum", registry=_REGISTRY,
 )  # fmt: skip
+COMMITS = Counter(
+    "gleyline_store_commits", "Transactions that changed the store", registry=_REGISTRY
+)
 
 
 def count(exchange: Exchange) -> None:
@@ -70,9 +74,20 @@ def exposition() -> bytes:
     """Everything, as Prometheus reads it."""
     registry = _REGISTRY
     if FOLDER in os.environ:
+        _forget_the_dead(Path(os.environ[FOLDER]))
         registry = CollectorRegistry()
         multiprocess.MultiProcessCollector(registry)  # type: ignore[no-untyped-call]
     return generate_latest(registry)
+
+
+def _forget_the_dead(folder: Path) -> None:
+    """What a process that is gone was working on, nobody is."""
+    for file in folder.glob("gauge_live*.db"):
+        process = int(file.stem.rpartition("_")[2])
+        try:
+            os.kill(process, 0)
+        except ProcessLookupError:
+            multiprocess.mark_process_dead(process)  # type: ignore[no-untyped-call]
 
 
 @contextmanager

@@ -40,6 +40,25 @@ SWEEP_FLAGS: Registry[Flag] = Registry(
          text="Less than the permittivity of nothing: no medium has it.",
          reason="A length in another unit (mm for m), a poor calibration, a record of something "
          "else.", keeps_number=False),
+    Flag(key="above-water", condition="From 0.1 GHz on the real part exceeds 88, that of water at "
+         "0 Cel, by more than three standard uncertainties.",
+         text="No soil, and nothing that holds water, has a permittivity above that of water.",
+         reason="Standards that were mistaken for one another, a wrong branch or length, or a "
+         "sweep of something else.",
+         keeps_number=True),
+    Flag(key="rises-with-frequency", condition="The real part is higher than at some lower "
+         "frequency, by more than three standard uncertainties of both and 10 % of |eps|.",
+         text="The real part of what only relaxes and conducts never rises with frequency.",
+         reason="Noise that was not stated, a resonance of the cell or cable, standards that "
+         "were mistaken for one another, a wrong branch, or a column that is no reflection.",
+         keeps_number=True),
+    Flag(key="port-not-passive", condition="Directivity or source match, as the standards tell "
+         "them, exceed 1 in the median over frequency.",
+         text="No cable or connector does what these standards say: two of them are probably "
+         "mistaken for one another.",
+         reason="What stands between analyser and aperture only loses power; three standards "
+         "have no other way of contradicting one another.",
+         keeps_number=True),
     Flag(key="standards-too-close", condition="An error of 0.001 in the standards' "
          "reflections changes the permittivity by more than 5 %.",
          text="The standards are too much alike here to tell permittivities apart.",

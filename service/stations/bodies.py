@@ -8,7 +8,9 @@ from pydantic import AfterValidator, Field, TypeAdapter
 
 from models.conductivity import DEFAULT_COMPENSATION
 from models.quantity import NOISE, PROBE, QUANTITIES, SOIL
+from service.faults import shown
 from service.schemas.estimates import (
+    RAW,
     Assume,
     CompensationKey,
     ModelChoice,
@@ -18,7 +20,7 @@ from service.schemas.estimates import (
     TextureKey,
 )
 from service.schemas.words import Body, Number, body_of, described, quantity_fields
-from service.stations.times import microseconds
+from service.stations.times import TimeError, microseconds
 from service.store.interface import VALUES, Kind
 
 NAME = r"^[A-Za-z][A-Za-z0-9._-]{0,63}$"
@@ -30,7 +32,10 @@ MODEL_WORDS = ("mixing_model", "pore_water_model", "temperature_compensation", "
 
 
 def _moment(text: str) -> str:
-    microseconds(text)
+    try:
+        microseconds(text)
+    except TimeError as error:
+        raise ValueError(f"{error}, found {shown(text)}") from None
     return text
 
 
@@ -38,7 +43,8 @@ def _zone(name: str) -> str:
     try:
         ZoneInfo(name)
     except (OSError, ValueError, KeyError):
-        raise ValueError("expected an IANA zone such as UTC or Europe/Berlin") from None
+        expected = "expected an IANA zone such as UTC or Europe/Berlin"
+        raise ValueError(f"{expected}, found {shown(name)}") from None
     return name
 
 
@@ -79,6 +85,12 @@ StoredProbe = body_of(
             )
             for name in NOISE
         },
+        "raw_records": (
+            dict[str, dict[str, Any]] | None,
+            Field(None, description="how raw records that its readings carry are read, by kind "
+                  f"({', '.join(RAW)}), as in POST /v1/estimates; in the unit of the API. A "
+                  "waveform needs no more than probe_length"),
+        ),
     },
 )  # fmt: skip
 

@@ -13,11 +13,13 @@ from models.quantity import READING
 from models.readings import quantity_of
 from service.errors import NotFound, Unprocessable
 from service.faults import Fault, hint, pointer, problems_of
+from service.formats.raw_records import SETTINGS
 from service.schemas.query import basis_of, settings_of
 from service.stations.bodies import BODIES
 from service.stations.documents import Documents, Shelf
 from service.stations.ingest.arrival import converter
 from service.stations.problems import Conflicted, PreconditionFailed, PreconditionRequired
+from service.stations.raw_settings import check_settings
 from service.stations.settings import settings_document
 from service.stations.station import faults_of_station, station_of
 from service.store.errors import Changed, Stale
@@ -64,6 +66,7 @@ def checked(kind: Kind, given: Mapping[str, Any]) -> Mapping[str, Any]:
     if kind == "station":
         return kept
     probe, soil = (kept, {}) if kind == "probe" else ({}, kept)
+    check_settings(probe)
     _check_science(kind, settings_document(soil, probe, {}))
     return kept
 
@@ -74,6 +77,9 @@ def _in_own_units(given: Mapping[str, Any]) -> Mapping[str, Any]:
     if not isinstance(units, dict) or not all(isinstance(code, str) for code in units.values()):
         raise Unprocessable("expected UCUM codes", [Fault("expected an object", "#/units")])
     refuse_units(units)
+    if given.get(SETTINGS):
+        detail = f"units do not reach into {SETTINGS}: send both in the unit of the API"
+        raise Unprocessable(detail, [Fault(f"{detail}, and leave out units", "#/units")])
     found: dict[str, Any] = {}
     for name, value in given.items():
         about, is_width = quantity_of(name)
@@ -158,4 +164,9 @@ def _check_references(wish: Wish, documents: Documents) -> None:
         for name in documents.by_kind["station"]:
             known = documents.station(name)
             if known and any(getattr(i, wish.kind) == wish.name for i in known.installations):
-                raise Conflicted(f"the station {name} has an installation with it")
+                raise Conflicted(
+                    f"the station {name} has an installation with the {wish.kind} {wish.name}, and "
+                    "readings of that time are estimated with it: what is over keeps its "
+                    f"installation and ends it with until (PUT /v1/stations/{name}); one that "
+                    "never was is left out of the station first"
+                )

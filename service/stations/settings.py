@@ -9,6 +9,7 @@ import orjson
 from models.estimate import Basis
 from service.errors import Unprocessable
 from service.faults import Fault
+from service.formats.raw_records import SETTINGS as RAW_SETTINGS
 from service.schemas.estimates import EstimatesSettings
 from service.schemas.query import basis_of, settings_of
 from service.stations.bodies import MODEL_WORDS
@@ -20,7 +21,7 @@ def settings_document(soil: Body, probe: Body, asked: Body) -> dict[str, Any]:
     """A request for estimates without readings; what is asked beats what is stored."""
     words = {key: soil[key] for key in MODEL_WORDS if soil.get(key) is not None}
     plain = {k: v for k, v in soil.items() if k not in MODEL_WORDS and k != "title"}
-    own = {key: value for key, value in probe.items() if key != "title"}
+    own = {key: value for key, value in probe.items() if key not in {"title", RAW_SETTINGS}}
     document = {**words, **asked}
     document["soil"] = {**plain, **asked.get("soil", {})}
     document["probe"] = {**own, **asked.get("probe", {})}

@@ -1,20 +1,28 @@
-"""What became of readings whose keys are not all new: accepted, the same again, or in conflict."""
+"""What became of readings whose keys are not all new: accepted, the same, more, or in conflict."""
 
 import zlib
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
 import orjson
-from sqlalchemy import Column
 
-from service.store.interface import COLUMNS, RAW, Batch, Clash, Outcome, Row, Span
-from service.store.schema import reading
+from service.store.interface import (
+    COLUMNS,
+    IN_PLACE_OF_RAW,
+    RAW,
+    Batch,
+    Clash,
+    Outcome,
+    Row,
+)
 
 Key = tuple[int, int]
 """Channel number and time."""
 Fetch = Callable[[int, Sequence[int]], list[Row]]
 """The kept readings of a channel at some times: time, revision, every column."""
+_RAW = COLUMNS.index(RAW)
+_IN_PLACE = [COLUMNS.index(name) for name in IN_PLACE_OF_RAW]
 
 
 @dataclass(slots=True)
@@ -23,61 +31,91 @@ class Examined:
 
     accepted: int = 0
     duplicates: int = 0
+    completed: int = 0
     clashes: list[Clash] = field(default_factory=list)
     keys: list[Key] = field(default_factory=list)
     """Of the clashes."""
 
     def outcome(self) -> Outcome:
         """As the caller is told."""
-        return Outcome(self.accepted, self.duplicates, self.clashes)
+        return Outcome(self.accepted, self.duplicates, self.clashes, self.completed)
+
+
+@dataclass(slots=True)
+class Kept:
+    """A kept reading, and what becomes of it while batches are compared with it."""
+
+    key: Key
+    revision: int
+    before: list[Any]
+    """Every column, as the store holds it."""
+    values: list[Any]
+    """Every column, as the store is to hold it."""
+    unclaimed: bool
+    """The revision of the batches brought it in, and no row has been counted for it yet."""
 
 
 def examine(
     batches: Sequence[tuple[Batch, Sequence[int]]], revision: int, fetch: Fetch
-) -> list[Examined]:
+) -> tuple[list[Examined], list[Kept]]:
     """Compare batches, in order, with what is kept after they were inserted at ``revision``.
 
     batches: each with the channel number of every row.
-    A key that this revision brought in belongs to the first row that has it.
+    Returns what was found, and the kept readings that are to be completed. A key that this
+    revision brought in belongs to the first row that does not contradict it.
     """
     times: dict[int, list[int]] = {}
     for batch, numbers in batches:
         for number, moment in zip(numbers, batch.times, strict=True):
             times.setdefault(number, []).append(moment)
-    kept = {
-        (number, row[0]): row for number, wanted in times.items() for row in fetch(number, wanted)
-    }
-    taken: set[Key] = set()
-    return [_examine(batch, numbers, revision, kept, taken) for batch, numbers in batches]
+    kept: dict[Key, Kept] = {}
+    for number, wanted in times.items():
+        for moment, arrived, *known in fetch(number, wanted):
+            key = (number, moment)
+            kept[key] = Kept(key, arrived, known, known, arrived == revision)
+    found = [_examine(batch, numbers, kept) for batch, numbers in batches]
+    return found, [known for known in kept.values() if known.values is not known.before]
 
 
-def _examine(
-    batch: Batch,
-    numbers: Sequence[int],
-    revision: int,
-    kept: Mapping[Key, Row],
-    taken: set[Key],
-) -> Examined:
+def _examine(batch: Batch, numbers: Sequence[int], kept: Mapping[Key, Kept]) -> Examined:
     found = Examined()
     places = [COLUMNS.index(name) for name in batch.values]
     empty: list[Any] = [None] * len(COLUMNS)
     keys = zip(numbers, batch.times, strict=True)
     cells = zip(*batch.values.values(), strict=True) if places else iter([()] * len(batch))
     for row, (key, values) in enumerate(zip(keys, cells, strict=True)):
-        _, arrived, *known = kept[key]
-        if arrived == revision and key not in taken:
-            taken.add(key)
-            found.accepted += 1
-            continue
+        known = kept[key]
         sent = empty.copy()
         for place, value in zip(places, values, strict=True):
             sent[place] = value
-        if sent == known:
-            found.duplicates += 1
-        else:
+        together = sent if sent == known.values else _together(known.values, sent)
+        if together is None:
             found.keys.append(key)
-            found.clashes.append(Clash(row, told(known), told(sent)))
+            found.clashes.append(Clash(row, told(known.values), told(sent)))
+            continue
+        more = together != known.values
+        if known.unclaimed:
+            found.accepted += 1
+        elif more:
+            found.completed += 1
+        else:
+            found.duplicates += 1
+        known.unclaimed = False
+        if more:
+            known.values = together
     return found
+
+
+def _together(known: Sequence[Any], sent: Sequence[Any]) -> list[Any] | None:
+    """One reading of two that hold nothing different; None where they contradict each other."""
+    both: list[Any] = []
+    for old, new in zip(known, sent, strict=True):
+        if old is not None and new is not None and old != new:
+            return None
+        both.append(new if old is None else old)
+    if both[_RAW] is not None and any(both[place] is not None for place in _IN_PLACE):
+        return None
+    return both
 
 
 def told(values: Sequence[Any]) -> dict[str, Any]:
@@ -100,9 +138,7 @@ def unpacked(stored: bytes) -> Any:
     return orjson.loads(zlib.decompress(stored))
 
 
-def columns_of(span: Span) -> Iterator[Column[Any]]:
-    """What a row of a span holds."""
-    r = reading.c
-    yield from (r.channel, r.time, r.revision)
-    for name in span.columns:
-        yield r[name]
+def kind_of(stored: bytes) -> str:
+    """The kind of a raw record that was stored, without reading all of it."""
+    beginning = zlib.decompressobj().decompress(stored, 40).decode("ascii", "replace")
+    return beginning.split('"')[1]

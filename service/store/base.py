@@ -1,21 +1,20 @@
 """What the two databases have in common when they keep something: readings and documents."""
 
-import hashlib
 import time
 from abc import abstractmethod
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from itertools import repeat
 
 import orjson
-from sqlalchemy import Connection, Engine, exists, select, text
+from sqlalchemy import Connection, Engine, bindparam, exists, select, text
 
 from service.store import schema
-from service.store.append import Examined, examine
-from service.store.asking import Asking
+from service.store.append import Examined, Kept, examine
 from service.store.errors import Changed, InUse, Stale
-from service.store.interface import Batch, Document, Head, Outcome, Row
-from service.store.schema import channel, reading
+from service.store.interface import COLUMNS, Batch, Document, Head, Kind, Outcome, Row
+from service.store.schema import channel, earlier, reading
+from service.store.transfer.restoring import Restoring, digest_of
 
 _ADVANCE = text("UPDATE store SET revision = revision + 1 RETURNING revision, documents")
 _OPEN_CHANNEL = text(
@@ -28,6 +27,12 @@ _CONFLICT = text(
     "INSERT INTO conflict (channel, time, digest, revision, received, sent) "
     "VALUES (:channel, :time, :digest, :revision, :received, :sent) "
     "ON CONFLICT (channel, time, digest) DO NOTHING"
+)
+_SET_ASIDE = earlier.insert()
+_COMPLETE = (
+    reading.update()
+    .where(reading.c.channel == bindparam("of_channel"), reading.c.time == bindparam("of_time"))
+    .values({name: bindparam(f"new_{name}") for name in ("revision", *COLUMNS)})
 )
 _DOCUMENT = text(
     "INSERT INTO document (revision, kind, name, changed, author, body) "
@@ -44,17 +49,13 @@ def now() -> int:
     return time.time_ns() // 1000
 
 
-class SqlStore(Asking):
+class SqlStore(Restoring):
     """See Store. What is written twice, once for each database, is abstract here."""
 
     def __init__(self, engine: Engine) -> None:
         super().__init__(engine)
         self._known: dict[Place, tuple[int, frozenset[str]]] = {}
         """Number and held columns of a channel."""
-
-    @abstractmethod
-    def _insert(self, connection: Connection, names: tuple[str, ...], rows: Sequence[Row]) -> int:
-        """Insert readings whose key is new; how many there were."""
 
     @abstractmethod
     def _kept(self, connection: Connection, number: int, times: Sequence[int]) -> list[Row]:
@@ -79,7 +80,8 @@ class SqlStore(Asking):
                 found = [Examined(len(batch)) for batch in fresh]
             else:
                 fetch = lambda number, times: self._kept(connection, number, times)  # noqa: E731
-                found = examine(rows, head.revision, fetch)
+                found, completed = examine(rows, head.revision, fetch)
+                _complete(connection, completed, head.revision)
                 self._keep_conflicts(connection, found, head.revision)
         self._known = opened
         outcomes = iter(found)
@@ -115,7 +117,7 @@ class SqlStore(Asking):
                 rows.append(
                     {
                         "channel": number, "time": moment, "revision": revision,
-                        "digest": hashlib.sha256(sent).hexdigest(), "received": received,
+                        "digest": digest_of(sent), "received": received,
                         "sent": sent.decode(),
                     }
                 )  # fmt: skip
@@ -154,7 +156,34 @@ class SqlStore(Asking):
         else:
             return
         if station := connection.execute(used.limit(1)).scalar():
-            raise InUse(f"readings of the station {station} refer to it")
+            raise InUse(_NEEDED[gone.kind].format(name=gone.name, station=station))
+
+
+_NEEDED: Mapping[Kind, str] = {
+    "station": "readings of the station {name} are kept, and a record stays: end what is installed "
+    "there with until (PUT /v1/stations/{name}), and take another name for a new station",
+    "probe": "readings of the station {station} name the probe {name}, and are estimated with it: "
+    "end its installations with until (PUT /v1/stations/{station}), and take another name for a "
+    "new probe",
+}
+"""What to do instead of deleting what readings refer to."""
+
+
+def _complete(connection: Connection, completed: Sequence[Kept], revision: int) -> None:
+    """Give kept readings what they lacked; as they were, they stay for questions of before."""
+    before, after = [], []
+    for known in completed:
+        number, moment = known.key
+        if known.revision < revision:
+            row = dict(zip(COLUMNS, known.before, strict=True))
+            before.append(row | {"channel": number, "time": moment, "revision": known.revision,
+                                 "until": revision})  # fmt: skip
+        new = {f"new_{name}": v for name, v in zip(COLUMNS, known.values, strict=True)}
+        after.append(new | {"of_channel": number, "of_time": moment, "new_revision": revision})
+    if before:
+        connection.execute(_SET_ASIDE, before)
+    if after:
+        connection.execute(_COMPLETE, after)
 
 
 def _opened(

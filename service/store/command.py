@@ -10,14 +10,10 @@ import click
 import orjson
 
 from service.settings import SettingsError, read_settings, variable
-from service.store.append import told
 from service.store.base import SqlStore
 from service.store.errors import StoreError
-from service.store.interface import COLUMNS, Span
 from service.store.opening import open_store, store_of
-
-PAGE = 20_000
-"""Readings that are exported at a time."""
+from service.store.transfer.exporting import exported
 
 
 @click.group()
@@ -82,7 +78,12 @@ def upgrade(**given: str | None) -> None:
 @click.argument("file", type=click.Path(dir_okay=False, path_type=Path))
 @where
 def backup(file: Path, **given: str | None) -> None:
-    """Copy the whole store to FILE while it is in use: a SQLite file, or a dump of PostgreSQL."""
+    """Copy the whole store to FILE while it is in use: a SQLite file, or a dump of PostgreSQL.
+
+    A SQLite copy is put in place of the file of a service that is stopped. A dump is put back into
+    an empty database by PostgreSQL's own tool: pg_restore --no-owner --dbname=URL FILE. Where
+    there is no pg_dump of the server's version, export does the same.
+    """
     with _opened(given) as opened:
         opened.backup(file)
 
@@ -92,31 +93,25 @@ def backup(file: Path, **given: str | None) -> None:
               help="file to write; standard output where left out")  # fmt: skip
 @where
 def export(output: IO[bytes], **given: str | None) -> None:
-    """Write everything as NDJSON: changes of documents, then readings, then conflicts.
+    """Write everything as NDJSON, of either database, while it is in use; import takes it back.
 
-    Times are microseconds since 1970; numbers are in the units of the API.
+    Changes of documents, then series with their readings (those that were completed followed by
+    what they were before), then conflicts. Times are microseconds since 1970; numbers are in the
+    unit of the API.
     """
     with _opened(given) as opened:
         for line in exported(opened):
             output.write(orjson.dumps(line) + b"\n")
 
 
-def exported(opened: SqlStore) -> Iterator[dict[str, Any]]:
-    """Everything that is kept, up to one revision, oldest documents first."""
-    head = opened.head()
-    for d in opened.documents(upto=head.revision):
-        yield {"document": {name: getattr(d, name) for name in d.__slots__}}
-    for channel in opened.channels():
-        after = None
-        while True:
-            span = Span([channel], COLUMNS, after=after, upto=head.revision, limit=PAGE)
-            rows = opened.readings(span)
-            for row in rows:
-                key = {"station": channel.station, "place": channel.place, "time": row[1]}
-                yield {"reading": {**key, "revision": row[2], **told(row[3:])}}
-            if len(rows) < PAGE:
-                break
-            after = (rows[-1][0], rows[-1][1])
-    for station in sorted({channel.station for channel in opened.channels()}):
-        for contradiction in opened.conflicts(station, 2**31 - 1):
-            yield {"conflict": {"station": station, **contradiction}}
+@store.command("import")
+@click.argument("file", type=click.File("rb"))
+@where
+def import_(file: IO[bytes], **given: str | None) -> None:
+    """Put the export in FILE into an empty store of either database; - reads standard input.
+
+    Every revision stays what it was, so that questions as of a revision have the same answers.
+    """
+    with _opened(given) as opened:
+        reached = opened.restore(file)
+    click.echo(f"the store is at revision {reached}", err=True)

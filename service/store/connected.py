@@ -2,7 +2,7 @@
 
 import logging
 from abc import ABC, abstractmethod
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
@@ -22,6 +22,8 @@ class Connected(ABC):
 
     def __init__(self, engine: Engine) -> None:
         self.engine = engine
+        self.on_commit: Callable[[], object] = lambda: None
+        """Called after each transaction that changed something; from any thread."""
 
     @abstractmethod
     def _lock(self, connection: Connection) -> None:
@@ -47,6 +49,8 @@ class Connected(ABC):
         except SQLAlchemyError as error:
             log.error("the store failed: %s", reason_of(error))  # noqa: TRY400 - one line will do
             raise StoreUnavailable(f"the store failed: {type(error).__name__}") from error
+        if write:
+            self.on_commit()
 
     def prepare(self) -> None:
         """Make the tables of an empty database; raises SchemaError for any other version."""

@@ -6,6 +6,7 @@ StoreError
     Stale               soils, probes or stations changed since the caller looked
     Changed             a document is not at the revision the caller expected
     InUse               readings or stations refer to what should be deleted
+    RestoreError        an export cannot be put in
 """
 
 
@@ -47,3 +48,7 @@ class Changed(StoreError):
 
 class InUse(StoreError):
     """Readings or stations refer to what should be deleted."""
+
+
+class RestoreError(StoreError):
+    """An export cannot be put in; nothing of it was."""

@@ -22,6 +22,8 @@ VALUES: tuple[str, ...] = (
 RAW = "raw"
 """The compressed raw record of a reading: a trace, a sweep."""
 COLUMNS = (*VALUES, RAW)
+IN_PLACE_OF_RAW = ("apparent_permittivity", "real_permittivity", "travel_time")
+"""What a reading holds instead of a raw record, never beside it."""
 
 Row = tuple[Any, ...]
 """Channel, time, revision, then the values asked for."""
@@ -115,6 +117,8 @@ class Outcome:
     accepted: int
     duplicates: int = 0
     clashes: Sequence[Clash] = field(default=())
+    completed: int = 0
+    """Kept readings that got values they lacked."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -131,6 +135,8 @@ class Span:
     upto: int | None = None
     """Only what was known at this revision."""
     limit: int | None = None
+    holding: str | None = None
+    """Only readings that hold this column."""
 
 
 class Store(Protocol):
@@ -146,7 +152,8 @@ class Store(Protocol):
     def append(self, batches: Sequence[Batch]) -> list[Outcome | Stale]:
         """Keep the readings, all in one transaction; durable once this returns.
 
-        The same reading twice is one reading. One with other values than the kept one is kept
+        The same reading twice, or less of it, is one reading. What the kept one lacks completes
+        it, at a new revision; at the earlier one it is as it was. One that contradicts it is kept
         as a conflict. A batch checked against older documents is handed back, nothing kept.
         """
         ...

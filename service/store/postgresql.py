@@ -1,19 +1,20 @@
 """The store for many processes and machines: PostgreSQL, readings in partitions by month."""
 
+import os
 import subprocess
 from collections.abc import Iterator, Sequence
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 
-from sqlalchemy import Connection, create_engine, make_url, select, text, true
+from sqlalchemy import URL, Connection, create_engine, make_url, select, text, true
 from sqlalchemy.exc import ArgumentError
 
-from service.store.append import columns_of
+from service.store.asking import columns_of, known_at
 from service.store.base import SqlStore
 from service.store.errors import StoreUnavailable
 from service.store.interface import COLUMNS, RAW, Row, Span
-from service.store.schema import channel, reading
+from service.store.schema import channel
 
 COPY_FROM = 500
 """Rows from which on COPY into a table of its own is faster than arrays."""
@@ -105,15 +106,15 @@ class PostgresqlStore(SqlStore):
     def newest(self, span: Span) -> list[Row]:
         """See Store: one step into the newest partition for each series, not a search for both."""
         numbers = [known.number for known in span.channels]
-        last = select(*columns_of(span)).where(reading.c.channel == channel.c.id)
-        if span.end is not None:
-            last = last.where(reading.c.time < span.end)
-        if span.upto is not None:
-            last = last.where(reading.c.revision <= span.upto)
-        each = last.order_by(reading.c.time.desc()).limit(1).correlate(channel).lateral("last")
-        wanted = select(each).select_from(channel.join(each, true()))
-        wanted = wanted.where(channel.c.id.in_(numbers)).order_by(each.c.channel)
         with self._transaction(write=False) as connection:
+            known = known_at(connection, span)
+            last = select(*columns_of(span, known)).where(known.c.channel == channel.c.id)
+            if span.end is not None:
+                last = last.where(known.c.time < span.end)
+            last = last.order_by(known.c.time.desc()).limit(1).correlate(channel)
+            each = last.lateral("last")
+            wanted = select(each).select_from(channel.join(each, true()))
+            wanted = wanted.where(channel.c.id.in_(numbers)).order_by(each.c.channel)
             return list(map(tuple, connection.execute(wanted).fetchall()))
 
     def check(self) -> Iterator[str]:
@@ -127,16 +128,29 @@ class PostgresqlStore(SqlStore):
                 yield "synchronous_commit is off: what was acknowledged can be lost"
 
     def backup(self, target: Path) -> None:
-        """See Store: by pg_dump, which must be installed."""
+        """See Store: by pg_dump of the server's version, which must be installed."""
         if target.exists():
             raise StoreUnavailable(f"{target} is there already; name a new file")
-        url = self.engine.url.set(drivername="postgresql").render_as_string(hide_password=False)
+        url = self.engine.url
+        secret = {} if url.password is None else {"PGPASSWORD": str(url.password)}
+        named = URL.create(
+            "postgresql", url.username, None, url.host, url.port, url.database, url.query
+        ).render_as_string()
         try:
             subprocess.run(  # noqa: S603
-                ["pg_dump", "--format=custom", f"--file={target}", url],  # noqa: S607
-                check=True, capture_output=True,
+                ["pg_dump", "--format=custom", f"--file={target}", named],  # noqa: S607
+                check=True, capture_output=True, env={**os.environ, **secret},
             )  # fmt: skip
         except FileNotFoundError:
-            raise StoreUnavailable("pg_dump is not installed; it makes the copy") from None
+            raise StoreUnavailable(f"pg_dump is not installed: {_OTHERWISE}") from None
         except subprocess.CalledProcessError as error:
-            raise StoreUnavailable(f"pg_dump failed: {error.stderr.decode()[-200:]}") from None
+            target.unlink(missing_ok=True)
+            said = " ".join(error.stderr.decode(errors="replace").split())[-300:]
+            raise StoreUnavailable(f"pg_dump failed ({said}): {_OTHERWISE}") from None
+
+
+_OTHERWISE = (
+    "install that of the server's version, or keep what gleyline store export writes, which "
+    "gleyline store import takes back"
+)
+"""How else to make a copy."""

@@ -45,6 +45,13 @@ reading = Table(
     "reading", metadata, Column("channel", _big), Column("time", _big), Column("revision", _big),
     *(Column(name, Float) for name in VALUES), Column(RAW, LargeBinary),
 )  # fmt: skip
+earlier = Table(
+    "earlier",
+    metadata,
+    *(Column(c.name, c.type) for c in reading.columns),
+    Column("until", _big),
+)
+"""Readings as they were before they were completed: known from ``revision`` to before ``until``."""
 conflict = Table(
     "conflict", metadata, Column("channel", _big), Column("time", _big), Column("digest", Text),
     Column("revision", _big), Column("received", _big), Column("sent", Text),
@@ -98,13 +105,22 @@ _WORDS: Mapping[str, Mapping[str, str]] = MappingProxyType({
 })  # fmt: skip
 
 
-def _first(dialect: str) -> list[str]:
+_EARLIER = """
+CREATE TABLE earlier (channel {int} NOT NULL, time {int} NOT NULL, revision {int} NOT NULL,
+    {values}, raw {blob}, until {int} NOT NULL, PRIMARY KEY (channel, time, revision)){strict}
+"""
+
+
+def _written(tables: str, dialect: str) -> list[str]:
     words = _WORDS[dialect]
     values = ", ".join(f"{name} {words['real']}" for name in _VALUES)
-    return _TABLES.format(values=values, **words).split(";")
+    return tables.format(values=values, **words).split(";")
 
 
-STEPS: tuple[Step, ...] = (Step(_first("sqlite"), _first("postgresql")),)
+STEPS: tuple[Step, ...] = tuple(
+    Step(_written(tables, "sqlite"), _written(tables, "postgresql"))
+    for tables in (_TABLES, _EARLIER)
+)
 """Step n, counted from 1, makes version n."""
 
 

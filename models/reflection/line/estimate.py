@@ -14,6 +14,7 @@ from models.reflection.line.gaps import CoaxialGap
 from models.reflection.line.practice import findings_of, flag, magnetic_finding
 from models.reflection.line.roots import smooth_roots
 from models.reflection.orientation import falls, rises
+from models.reflection.plausible import judge
 from models.reflection.propagation import through_air
 from models.relation import Array, ComplexArray
 
@@ -171,7 +172,9 @@ def _start(query: LineQuery, face: _Face, length: float) -> ComplexArray:
         return np.where(np.isfinite(start), start, 5.0)
     rows = np.unique(np.linspace(0, f.size - 1, min(f.size, TRACED)).astype(int))
     model = cell.model(f[rows], length, query.ends)
-    found = smooth_roots(model, face.reflection[:, rows], face.spread[:, rows], query.guess)
+    found = smooth_roots(
+        model, f[rows], face.reflection[:, rows], face.spread[:, rows], query.guess
+    )
     known = np.isfinite(found)
     if not known.any():
         return np.full(f.size, 5.0 + 0j)
@@ -202,7 +205,8 @@ def _estimated(query: LineQuery, face: _Face, here: _Solution, *, conjugated: bo
     flag_loss(eps[None], band, flags)
     flag_uncertain(eps[None], band, flags, query.largest_relative_uncertainty)
     flag(face.reflection, face.spread, flags)
-    findings = findings_of(query, eps, face.reflection)
+    (plausible,) = judge(f, eps[None], band, flags)
+    findings = (*findings_of(query, eps, face.reflection), *plausible)
     if len(query.ends) == 2 and query.length is not None:
         both = cell.from_both(face.reflection[0], face.reflection[1], f, query.length)
         findings = (*findings, magnetic_finding(both[1], here.residual, known=face.known))

@@ -13,13 +13,23 @@ PHYSICAL = Range(1.0, 90.0)
 """Apparent permittivities that a probe in soil or water can show."""
 TANGENT_WEIGHT = 0.6
 """Of the tangents in the refractive index: in simulated soils their error is the smaller one."""
-METHOD_SHARE = float(1 / np.sqrt(3.0))
-"""Of the half-difference between the two ways, for its standard uncertainty: that of a uniform
-distribution which ends at both of them."""
-FLOOR = 0.005
-"""Relative standard uncertainty of a refractive index, however well both ways agree: by so much
-simulated soils miss their truth. The head rings, and calibration in air and water does not show
-how it rings in the soil: the same for all traces of a probe."""
+METHOD_SHARE = 0.4
+"""Of the half-difference between the two ways, for its standard uncertainty."""
+FLOOR = 0.003
+"""Relative standard uncertainty of a refractive index, however well both ways agree. The head
+rings, and calibration in air and water does not show how it rings in the soil."""
+BLUR = 0.025
+"""The same, of the rise of the end reflection over the travel time: what is read within a rise."""
+DISPERSION = 0.3
+"""The same, of the rise in excess of what air and water show, over the travel time: a soil that
+slows an edge relaxes within its band, and has as many permittivities as the edge frequencies."""
+COMMON_FREQUENCY = 1e9
+"""Hz, of which a permittivity by travel time is often taken to speak: dispersion counts for more
+by as many e-folds as the effective frequency is below it."""
+WATER_SLOWING = 7.5e-11
+"""s: square of the rise that water adds, over the travel time in it, where no trace shows it."""
+HEAD_SLOWING = 1.2
+"""Of a rise, between head and end of rods in air, where no trace shows it."""
 RISE_UNCERTAINTY = 0.15
 """Relative standard uncertainty of the rise time of an end reflection."""
 
@@ -39,6 +49,8 @@ class ApparentPermittivity:
     frequency_u: Array
     travel_time: Array
     """s, two-way, along rods of the effective length."""
+    expected_rise: Array
+    """s, of an end reflection in a medium that relaxes no more than water does."""
     refused: NDArray[np.bool_]
 
 
@@ -46,8 +58,9 @@ class ApparentPermittivity:
 def apparent_permittivity(found: Arrivals, timing: Timing) -> ApparentPermittivity:
     """Square of the refractive index, a weighted mean of both ways of reading the time.
 
-    Its uncertainty holds noise, half the difference of the two ways, what both have in common, and
-    the calibration of the probe.
+    It is the permittivity at the effective frequency, told beside it. Noise alone differs from
+    reading to reading. Shared by all readings of a probe in one soil are its calibration, half the
+    difference of the two ways, what both have in common, the blur of the edge, and dispersion.
     """
     times = found.time(timing)
     spans = [high - low for low, high in zip(timing.low, timing.high, strict=True)]
@@ -60,20 +73,26 @@ def apparent_permittivity(found: Arrivals, timing: Timing) -> ApparentPermittivi
     noise = 0.5 * (found.end.tangent_u + found.end.steepest_u)
     if timing.fixed_start is None:
         noise = np.hypot(noise, 0.5 * (found.start.tangent_u + found.start.steepest_u))
-    method = METHOD_SHARE * 0.5 * np.abs(tangent - steepest)
-    own = np.hypot(per_second * noise, method)
+    own = per_second * noise
+    time = index / per_second
+    expected = _expected_rise(found, timing, time, share)
+    excess = np.sqrt(np.maximum(np.square(found.end.rise) - np.square(expected), 0.0))
+    frequency = effective_frequency(found.end.rise)
+    away = np.log(np.maximum(COMMON_FREQUENCY / frequency, 1.0))
     shared = np.sqrt(
         np.square(per_second * (1 - share) * timing.low_u)
         + np.square(per_second * share * timing.high_u)
         + np.square(share * timing.index_u)
+        + np.square(METHOD_SHARE * 0.5 * (tangent - steepest))
         + np.square(FLOOR * index)
+        + np.square(BLUR * per_second * found.end.rise)
+        + np.square(DISPERSION * per_second * excess * np.hypot(1.0, away))
     )
     value = np.square(index)
     total = 2 * index * np.hypot(own, shared)
     # Air reads 1 give or take its uncertainty: what that explains is not refused.
     refused = PHYSICAL.excludes(value + np.where(value < PHYSICAL.low, 3.0 * total, 0.0))
     lost = np.where(refused, np.nan, 0.0)
-    frequency = effective_frequency(found.end.rise)
     return ApparentPermittivity(
         value=value + lost,
         standard_uncertainty=total + lost,
@@ -82,6 +101,19 @@ def apparent_permittivity(found: Arrivals, timing: Timing) -> ApparentPermittivi
         by_steepest=np.square(steepest) + lost,
         frequency=frequency + lost,
         frequency_u=RISE_UNCERTAINTY * frequency + lost,
-        travel_time=index / per_second + lost,
+        travel_time=time + lost,
+        expected_rise=expected + lost,
         refused=refused,
     )
+
+
+def _expected_rise(found: Arrivals, timing: Timing, time: Array, share: Array) -> Array:
+    """Rise in a medium between those of the calibration, s: its square grows with the index.
+
+    time: s, along the rods. share: of the index, from low to high.
+    """
+    if timing.rises is None:
+        begin = np.square(HEAD_SLOWING * found.start.rise)
+        return np.sqrt(begin + WATER_SLOWING * time * np.clip(share, 0.0, 1.0))
+    low, high = (rise * rise for rise in timing.rises)
+    return np.sqrt(np.maximum(low + share * (high - low), 0.0))

@@ -75,11 +75,12 @@ def calibrate(
         fixed = float(min(np.mean(start.steepest) for start in starts))
     known = USUAL_OFFSET if offset is None else offset
     guess = replace(plain_timing(length, 0.0, known, 0.0, width), fixed_start=fixed)
-    low, low_u = _time(air, "air", guess, AIR_INDEX)
-    high, high_u = _time(water, "water", guess, index)
+    low, low_u, low_rise = _time(air, "air", guess, AIR_INDEX)
+    high, high_u, high_rise = _time(water, "water", guess, index)
     if fixed is not None:
         low, low_u = _by_length(low, low_u, high, length, index)
-    return Timing(low, high, AIR_INDEX, index, low_u, high_u, index_u, fixed, width)
+    rises = (low_rise, high_rise)
+    return Timing(low, high, AIR_INDEX, index, low_u, high_u, index_u, fixed, width, rises)
 
 
 def rise_of(given: Sequence[Traces]) -> tuple[float, float]:
@@ -93,17 +94,21 @@ def rise_of(given: Sequence[Traces]) -> tuple[float, float]:
 def _by_length(
     low: tuple[float, float], low_u: float, high: tuple[float, float], length: float, index: float
 ) -> tuple[tuple[float, float], float]:
-    """Time in air, halfway between what a blurred trace shows and what the rods' length says."""
+    """Time in air, halfway between what a blurred trace shows and what the rods' length says.
+
+    A quarter of what they are apart is the standard uncertainty: half of it ends at both.
+    """
     span = 2.0 * length * (index - AIR_INDEX) / speed_of_light
     told = (high[0] - span, high[1] - span)
-    apart = 0.25 * (abs(told[0] - low[0]) + abs(told[1] - low[1]))
-    return (0.5 * (low[0] + told[0]), 0.5 * (low[1] + told[1])), float(np.hypot(low_u, apart))
+    apart = 0.5 * (abs(told[0] - low[0]) + abs(told[1] - low[1]))
+    middle = (0.5 * (low[0] + told[0]), 0.5 * (low[1] + told[1]))
+    return middle, float(np.hypot(low_u, 0.25 * apart))
 
 
 def _time(
     given: Traces, name: str, guess: Timing, index: float
-) -> tuple[tuple[float, float], float]:
-    """Mean time to the end by both ways in a medium of known index, and its noise."""
+) -> tuple[tuple[float, float], float, float]:
+    """Mean time to the end by both ways in a medium of known index, its noise, and the rise."""
     found = find(given, guess, (EARLY * index, LATE * index))
     if np.isnan(found.end.steepest).any():
         detail = f"the {name} trace shows no end reflection where the rods should end"
@@ -113,4 +118,5 @@ def _time(
     noise = np.square(0.5 * (found.end.tangent_u + found.end.steepest_u))
     if guess.fixed_start is None:
         noise = noise + np.square(0.5 * (found.start.tangent_u + found.start.steepest_u))
-    return (tangent, steepest), float(np.sqrt(np.mean(noise) / noise.size))
+    noise_u = float(np.sqrt(np.mean(noise) / noise.size))
+    return (tangent, steepest), noise_u, float(np.mean(found.end.rise))

@@ -17,8 +17,10 @@ DETECTED = 8.0
 """Times its noise, for a slope to be a reflection."""
 STANDS_OUT = 0.4
 """Of its slope, by which a reflection is steeper than what is one rise before and after."""
-LONGEST_HEAD = 3e-9
+LONGEST_HEAD = 1.5e-9
 """s, two-way, within which the rods begin after the first rise."""
+FIRST_FALL = 0.6
+"""Of the steepest fall within that time, for an earlier one to be where the head ends."""
 HALF_ROOT_TAU = float(np.sqrt(0.5 * np.pi))
 
 
@@ -69,17 +71,24 @@ def first_rise(given: Traces, smoothed: Smoothed) -> Edge:
 
 @np.errstate(all="ignore")
 def rod_start(given: Traces, smoothed: Smoothed, start: Edge) -> Edge:
-    """Where the head ends: the steepest slope soon after the first rise, of the other sign."""
+    """Where the head ends: the first steep slope soon after the first rise, of the other sign.
+
+    NaN where none stands out from noise.
+    """
     place = np.arange(given.points)
     begins = np.nan_to_num(_index(given, start.steepest))
     soon = begins + np.ceil(LONGEST_HEAD / given.step)
     inside = (place > begins[:, None]) & (place <= soon[:, None])
     rows = np.arange(given.count)
     sign = np.sign(smoothed.slope[rows, np.clip(begins, 0, given.points - 1).astype(np.intp)])
-    peak = np.where(inside, -sign[:, None] * smoothed.slope, -np.inf).argmax(axis=-1)
+    falls = np.where(inside, -sign[:, None] * smoothed.slope, -np.inf)
+    steep = falls >= FIRST_FALL * falls.max(axis=-1, keepdims=True)
+    near = steep.argmax(axis=-1)[:, None] + np.arange(smoothed.points + 1)
+    near = np.minimum(near, given.points - 1)
+    peak = near[rows, falls[rows[:, None], near].argmax(axis=-1)]
     between = inside & (place <= peak[:, None])
     top = np.where(between, sign[:, None] * smoothed.level, -np.inf).max(axis=-1)
-    found = np.isfinite(top) & (sign * smoothed.slope[rows, peak] < 0)
+    found = np.isfinite(top) & (falls[rows, peak] > DETECTED * smoothed.slope_noise)
     return _edge(given, smoothed, peak, (sign * top, smoothed.level_noise), found)
 
 

@@ -18,7 +18,7 @@ from models.relation import Array
 
 CONDUCTIVE_GATE = 2.0
 """S/m: no soil conducts more."""
-UNSEEN_OFFSET_U = 0.1
+UNSEEN_OFFSET_U = 0.25
 """Of a rise: standard uncertainty of the beginning of the rods where the trace itself shows it."""
 
 
@@ -87,6 +87,7 @@ def _by_times(trace: Traces, timing: Timing) -> tuple[dict[str, Array], dict[str
         "permittivity_by_tangents": told.by_tangents,
         "permittivity_by_steepest_slope": told.by_steepest,
         "rise_time": found.end.rise + lost,
+        "expected_rise_time": told.expected_rise,
         "signal_to_noise": found.end.signal + lost,
         "smoothing": found.width,
         "noise": found.noise,

@@ -11,7 +11,7 @@ from models.relation import Array, column
 
 EVEN = 1e-3
 """Share of a step by which an axis that is given point by point may be uneven."""
-LARGEST = 1.25
+LARGEST = 1.5
 """A passive line reflects at most everything; ringing and noise add a little."""
 FEWEST = 16
 """Points, below which a trace holds no reflections to be told apart."""

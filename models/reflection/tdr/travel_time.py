@@ -44,6 +44,8 @@ class Timing:
     """s, when the step reaches the probe; None: each trace shows it by its own first rise."""
     width: float | None = None
     """s, of the smoothing; None: it follows each trace."""
+    rises: tuple[float, float] | None = None
+    """s, 10 to 90 %, of the end reflections in the two media; None: not measured."""
 
     @property
     def effective_length(self) -> tuple[float, float]:

@@ -16,6 +16,8 @@ CAPACITANCE = 0.02e-12
 STEPS = np.array((1e-6, 1e-8))
 """Of the coefficients h and g at 1 GHz: a hundredth of those of a 3.6 mm line."""
 MOST = 30
+PASSIVE = 1.0
+"""Of directivity and source match: what a passive port cannot exceed."""
 CHANCE = 2.0
 """Standard deviations of the likeness of neighbours that noise makes."""
 
@@ -76,6 +78,19 @@ class Calibration:
     def chi_square(self) -> float:
         """Sum of squares of the weighted residuals."""
         return _sum(self.fitted.residual / self.spread)
+
+    @property
+    def port(self) -> float:
+        """Larger of directivity and source match in the median over frequency; NaN: no number."""
+        terms = self.fitted.terms
+        size = np.maximum(np.abs(terms.directivity), np.abs(terms.source_match))
+        usable = size[np.isfinite(size)]
+        return float(np.median(usable)) if usable.size else float("nan")
+
+    @property
+    def passive(self) -> bool:
+        """Whether the port can be one that only loses power."""
+        return not self.port > PASSIVE
 
     def scaled(self, factor: float) -> "Calibration":
         """The same with all spreads times ``factor``."""

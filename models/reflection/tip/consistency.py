@@ -6,6 +6,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from models.errors import Complaint, ParameterError
 from models.reflection.tip.calibration import Calibration, Standard, calibrate
 from models.reflection.tip.inversion import Response, invert, of_noise, of_standards
 from models.reflection.tip.media import MEDIA, ROOM
@@ -14,6 +15,8 @@ from models.relation import Array, ComplexArray
 Points = NDArray[np.bool_]
 
 STATIC_BAND = 1e9  # Hz, below which the aperture is a capacitance to a percent or two
+SAME = 1e-9
+"""Difference of two reflections that is none."""
 ENOUGH = 48
 """Points of a sweep that are looked at."""
 BLIND = 0.05
@@ -45,6 +48,24 @@ def departures(calibration: Calibration) -> tuple[Departure, ...]:
     kept = np.zeros(points, dtype=bool)
     kept[np.unique(np.linspace(0, points - 1, min(points, ENOUGH)).astype(int))] = True
     return tuple(_departure(calibration, n, kept) for n in range(len(calibration.standards)))
+
+
+def refuse_alike(standards: Sequence[Standard]) -> None:
+    """Refuse two standards of one reading: no two media and no two sweeps give the same digits.
+
+    Raises ParameterError that names both.
+    """
+    for later, other in enumerate(standards):
+        for one in standards[:later]:
+            apart = float(np.nanmedian(np.abs(one.read - other.read)))
+            if apart <= SAME:
+                detail = (
+                    f"{other.name} was read exactly like {one.name}: found a median difference of "
+                    f"{apart:.2g} between the two sweeps, expected more than {SAME:g}; one sweep "
+                    "was probably sent for both"
+                )
+                place = ("standards", str(later))
+                raise ParameterError("standards", [Complaint(other.name, detail, place)])
 
 
 def closest(calibration: Calibration) -> tuple[str, str, float]:

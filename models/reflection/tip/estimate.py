@@ -6,9 +6,10 @@ import numpy as np
 
 from models.reflection.estimates import Band, SweepEstimate, flag_loss, flag_uncertain, kept
 from models.reflection.orientation import falls, rises
+from models.reflection.plausible import judge
 from models.reflection.tip.aperture import Aperture, Geometry, Model
 from models.reflection.tip.calibration import Calibration, Standard, calibrate
-from models.reflection.tip.consistency import Departure, departures
+from models.reflection.tip.consistency import Departure, departures, refuse_alike
 from models.reflection.tip.inversion import Response, invert, of_noise, of_standards
 from models.reflection.tip.layers import without_gap
 from models.reflection.tip.misfit import USUAL_NOISE, Misfit, judged
@@ -51,7 +52,11 @@ class TipEstimate:
 
 @np.errstate(all="ignore")
 def estimate_permittivity(query: TipQuery) -> TipEstimate:
-    """Permittivity of every sample over frequency, its uncertainty, flags and findings."""
+    """Permittivity of every sample over frequency, its uncertainty, flags and findings.
+
+    Raises ParameterError where two standards were read alike.
+    """
+    refuse_alike(query.standards)
     aperture = Aperture(query.model or _usual(query), query.geometry)
     calibration, answer, conjugated = _oriented(query, aperture)
     misfit = judged(calibration, query.samples, stated=query.standard_spread is not None)
@@ -66,13 +71,14 @@ def estimate_permittivity(query: TipQuery) -> TipEstimate:
     flag_uncertain(eps, band, flags, query.largest_relative_uncertainty)
     flag(calibration, answer, spread, misfit, flags)
     findings = findings_of(calibration, answer, query.samples, misfit, query.geometry)
+    plausible = judge(query.frequency, eps, band, flags)
     freedom = np.stack([np.full(query.frequency.size, s.freedom) for s in query.samples])
     estimate = SweepEstimate(
         query.frequency,
         kept(eps, flags),
         band,
         flags,
-        findings,
+        tuple((*one, *more) for one, more in zip(findings, plausible, strict=True)),
         freedom,
         conjugated,
         noise_known=misfit.known,
@@ -87,7 +93,10 @@ def _usual(query: TipQuery) -> Model:
 
 
 def _oriented(query: TipQuery, aperture: Aperture) -> tuple[Calibration, Response, bool]:
-    """Calibration and answer, every reflection conjugated where that alone makes sense of them."""
+    """Calibration and answer, every reflection conjugated where that alone makes sense of them.
+
+    Never where the port would stop being passive for it, or the standards stop to agree.
+    """
     read = np.stack([sample.read for sample in query.samples])
     everything = np.concatenate([np.stack([s.read for s in query.standards]), read])
     first = _solved(query, aperture, query.standards, read)
@@ -103,6 +112,8 @@ def _oriented(query: TipQuery, aperture: Aperture) -> tuple[Calibration, Respons
     else:
         turn = (rises(everything) or (loss < -LOSS and not falls(everything))) and (
             _loss(other[1]) >= -LOSS
+            and (other[0].passive or not first[0].passive)
+            and _fits(other[0], stated=query.standard_spread is not None)
         )
     return (*other, True) if turn else (*first, False)
 

@@ -8,7 +8,7 @@ from models.flags import Flags
 from models.reflection.propagation import attenuation_length
 from models.reflection.sweep_flags import MARGIN, Finding, at_least, at_most, raised
 from models.reflection.tip.aperture import Geometry
-from models.reflection.tip.calibration import Calibration
+from models.reflection.tip.calibration import PASSIVE, Calibration
 from models.reflection.tip.inversion import Response
 from models.reflection.tip.layers import backing_error, gap_error, sensing_depth
 from models.reflection.tip.misfit import Misfit
@@ -32,6 +32,8 @@ def flag(
         excess = np.abs(answer.reflection) - 1
         raised(flags, (excess > MARGIN * noise) & (excess > ABOVE_ONE), "reflection-above-one")
         raised(flags, _closeness(answer) > CLOSE, "standards-too-close")
+    if not calibration.passive:
+        raised(flags, np.ones(flags.shape, dtype=bool), "port-not-passive")
     if not misfit.consistent:
         raised(flags, np.ones(flags.shape, dtype=bool), "standards-inconsistent")
     for standard in calibration.standards:
@@ -52,6 +54,13 @@ def findings_of(
     return tuple(
         (
             *_of_misfit(misfit),
+            at_most(
+                "port-not-passive",
+                "larger of directivity and source match, median over frequency",
+                calibration.port,
+                PASSIVE,
+            ),
+            _of_reflection(calibration.frequency, answer.reflection[place]),
             _of_closeness(calibration.frequency, closeness[place]),
             *_of_sample(calibration.frequency, answer.permittivity[place], sample, geometry),
         )
@@ -61,9 +70,18 @@ def findings_of(
 
 @np.errstate(all="ignore")
 def _closeness(answer: Response) -> Array:
-    """Relative change of permittivity by an error of READING_ERROR in every standard."""
+    """Relative change of permittivity by an error of READING_ERROR in every standard.
+
+    Without bounds where two standards are one and there is no number to change.
+    """
     through = np.sqrt(np.square(np.abs(answer.by_standard)).sum(axis=-1))
-    return READING_ERROR * through / np.abs(answer.permittivity)
+    closeness = READING_ERROR * through / np.abs(answer.permittivity)
+    return np.where(np.isnan(closeness), np.inf, closeness)
+
+
+def _of_reflection(frequency: Array, reflection: ComplexArray) -> Finding:
+    about = "largest reflection of the sample at the aperture"
+    return at_most("reflection-above-one", about, np.abs(reflection), 1 + ABOVE_ONE, frequency)
 
 
 def _of_misfit(misfit: Misfit) -> Iterator[Finding]:

@@ -8,6 +8,7 @@ import numpy as np
 from models.reflection.analytic_fit import solve
 from models.reflection.estimates import Band, SweepEstimate, flag_loss, flag_uncertain, kept
 from models.reflection.orientation import falls, rises
+from models.reflection.plausible import judge
 from models.reflection.two_port import nicolson_ross_weir
 from models.reflection.two_port.baker_jarvis_1990 import all_four
 from models.reflection.two_port.baker_jarvis_1990 import permittivity as baker_jarvis
@@ -140,7 +141,8 @@ def _estimated(query: TwoPortQuery, *, conjugated: bool) -> TwoPortEstimate:
     flag_loss(eps[None], band, flags)
     flag_uncertain(eps[None], band, flags, query.largest_relative_uncertainty)
     flag(query, s, eps, mu, noise, flags, certain=both.certain)
-    found_here = findings_of(query, eps, mu, magnetic, s)
+    (plausible,) = judge(f, eps[None], band, flags)
+    found_here = (*findings_of(query, eps, mu, magnetic, s), *plausible)
     estimate = SweepEstimate(
         f, kept(eps[None], flags), band, flags, (found_here,), np.full((1, f.size), np.inf),
         conjugated, None if mu is None else kept(mu[None], flags),

@@ -43,7 +43,7 @@ _SENT: dict[str, Any] = {
                 "required": ["readings"],
                 "properties": {
                     "readings": {"description": "a list of objects or one object of arrays; each "
-                                 "with time, probe or depth, and numbers", "oneOf": [
+                                 "with time, probe or depth, numbers or a raw record", "oneOf": [
                                      {"type": "array", "items": {"type": "object"}},
                                      {"type": "object"}]},
                     "units": {"type": "object", "additionalProperties": {"type": "string"}},
@@ -71,9 +71,12 @@ _SENT: dict[str, Any] = {
 async def post_readings(request: Request, name: Name) -> Response:
     """What is acknowledged is durable, and resending is harmless.
 
-    The key of a reading is station, probe or depth, and time. The same key with other values is a
-    conflict: kept beside, never over the first. Rows that cannot be kept are told one by one; the
-    others are kept.
+    The key of a reading is station, probe or depth, and time. What a kept reading lacks completes
+    it, and as of an earlier revision it is as it was; the same key with other values is a conflict:
+    kept beside, never over the first. Rows that cannot be kept are told one by one; the others are
+    kept. A reading may carry a raw record (waveform, reflection, scattering, spectrum) instead of
+    a permittivity; the probe says with `raw_records` how it is read. Names that are not known and
+    values that another unit would explain are told in `advisories`.
     """
     choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
     sent = request.headers.get("content-type", "")

@@ -9,9 +9,11 @@ from dataclasses import dataclass
 from typing import Any
 
 from models.conversion import refuse_units
+from models.errors import ParameterError
 from service.errors import Malformed, Unprocessable
 from service.faults import Fault, hint, shown
 from service.schemas.batch_query import document_of
+from service.series_edges import zone_of
 from service.stations.times import SECOND, TimeError, microseconds
 from service.store.interface import Channel, place_at
 
@@ -85,7 +87,8 @@ def asked_of(
             rest.append((name, text))
     found = _read(own, faults)
     if found.get("limit", 1) > most:
-        faults.append(Fault(f"limit: at most {most}", "?limit"))
+        faults.append(Fault(f"limit: at most {most}, found {found['limit']}", "?limit"))
+    faults += _backwards(own, found)
     if faults:
         raise Unprocessable("the query holds what cannot be used", faults)
     document = document_of(rest)
@@ -102,6 +105,17 @@ def _read(own: Mapping[str, str], faults: list[Fault]) -> dict[str, Any]:
         except ValueError as error:
             faults.append(Fault(f"{name}: {error}", f"?{name}"))
     return found
+
+
+def _backwards(own: Mapping[str, str], found: Mapping[str, Any]) -> list[Fault]:
+    """What is wrong with a time that ends before it begins."""
+    if not ("start" in found and "end" in found and found["start"] >= found["end"]):
+        return []
+    detail = (
+        f"start must be before end, found start {shown(own['start'])} and end {shown(own['end'])}: "
+        "exchange them, or move end, which is not itself in the time"
+    )
+    return [Fault(detail, "?start"), Fault(detail, "?end")]
 
 
 def cursor_of(number: int, moment: int) -> str:
@@ -150,6 +164,14 @@ def _within(text: str) -> dict[str, Any]:
     return {"within": int(found[1]) * _UNITS[found[2]] * SECOND}
 
 
+def _zone(text: str) -> dict[str, Any]:
+    try:
+        zone_of(text)
+    except ParameterError as error:
+        raise ValueError(error.complaints[0].detail) from None
+    return {"zone": text}
+
+
 def _one_of(name: str, choices: tuple[str, ...], text: str) -> dict[str, Any]:
     if text not in choices:
         raise ValueError(f"expected one of {', '.join(choices)}, found {shown(text)}")
@@ -163,7 +185,7 @@ _READERS: Mapping[str, Any] = {
     "probe": lambda text: {"probe": text},
     "depth": _depth,
     "every": lambda text: _one_of("every", ("15m", "1h", "1d"), text),
-    "zone": lambda text: {"zone": text},
+    "zone": _zone,
     "mean": lambda text: _one_of("mean", ("plain", "time-weighted"), text),
     "limit": _limit,
     "after": _after,

@@ -12,9 +12,11 @@ from service.page.chart import Line, Panel, lines_by_depth, time_chart
 from service.schemas.estimates import ESTIMATED
 from service.series_edges import zone_of
 from service.stations.ask.asked import Asked, now
-from service.stations.ask.estimating import Estimated, Stored, estimated, stored
-from service.stations.ask.questions import Scene
+from service.stations.ask.estimating import Estimated, estimated
+from service.stations.ask.joining import series_of
+from service.stations.ask.questions import Scene, readings_between
 from service.stations.ask.resampled import GAP_STEPS, MOST_READINGS
+from service.stations.ask.stored import Stored
 from service.stations.times import SECOND
 from service.store.interface import Span
 
@@ -34,15 +36,9 @@ def chart_of(scene: Scene, asked: Asked) -> str:
     Raises Unprocessable, ParameterError.
     """
     wanted = _wanted(asked.quantity)
-    columns = scene.columns()
     end = asked.end if asked.end is not None else _last(scene) + 1
     start = asked.start if asked.start is not None else end - USUAL_DAYS * 86_400 * SECOND
-    span = Span(scene.channels, columns, start, end, None, scene.upto, MOST_READINGS + 1)
-    rows = scene.shelf.store.readings(span)
-    if len(rows) > MOST_READINGS:
-        detail = f"more than {MOST_READINGS} readings lie in that time: ask for a shorter one"
-        raise Unprocessable(detail, [Fault(detail, "?start")])
-    found = stored(rows, scene.channels, columns)
+    found = readings_between(scene, start, end, MOST_READINGS)
     result = estimated(found, scene.documents, asked.estimate, asked.units, scene.upto)
     shown = wanted or [n for n in (ESTIMATED[0], ESTIMATED[2]) if n in result.columns]
     document = scene.documents.find("station", scene.station.name)
@@ -86,8 +82,9 @@ def _gap(scene: Scene, found: Stored) -> float:
 def _panel(name: str, found: Stored, result: Estimated, asked: Asked) -> Panel:
     unit = unit_of(name, asked.units).code
     nothing = np.full(len(found), np.nan)
-    band = [result.columns.get(name + suffix, nothing) for suffix in ("", "_lower", "_upper")]
+    rows = np.concatenate([*series_of(found, result).values(), np.zeros(0, np.intp)])
+    band = [result.columns.get(name + suffix, nothing)[rows] for suffix in ("", "_lower", "_upper")]
     lines: Sequence[Line] = lines_by_depth(
-        result.depth, found.time / SECOND, band, result.flags != 0
+        result.depth[rows], found.time[rows] / SECOND, band, result.flags[rows] != 0
     )
     return Panel(TITLES[name], unit, lines)

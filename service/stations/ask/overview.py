@@ -9,14 +9,17 @@ import polars as pl
 from service.schemas.echo import units_of_answer
 from service.stations.ask.answers import slugs
 from service.stations.ask.asked import Asked, now
-from service.stations.ask.estimating import estimated, stored
+from service.stations.ask.estimating import estimated
+from service.stations.ask.joining import newest_of_each
+from service.stations.ask.planning import within_effort
 from service.stations.ask.questions import Page, table_of
+from service.stations.ask.stored import newest, stored
 from service.stations.documents import Documents, Shelf
 from service.store.interface import VALUES, Span
 
 
 def latest_page(shelf: Shelf, asked: Asked, allowed: Collection[str]) -> tuple[Page, Documents]:
-    """The last reading of every series of every station, estimated.
+    """The last reading of every sensor of every station, estimated.
 
     allowed: names of the stations that may be told; empty: all.
     """
@@ -29,9 +32,10 @@ def latest_page(shelf: Shelf, asked: Asked, allowed: Collection[str]) -> tuple[P
     ]
     held = frozenset[str]().union(*(c.held for c in channels))
     columns = [name for name in VALUES if name in held]
-    rows = shelf.store.newest(Span(channels, columns))
-    found = stored(rows, channels, columns)
-    result = estimated(found, documents, asked.estimate, asked.units, None)
+    rows, raw = newest(shelf.store, Span(channels, columns))
+    found = stored(rows, channels, columns, raw)
+    fits = within_effort(found, documents, None)
+    result = estimated(found, documents, asked.estimate, asked.units, None, fits)
     numbers, places = np.unique(found.number, return_inverse=True)
     names = [found.channels[number].station for number in numbers.tolist()]
     table = table_of(found, result).select(
@@ -40,13 +44,13 @@ def latest_page(shelf: Shelf, asked: Asked, allowed: Collection[str]) -> tuple[P
         pl.Series("age_seconds", (now() - found.time) / 1e6),
         slugs(result.flags).alias("flags"),
     )
-    troubles = list(dict.fromkeys(result.troubles))
     rest = {
         "revision": head.revision,
         "units": units_of_answer(("depth", *result.columns), asked.units),
-        "advisories": [{"code": "not-estimated", "text": text} for text in troubles[:20]],
+        "advisories": result.advisories(),
     }
-    return Page(table.sort("station", "depth", "time"), rest), documents
+    table = newest_of_each(table, "station").sort("station", "depth", "time")
+    return Page(table, rest), documents
 
 
 def features_of(page: Page, documents: Documents, allowed: Collection[str]) -> Mapping[str, Any]:

@@ -17,7 +17,10 @@ from service.routes.stored.documents import absent, revision_of
 from service.schemas.echo import units_of_answer
 from service.stations.ask.answers import frame_of, numbers, slugs
 from service.stations.ask.asked import Asked, cursor_of, now
-from service.stations.ask.estimating import Estimated, Stored, estimated, stored
+from service.stations.ask.estimating import Estimated, estimated
+from service.stations.ask.joining import newest_of_each, probe_names
+from service.stations.ask.planning import within_effort
+from service.stations.ask.stored import Stored, newest, raw_rows, stored
 from service.stations.documents import Documents, Shelf
 from service.stations.station import Station
 from service.stations.times import text_of
@@ -112,12 +115,41 @@ def readings_page(scene: Scene, asked: Asked) -> Page:
 
 
 def estimates_page(scene: Scene, asked: Asked) -> Page:
-    """Estimates of the readings, one row a reading."""
+    """Estimates of the readings, one row a reading.
+
+    A page ends early where it would hold more raw records than one answer reads.
+    """
     columns = scene.columns()
-    rows = scene.shelf.store.readings(span_of(scene, asked, columns, asked.limit + 1))
+    span = span_of(scene, asked, columns, asked.limit + 1)
+    rows = scene.shelf.store.readings(span)
     page, after = _cut(rows, asked.limit)
-    found, result = _estimated(scene, asked, page, columns)
+    found = stored(page, scene.channels, columns, raw_rows(scene.shelf.store, span, page))
+    fits = within_effort(found, scene.documents, scene.upto)
+    if fits < len(page):
+        page, after = _cut(page, fits)
+        found = stored(page, scene.channels, columns, raw_rows(scene.shelf.store, span, page))
+    result = estimated(found, scene.documents, asked.estimate, asked.units, scene.upto)
     return Page(table_of(found, result), rest_of(scene, asked, result), after, result)
+
+
+def readings_between(scene: Scene, start: int | None, end: int | None, most: int) -> Stored:
+    """All readings of a time; raises Unprocessable where they are more than one answer holds."""
+    store, columns = scene.shelf.store, scene.columns()
+    span = Span(scene.channels, columns, start, end, None, scene.upto, most + 1)
+    rows = store.readings(span)
+    if len(rows) > most:
+        _refuse_long(f"more than {most} readings lie in that time")
+    found = stored(rows, scene.channels, columns, raw_rows(store, span, rows))
+    fits = within_effort(found, scene.documents, scene.upto)
+    if fits < len(found):
+        read = sum(place < fits for place in found.raw)
+        _refuse_long(f"more raw records lie in that time than the {read} that one answer reads")
+    return found
+
+
+def _refuse_long(detail: str) -> None:
+    detail = f"{detail}: ask for a shorter one, with start and end"
+    raise Unprocessable(detail, [Fault(detail, "?start")])
 
 
 def profile_page(scene: Scene, asked: Asked) -> Page:
@@ -125,18 +157,15 @@ def profile_page(scene: Scene, asked: Asked) -> Page:
     columns = scene.columns()
     moment = now() if asked.moment is None else asked.moment
     span = Span(scene.channels, columns, end=moment + 1, upto=scene.upto)
-    rows = [row for row in scene.shelf.store.newest(span) if row[1] > moment - asked.within]
-    found, result = _estimated(scene, asked, rows, columns)
-    table = table_of(found, result).with_columns(age_seconds=pl.Series((moment - found.time) / 1e6))
+    rows, raw = newest(scene.shelf.store, span)
+    rows = [row for row in rows if row[1] > moment - asked.within]
+    found = stored(rows, scene.channels, columns, raw)
+    fits = within_effort(found, scene.documents, scene.upto)
+    result = estimated(found, scene.documents, asked.estimate, asked.units, scene.upto, fits)
+    ages = pl.Series((moment - found.time) / 1e6)
+    table = newest_of_each(table_of(found, result).with_columns(age_seconds=ages))
     told = {"time": text_of([moment])[0]}
     return Page(table.sort("depth", nulls_last=True), {**told, **rest_of(scene, asked, result)})
-
-
-def _estimated(
-    scene: Scene, asked: Asked, rows: Sequence[Any], columns: Sequence[str]
-) -> tuple[Stored, Estimated]:
-    found = stored(rows, scene.channels, columns)
-    return found, estimated(found, scene.documents, asked.estimate, asked.units, scene.upto)
 
 
 def table_of(found: Stored, result: Estimated) -> pl.DataFrame:
@@ -144,6 +173,7 @@ def table_of(found: Stored, result: Estimated) -> pl.DataFrame:
     return frame_of(
         {
             **_keys(found, result.depth),
+            "probe": probe_names(result),
             **{name: numbers(values) for name, values in result.columns.items()},
             "flags": slugs(result.flags),
         }
@@ -152,12 +182,11 @@ def table_of(found: Stored, result: Estimated) -> pl.DataFrame:
 
 def rest_of(scene: Scene, asked: Asked, result: Estimated) -> dict[str, Any]:
     """What JSON says beside the estimates: units, what they rest on, what was in the way."""
-    troubles = list(dict.fromkeys(result.troubles))
     return {
         **_about(scene),
         "units": units_of_answer(("depth", *result.columns), asked.units),
         "grounds": result.echo(),
-        "advisories": [{"code": "not-estimated", "text": text} for text in troubles[:20]],
+        "advisories": result.advisories(),
     }
 
 

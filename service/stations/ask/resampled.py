@@ -11,16 +11,15 @@ from models.conversion import from_si
 from models.flags import Flags
 from models.relation import Array
 from models.series import COVERAGE_RULE, MEAN_RULES, Bins, Bounds, resample, series, usual_step
-from service.errors import Unprocessable
-from service.faults import Fault
 from service.schemas.estimates import ESTIMATED
 from service.series_edges import EVERY, bin_edges, zone_of
 from service.stations.ask.answers import frame_of, numbers, slugs
 from service.stations.ask.asked import Asked, cursor_of
-from service.stations.ask.estimating import Estimated, Stored, estimated, stored
-from service.stations.ask.questions import Page, Scene, rest_of
+from service.stations.ask.estimating import Estimated, estimated
+from service.stations.ask.joining import probe_names, series_of
+from service.stations.ask.questions import Page, Scene, readings_between, rest_of
+from service.stations.ask.stored import Stored
 from service.stations.times import SECOND, text_of
-from service.store.interface import Span
 
 _NUMBER, _START = "#series", "#start"
 """Columns that lead to the next page and are not answered."""
@@ -34,19 +33,12 @@ def resampled_page(scene: Scene, asked: Asked) -> Page:
     """Means with bands, counts, coverage, extremes and last values of every bin."""
     zone = zone_of(asked.zone or scene.station.zone)
     every = asked.every or "1h"
-    columns = scene.columns()
     start, end = _whole(asked, every, zone)
-    span = Span(scene.channels, columns, start, end, None, scene.upto, MOST_READINGS + 1)
-    rows = scene.shelf.store.readings(span)
-    if len(rows) > MOST_READINGS:
-        detail = f"more than {MOST_READINGS} readings lie in that time: ask for a shorter one"
-        raise Unprocessable(detail, [Fault(detail, "?start")])
-    found = stored(rows, scene.channels, columns)
+    found = readings_between(scene, start, end, MOST_READINGS)
     result = estimated(found, scene.documents, asked.estimate, asked.units, scene.upto)
     tables, gap = [], 0.0
-    for number in np.unique(found.number).tolist():
-        rows_of = np.flatnonzero(found.number == number)
-        table, gap = _binned(scene, asked, found, result, rows_of, every, zone)
+    for number, rows in series_of(found, result).items():
+        table, gap = _binned(scene, asked, found, result, rows, every, zone)
         tables.append(table.with_columns(pl.lit(number).alias(_NUMBER)))
     page, after = _page(tables, asked)
     rules: dict[str, Any] = {
@@ -82,7 +74,6 @@ def _binned(
     zone: Any,
 ) -> tuple[pl.DataFrame, float]:
     """The bins of one series."""
-    channel = found.channels[int(found.number[rows[0]])]
     seconds = found.time[rows] / 1e6
     start, end = _whole(asked, every, zone)
     first = seconds[0] if start is None else start / 1e6
@@ -103,7 +94,7 @@ def _binned(
         bins = resample(line, edges, step=step, gap=gap, rules=(asked.mean,),
                         bounds=_bounds(name, asked))  # fmt: skip
         if not table:
-            table = _keys(bins, channel.probe, _depths(result.depth[rows], seconds, bins))
+            table = _keys(bins, result, rows[_last_rows(seconds, bins)])
         table |= _told(name, bins, asked.mean, main=name == ESTIMATED[0])
     return frame_of(table), gap
 
@@ -118,19 +109,18 @@ def _bounds(name: str, asked: Asked) -> Bounds:
     return Bounds(0.0, high, probability)
 
 
-def _depths(depth: Array, seconds: Array, bins: Bins) -> Array:
-    """The depth in each bin: of its last row; of the nearest one where it has none."""
-    place = np.searchsorted(seconds, bins.end) - 1
-    return depth[np.clip(place, 0, len(depth) - 1)]
+def _last_rows(seconds: Array, bins: Bins) -> NDArray[np.intp]:
+    """The last row of each bin; the nearest one where it has none."""
+    return np.clip(np.searchsorted(seconds, bins.end) - 1, 0, len(seconds) - 1)
 
 
-def _keys(bins: Bins, probe: str | None, depth: Array) -> dict[str, Any]:
+def _keys(bins: Bins, result: Estimated, last: NDArray[np.intp]) -> dict[str, Any]:
     return {
         _START: pl.Series((bins.start * SECOND).astype(np.int64)),
         "time": text_of((bins.start * SECOND).astype(np.int64)),
         "end": text_of((bins.end * SECOND).astype(np.int64)),
-        "probe": pl.Series([probe] * len(bins.start), dtype=pl.String),
-        "depth": numbers(depth),
+        "probe": probe_names(result, last),
+        "depth": numbers(result.depth[last]),
     }
 
 

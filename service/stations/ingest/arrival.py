@@ -1,25 +1,61 @@
 """What came in one request: rows that can be kept, by column, and what is wrong with the others."""
 
 import time
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Container, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
+from difflib import get_close_matches
 from typing import Any
 
 from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from models.units import UNITS
+from service.faults import shown
 from service.stations.documents import Documents
 from service.stations.station import Station
 from service.stations.times import SECOND, rfc3339
-from service.store.interface import VALUES, Batch
+from service.store.interface import IN_PLACE_OF_RAW, VALUES, Batch
 
 SHOWN = 1000
 """Rejected rows and conflicts that an answer lists; of the others it says how many there are."""
 RAW_RECORDS = ("waveform", "reflection", "scattering", "spectrum")
 """Keys of a reading that hold its raw record."""
+KNOWN = (*VALUES, *RAW_RECORDS, "time", "probe")
+"""Names that a reading may hold something under."""
+_SYMBOLS = {n: QUANTITIES[n].symbol.casefold() for n in VALUES if n in QUANTITIES}
 DEPTH_GATE = QUANTITIES["depth"].gate_si
 
 Values = Mapping[str, Sequence[float | bytes | None]]
+
+
+def likely(name: str) -> str:
+    """The known names that a name may stand for, as the middle of a sentence; empty: none."""
+    written = name.strip().casefold()
+    symbols = [known for known in VALUES if _SYMBOLS.get(known) == written]
+    close = get_close_matches(written[:80], KNOWN, n=4, cutoff=0.65)
+    alike = [known for known in close if known.endswith("_u") == written.endswith("_u")]
+    return " or ".join((symbols or alike)[:2])
+
+
+def nothing_known(names: Iterable[str]) -> str:
+    """What is wrong with a row that holds no value; names: of what it holds besides."""
+    near = [f"does {shown(name)} mean {meant}?" for name in names if (meant := likely(name))]
+    listed = f"holds no value: expected one of {', '.join(VALUES[1:4])} or another"
+    return "; ".join((listed, *near[:3]))
+
+
+def raw_fault(kinds: Sequence[str], named: Container[str], units: Mapping[str, str]) -> str | None:
+    """What is wrong with the raw records of a row.
+
+    named: the numbers it holds. units: of the request, which do not reach into a record.
+    """
+    if len(kinds) > 1:
+        return f"a reading carries one raw record, found {' and '.join(kinds)}"
+    both = [name for name in IN_PLACE_OF_RAW if name in named] if kinds else []
+    if both:
+        return f"a reading carries {kinds[0]} or {both[0]}, found both"
+    if kinds and kinds[0] != "waveform" and units.get("frequency", "Hz") != "Hz":
+        return "units do not reach into a raw record: send its frequencies in Hz"
+    return None
 
 
 class Broken(str):

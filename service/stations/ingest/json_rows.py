@@ -7,7 +7,17 @@ from typing import Any
 from models.conversion import refuse_units
 from service.errors import Unprocessable
 from service.faults import Fault, shown
-from service.stations.ingest.arrival import DEPTH_GATE, RAW_RECORDS, Arrival, Broken, Rows, Rules
+from service.stations.ingest.arrival import (
+    DEPTH_GATE,
+    KNOWN,
+    RAW_RECORDS,
+    Arrival,
+    Broken,
+    Rows,
+    Rules,
+    nothing_known,
+    raw_fault,
+)
 from service.stations.times import TimeError, microseconds
 from service.store.append import packed
 from service.store.interface import RAW, VALUES, place_at
@@ -15,6 +25,7 @@ from service.store.interface import RAW, VALUES, place_at
 Row = Mapping[str, Any]
 Cells = dict[str, float | bytes]
 _VALUES = frozenset(VALUES)
+_KNOWN = frozenset(KNOWN)
 _KEYS = frozenset({"readings", "units", "probe", "depth"})
 _NUMBERS = frozenset({float, int})
 
@@ -106,15 +117,25 @@ def _checked(
     for key, value in row.items():
         if key in _VALUES:
             _take(found, key, value, rules.station.sentinels, convert.get(key))
-        elif key in RAW_RECORDS:
-            if not isinstance(value, dict):
-                raise RowError(key, f"expected an object, found {shown(value)}")
-            found[RAW] = packed({key: value})
-        elif key not in {"time", "probe"}:
+        elif key not in _KNOWN:
             found["ignored"].append(key)
+    _take_record(found, row, rules.units)
     if not found["missing"] and not found.keys() - EMPTY:
-        raise RowError("", f"holds no value: expected one of {', '.join(VALUES[:4])} or another")
+        raise RowError("", nothing_known(found["ignored"]))
     return _place(row, found, rules), moment, found
+
+
+def _take_record(found: dict[str, Any], row: Row, units: Mapping[str, str]) -> None:
+    """Put the raw record of a row among its cells, if it carries one."""
+    kinds = [kind for kind in RAW_RECORDS if kind in row]
+    stated = [kind for kind in kinds if row[kind] is not None]
+    found["missing"] += len(kinds) - len(stated)
+    if fault := raw_fault(stated, found, units):
+        raise RowError(stated[-1], fault)
+    for kind in stated:
+        if not isinstance(row[kind], dict):
+            raise RowError(kind, f"expected an object, found {shown(row[kind])}")
+        found[RAW] = packed({kind: row[kind]})
 
 
 def _moment(text: Any, rules: Rules) -> int:

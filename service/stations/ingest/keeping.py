@@ -10,6 +10,7 @@ import anyio.to_thread
 from service.errors import NotFound
 from service.stations.documents import Documents, Shelf
 from service.stations.ingest.arrival import SHOWN, Arrival, Rejected
+from service.stations.ingest.remarking import Suspicions, advice_on_names
 from service.stations.problems import Conflicted
 from service.stations.times import rfc3339
 from service.store.errors import Stale
@@ -25,6 +26,7 @@ class Tally:
     """What became of all rows of a request."""
 
     accepted: int = 0
+    completed: int = 0
     duplicates: int = 0
     conflicts: list[Mapping[str, Any]] = field(default_factory=list)
     conflict_count: int = 0
@@ -32,6 +34,7 @@ class Tally:
     rejected_count: int = 0
     missing: int = 0
     ignored: dict[str, None] = field(default_factory=dict)
+    suspicions: Suspicions = field(default_factory=Suspicions)
 
     def note(self, arrival: Arrival) -> None:
         """Add what was found before anything was kept."""
@@ -39,10 +42,12 @@ class Tally:
         self.rejected_count += arrival.rejected_count
         self.missing += arrival.missing
         self.ignored |= dict.fromkeys(arrival.ignored)
+        self.suspicions.note(arrival.rows.values)
 
     def add(self, outcome: Outcome, batch: Batch, numbers: Sequence[int]) -> None:
         """Add what became of a batch."""
         self.accepted += outcome.accepted
+        self.completed += outcome.completed
         self.duplicates += outcome.duplicates
         self.conflict_count += len(outcome.clashes)
         for clash in outcome.clashes[: SHOWN - len(self.conflicts)]:
@@ -61,13 +66,16 @@ class Tally:
         """As the answer tells it."""
         told: dict[str, Any] = {
             "accepted": self.accepted,
+            "completed": self.completed,
             "duplicates": self.duplicates,
             "conflicts": self.conflicts,
             "rejected": [
-                {"row": r.row, "pointer": r.pointer, "detail": r.detail} for r in self.rejected
+                {"row": r.row, "pointer": r.pointer, "detail": r.detail}
+                for r in sorted(self.rejected, key=lambda one: one.row)
             ],
             "missing": self.missing,
             "ignored": list(self.ignored),
+            "advisories": [*advice_on_names(self.ignored), *self.suspicions.advisories()],
         }
         for name, count in (("conflicts", self.conflict_count), ("rejected", self.rejected_count)):
             if count > len(told[name]):

@@ -14,7 +14,7 @@ from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from service.errors import Unprocessable
 from service.faults import Fault, shown
-from service.stations.ingest.arrival import Broken, Rules, converter
+from service.stations.ingest.arrival import Broken, Rules, converter, likely
 from service.stations.times import rfc3339
 from service.store.interface import VALUES
 
@@ -28,6 +28,7 @@ UNITS: Mapping[str, str] = {
     "Hz": "Hz", "MHz": "MHz", "m": "m", "mm": "mm", "cm": "cm",
 }  # fmt: skip
 """UCUM codes by SenML unit (RFC 8428, table 2; RFC 8798)."""
+_SPELT = ", ".join(unit for unit in UNITS if unit)
 
 _BASE = ("bn", "bt", "bu", "bv", "bs", "bver")
 _KNOWN = frozenset((*_BASE, "n", "u", "v", "vs", "vb", "vd", "s", "t", "ut"))
@@ -46,7 +47,7 @@ def resolved(pack: Any, rules: Rules, now: int) -> tuple[list[Any], Point]:
     if not isinstance(pack, list) or not pack or not all(isinstance(r, dict) for r in pack):
         raise _refusal("a SenML pack is a list of records, at least one", "#")
     base: dict[str, Any] = {"bver": VERSION}
-    rows: dict[tuple[str, int], dict[str, Any]] = {}
+    rows: dict[tuple[str | float, int], dict[str, Any]] = {}
     origin: list[int] = []
     merged: list[Any] = []
     for place, record in enumerate(pack):
@@ -63,10 +64,11 @@ def resolved(pack: Any, rules: Rules, now: int) -> tuple[list[Any], Point]:
             merged.append(Broken(str(error)))
             origin.append(place)
             continue
-        row = rows.get((where, moment))
-        if row is None or quantity in row:
-            row = {"time": rfc3339(moment), **_place(where)}
-            rows[where, moment] = row
+        at = _place(where)
+        row = rows.get((at, moment))
+        if row is None or row.get(quantity, value) != value:
+            named = {"probe": where} if isinstance(at, str) else {"depth": at}
+            row = rows[at, moment] = {"time": rfc3339(moment), **named}
             merged.append(row)
             origin.append(place)
         row[quantity] = value
@@ -89,7 +91,7 @@ def _record(
     value = _number(base, "bv") + _number(record, "v")
     code = record.get("u", base.get("bu", ""))
     if code not in UNITS:
-        raise ValueError(f"the unit {shown(code)} is not read here")
+        raise ValueError(f"the unit {shown(code)} is not read here; known are {_SPELT}")
     about, is_width = quantity_of(quantity)
     taken = UNITS[code]
     known = [unit.code for unit in QUANTITIES[about].units]
@@ -108,7 +110,11 @@ def _name(name: str, station: str) -> tuple[str, str]:
         raise ValueError(f"{shown(name)} is no SenML name")
     *before, quantity = re.split("[/:]", name)
     if quantity not in VALUES:
-        raise ValueError(f"the name ends in {shown(quantity)}, which is no number of a reading")
+        near = likely(quantity)
+        mend = f"did you mean {near}?" if near else f"known are {', '.join(VALUES)}"
+        raise ValueError(
+            f"the name ends in {shown(quantity)}, which is no number of a reading; {mend}"
+        )
     if len(before) > 1 and before[-2] != station:
         raise ValueError(f"the name is of the station {shown(before[-2])}, not of {station}")
     if not before or not before[-1]:
@@ -116,8 +122,9 @@ def _name(name: str, station: str) -> tuple[str, str]:
     return before[-1], quantity
 
 
-def _place(where: str) -> dict[str, Any]:
-    return {"depth": float(where)} if _DEPTH.fullmatch(where) else {"probe": where}
+def _place(where: str) -> str | float:
+    """A probe, or a depth: 0.2 and 0.20 are one."""
+    return float(where) if _DEPTH.fullmatch(where) else where
 
 
 def _moment(base: Mapping[str, Any], record: Mapping[str, Any], now: int) -> int:

@@ -1,6 +1,6 @@
 """Readings as a table, a block of rows at a time, judged by whole columns."""
 
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
 from functools import partial
 
 import numpy as np
@@ -10,11 +10,18 @@ from numpy.typing import NDArray
 from service.formats.block import Block
 from service.formats.errors import HeaderError
 from service.formats.header import folded
-from service.stations.ingest.arrival import DEPTH_GATE, Arrival, Rows, Rules
+from service.formats.ndjson_rows import KEY as NDJSON
+from service.stations.ingest.arrival import DEPTH_GATE, KNOWN, Arrival, Rows, Rules, nothing_known
+from service.stations.ingest.table_cells import Checks, TableCells, cells_of, records_in
 from service.stations.times import TimeError, microseconds, read_column
-from service.store.interface import VALUES, place_at
+from service.store.interface import RAW, VALUES, place_at
 
-Marks = NDArray[np.bool_]
+_NOT_TAKEN_APART = (
+    "the row does not have the cells of the table",
+    "expected a JSON object on the line, without NaN or Infinity: send null where there is no "
+    "number",
+)
+"""By whether the table is NDJSON."""
 
 
 class TableReader:
@@ -30,55 +37,65 @@ class TableReader:
         self._row = 0
 
     def __call__(self, block: Block) -> Arrival:
-        """The rows of a block that can be kept; raises HeaderError where there is no time."""
+        """The rows of a block that can be kept.
+
+        Raises HeaderError where there is no column of times, or none that holds a value.
+        """
         first, self._row = self._row, self._row + len(block)
         arrival = Arrival(Rows([], [], [], {}))
         texts = {folded(column.name): column for column in block.cells()}
+        if block.header.form == NDJSON:
+            texts.setdefault("time", pl.repeat(None, len(block), dtype=pl.String, eager=True))
         if "time" not in texts and len(block):
-            raise HeaderError("a column time", ", ".join(block.header.names)[:200])
-        arrival.ignored = [
-            name for name in texts if name not in block.values and name not in {"time", "probe"}
-        ]
+            raise HeaderError("a column time", ", ".join(block.header.names)[:200],
+                              mend="the first line names the columns")  # fmt: skip
+        arrival.ignored = [name for name in texts if name not in KNOWN]
+        cells = cells_of(block, texts, arrival.ignored)
         if not len(block):
             return arrival
-        checks = _Checks(block, first, arrival)
-        checks.refuse(block.broken, "", lambda _: "the row does not have the cells of the table")
-        for name, odd in block.unreadable.items():
+        checks = Checks(block, first, arrival)
+        checks.refuse(block.broken, "", lambda _: _NOT_TAKEN_APART[block.header.form == NDJSON])
+        for name, odd in cells.unreadable.items():
             checks.refuse(odd, name, partial(_no_number, texts.get(name)))
+        checks.refuse(cells.empty, "", lambda _: nothing_known(arrival.ignored))
         times = self._times(texts["time"], checks)
-        values = {name: self._values(name, block, arrival) for name in block.values}
+        values = {name: self._values(name, cells, arrival) for name in cells.values}
+        records = records_in(texts, values, checks, self.rules.units)
         places = self._places(texts.get("probe"), values, checks)
         kept = np.flatnonzero(checks.fine)
+        columns = _filled(values, kept)
+        if records:
+            columns[RAW] = [records.get(row) for row in kept.tolist()]
         arrival.rows = Rows(
             (kept + first).tolist(),
             places if len(kept) == len(block) else [places[row] for row in kept.tolist()],
             times[kept].tolist(),
-            _filled(values, kept),
+            columns,
         )
         return arrival
 
-    def _times(self, texts: pl.Series, checks: "_Checks") -> NDArray[np.int64]:
+    def _times(self, texts: pl.Series, checks: Checks) -> NDArray[np.int64]:
         times, known = read_column(texts)
         checks.refuse(~known, "time", lambda row: _time_fault(texts[row]))
         wrong = known & ((times > self.rules.latest) | (times < self.rules.station.earliest))
         checks.refuse(wrong, "time", lambda row: self.rules.time_fault(int(times[row])) or "")
         return times
 
-    def _values(self, name: str, block: Block, arrival: Arrival) -> NDArray[np.float64]:
+    def _values(self, name: str, cells: TableCells, arrival: Arrival) -> NDArray[np.float64]:
         """A column in the unit of the API, NaN where there is no number."""
-        values = block.values[name]
+        values = cells.values[name]
         agreed = self.rules.station.sentinels.get(name)
         if agreed:
             values = np.where(np.isin(values, list(agreed)), np.nan, values)
         gone = np.isnan(values)
-        if name in block.unreadable:
-            gone &= ~block.unreadable[name]
+        if name in cells.unreadable:
+            gone &= ~cells.unreadable[name]
         arrival.missing += int(np.count_nonzero(gone))
         convert = self._convert.get(name)
         return values if convert is None else np.asarray(convert(values), dtype=np.float64)
 
     def _places(
-        self, probes: pl.Series | None, values: dict[str, NDArray[np.float64]], checks: "_Checks"
+        self, probes: pl.Series | None, values: dict[str, NDArray[np.float64]], checks: Checks
     ) -> list[str]:
         """Probe or depth of each row; the depth stays a value where there is a probe as well."""
         count = len(checks.fine)
@@ -112,27 +129,11 @@ class TableReader:
         return places
 
 
-class _Checks:
-    """Which rows of a block are fine so far."""
-
-    def __init__(self, block: Block, first: int, arrival: Arrival) -> None:
-        self.fine: Marks = np.ones(len(block), dtype=np.bool_)
-        self._lines, self._first, self._arrival = block.lines, first, arrival
-
-    def refuse(self, wrong: Marks, column: str, detail: Callable[[int], str]) -> None:
-        """Refuse the marked rows, each for the first thing that is wrong with it."""
-        for row in np.flatnonzero(wrong & self.fine).tolist():
-            line = f"line {int(self._lines[row])}"
-            place = f"{line}, {column}" if column else line
-            self._arrival.reject(self._first + row, place, detail(row))
-        self.fine &= ~wrong
-
-
 def _filled(
     values: Mapping[str, NDArray[np.float64]], kept: NDArray[np.intp]
-) -> dict[str, list[float | None]]:
+) -> dict[str, list[float | bytes | None]]:
     """The columns that hold a number, None where a row has none."""
-    found: dict[str, list[float | None]] = {}
+    found: dict[str, list[float | bytes | None]] = {}
     for name in VALUES:
         if name in values:
             column = values[name][kept]

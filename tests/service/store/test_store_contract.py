@@ -5,7 +5,7 @@ from dataclasses import replace
 
 import pytest
 
-from service.store.append import packed, unpacked
+from service.store.append import kind_of, packed, unpacked
 from service.store.errors import Changed, InUse, SchemaError, Stale
 from service.store.interface import COLUMNS, RAW, VALUES, Batch, Document, Span
 from service.store.opening import open_store, store_of
@@ -59,11 +59,90 @@ def test_of_two_batches_in_one_transaction_the_first_counts(store):
     assert (first.accepted, same.duplicates, len(other.clashes)) == (1, 1, 1)
 
 
-def test_a_value_more_or_less_is_another_reading(store):
+def one(store, time=T0, place="p1", **columns):
+    """The outcome of one reading with these columns."""
+    seen = store.head().documents
+    (outcome,) = store.append([Batch("north-1", seen, [place], [time], columns)])
+    return outcome
+
+
+def test_what_a_kept_reading_lacks_completes_it_and_less_of_it_is_the_same(store):
     put(store)
-    store.append([batch(store, [T0], [17.2])])
-    (outcome,) = store.append([batch(store, [T0], [17.2], temperature=[14.0])])
-    assert len(outcome.clashes) == 1
+    one(store, apparent_permittivity=[17.2])
+    more = one(store, apparent_permittivity=[17.2], temperature=[14.0])
+    assert (more.accepted, more.completed, more.duplicates, more.clashes) == (0, 1, 0, [])
+    for less in ({"temperature": [14.0]}, {"apparent_permittivity": [17.2]}, {}):
+        outcome = one(store, **less)
+        assert (outcome.duplicates, outcome.completed, outcome.clashes) == (1, 0, [])
+    both = one(store, temperature=[15.0], bulk_conductivity=[0.5])
+    assert (len(both.clashes), both.completed) == (1, 0)
+    (row,) = store.readings(span(store, ("apparent_permittivity", "temperature")))
+    assert row[3:] == (17.2, 14.0)
+
+
+def test_a_reading_that_was_empty_is_completed_by_its_values(store):
+    put(store)
+    assert one(store, apparent_permittivity=[None]).accepted == 1
+    assert one(store, apparent_permittivity=[17.2]).completed == 1
+    assert one(store, apparent_permittivity=[None]).duplicates == 1
+    assert len(one(store, apparent_permittivity=[17.3]).clashes) == 1
+    assert [row[3] for row in store.readings(span(store))] == [17.2]
+
+
+def test_a_revision_tells_a_reading_as_it_was_before_it_was_completed(store):
+    put(store)
+    columns = ("apparent_permittivity", "temperature")
+    one(store, apparent_permittivity=[17.2])
+    one(store, time=T0 + MINUTE, apparent_permittivity=[17.3])
+    first = store.head().revision
+    one(store, temperature=[14.0])
+    second = store.head().revision
+    one(store, bulk_conductivity=[0.5])
+    one(store, time=T0 + 2 * MINUTE, apparent_permittivity=[17.4])
+
+    def known(upto, **more):
+        asked = span(store, columns, upto=upto, **more)
+        return [row[3:] for row in store.readings(asked)], store.stamp(asked)
+
+    assert known(first) == ([(17.2, None), (17.3, None)], (2, first))
+    assert known(second) == ([(17.2, 14.0), (17.3, None)], (2, second))
+    assert known(None)[0] == [(17.2, 14.0), (17.3, None), (17.4, None)]
+    assert known(first, end=T0 + 1)[0] == [(17.2, None)]
+    assert known(first, after=(store.channels()[0].number, T0))[0] == [(17.3, None)]
+    newest = span(store, columns, end=T0 + 1, upto=first)
+    assert [row[2:] for row in store.newest(newest)] == [(first - 1, 17.2, None)]
+    assert [row[3:] for row in store.newest(replace(newest, upto=second))] == [(17.2, 14.0)]
+
+
+def test_parts_of_a_reading_in_one_transaction_become_one(store):
+    put(store)
+    seen = store.head().documents
+    parts = ({"apparent_permittivity": [17.2]}, {"temperature": [14.0]}, {"temperature": [15.0]},
+             {"apparent_permittivity": [17.2]})  # fmt: skip
+    sent = [Batch("north-1", seen, ["p1"], [T0], columns) for columns in parts]
+    found = [(o.accepted, o.completed, o.duplicates, len(o.clashes)) for o in store.append(sent)]
+    assert found == [(1, 0, 0, 0), (0, 1, 0, 0), (0, 0, 0, 1), (0, 0, 1, 0)]
+    (row,) = store.readings(span(store, ("apparent_permittivity", "temperature")))
+    assert row[3:] == (17.2, 14.0)
+
+
+def test_batches_of_other_columns_do_not_swap_their_readings(store):
+    put(store)
+    seen = store.head().documents
+    places = (["other"], ["p1"], ["p1"])
+    columns = ({"temperature": [14.0]}, {"apparent_permittivity": [17.2]}, {"temperature": [15.0]})
+    sent = [
+        Batch("north-1", seen, place, [T0], c) for place, c in zip(places, columns, strict=True)
+    ]
+    assert [len(outcome.clashes) for outcome in store.append(sent)] == [0, 0, 0]
+    rows = store.readings(span(store, ("apparent_permittivity", "temperature")))
+    assert {row[3:] for row in rows} == {(None, 14.0), (17.2, 15.0)}
+
+
+def test_a_raw_record_does_not_complete_a_permittivity(store):
+    put(store)
+    one(store, apparent_permittivity=[17.2])
+    assert len(one(store, **{RAW: [packed({"waveform": {}})]}).clashes) == 1
 
 
 def test_bulk_and_small_batches_keep_the_same(store):
@@ -148,6 +227,14 @@ def test_the_newest_of_each_series_is_found_before_a_moment(store):
         store.append([batch(store, times, [float(i + 2) for i in range(count)], place=place)])
     assert [row[3] for row in store.newest(span(store))] == [4.0, 3.0]
     assert [row[3] for row in store.newest(span(store, end=T0 + 1))] == [2.0, 2.0]
+
+
+def test_readings_that_hold_a_raw_record_are_found_alone(store):
+    put(store)
+    one(store, apparent_permittivity=[17.2])
+    one(store, time=T0 + MINUTE, **{RAW: [packed({"waveform": {"level": [1.0]}})]})
+    (row,) = store.readings(span(store, (RAW,), holding=RAW))
+    assert (row[1], kind_of(row[3])) == (T0 + MINUTE, "waveform")
 
 
 def test_a_raw_record_comes_back_whole(store):

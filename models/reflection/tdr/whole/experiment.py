@@ -17,7 +17,7 @@ from models.reflection.tdr.whole.line import (
     reflection,
     rod_section,
 )
-from models.reflection.tdr.whole.medium import Medium
+from models.reflection.tdr.whole.medium import Polarisable
 from models.reflection.tdr.whole.response import Grid, late_frequencies, late_value
 from models.relation import Array, ComplexArray
 
@@ -74,7 +74,7 @@ class Layers(NamedTuple):
     One medium has no logit, two have one: that of the share of the first.
     """
 
-    media: tuple[Medium, ...]
+    media: tuple[Polarisable, ...]
     logit: float = 0.0
 
     @property
@@ -87,7 +87,7 @@ class Layers(NamedTuple):
 
     @property
     def values(self) -> Array:
-        """As a fit sees them: logarithms medium by medium, then the logit."""
+        """As a fit sees them: medium by medium, then the logit."""
         parts = [medium.values for medium in self.media]
         return np.concatenate([*parts, [self.logit] * (len(self.media) - 1)])
 
@@ -96,7 +96,7 @@ class Layers(NamedTuple):
         media, place = [], 0
         for medium in self.media:
             size = len(medium.names)
-            media.append(Medium.of_values(values[place : place + size]))
+            media.append(medium.with_values(values[place : place + size]))
             place += size
         return Layers(tuple(media), float(values[-1]) if len(media) > 1 else 0.0)
 

@@ -1,40 +1,32 @@
 """The medium around the rods from a whole trace, where its end reflection is gone as well."""
 
 import math
-from dataclasses import dataclass, field, replace
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, field
+from operator import attrgetter
 
 import numpy as np
-from numpy.typing import NDArray
 
-from models.numerics.least_squares import Fit, least_squares
-from models.reflection.tdr.probe import System
-from models.reflection.tdr.whole.experiment import DELAY_UNIT, SYSTEM, Experiment, Layers
+from models.reflection.tdr.whole.experiment import Experiment, Layers
+from models.reflection.tdr.whole.fitting import TOO_SIMPLE, Found, covariances, fitted, names_of
 from models.reflection.tdr.whole.identification import Identified
-from models.reflection.tdr.whole.medium import Medium
+from models.reflection.tdr.whole.medium import Medium, Polarisable, apparent_of
+from models.reflection.tdr.whole.relaxing import TIMES, Relaxing
 from models.relation import Array
 
-MOST_TERMS = 3
-"""Relaxations that are tried, one after another."""
-TOO_SIMPLE = 1.5
-"""Reduced chi-square above which the model does not explain the trace."""
-WORTH = 6.0
-"""Gain in Akaike's criterion that another relaxation must bring."""
-STARTS = (2.5, 4.5, 8.0, 14.0, 25.0, 45.0, 75.0)
+STARTS = tuple(np.geomspace(2.5, 75.0, 12).tolist())
 """Permittivities between which the best start is looked for."""
 WATER_TIME, CLAY_TIMES = 9.3e-12, (6e-10, 4e-9)
 """s, of water at 20 Cel; and where bound water and clay relax."""
-WATER_SHARE = 2.0
-"""Strength of the water's relaxation over the permittivity above it, in a moist soil."""
-EXPECTED_U = {"ln_static_permittivity": 1.5, "ln_strength_over_high_permittivity": 2.0,
-              "ln_relaxation_time": 2.0, "ln_bulk_conductivity": 4.0, "logit": 2.0}  # fmt: skip
-"""What is known of each number before the trace: next to nothing."""
-WATER_U = {"ln_strength_over_high_permittivity_1": 0.7, "ln_relaxation_time_1": 0.4}
-"""But the first relaxation is that of water, which is faster than any trace: left free, it would
-take up noise as dispersion, which is always downward."""
-
-TRIGGER_U = 10.0
-"""Of the moment of the step from trace to trace, in units of 0.1 ns: cables warm and triggers
-wander, and the trace shows by itself when the cable ends."""
+WATER_SHARE, WITHOUT_WATER, LEAST_SHARE = 0.19, 2.0, 0.05
+"""Strength of the water's relaxation over the permittivity above it: in a square-root mixture of
+soil and water it grows by so much with each unit of permittivity above the second number."""
+SPECTRUM_U = (0.6, 0.2, 0.06, 0.02, 0.003)
+"""What a share of the spectrum may be: nothing in sand, much in clay. The trace itself weighs
+these beliefs."""
+HOPELESS = 12.0
+"""Surprise in excess of the least at which narrower beliefs are no longer tried: e^-6 in weight."""
+MOST_SECTIONS_TRIED = 3
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -43,9 +35,9 @@ class Inversion:
 
     layers: Layers
     covariance: Array
-    """Of the layer values: logarithms, and the logit of the share of the first layer."""
+    """Of the layer values."""
     shared: Array
-    """Its part that comes from the system."""
+    """Its part that readings of one probe in one soil share."""
     reduced_chi_square: float
     converged: bool
     names: tuple[str, ...] = field(default=())
@@ -57,21 +49,25 @@ class Inversion:
 
     def apparent(self, frequency: float, layer: int = 0) -> tuple[float, float, float]:
         """Apparent permittivity of a layer at a frequency, Hz; its u, and the shared part."""
-        before = sum(len(medium.names) for medium in self.layers.media[:layer])
-        value, slopes = self.layers.media[layer].apparent(frequency)
-        full = np.zeros(self.covariance.shape[0])
-        full[before : before + slopes.size] = slopes
+        value, slopes = apparent_of(self.layers.media[layer], frequency)
+        full = self._placed(slopes, layer)
         return value, _width(full, self.covariance), _width(full, self.shared)
 
     def permittivity(self, frequency: float, layer: int = 0) -> tuple[complex, float, float]:
         """Permittivity of a layer at a frequency, Hz; the u of its real part and of its loss."""
         medium = self.layers.media[layer]
-        before = sum(len(above.names) for above in self.layers.media[:layer])
         s = np.array([2j * np.pi * frequency])
-        slopes = np.zeros(self.covariance.shape[0], dtype=np.complex128)
-        slopes[before : before + len(medium.names)] = medium.derivatives(s)[:, 0]
-        widths = (_width(slopes.real, self.covariance), _width(slopes.imag, self.covariance))
-        return complex(medium.permittivity(s)[0]), *widths
+        slopes = medium.derivatives(s)[:, 0]
+        widths = [_width(self._placed(part, layer), self.covariance)
+                  for part in (slopes.real, slopes.imag)]  # fmt: skip
+        return complex(medium.permittivity(s)[0]), widths[0], widths[1]
+
+    def _placed(self, slopes: Array, layer: int) -> Array:
+        """Slopes to the values of one layer among those of all."""
+        before = sum(len(medium.names) for medium in self.layers.media[:layer])
+        full = np.zeros(self.covariance.shape[0])
+        full[before : before + slopes.size] = slopes
+        return full
 
     def relative(self, place: int) -> tuple[float, float]:
         """Relative standard uncertainty of one of the numbers, and the shared part."""
@@ -85,41 +81,37 @@ def _width(slopes: Array, covariance: Array) -> float:
 
 
 def invert(
-    trace: Experiment,
-    known: Identified,
-    *,
-    conductivity: float = 0.02,
-    terms: int | None = None,
-    guess: float | None = None,
+    trace: Experiment, known: Identified, *, conductivity: float = 0.02, terms: int | None = None
 ) -> Inversion:
     """One medium along the rods.
 
-    conductivity: S/m, where to start, from the late level. terms: relaxations; None: as few as
-    explain the trace, at most MOST_TERMS. guess: apparent permittivity, where one is known.
+    conductivity: S/m, where to start, from the late level. terms: relaxations; None: that of water
+    and a spectrum of slower ones, as much of it as the trace asks for.
     """
-    candidates = STARTS if guess is None else (guess, *STARTS)
     sigma = max(conductivity, 1e-4)
+    build = _relaxing if terms is None else _moist
+    starts = [Layers((build(level, sigma),)) for level in STARTS]
+    ranked = sorted(starts, key=lambda layers: trace.misfit(known.system, layers))
 
-    def start(permittivity: float) -> Layers:
-        return Layers((_moist(permittivity, sigma),))
-
-    ranked = sorted(candidates, key=lambda e: trace.misfit(known.system, start(e)))
-    best = _fitted(trace, known, start(ranked[0]))
-    if _chi_square(best[1]) > TOO_SIMPLE:
-        best = min(best, _fitted(trace, known, start(ranked[1])), key=_cost)
-    if terms is not None:
+    def told(start: Layers) -> Inversion:
+        if terms is None:
+            return _averaged(trace, known, start, _spectra(trace, known, start))
+        best = fitted(trace, known, start)
         for extra in range(terms - 1):
-            best = _fitted(trace, known, _with_term(best[0], CLAY_TIMES[extra % 2]))
-        return _told(trace, known, *best)
-    while len(best[0].media[0].times) < MOST_TERMS:
-        richer = min(
-            (_fitted(trace, known, _with_term(best[0], time)) for time in CLAY_TIMES),
-            key=_cost,
-        )
-        if _criterion(best[1]) - _criterion(richer[1]) < WORTH:
+            best = fitted(trace, known, _with_term(best.layers, CLAY_TIMES[extra % 2]))
+        return _told(trace, known, best)
+
+    return _first_good(told, ranked[:2])
+
+
+def _first_good(told: Callable[[Layers], Inversion], starts: Sequence[Layers]) -> Inversion:
+    """From the first start that explains the trace, else the one that does best."""
+    tried: list[Inversion] = []
+    for start in starts:
+        tried.append(told(start))
+        if not tried[-1].too_simple:
             break
-        best = richer
-    return _told(trace, known, *best)
+    return min(tried, key=attrgetter("reduced_chi_square"))
 
 
 def invert_layers(
@@ -129,113 +121,93 @@ def invert_layers(
     """Two media along the rods, the first from the head on.
 
     share: of the rods' length in the first, where to start, or what is known of it (``fixed``).
-    first: the first medium, if it is known, as air is.
+    first: the first medium, if it is known, as air is; the second then has a spectrum of
+    relaxations, elsewhere each has that of its water.
     """
     sigma = max(conductivity, 1e-4)
     logit = math.log(share / (1.0 - share))
-
-    def start(upper: float, lower: float) -> Layers:
-        return Layers((first or _moist(upper, sigma), _moist(lower, sigma)), logit)
-
     levels = (4.0, 9.0, 16.0, 28.0)
-    pairs = [(a, b) for a in (levels if first is None else (1.0,)) for b in levels if a != b]
-    ranked = sorted(pairs, key=lambda pair: trace.misfit(known.system, start(*pair)))
-    best = min(
-        (_fitted(trace, known, start(*pair), held=first is not None, placed=fixed)
-         for pair in ranked[:3]),
-        key=_cost,
-    )  # fmt: skip
-    return _told(trace, known, *best)
+    if first is not None:
+        starts = [Layers((first, _relaxing(level, sigma)), logit) for level in levels]
+        ranked = sorted(starts, key=lambda layers: trace.misfit(known.system, layers))
+
+        def told(start: Layers) -> Inversion:
+            found = _spectra(trace, known, start, held=True, placed=fixed)
+            return _averaged(trace, known, start, found)
+
+        return _first_good(told, ranked)
+    starts = [Layers((_moist(a, sigma), _moist(b, sigma)), logit)
+              for a in levels for b in levels if a != b]  # fmt: skip
+    ranked = sorted(starts, key=lambda layers: trace.misfit(known.system, layers))
+    tried = [fitted(trace, known, start, placed=fixed) for start in ranked[:MOST_SECTIONS_TRIED]]
+    return _told(trace, known, min(tried, key=attrgetter("cost")))
 
 
 def _moist(permittivity: float, conductivity: float) -> Medium:
     """A soil whose water relaxes as water does."""
-    high = permittivity / (1.0 + WATER_SHARE)
-    return Medium(high, (WATER_SHARE * high,), (WATER_TIME,), conductivity)
+    ratio = _of_water(permittivity)
+    high = permittivity / (1.0 + ratio)
+    return Medium(high, (ratio * high,), (WATER_TIME,), conductivity)
+
+
+def _of_water(permittivity: float) -> float:
+    return max(WATER_SHARE * (permittivity - WITHOUT_WATER), LEAST_SHARE)
+
+
+def _relaxing(permittivity: float, conductivity: float) -> Relaxing:
+    """The same, and as yet nothing slower."""
+    nothing = (0.0,) * len(TIMES)
+    return Relaxing(permittivity, _of_water(permittivity), WATER_TIME, nothing, conductivity)
 
 
 def _with_term(layers: Layers, time: float) -> Layers:
-    medium = layers.media[0]
-    richer = Medium(
-        medium.high, (*medium.strengths, 1.0), (*medium.times, time), medium.conductivity
-    )
-    return Layers((richer,))
+    medium: Polarisable = layers.media[0]
+    strengths, times = (*medium.strengths, 1.0), (*medium.times, time)
+    return Layers((Medium(medium.high, strengths, times, medium.conductivity),))
 
 
-Found = tuple[Layers, Fit, NDArray[np.bool_], Array]
-"""Layers, fit (trigger first), which values were free, and 1 / u of them beforehand."""
-
-
-def _fitted(
+def _spectra(
     trace: Experiment, known: Identified, start: Layers, *, held: bool = False,
     placed: bool = False,
-) -> Found:  # fmt: skip
-    """Fit the layers and the moment of the step; held: the first medium stays as it is."""
-    names = _names(start)
-    values = start.values
-    free = np.ones(values.size, dtype=np.bool_)
-    if held:
-        free[: len(start.media[0].names)] = False
-    if placed:
-        free[-1] = False
-    prior = np.array([1.0 / _expected_u(name) for name in names])
-    weights = np.append(1.0 / TRIGGER_U, prior[free])
-    columns = np.append(SYSTEM.index("delay"), len(SYSTEM) + np.flatnonzero(free))
-    base = known.values
+) -> list[Found]:  # fmt: skip
+    """One fit for each belief about the spectrum, from wide to narrow, as long as they help.
 
-    def model(at: Array) -> tuple[Array, Array]:
-        full = values.copy()
-        full[free] = at[1:]
-        return trace.explained(_at(known, at[0]), start.with_values(full), columns)
-
-    begin = np.append(base[SYSTEM.index("delay")], values[free])
-    fit = least_squares(model, begin, begin, weights)
-    found = values.copy()
-    found[free] = fit.values[1:]
-    return start.with_values(found), fit, free, weights
+    Not the other way: where nothing slow is allowed, the relaxation of water takes its place.
+    """
+    found: list[Found] = []
+    at = start
+    for spectrum_u in SPECTRUM_U:
+        found.append(fitted(trace, known, at, held=held, placed=placed, spectrum_u=spectrum_u,
+                            expected=start))  # fmt: skip
+        at = found[-1].layers
+        if found[-1].surprise > min(one.surprise for one in found) + HOPELESS:
+            break
+    return found
 
 
-def _expected_u(name: str) -> float:
-    return WATER_U.get(name) or EXPECTED_U[name.rstrip("_0123456789")]
-
-
-def _at(known: Identified, delay: float) -> System:
-    return replace(known.system, delay=delay * DELAY_UNIT)
-
-
-def _names(layers: Layers) -> tuple[str, ...]:
-    names = [name for medium in layers.media for name in medium.names]
-    return (*names, *["logit"] * (len(layers.media) - 1))
-
-
-def _cost(found: Found) -> float:
-    return found[1].cost
-
-
-def _chi_square(fit: Fit) -> float:
-    return float(fit.residuals @ fit.residuals) / max(fit.residuals.size - fit.values.size, 1)
-
-
-def _criterion(fit: Fit) -> float:
-    return fit.cost + 2.0 * fit.values.size
-
-
-def _told(
-    trace: Experiment,
-    known: Identified,
-    layers: Layers,
-    fit: Fit,
-    free: NDArray[np.bool_],
-    weights: Array,
+def _averaged(
+    trace: Experiment, known: Identified, start: Layers, found: Sequence[Found]
 ) -> Inversion:
+    """The mean over beliefs, weighted by their evidence; their spread widens the covariance."""
+    surprise = np.array([one.surprise for one in found])
+    weights = np.exp(-0.5 * (surprise - surprise.min()))
+    weights /= weights.sum()
+    values = np.array([one.layers.values for one in found])
+    mean = weights @ values
+    parts = [covariances(trace, known, one) if weight > 0.001 else None
+             for one, weight in zip(found, weights, strict=True)]  # fmt: skip
+    away = values - mean
+    total, shared = (away.T * weights) @ away, np.zeros((mean.size, mean.size))
+    for part, weight in zip(parts, weights, strict=True):
+        if part is not None:
+            total, shared = total + weight * part[0], shared + weight * part[1]
+    best = found[int(np.argmax(weights))]
+    return Inversion(start.with_values(mean), total, shared, best.chi_square,
+                     best.fit.converged, names_of(start))  # fmt: skip
+
+
+def _told(trace: Experiment, known: Identified, found: Found) -> Inversion:
     """Covariance from noise, widened by what is unexplained, and from the system."""
-    chi_square = _chi_square(fit)
-    own = fit.covariance(weights)
-    _, slopes = trace.explained(_at(known, fit.values[0]), layers)
-    gain = own @ fit.jacobian.T @ slopes[:, : len(SYSTEM)]
-    shared = gain @ known.covariance @ gain.T
-    total = own * max(chi_square, 1.0) + shared
-    full, full_shared = (np.zeros((free.size, free.size)) for _ in range(2))
-    places = np.ix_(np.flatnonzero(free), np.flatnonzero(free))
-    full[places], full_shared[places] = total[1:, 1:], shared[1:, 1:]
-    return Inversion(layers, full, full_shared, chi_square, fit.converged, _names(layers))
+    total, shared = covariances(trace, known, found)
+    return Inversion(found.layers, total, shared, found.chi_square, found.fit.converged,
+                     names_of(found.layers))  # fmt: skip

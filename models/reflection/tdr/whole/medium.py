@@ -1,6 +1,7 @@
 """What surrounds the rods: relaxations and conduction, as numbers a fit can move freely."""
 
 from dataclasses import dataclass
+from typing import Protocol
 
 import numpy as np
 
@@ -60,6 +61,10 @@ class Medium:
         times = tuple(numbers[1 + terms : 1 + 2 * terms])
         return cls(high, tuple(high * ratio for ratio in ratios), times, numbers[-1])
 
+    def with_values(self, values: Array) -> "Medium":
+        """The medium with these numbers."""
+        return Medium.of_values(values)
+
     def permittivity(self, s: ComplexArray) -> ComplexArray:
         """At complex frequencies, 1/s; at s = j w it is eps' - j eps''."""
         total = self.high + conducting(s, self.conductivity)
@@ -79,12 +84,54 @@ class Medium:
         time = [-strength * decay * (1 - decay) for strength, decay in pairs]
         return np.array([polar, *ratio, *time, conduction])
 
-    def apparent(self, frequency: float) -> tuple[float, Array]:
-        """Apparent permittivity at a frequency, Hz, and its derivatives to ``values``.
 
-        Ka = (Re n)^2, n = sqrt(eps): dKa = Re n Re(d eps / n).
-        """
-        s = np.array([2j * np.pi * frequency])
-        index = np.sqrt(self.permittivity(s))[0]
-        slopes = index.real * (self.derivatives(s)[:, 0] / index).real
-        return float(index.real**2), slopes
+class Polarisable(Protocol):
+    """What a medium says of itself to a fit."""
+
+    @property
+    def conductivity(self) -> float:
+        """In S/m."""
+
+    @property
+    def static(self) -> float:
+        """Permittivity far below the relaxations."""
+
+    @property
+    def high(self) -> float:
+        """Permittivity far above the relaxations."""
+
+    @property
+    def strengths(self) -> tuple[float, ...]:
+        """Of the relaxations."""
+
+    @property
+    def times(self) -> tuple[float, ...]:
+        """Of the relaxations, s."""
+
+    @property
+    def names(self) -> tuple[str, ...]:
+        """Of ``values``, in their order."""
+
+    @property
+    def values(self) -> Array:
+        """What a fit moves."""
+
+    def with_values(self, values: Array) -> "Polarisable":
+        """The medium with these numbers."""
+
+    def permittivity(self, s: ComplexArray) -> ComplexArray:
+        """At complex frequencies, 1/s."""
+
+    def derivatives(self, s: ComplexArray) -> ComplexArray:
+        """To each of ``values``: shape (values, frequencies)."""
+
+
+def apparent_of(medium: Polarisable, frequency: float) -> tuple[float, Array]:
+    """Apparent permittivity of a medium at a frequency, Hz, and its derivatives to its values.
+
+    Ka = (Re n)^2, n = sqrt(eps): dKa = Re n Re(d eps / n).
+    """
+    s = np.array([2j * np.pi * frequency])
+    index = np.sqrt(medium.permittivity(s))[0]
+    slopes = index.real * (medium.derivatives(s)[:, 0] / index).real
+    return float(index.real**2), slopes

@@ -1,0 +1,1 @@
+"""A store as lines, and a store from lines: backups of either database, moves between them."""
