@@ -144,7 +144,7 @@ QUANTITIES: Mapping[str, Quantity] = MappingProxyType({q.name: q for q in (
              _FRACTION, ("%",)),
     Quantity("wilting_point", "theta_wp", "m3/m3", "water content at the wilting point",
              _FRACTION, ("%",)),
-    Quantity("probe_length", "L", "m", "of the rods", Range(0.005, 10.0), ("cm", "mm")),
+    Quantity("probe_length", "L", "m", "of the rods", Range(0.005, 10.0), ("cm", "mm"), 0.2),
     Quantity("probe_constant", "Kp", "1/m", "bulk conductivity over conductance",
              Range(0.1, 1000.0), ("1/cm",)),
     Quantity("water_permittivity", "eps_w", "1", "of the pore water, real or apparent as the "

@@ -89,6 +89,14 @@ class Basis:
         return self.corrects_loss and ("imaginary_permittivity" in columns or by_conductivity)
 
 
+def without_extract(basis: Basis) -> Basis:
+    """The same where nobody asks for the saturation extract: half of the work on the salt."""
+    salinity = basis.salinity
+    if salinity is None or salinity.paste is None:
+        return basis
+    return replace(basis, salinity=replace(salinity, paste=None))
+
+
 def prepare(query: Query) -> Basis:
     """Bind a query to its model.
 

@@ -2,11 +2,11 @@
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
-from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from models.flagging import Bits, any_of
 from models.flags import Flag, Flags
 from models.registry import Registry
 from models.relation import Array, column
@@ -129,9 +129,9 @@ SWEEP_FLAGS: Registry[Flag] = Registry(
          keeps_number=True),
 )  # fmt: skip
 
-BIT: Mapping[str, np.uint64] = MappingProxyType(
-    {key: np.uint64(1) << np.uint64(place) for place, key in enumerate(SWEEP_FLAGS)}
-)
+_BITS = Bits(SWEEP_FLAGS)
+BIT: Mapping[str, np.uint64] = _BITS.bit
+_WITHHOLD = _BITS.those(lambda key: not SWEEP_FLAGS[key].keeps_number)
 
 
 @dataclass(frozen=True, slots=True)
@@ -189,13 +189,12 @@ def raised(flags: Flags, where: NDArray[np.bool_], key: str) -> None:
 
 def keys_of(mask: int) -> tuple[str, ...]:
     """The flags of one frequency's bits."""
-    return tuple(key for place, key in enumerate(SWEEP_FLAGS) if mask >> place & 1)
+    return _BITS.names(mask)
 
 
 def withheld(flags: Flags) -> NDArray[np.bool_]:
     """Frequencies that must not have a number."""
-    bits = [BIT[key] for key, flag in SWEEP_FLAGS.items() if not flag.keeps_number]
-    return (flags & np.bitwise_or.reduce(bits)) != 0
+    return any_of(flags, _WITHHOLD)
 
 
 def between(frequency: Array, where: NDArray[np.bool_]) -> tuple[float, float] | None:

@@ -5,7 +5,7 @@ the probe and its calibration, stands once under ``raw_records`` in the request.
 """
 
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 from typing import Any
 
@@ -13,9 +13,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from models.conversion import Units, from_si
+from models.estimate.permittivity import SHARED
 from models.flags import BIT, Flags
 from models.quantity import QUANTITIES
-from models.readings import quantity_of
+from models.readings import Readings, quantity_of
 from models.relation import Array
 from service.errors import Unprocessable
 from service.faults import Fault, hint, pointer, shown
@@ -38,6 +39,8 @@ class RawColumns:
     flags: Flags
     echo: Mapping[str, Any] = field(default_factory=dict)
     """The settings as they were used."""
+    shared: Mapping[str, Array] = field(default_factory=dict)
+    """By quantity, SI: the part of its uncertainty that readings of one probe share."""
 
 
 Reader = Callable[[Mapping[int, Any], int, Mapping[int, Place], Any, Units], RawColumns]
@@ -86,6 +89,14 @@ class TakenIn:
     told: tuple[str, ...] = ()
     """Columns that an answer repeats: what the records were turned into."""
     echo: Mapping[str, Any] = field(default_factory=dict)
+    shared: Mapping[str, Array] = field(default_factory=dict)
+    """As of RawColumns."""
+
+    def with_shared(self, readings: Readings) -> Readings:
+        """The readings, with what those of one probe share."""
+        known = {f"{name}{SHARED}": values for name, values in self.shared.items()
+                 if name in readings.columns}  # fmt: skip
+        return replace(readings, columns={**readings.columns, **known}) if known else readings
 
     def mark(self, flags: Flags) -> None:
         """Add the flags of the records to those of their readings, in place."""
@@ -118,6 +129,7 @@ def take_in(document: dict[str, Any]) -> TakenIn:
     flags: Flags | None = None
     told: dict[str, None] = {}
     echo: dict[str, Any] = {}
+    shared: dict[str, Array] = {}
     for kind, reader in RAW_RECORDS.items():
         records, where, count = _pulled(readings, kind)
         if not records:
@@ -128,7 +140,9 @@ def take_in(document: dict[str, Any]) -> TakenIn:
         told |= dict.fromkeys(_put(readings, kind, records, found.numbers, units))
         flags = found.flags if flags is None else flags | found.flags
         echo[kind] = found.echo
-    return TakenIn(flags, tuple(told), {SETTINGS: echo} if echo else {})
+        for name, values in found.shared.items():
+            shared[name] = np.fmax(shared.get(name, values), values)
+    return TakenIn(flags, tuple(told), {SETTINGS: echo} if echo else {}, shared)
 
 
 def _refuse(detail: str, place: Place) -> None:

@@ -11,9 +11,9 @@ from pydantic import TypeAdapter
 
 from models.reflection.line.estimate import estimate_line
 from models.reflection.tip.estimate import estimate_permittivity
-from service.errors import Malformed, Unprocessable, UnsupportedMediaType
-from service.faults import Fault
+from service.errors import UnsupportedMediaType
 from service.negotiate import VARY, choose
+from service.routes.json_object import object_of
 from service.sweeps.answer import line_answer, tip_answer
 from service.sweeps.bodies import REFLECTIONS, ReflectionsBody, request_schema
 from service.sweeps.question import body_of, line_question
@@ -22,6 +22,10 @@ from service.sweeps.tip import tip_question
 router = APIRouter(tags=["records"])
 
 JSON = "application/json"
+EXAMPLE = (
+    '{"kind": "tip", "sample": {"touchstone": "..."}, "standards": [{"name": "short", '
+    '"touchstone": "..."}, ...]}'
+)
 OFFERED: Mapping[str, str] = {"json": JSON}
 
 
@@ -46,7 +50,8 @@ DESCRIPTION = description_of(
     "The spectrum with standard uncertainties: `_u` all of it, `_u_shared` what repeating the "
     "sweep does not lessen (standards, lengths); flags of each frequency; every check of practice "
     "with its number and limit. `departure` of a standard: how far it reads from what it is "
-    "taken for when the others are taken at their word.",
+    "taken for when the others are taken at their word. `sensing_depth` of the aperture [m]: what "
+    "lies further away changes the reading by less than 1 %.",
 )
 
 
@@ -54,11 +59,11 @@ DESCRIPTION = description_of(
              openapi_extra=DESCRIPTION)  # fmt: skip
 async def post_reflections(request: Request) -> Response:
     """Permittivity spectrum of a sample before a coaxial tip, in a filled line or in a cell."""
-    return await answered(request, _answer)
+    return await answered(request, _answer, EXAMPLE)
 
 
 async def answered(
-    request: Request, answer: Callable[[dict[str, Any]], dict[str, Any]]
+    request: Request, answer: Callable[[dict[str, Any]], dict[str, Any]], example: str
 ) -> Response:
     """Answer a JSON request with JSON, worked out beside the event loop."""
     media_type = request.headers.get("content-type", "").partition(";")[0].strip().lower()
@@ -69,20 +74,10 @@ async def answered(
             headers={"Accept": JSON},
         )
     choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
-    document = _parsed(await request.body())
+    document = object_of(await request.body(), example)
     told = await anyio.to_thread.run_sync(answer, document)
     body = orjson.dumps(told, option=orjson.OPT_SERIALIZE_NUMPY)
     return Response(body, media_type=JSON, headers=VARY)
-
-
-def _parsed(body: bytes) -> dict[str, Any]:
-    try:
-        document = orjson.loads(body)
-    except orjson.JSONDecodeError as error:
-        raise Malformed(f"the body is not JSON: {error}") from None
-    if not isinstance(document, dict):
-        raise Unprocessable("expected an object", [Fault("expected an object", "#")])
-    return document
 
 
 def _answer(document: dict[str, Any]) -> dict[str, Any]:

@@ -14,6 +14,8 @@ from service.sweeps.two_port import two_port_question
 
 router = APIRouter(tags=["records"])
 
+EXAMPLE = '{"sample": {"touchstone": "..."}, "line": {"sample_length": 0.03}}'
+
 DESCRIPTION = description_of(
     SCATTERING,
     "S-parameters of an air line with a sample in it, as complex numbers or Touchstone text. With "
@@ -27,7 +29,7 @@ DESCRIPTION = description_of(
              openapi_extra=DESCRIPTION)  # fmt: skip
 async def post_scattering(request: Request) -> Response:
     """Permittivity, and permeability where it is not 1, of a sample between two ports."""
-    return await answered(request, _answer)
+    return await answered(request, _answer, EXAMPLE)
 
 
 def _answer(document: dict[str, Any]) -> dict[str, Any]:

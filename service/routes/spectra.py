@@ -11,10 +11,11 @@ from fastapi.responses import Response
 from models.conversion import refuse_units, unit_of
 from models.spectrum import Interpretation, interpret
 from models.spectrum.views import UNIT_CUBE
-from service.errors import Malformed, Unprocessable, UnsupportedMediaType
+from service.errors import Unprocessable, UnsupportedMediaType
 from service.faults import Fault
 from service.negotiate import VARY, choose
 from service.page.svg import MEDIA_TYPE as SVG
+from service.routes.json_object import object_of
 from service.spectra.answer import answer_of
 from service.spectra.bodies import SPECTRA, SpectraBody
 from service.spectra.chart import chart_of
@@ -24,6 +25,10 @@ from service.spectra.question import body_of, question_of, sent_spectrum
 router = APIRouter(tags=["records"])
 
 JSON = "application/json"
+EXAMPLE = (
+    '{"spectrum": {"frequency": [1e8, 1e9], "real_permittivity": [20, 18], '
+    '"imaginary_permittivity": [4, 2]}}'
+)
 OFFERED: Mapping[str, str] = {"json": JSON, "svg": SVG}
 
 
@@ -63,18 +68,8 @@ async def post_spectra(request: Request) -> Response:
             headers={"Accept": JSON},
         )
     answered = choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
-    document = _parsed(await request.body())
+    document = object_of(await request.body(), EXAMPLE)
     return await anyio.to_thread.run_sync(_answer, document, answered)
-
-
-def _parsed(body: bytes) -> dict[str, Any]:
-    try:
-        document = orjson.loads(body)
-    except orjson.JSONDecodeError as error:
-        raise Malformed(f"the body is not JSON: {error}") from None
-    if not isinstance(document, dict):
-        raise Unprocessable("expected an object", [Fault("expected an object", "#")])
-    return document
 
 
 def _answer(document: dict[str, Any], answered: str) -> Response:

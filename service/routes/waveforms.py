@@ -8,18 +8,24 @@ from fastapi import APIRouter, Request
 from fastapi.responses import Response
 
 from models.conversion import refuse_units
-from service.errors import Malformed, Unprocessable, UnsupportedMediaType
-from service.faults import Fault
+from service.errors import UnsupportedMediaType
 from service.negotiate import VARY, choose
+from service.routes.json_object import object_of
+from service.schemas.lengths import in_metres
 from service.waveforms.answer import advice_of, probe_echo, rows_of, units_of
-from service.waveforms.bodies import WAVEFORMS, WaveformsBody
+from service.waveforms.bodies import LENGTHS, WAVEFORMS, WaveformsBody
 from service.waveforms.description import DESCRIPTION
 from service.waveforms.measuring import measured, refuse_many
-from service.waveforms.question import Place, bench_of, checked, groups_of
+from service.waveforms.question import bench_of, checked, groups_of, in_hertz
+from service.waveforms.traces import Place, refuse_coarse
 
 router = APIRouter(tags=["records"])
 
 JSON = "application/json"
+EXAMPLE = (
+    '{"probe": {"probe_length": 0.3}, "waveforms": [{"start": 4.1, "window": 5, '
+    '"reflection_coefficient": [...]}]}'
+)
 
 
 @router.post("/v1/waveforms", summary="Permittivity and conductivity of TDR traces",
@@ -38,12 +44,8 @@ async def post_waveforms(request: Request) -> Response:
 
 
 def _answer(sent: bytes) -> Response:
-    try:
-        document = orjson.loads(sent)
-    except orjson.JSONDecodeError as error:
-        raise Malformed(f"the body is not JSON: {error}") from None
-    if not isinstance(document, dict):
-        raise Unprocessable("expected an object", [Fault("expected an object", "#")])
+    document = object_of(sent, EXAMPLE)
+    document = in_metres(document, LENGTHS)
     told = orjson.dumps(answer_of(checked(WAVEFORMS, document)))
     return Response(told, media_type=JSON, headers=VARY)
 
@@ -54,6 +56,7 @@ def answer_of(body: WaveformsBody) -> dict[str, Any]:
     Raises ModelError and Unprocessable with the place of what cannot be used.
     """
     refuse_units(body.units)
+    body = in_hertz(body, body.units)
     single = not isinstance(body.waveforms, list)
     bodies = body.waveforms if isinstance(body.waveforms, list) else [body.waveforms]
     refuse_many(len(bodies), body, "#/waveforms")
@@ -62,6 +65,7 @@ def answer_of(body: WaveformsBody) -> dict[str, Any]:
     }
     groups = groups_of(dict(enumerate(bodies)), where)
     bench = bench_of(body, body.units)
+    refuse_coarse(dict(enumerate(bodies)), where, bench.length)
     found = measured(groups, len(bodies), body, bench)
     rows = rows_of(found, bodies, body.units, body.coverage_probability)
     return {

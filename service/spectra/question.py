@@ -21,16 +21,20 @@ from models.spectrum.water.band import Soil
 from models.spectrum.water.mixtures import MIXTURES
 from service.errors import Unprocessable
 from service.faults import Fault, hint, problems_of
+from service.schemas.lengths import in_metres
 from service.schemas.query import model_of, soil_of
 from service.spectra.bodies import SPECTRA, ComplexNumbers, SpectraBody, SpectrumBody
 
 MOST_POINTS = 10_000
 """Of one spectrum; network analysers sweep far fewer."""
+LARGEST_CELL = 1e-3
+"""F, of any empty cell."""
 PARTS = (("real", "imaginary"), ("magnitude", "degrees"))
 
 
 def body_of(document: Mapping[str, Any]) -> SpectraBody:
     """The checked body of a request. Raises Unprocessable with a pointer to every fault."""
+    document = in_metres(document, frozenset())
     try:
         return SPECTRA.validate_python(document)
     except ValidationError as error:
@@ -64,6 +68,7 @@ def sent_spectrum(body: SpectrumBody, units: Units, cell: float | None) -> Spect
 def question_of(body: SpectraBody) -> Question:
     """What is asked of the spectrum, in SI. Raises ModelError with the place of each complaint."""
     refuse_units(body.units)
+    _refuse_farads(body)
     form = body.model
     settled: Form | None = None
     if form.terms is not None:
@@ -80,6 +85,18 @@ def question_of(body: SpectraBody) -> Question:
         mixing_model=name,
         parameters=parameters,
     )
+
+
+def _refuse_farads(body: SpectraBody) -> None:
+    """Refuse an empty cell of a capacitance that none has: it was written in another unit."""
+    value = body.cell.capacitance if body.cell else LARGEST_CELL
+    if value <= LARGEST_CELL:
+        return
+    detail = (
+        f"expected a capacitance of at most {LARGEST_CELL:g} F, found {value:g}; in pF? send "
+        f"{value * 1e-12:g}"
+    )
+    raise Unprocessable(detail, [Fault(detail, "#/cell/capacitance")])
 
 
 def _refuse_strangers(terms: list[str]) -> None:

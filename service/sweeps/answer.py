@@ -12,6 +12,7 @@ from models.reflection.line.estimate import LineEstimate
 from models.reflection.sweep_flags import SWEEP_FLAGS, Finding, keys_of
 from models.reflection.tip.consistency import Departure, closest
 from models.reflection.tip.estimate import TipEstimate
+from models.reflection.tip.layers import sensing_depth
 from models.reflection.two_port.estimate import TwoPortEstimate
 from models.relation import Array, ComplexArray
 from service.sweeps.bodies import Common, ReflectionsBody, ScatteringBody
@@ -28,7 +29,8 @@ def tip_answer(body: ReflectionsBody, found: TipEstimate) -> dict[str, Any]:
     if geometry is not None:
         aperture |= {"inner_radius": geometry.inner, "outer_radius": geometry.outer,
                      "fill_permittivity": geometry.fill,
-                     "capacitance": geometry.capacitance}  # fmt: skip
+                     "capacitance": geometry.capacitance,
+                     "sensing_depth": sensing_depth(geometry)}  # fmt: skip
     if calibration.aperture.model == "fitted":
         widths = np.sqrt(np.diag(calibration.covariance))
         for name, value, width in zip("hg", calibration.aperture.fitted, widths, strict=True):
@@ -128,7 +130,7 @@ def _sample(body: Common, estimate: SweepEstimate, place: int) -> dict[str, Any]
 def _check(finding: Finding, units: Units) -> dict[str, Any]:
     told: dict[str, Any] = {
         "code": finding.key,
-        "holds": finding.holds,
+        "holds": None if np.isnan(finding.value) else finding.holds,
         "about": finding.about,
         "value": _number(finding.value),
         "limit": _number(finding.limit),

@@ -14,6 +14,12 @@ Positive = Annotated[Number, Field(gt=0)]
 ApertureKey = Annotated[str, WithJsonSchema({"type": "string", "enum": list(MODELS)})]
 Kind = Literal["tip", "filled-line", "cell"]
 Method = Literal["least-squares", "non-iterative", "baker-jarvis-1990", "nicolson-ross-weir"]
+LENGTHS = frozenset({
+    "sample_length", "holder_length", "air_before", "air_length", "gap_width", "grain_size",
+    "thickness", "air_gap", "inner_radius", "outer_radius", "inner_conductor", "sample_inner",
+    "sample_outer", "outer_conductor",
+})  # fmt: skip
+"""Lengths that ``units`` may name beside the quantities."""
 _MEDIA = ", ".join(
     key + (" (with temperature)" if medium.needs_temperature else "")
     for key, medium in MEDIA.items()
@@ -145,8 +151,9 @@ class Common(Body):
     coverage_probability: Annotated[Number, Field(ge=0.5, le=0.999)] = 0.95
     units: dict[str, str] = Field(
         default_factory=dict,
-        description="UCUM codes by quantity, where they differ from the API's own unit.",
-        examples=[{"frequency": "GHz"}],
+        description="UCUM codes by quantity, where they differ from the API's own unit; lengths "
+        "by their name, as sample_length, which goes for its uncertainty too.",
+        examples=[{"frequency": "GHz", "sample_length": "mm"}],
     )
 
 

@@ -18,8 +18,8 @@ from service.sweeps.bodies import ComplexColumn, Numbers, OnePortSweep
 
 MOST_POINTS = 10_001
 MOST_REPEATS = 100
-LARGEST = 10.0
-"""Magnitude of a reflection that is none: ohm, decibels."""
+LARGEST = 2.0
+"""Magnitude beyond that of any reflection, even as read through a poor port: ohm, decibels."""
 PARTS = (("real", "imaginary"), ("magnitude", "degrees"))
 SAME = 1e-9
 TURN = 4.0

@@ -6,6 +6,7 @@ from models.conversion import Units, unit_of
 from models.quantity import QUANTITIES
 from models.reflection.tip.media import MEDIA, ROOM, Known, Relaxation
 from models.relation import Array, column
+from models.units import UNITS
 from service.faults import hint
 from service.sweeps.bodies import Numbers, StandardBody
 from service.sweeps.columns import Place, refuse
@@ -84,11 +85,16 @@ def _named(body: StandardBody, frequency: Array, units: Units, place: Place) -> 
     unit = unit_of("temperature", units)
     warmth = ROOM if body.temperature is None else float(unit.to_si(body.temperature))
     gate = QUANTITIES["temperature"].gate_si
-    if gate.excludes(warmth):
+    if body.temperature is not None and gate.excludes(warmth):
         meant = QUANTITIES["temperature"].likely_unit(warmth, unit.code)
-        looks = f"; looks like {meant}" if meant else ""
+        mend = ""
+        if meant:
+            sent = float(UNITS[meant].to_si(body.temperature))
+            mend = f': that looks like {meant}; send {sent:g}, or name the unit: "units": '
+            mend += f'{{"temperature": "{meant}"}}'
         raise refuse(
-            f"expected {gate} Cel, found {body.temperature:g} {unit.code}{looks}",
+            f"expected temperature from {gate.low:g} to {gate.high:g} Cel, found "
+            f"{body.temperature:g} {unit.code}{mend}",
             (*place, "temperature"),
         )
     return medium.known(frequency, warmth, salt, float(unit.width_to_si(body.temperature_u or 0.0)))

@@ -12,10 +12,11 @@ from models.reflection.line.estimate import IDEAL, LineQuery, Read
 from models.reflection.line.gaps import CoaxialGap
 from service.errors import Unprocessable
 from service.faults import problems_of
-from service.sweeps.bodies import ReflectionsBody, SampleBody, StandardBody
+from service.schemas.lengths import in_metres, too_long
+from service.sweeps.bodies import LENGTHS, ReflectionsBody, SampleBody, StandardBody
 from service.sweeps.columns import Axes, Place, Sweep, one_port, refuse
 
-LONGEST_LENGTH = 20.0
+LONGEST_LENGTH = 1.0
 """m, beyond which a length was written in another unit."""
 MOST_SAMPLES = 200
 ALIASES: Mapping[str, str] = {"open": "air"}
@@ -24,6 +25,7 @@ ALIASES: Mapping[str, str] = {"open": "air"}
 
 def body_of(document: Mapping[str, Any], adapter: TypeAdapter[Any]) -> Any:
     """The checked body of a request. Raises Unprocessable with a pointer to every fault."""
+    document = in_metres(document, LENGTHS)
     try:
         return adapter.validate_python(document)
     except ValidationError as error:
@@ -106,8 +108,7 @@ def refuse_ends(sample: SampleBody, place: Place) -> None:
 
 def metres(value: float | None, most: float, place: Place) -> float | None:
     """A length in metres; one beyond any apparatus was written in another unit."""
-    if value is not None and value > most:
-        detail = f"expected at most {most:g} m, found {value:g}; in mm? send {value / 1000:g}"
+    if detail := too_long(value, most):
         raise refuse(detail, place)
     return value
 

@@ -30,7 +30,7 @@ MOST, MOST_SEARCHED = 200, 40
 """Raw sweeps in one request; fewer where each of them is searched for its roots."""
 TAKEN = ("real_permittivity", "real_permittivity_u", "imaginary_permittivity",
          "imaginary_permittivity_u", "frequency")  # fmt: skip
-Answer = tuple[Mapping[str, Array], Flags, Mapping[str, Any]]
+Answer = tuple[Mapping[str, Array], Flags, Mapping[str, Any], Mapping[str, Array]]
 Records = Mapping[int, Any]
 Where = Mapping[int, Place]
 Document = Mapping[str, Any]
@@ -42,7 +42,9 @@ Held = tuple[int, SweepEstimate, int]
 def columns_of_reflections(
     records: Records, count: int, where: Where, settings: Any, units: Units
 ) -> Answer:
-    """Columns in SI, flags, and what was said on the way; one calibration for all records.
+    """Columns in SI, flags, what was said on the way, and what repeated sweeps share.
+
+    One calibration is for all records.
 
     records: parsed JSON by row, each a ``sample`` of /v1/reflections. where: the steps to each.
     settings: what that request holds beside them, and the frequency to read the spectra at.
@@ -139,6 +141,7 @@ def _moved(told: str, place: Place, samples: Sequence[Place]) -> str:
 def _columns(held: Sequence[Held], count: int, at: float, place: Place) -> Answer:
     """Spectra at one frequency; a loss below zero by no more than noise is read as none."""
     columns = {name: np.full(count, np.nan) for name in TAKEN}
+    shared = np.full(count, np.nan)
     remarks: list[dict[str, Any]] = []
     for row, found, n in held:
         if not found.frequency[0] <= at <= found.frequency[-1]:
@@ -152,6 +155,7 @@ def _columns(held: Sequence[Held], count: int, at: float, place: Place) -> Answe
             told.append("loss-below-zero")
         for name, value in values.items():
             columns[name][row] = value
+        shared[row] = float(np.interp(at, found.frequency, found.band.real_shared[n]))
         if told:
             remarks.append({"row": row, "flags": told})
     said = []
@@ -161,7 +165,7 @@ def _columns(held: Sequence[Held], count: int, at: float, place: Place) -> Answe
         advice = advise("no-uncertainty-stated", names="reflection", example="reflection_u")
         said.append({"code": advice.code, "text": advice.text})
     echo = {AT: at, "remarks": remarks, "advisories": said}
-    return columns, np.zeros(count, dtype=np.uint64), echo
+    return columns, np.zeros(count, dtype=np.uint64), echo, {"real_permittivity": shared}
 
 
 def _at(found: SweepEstimate, place: int, at: float) -> dict[str, float]:

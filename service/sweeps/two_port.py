@@ -1,8 +1,11 @@
 """From the words of a request about S-parameters to what a two-port cell is asked."""
 
+from collections.abc import Mapping
+
 from models.conversion import refuse_units
 from models.reflection.two_port.estimate import Parameters, TwoPortQuery
 from models.relation import ComplexArray
+from service.schemas.lengths import too_long
 from service.sweeps.bodies import ScatteringBody, TwoPortSweep
 from service.sweeps.columns import (
     Axes,
@@ -16,7 +19,8 @@ from service.sweeps.columns import (
     spread_of,
 )
 
-LONGEST = 20.0  # m
+LONGEST: Mapping[str, float] = {"sample_length": 1.0, "holder_length": 5.0, "air_before": 5.0}
+"""m, beyond which a length was written in another unit."""
 NAMES = ("s11", "s21", "s12", "s22")
 PARTNERS = {"s12": "s21", "s22": "s11"}
 """What stands in for an S-parameter that was not measured: samples are symmetric."""
@@ -95,10 +99,8 @@ def _from_columns(body: TwoPortSweep, axes: Axes) -> Parameters:
 def _refuse_lengths(body: ScatteringBody) -> None:
     """Lengths in metres, a sample no longer than its holder."""
     line = body.line
-    for name in ("sample_length", "holder_length", "air_before"):
-        value = getattr(line, name)
-        if value is not None and value > LONGEST:
-            detail = f"expected at most {LONGEST:g} m, found {value:g}; in mm? send {value / 1e3:g}"
+    for name, most in LONGEST.items():
+        if detail := too_long(getattr(line, name), most):
             raise refuse(detail, ("line", name))
     if line.holder_length is None:
         if line.air_before is not None:

@@ -21,8 +21,8 @@ from service.waveforms.measuring import Answered
 FIGURE_UNITS: Mapping[str, str] = MappingProxyType({
     "start_by_tangents": "ns", "start_by_steepest_slope": "ns", "end_by_tangents": "ns",
     "end_by_steepest_slope": "ns", "permittivity_by_tangents": "1",
-    "permittivity_by_steepest_slope": "1", "rise_time": "ns", "signal_to_noise": "1",
-    "smoothing": "ns", "noise": "1", "late_level": "1", "late_level_u": "1",
+    "permittivity_by_steepest_slope": "1", "rise_time": "ns", "expected_rise_time": "ns",
+    "signal_to_noise": "1", "smoothing": "ns", "noise": "1", "late_level": "1", "late_level_u": "1",
     "late_level_from": "ns", "reduced_chi_square": "1",
 })  # fmt: skip
 """Of what the numbers were read from."""

@@ -11,6 +11,8 @@ Numbers = list[Number]
 Positive = Annotated[Number, Field(gt=0)]
 Width = Annotated[Number, Field(ge=0)]
 AxisUnit = Literal["m", "cm", "mm", "ns", "ps", "us", "s"]
+LENGTHS = frozenset({"probe_offset", "inserted_length", "diameter", "spacing", "length"})
+"""Lengths that ``units`` may name beside the quantities; those of an axis have axis_unit."""
 MOST_POINTS = 100_000
 """Of one trace."""
 MOST_WAVEFORMS = 5_000
@@ -174,7 +176,9 @@ class WaveformSettings(Body):
         None, description="at which whole-trace states permittivity [Hz]; 1e9 unless given"
     )
     relaxations: Annotated[int, Field(strict=True, ge=1, le=3)] | None = Field(
-        None, description="of the fitted soil; left out: as few as explain the trace"
+        None,
+        description="of the fitted soil; left out: that of its water and a spectrum of slower "
+        "ones, as much of it as the trace asks for",
     )
     sections: Literal[1, 2] = Field(
         1,

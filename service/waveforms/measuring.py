@@ -49,6 +49,7 @@ def refuse_many(count: int, settings: WaveformSettings, place: str) -> None:
     length, inserted = settings.probe.probe_length, settings.inserted_length
     if inserted is not None and inserted > length:
         detail = f"inserted_length is {inserted:g}, longer than the rods of {length:g} m"
+        detail += f"; in mm? send {inserted / 1e3:g}" if inserted / 1e3 <= length else ""
         raise Unprocessable(detail, [Fault(detail, "#/inserted_length")])
 
 

@@ -2,13 +2,13 @@
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
-from typing import Any
+from typing import Any, TypeVar
 
 import numpy as np
 from pydantic import TypeAdapter, ValidationError
 from scipy.constants import speed_of_light
 
-from models.conversion import Units, to_si
+from models.conversion import Units, to_si, unit_of
 from models.errors import Complaint, ParameterError
 from models.reflection.tdr.bench import Bench, Calibration, Description, Record, prepare
 from models.reflection.tdr.late_level import Known
@@ -18,19 +18,18 @@ from models.reflection.tdr.probe import (
     three_rod_impedance,
     two_rod_impedance,
 )
-from models.reflection.tdr.record import Traces, even_axis, from_distance, traces, window_axis
-from models.relation import column
-from models.units import UNITS
+from models.reflection.tdr.record import Traces
 from service.errors import Unprocessable
 from service.faults import pointer, problems_of
 from service.waveforms.bodies import (
-    TraceBody,
     WaveformBody,
     WaveformProbeBody,
     WaveformSettings,
 )
+from service.waveforms.likely import refuse_unlikely
+from service.waveforms.traces import Place, record_of
 
-Place = tuple[int | str, ...]
+Settings = TypeVar("Settings", bound=WaveformSettings)
 
 
 def checked(adapter: TypeAdapter[Any], document: Any, place: Place = ()) -> Any:
@@ -87,82 +86,18 @@ def _one(parts: Sequence[Traces]) -> Traces:
     return replace(parts[0], rho=rho, noise=np.concatenate([part.stated_noise for part in parts]))
 
 
-def record_of(body: WaveformBody, place: Place) -> Record:
-    """A trace and its long record; place: the steps to it in the request."""
-    late = body.long_record
-    return Record(
-        trace_of(body, place),
-        None if late is None else trace_of(late, (*place, "long_record")),
-    )
-
-
-def trace_of(body: TraceBody, place: Place) -> Traces:
-    """One trace in SI. Raises ParameterError with the place of what is wrong."""
-    try:
-        rho, name = _samples(body)
-        start, step = _axis_of(body, len(rho), name)
-        return traces(start, step, rho, body.reflection_coefficient_u)
-    except ParameterError as error:
-        steps = [str(step) for step in place]
-        complaints = [replace(c, place=(*steps, *c.place)) for c in error.complaints]
-        raise ParameterError("waveform", complaints) from None
-
-
-def _refuse(name: str, detail: str) -> ParameterError:
-    return ParameterError("waveform", [Complaint(name, detail, (name,))])
-
-
-def _samples(body: TraceBody) -> tuple[Sequence[float], str]:
-    """Reflection coefficients, and the name they came by."""
-    if (body.reflection_coefficient is None) == (body.level is None):
-        found = "both" if body.level is not None else "neither"
-        detail = f"a trace holds reflection_coefficient or level, found {found}"
-        raise _refuse("reflection_coefficient", detail)
-    if body.level is None:
-        return body.reflection_coefficient or [], "reflection_coefficient"
-    matched, opened = body.level_matched, body.level_open
-    if matched is None or opened is None or matched == opened:
-        name = "level_open" if matched is not None else "level_matched"
-        raise _refuse(name, "level needs level_matched and level_open, and they must differ")
-    rho: Sequence[float] = ((column(body.level) - matched) / (opened - matched)).tolist()
-    return rho, "level"
-
-
-def _axis_of(body: TraceBody, count: int, name: str) -> tuple[float, float]:
-    """Start and step in two-way time, s."""
-    if body.points is not None and body.points != count:
-        raise _refuse("points", f"points says {body.points}, {name} has {count}")
-    unit = UNITS[body.axis_unit]
-    is_time = unit.dimension == "time"
-    if body.axis is not None:
-        if body.start is not None or body.window is not None:
-            raise _refuse("axis", "a trace holds axis, or start and window, found both")
-        if len(body.axis) != count:
-            raise _refuse("axis", f"axis has {len(body.axis)} points, {name} has {count}")
-        axis = unit.to_si(body.axis)
-        if is_time:
-            return even_axis(axis, "axis")
-        return from_distance(axis, body.propagation_velocity_factor, "axis")
-    if body.start is None or body.window is None:
-        lacking = "start" if body.start is None else "window"
-        raise _refuse(lacking, f"{lacking} is missing: a trace needs start and window, or axis")
-    start, window = float(unit.to_si(body.start)), float(unit.to_si(body.window))
-    if is_time:
-        return start, window / max(count - 1, 1)
-    return window_axis(start, window, max(count, 2), body.propagation_velocity_factor)
-
-
 def bench_of(settings: WaveformSettings, units: Units, place: Place = ()) -> Bench:
     """The probe and its calibration traces, ready to measure.
 
     Raises ParameterError with the place of what is wrong.
     """
+    refuse_unlikely(settings, place)
     calibration, where = settings.calibration, (*place, "calibration")
     water = calibration.water
     warmth: dict[str, float] = {}
     if water is not None:
         given = {"temperature": water.temperature, "temperature_u": water.temperature_u}
-        warmth = to_si("calibration", given, units)
+        warmth = _warmth(given, units, (*where, "water"))
     found = Calibration(
         air=None if calibration.air is None else record_of(calibration.air, (*where, "air")),
         water=None if water is None else record_of(water, (*where, "water")),
@@ -172,6 +107,23 @@ def bench_of(settings: WaveformSettings, units: Units, place: Place = ()) -> Ben
         water_temperature_u=warmth.get("temperature_u", 0.0),
     )  # fmt: skip
     return prepare(description_of(settings.probe, units), found)
+
+
+def _warmth(given: Mapping[str, float], units: Units, place: Place) -> dict[str, float]:
+    """Temperature of the water, Cel, and its uncertainty."""
+    try:
+        return to_si("water", given, units)
+    except ParameterError as error:
+        complaints = [replace(c, place=(*map(str, place), c.name)) for c in error.complaints]
+        raise ParameterError("calibration", complaints) from None
+
+
+def in_hertz(settings: Settings, units: Units) -> Settings:
+    """The settings with their frequency in Hz."""
+    if settings.frequency is None:
+        return settings
+    hertz = float(unit_of("frequency", units).to_si(settings.frequency))
+    return settings.model_copy(update={"frequency": hertz})
 
 
 def description_of(probe: WaveformProbeBody, units: Units) -> Description:

@@ -13,7 +13,8 @@ from service.faults import Fault, pointer
 from service.waveforms.answer import advice_of, probe_echo
 from service.waveforms.bodies import SETTINGS, WAVEFORM
 from service.waveforms.measuring import measured, refuse_many
-from service.waveforms.question import Place, bench_of, checked, groups_of
+from service.waveforms.question import bench_of, checked, groups_of, in_hertz
+from service.waveforms.traces import Place, refuse_coarse
 
 TAKEN = ("apparent_permittivity", "apparent_permittivity_u", "bulk_conductivity",
          "bulk_conductivity_u", "frequency", "frequency_u")  # fmt: skip
@@ -21,8 +22,8 @@ TAKEN = ("apparent_permittivity", "apparent_permittivity_u", "bulk_conductivity"
 
 def columns_of_waveforms(
     records: Mapping[int, Any], count: int, where: Mapping[int, Place], settings: Any, units: Units
-) -> tuple[Mapping[str, Array], Flags, Mapping[str, Any]]:
-    """Columns in SI, flags, and the probe as it was used.
+) -> tuple[Mapping[str, Array], Flags, Mapping[str, Any], Mapping[str, Array]]:
+    """Columns in SI, flags, the probe as it was used, and what readings of it share.
 
     records: parsed JSON by row. where: the steps to each in the request. settings: parsed JSON.
     Raises ModelError or Unprocessable with the place of what cannot be used.
@@ -31,11 +32,13 @@ def columns_of_waveforms(
     if settings is None:
         detail = "a waveform needs its probe: give raw_records.waveform.probe in the request"
         raise Unprocessable(detail, [Fault(detail, pointer(place))])
-    asked = checked(SETTINGS, settings, place)
+    known = {name: code for name, code in units.items() if name == "frequency"}
+    asked = in_hertz(checked(SETTINGS, settings, place), known)
     refuse_many(len(records), asked, "#/readings")
     bodies = {row: checked(WAVEFORM, record, where[row]) for row, record in records.items()}
     groups = groups_of(bodies, where)
     bench = bench_of(asked, units, place)
+    refuse_coarse(bodies, where, bench.length)
     found = measured(groups, count, asked, bench)
     columns = {name: found.columns[name] for name in TAKEN if name in found.columns}
     if np.isnan(columns["bulk_conductivity"]).all():
@@ -45,4 +48,5 @@ def columns_of_waveforms(
         "probe": probe_echo(found, units),
         "advisories": [{"code": said.code, "text": said.text} for said in advice_of(bench, found)],
     }
-    return columns, found.flags, echo
+    name = "apparent_permittivity"
+    return columns, found.flags, echo, {name: found.columns[f"{name}_u_shared"]}

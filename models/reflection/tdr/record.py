@@ -13,6 +13,10 @@ EVEN = 1e-3
 """Share of a step by which an axis that is given point by point may be uneven."""
 LARGEST = 1.5
 """A passive line reflects at most everything; ringing and noise add a little."""
+FINEST, COARSEST = 1e-13, 1e-7
+"""s between points: what samplers resolve, and the long record of a long cable."""
+LATEST = 2e-5
+"""s: nothing comes back from a cable after that."""
 FEWEST = 16
 """Points, below which a trace holds no reflections to be told apart."""
 
@@ -65,7 +69,8 @@ def traces(start: float, step: float, rho: ArrayLike, noise: ArrayLike | None = 
     """Traces from what an instrument gives.
 
     rho: shape (points,) or (traces, points). noise: one number, or one per trace.
-    Raises ParameterError when there are too few points, or they are no reflection coefficients.
+    Raises ParameterError when there are too few points, they are no reflection coefficients, or
+    no instrument has such an axis.
     """
     values = np.atleast_2d(column(rho))
     name = "reflection_coefficient"
@@ -83,6 +88,14 @@ def traces(start: float, step: float, rho: ArrayLike, noise: ArrayLike | None = 
             "counts as level, with level_matched and level_open"
         )
         raise ParameterError("trace", [Complaint(name, detail, (name,))])
+    end = start + step * (values.shape[1] - 1)
+    if not (FINEST <= step <= COARSEST and abs(start) <= LATEST and end <= LATEST):
+        detail = (
+            f"expected points {1e12 * FINEST:g} to {1e12 * COARSEST:g} ps of two-way time apart, "
+            f"the last at most {1e6 * LATEST:g} us after the step; found {1e12 * step:.4g} ps, the "
+            f"last at {1e6 * end:.4g} us"
+        )
+        raise ParameterError("trace", [Complaint("axis", detail, ("axis",))])
     given = None if noise is None else np.broadcast_to(column(noise), values.shape[:1]).copy()
     return Traces(float(start), float(step), values, given)
 

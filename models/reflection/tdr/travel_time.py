@@ -135,8 +135,9 @@ def find(given: Traces, timing: Timing, within: Bounds = BOUNDS) -> Arrivals:
 
 
 def width_in_points(width: float, given: Traces) -> int:
-    """A window of smoothing, s, on the axis of traces: odd, and never too narrow."""
-    return max(round(width / given.step) // 2 * 2 + 1, NARROWEST)
+    """A window of smoothing, s, on the axis of traces: odd, never too narrow, never most of it."""
+    widest = given.points // 4 * 2 + 1
+    return min(max(round(width / given.step) // 2 * 2 + 1, NARROWEST), widest)
 
 
 def _stacked(edges: list[Edge], order: NDArray[np.intp]) -> Edge:

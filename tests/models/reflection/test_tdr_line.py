@@ -5,6 +5,7 @@ import pytest
 import skrf
 from scipy.constants import epsilon_0, speed_of_light
 
+from models.errors import ParameterError
 from models.reflection.tdr.probe import Cable, Head, Rods, System
 from models.reflection.tdr.record import window_axis
 from models.reflection.tdr.whole.experiment import (
@@ -16,7 +17,7 @@ from models.reflection.tdr.whole.experiment import (
     system_values,
 )
 from models.reflection.tdr.whole.line import OPEN, SHORT, Section, reflection
-from models.reflection.tdr.whole.medium import Medium
+from models.reflection.tdr.whole.medium import Medium, apparent_of
 from models.reflection.tdr.whole.response import grid, late_frequencies, late_value
 
 SOIL = Medium(6.0, (9.0, 3.0), (9e-12, 6e-10), 0.04)
@@ -90,12 +91,20 @@ def test_apparent_permittivity_and_its_derivatives():
         medium = Medium(25.0 - strength, (strength,), (time,), 0.1)
         eps = medium.permittivity(np.array([2j * np.pi * frequency]))[0]
         assert np.sqrt(eps).real ** 2 == pytest.approx(expected, abs=1e-4)
-    value, slopes = SOIL.apparent(7e8)
+    value, slopes = apparent_of(SOIL, 7e8)
     for k in range(slopes.size):
         moved = SOIL.values
         moved[k] += 1e-6
-        change = (Medium.of_values(moved).apparent(7e8)[0] - value) / 1e-6
+        change = (apparent_of(Medium.of_values(moved), 7e8)[0] - value) / 1e-6
         assert change == pytest.approx(slopes[k], abs=1e-4)
+
+
+@pytest.mark.parametrize(("start", "step", "sentence"), [
+    (-1e-9, 1e-11, "1 ns before it"), (1.9e-5, 1e-13, "expected at most"),
+])  # fmt: skip
+def test_a_grid_that_cannot_be_is_refused_before_it_takes_memory(start, step, sentence):
+    with pytest.raises(ParameterError, match=sentence):
+        grid(start, step, 1024, 5e-11)
 
 
 def test_late_times_are_those_of_known_transforms():

@@ -7,6 +7,7 @@ from scipy.constants import speed_of_light
 from models.errors import ParameterError
 from models.reflection.tdr.probe import Rods, three_rod_impedance, two_rod_impedance
 from models.reflection.tdr.record import even_axis, from_distance, traces, window_axis
+from tests.models.reflection.tdr_population import AIR, CABLES, Setup, drawn
 from tests.published import table
 
 QUIET = np.zeros(64)
@@ -39,6 +40,8 @@ def test_one_trace_and_many_have_one_shape():
         (lambda: traces(0.0, 1e-11, np.zeros(8)), "at least 16 points, found 8"),
         (lambda: traces(0.0, 1e-11, np.where(QUIET == 0, 74.0, 0.0)), "found 74"),
         (lambda: traces(0.0, 1e-11, np.append(QUIET, np.nan)), "point 64 is not a finite"),
+        (lambda: traces(0.0, 3e-20, QUIET), "found 3e-08 ps"),
+        (lambda: traces(0.0, 1e-5, QUIET), "the last at 630 us"),
         (lambda: from_distance([1.0, 2.0, 1.5]), "point 2 does not"),
         (lambda: from_distance([1.0, 1.0, 1.0]), "point 1 does not"),
         (lambda: even_axis([0.0, 1.0, 5.0, 6.0], "axis"), "even steps"),
@@ -48,6 +51,14 @@ def test_one_trace_and_many_have_one_shape():
 def test_what_is_no_record_is_refused_by_name(make, sentence):
     with pytest.raises(ParameterError, match=sentence):
         make()
+
+
+def test_a_low_loss_cable_rings_above_one_and_is_a_record():
+    """In air, 3 m of it: the open end of a head of 150 Ohm comes back with 1.3."""
+    rng = np.random.default_rng(0)
+    setup = Setup(0.2, 190.0, (180.0, 2.5, 0.04), CABLES["low_loss"], 3.0, 1.3e-10, 1e-3, 2048)
+    trace = drawn(AIR, setup, rng).trace
+    assert 1.25 < trace.rho.max() < 1.45
 
 
 def test_rod_impedance_from_geometry():

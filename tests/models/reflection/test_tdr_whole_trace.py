@@ -21,7 +21,6 @@ from tests.models.reflection.tdr_records import (
 
 NAMES = ["long_dry_sand", "long_moist_loam", "long_wet_loam", "long_saline_loam",
          "long_moist_loam_coarse", "short_wet_loam"]  # fmt: skip
-SHORT_RODS = {"length": 0.10, "rods": 185.629, "window": 2.5, "points": 400}
 HEAD = Head(150 / np.sqrt(3), 0.04 * np.sqrt(3) / 299792458.0)
 
 
@@ -48,17 +47,6 @@ def test_calibration_traces_tell_the_line(kind):
     assert line.system.cable.delay == pytest.approx(3.0 / (0.66 * 299792458.0), rel=1e-3)
     assert line.system.rods.length == pytest.approx(bench.length, rel=1e-3)
     assert line.system.rods.impedance == pytest.approx(bench.probe.impedance, rel=2e-3)
-
-
-def test_the_band_holds_the_truth_of_noisy_draws():
-    """200 draws of noise over one trace, the noise stated, the line known."""
-    bench, known = calibrated("short")
-    medium = soil(0.25, 0.04)
-    drawn = noisy([(medium, 1.0)], 0.004, 200, 2, **SHORT_RODS)
-    found = by_whole_trace(Record(drawn), bench, known, terms=1).columns
-    for name, right in (("apparent_permittivity", apparent(medium)), ("bulk_conductivity", 0.04)):
-        apart = np.abs(found[name] - right) / found[f"{name}_u"]
-        assert 0.93 <= np.mean(apart < 1.96) <= 0.97, name
 
 
 def test_a_model_that_is_too_simple_says_so_and_a_richer_one_is_found():

@@ -148,14 +148,14 @@ def test_only_json_is_taken(server, path):
     assert server.client.post(path, json=[]).status_code == 422
 
 
-def test_sweeps_that_say_nothing_are_answered_without_a_number(server):
+def test_one_sweep_for_all_standards_is_refused(server):
     flat = {"reflection": columns(np.full(3, 0.5 + 0j))}
     standards = [{**{k: v for k, v in s.items() if k != "touchstone"}, **copy.deepcopy(flat)}
                  for s in STANDARDS]  # fmt: skip
     answer = server.client.post("/v1/reflections", json={
         "kind": "tip", "frequency": THREE, "sample": flat, "standards": standards,
     })  # fmt: skip
-    assert answer.status_code == 200, answer.text
-    spectrum = answer.json()["spectrum"]
-    assert spectrum["real_permittivity"] == [None, None, None]
-    assert all("no-root" in flags for flags in spectrum["flags"])
+    assert answer.status_code == 422, answer.text
+    (fault,) = answer.json()["errors"]
+    assert fault["pointer"] == "#/standards/1"
+    assert "was read exactly like" in fault["detail"]

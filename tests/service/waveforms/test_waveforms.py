@@ -175,6 +175,31 @@ def test_a_trace_becomes_water_content_and_salinity_in_one_call(server):
     assert answer.json()["raw_records"]["waveform"]["probe"]["probe_length"] == 0.3
 
 
+@pytest.mark.parametrize("method", ["travel-time", "whole-trace"])
+def test_what_traces_of_a_probe_share_stays_in_the_mean_over_them(server, method):
+    """The same numbers typed in are independent of one another: their mean is narrower."""
+    asked = request("long")
+    raw = {"waveform": {"method": method, **{k: asked[k] for k in ("probe", "calibration")}}}
+    wave = stored("long_moist_loam")["waveform"]
+    exact = {"name": "crim", "standard_error": 0.0}
+    found = estimate(server, [{**READING, "waveform": wave}], raw_records=raw,
+                     mixing_model=exact, budget=True).json()  # fmt: skip
+    (told,) = found["estimates"]
+    typed = {name: told[name] for name in ("apparent_permittivity", "apparent_permittivity_u",
+                                           "frequency", "bulk_conductivity")}  # fmt: skip
+    answer = estimate(server, [{**READING, **typed}], raw_records={}, mixing_model=exact)
+    (plain,) = answer.json()["estimates"]
+    assert told["water_content"] == pytest.approx(plain["water_content"], abs=2e-4)
+    assert told["water_content_u"] == pytest.approx(plain["water_content_u"], rel=0.05)
+    assert told["water_content_u_shared"] > plain["water_content_u_shared"]
+    per_reading = {
+        name: np.sqrt(row["water_content_u"] ** 2 - row["water_content_u_shared"] ** 2)
+        for name, row in (("told", told), ("plain", plain))
+    }
+    assert per_reading["told"] < 0.9 * per_reading["plain"]
+    assert "probe_calibration" in str(found["budget"])
+
+
 def test_columns_take_raw_records_and_units_of_the_caller(server):
     waves = [stored(name)["waveform"] for name in ("long_moist_loam", "long_wet_loam")]
     columns = {"temperature": [20.0, 20.0], "waveform": waves}

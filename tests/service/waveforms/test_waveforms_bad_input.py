@@ -54,7 +54,7 @@ WAVE = ("waveforms", 0)
         (("calibration", "water", "temperature"), None, "temperature is missing",
          "/calibration/water/temperature"),
         (("calibration", "water", "temperature"), 293.0, "looks like K",
-         "/calibration/temperature"),
+         "/calibration/water/temperature"),
         (("calibration", "air", "reflection_coefficient"), [0.0] * POINTS, "no end reflection",
          "/calibration/air"),
         (("calibration", "oil"), {}, "unknown key", "/calibration/oil"),

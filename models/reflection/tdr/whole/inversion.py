@@ -3,7 +3,6 @@
 import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
-from operator import attrgetter
 
 import numpy as np
 
@@ -111,7 +110,7 @@ def _first_good(told: Callable[[Layers], Inversion], starts: Sequence[Layers]) -
         tried.append(told(start))
         if not tried[-1].too_simple:
             break
-    return min(tried, key=attrgetter("reduced_chi_square"))
+    return min(tried, key=lambda one: one.reduced_chi_square)
 
 
 def invert_layers(
@@ -140,7 +139,7 @@ def invert_layers(
               for a in levels for b in levels if a != b]  # fmt: skip
     ranked = sorted(starts, key=lambda layers: trace.misfit(known.system, layers))
     tried = [fitted(trace, known, start, placed=fixed) for start in ranked[:MOST_SECTIONS_TRIED]]
-    return _told(trace, known, min(tried, key=attrgetter("cost")))
+    return _told(trace, known, min(tried, key=lambda one: one.cost))
 
 
 def _moist(permittivity: float, conductivity: float) -> Medium:

@@ -13,6 +13,7 @@ from math import factorial
 import numpy as np
 from scipy.fft import irfft, next_fast_len
 
+from models.errors import Complaint, ParameterError
 from models.relation import Array, ComplexArray, column
 
 LONGER = 1.5
@@ -21,6 +22,8 @@ DAMPING = 12.0
 """a T: what comes back is smaller by exp(-12)."""
 BANDWIDTH = 6.2
 """Over the spread of the step's slope: angular frequency beyond which nothing is left of it."""
+MOST = 1 << 19
+"""Points of the transform, from the launch of the step on: 30 m of cable take 30 000."""
 FINEST = 2
 """Times the highest frequency, for the sampling rate of the transform."""
 LATE_TERMS = 10
@@ -52,12 +55,27 @@ def grid(start: float, step: float, points: int, spread: float) -> Grid:
 
     start, step: s, two-way time of the first point and between points. spread: s, least standard
     deviation of the slope of the step that will be asked for.
+    Raises ParameterError where a trace begins before the launch of the step, or the way from there
+    is too long for such points.
     """
+    if start < 0:
+        detail = (
+            "expected times from the launch of the step on, or distances from the instrument; "
+            f"found a first point {1e9 * -start:.4g} ns before it"
+        )
+        raise ParameterError("trace", [Complaint("start", detail, ())])
     highest = BANDWIDTH / (2 * np.pi * spread)
     every = max(int(np.ceil(FINEST * highest * step)), 1)
     fine = step / every
     end = start + step * points
-    count = next_fast_len(int(np.ceil(LONGER * end / fine)), real=True)
+    wanted = int(np.ceil(LONGER * end / fine))
+    if wanted > MOST:
+        detail = (
+            f"expected at most {MOST} points of {1e12 * fine:.3g} ps from the launch of the step, "
+            f"found {wanted}: send coarser points, or times from the launch"
+        )
+        raise ParameterError("trace", [Complaint("axis", detail, ())])
+    count = next_fast_len(wanted, real=True)
     period = count * fine
     damping = DAMPING / period
     used = min(count // 2 + 1, int(highest * period) + 1)

@@ -13,6 +13,7 @@ from models.reflection.sweep_flags import keys_of
 from tests.models.reflection.sweep_records import WIDE, debye, noise, through_port
 
 SOIL = debye(WIDE)
+WET, CLAY = debye(WIDE, 40.0, 6.0, 2e-11, 0.2), debye(WIDE, 40.0, 12.0, 1e-9)
 LENGTH = 0.03
 
 
@@ -115,6 +116,20 @@ def test_bands_hold_the_truth(ends, draws):
                        (np.abs(away.imag) <= 1.96 * found.band.loss[0]).mean()))  # fmt: skip
     for share in np.mean(shares, axis=0):
         assert 0.93 <= share <= 0.97
+
+
+@pytest.mark.parametrize("end", cell.ENDS)
+@pytest.mark.parametrize("eps", [WET, SOIL, CLAY], ids=["wet", "moist", "clay"])
+def test_a_single_cell_keeps_to_its_branch_in_noise(end, eps):
+    """Roots come close where loss is high: the wrong one glides down with little loss."""
+    shares = []
+    for seed in range(2):
+        reads = reads_of((end,), 3e-3, seed, eps)
+        found = estimate_line(LineQuery(frequency=WIDE, reads=reads, length=LENGTH)).estimate
+        away = found.permittivity[0] - eps
+        shares += [(np.abs(away.real) <= 1.96 * found.band.real[0]).mean(),
+                   (np.abs(away.imag) <= 1.96 * found.band.loss[0]).mean()]  # fmt: skip
+    assert 0.92 <= np.mean(shares) <= 0.98
 
 
 def test_noise_of_both_ends_is_told_by_what_they_leave():
