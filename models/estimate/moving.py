@@ -9,7 +9,7 @@ import numpy as np
 from models.estimate.permittivity import Permittivity
 from models.relation import Array
 
-APPARENT, LENGTH = "apparent_permittivity", "probe_length"
+APPARENT = "apparent_permittivity"
 BULK, TEMPERATURE, WATER_MODEL = "bulk_conductivity", "temperature", "water_model"
 PER_READING = frozenset({APPARENT, BULK, TEMPERATURE})
 """Sources that are another one for each reading; readings of a soil or a probe share the others."""
@@ -46,8 +46,8 @@ def moving(value: Any, **by: Any) -> Moving:
 
 
 def moving_permittivity(found: Permittivity) -> Moving:
-    """A permittivity: its own noise, the length of the rods, and the loss it was corrected for."""
-    by = {APPARENT: found.per_reading, LENGTH: found.shared}
+    """A permittivity: its own noise, what its probe shares, and the loss it was corrected for."""
+    by = {APPARENT: found.per_reading, found.shared_by: found.shared}
     if found.from_loss is not None:
         by[BULK] = found.from_loss
     return moving(found.value, **by)
