@@ -167,8 +167,8 @@ FLAGS: Registry[Flag] = Registry(
          reason="Outside the domain of the equation.",
          keeps_number=True, keeps_pore_water=False),
     Flag(key="no-upper-end", condition="Of the errors that are possible, more than the band leaves "
-         "out above leave the pore-water model without an end: a permittivity at its offset, or "
-         "water content at zero.",
+         "out above leave the pore-water model without an end (a permittivity at its offset, water "
+         "content at zero), or the end would be above 25 S/m, what saturated brine conducts.",
          text="The conductivity of the pore water, or of the extract, has no upper bound that "
          "these readings could tell: that end of the band is empty.",
          reason="Division by what may be zero; a finite end would be made up.",

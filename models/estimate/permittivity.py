@@ -97,7 +97,9 @@ def permittivity_of(
         apparent, from_loss = _without_loss(apparent, np.nan_to_num(loss), np.nan_to_num(loss_u))
     if real is not None:
         own = ~np.isnan(real.value)
-        apparent = real.or_else(apparent)
+        if kind == "apparent":
+            own &= np.isnan(apparent.value)
+        apparent = real.or_else(apparent) if kind == "real" else apparent.or_else(real)
         if uncorrected is not None and from_loss is not None:
             uncorrected = np.where(own, real.value, uncorrected)
             from_loss = np.where(own, 0.0, from_loss)

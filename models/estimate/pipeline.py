@@ -80,7 +80,7 @@ def work_out(readings: Readings, basis: Basis) -> Worked:
     flags = readings.flags.copy()
     around = surroundings_of(readings, basis)
     found = _permittivity(readings, basis, around, basis.model.permittivity)
-    flag_inputs(found, around, basis, flags, readings.columns.get("travel_time"))
+    flag_inputs(found, around, basis, flags, _timed(readings, basis))
     water = water_inputs(basis, around, readings.count, flags)
     content = water_content_of(readings, basis, found, around, water)
     flag_results(content, found, around, basis, flags)
@@ -122,6 +122,11 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
         rest = {n: v for n, v in salt.items() if n not in bulk}
         columns |= _without(rest, without_pore_water(flags))
     return Estimates(columns, flags)
+
+
+def _timed(readings: Readings, basis: Basis) -> Array | None:
+    """Travel times that could be used: without a length of the rods they say nothing."""
+    return readings.columns.get("travel_time") if "probe_length" in basis.query.probe else None
 
 
 def _correction(content: WaterContent, found: Permittivity, count: int) -> Array:

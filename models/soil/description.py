@@ -74,12 +74,16 @@ def _refuse_contradictions(given: Mapping[str, float]) -> None:
     if total > 1.0 + CLOSURE or short:
         detail = f"sand, silt and clay must add up to 1, found {total:g}"
         raise ParameterError("soil", [Complaint("clay", detail, ("soil",))])
-    if given.get("bulk_density", 0.0) >= given.get("particle_density", PARTICLE_DENSITY) + 200.0:
-        detail = (
-            f"bulk_density {given['bulk_density'] / 1e3:g} g/cm3 is above the density of the "
-            "solids: no pores would be left"
-        )
-        raise ParameterError("soil", [Complaint("bulk_density", detail, ("soil", "bulk_density"))])
+
+
+def _refuse_no_pores(dense: float, solid: float, origin: str) -> None:
+    if dense < solid:
+        return
+    detail = (
+        f"bulk_density {dense / 1e3:g} g/cm3 is not below the density of the solids, "
+        f"particle_density {solid / 1e3:g} g/cm3 ({origin}): no pores would be left"
+    )
+    raise ParameterError("soil", [Complaint("bulk_density", detail, ("soil", "bulk_density"))])
 
 
 def _add_class(book: _Book, key: str) -> None:
@@ -115,6 +119,7 @@ def _derive(book: _Book) -> None:
     book.add("particle_density", PARTICLE_DENSITY, PARTICLE_DENSITY_U, "mineral soil, 2.65 g/cm3")
     solid = value["particle_density"]
     if book.has("bulk_density"):
+        _refuse_no_pores(value["bulk_density"], solid, book.origins["particle_density"])
         dry = value["bulk_density"] / solid
         spread = np.hypot(u["bulk_density"] / solid, dry * u["particle_density"] / solid)
         book.add("porosity", 1.0 - dry, spread, "1 - bulk_density / particle_density")

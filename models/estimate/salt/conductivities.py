@@ -24,6 +24,9 @@ from models.uncertainty.coverage import shortest_interval
 from models.uncertainty.first_order import Input
 
 Columns = dict[str, Array]
+BRINE = 25.0
+"""S/m at 25 Cel of water saturated with sodium chloride, common practice, from memory: an end beyond
+it says no more than that there is none."""
 PORE, EXTRACT = "pore_water_conductivity", "saturation_extract_conductivity"
 
 
@@ -103,8 +106,10 @@ def _bulk_at_25(pore: PoreWater, probability: float) -> Columns:
 @np.errstate(all="ignore")
 def _factor(name: str, value: Array, spread: Spread) -> Columns:
     """Value, standard uncertainty and ends; the second is the value's share times the value."""
-    known = np.where(value > 0, value, np.nan)
+    known, upper = np.where(value > 0, value, np.nan), np.exp(spread.upper)
+    beyond = upper > np.maximum(BRINE, known)
+    spread.unbounded[beyond] = True
     return {
         name: known, f"{name}_u": known * spread.total, f"{name}_u_shared": known * spread.shared,
-        f"{name}_lower": np.exp(spread.lower), f"{name}_upper": np.exp(spread.upper),
+        f"{name}_lower": np.exp(spread.lower), f"{name}_upper": np.where(beyond, np.nan, upper),
     }  # fmt: skip

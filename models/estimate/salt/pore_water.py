@@ -23,6 +23,8 @@ from models.salinity.complex_refractive import bulk_of_loss
 from models.water import kaatze_1989
 
 COMPENSATION = "temperature_compensation"
+USUAL = 2.0
+"""Coverage factor at which a floor counts."""
 
 
 class PoreWater:
@@ -125,14 +127,19 @@ class PoreWater:
         return model.gates(bulk, **parameters)
 
     def own_uncertainty(self, value: Array) -> Array:
-        """The pore-water model's own, of the logarithm."""
+        """The pore-water model's own, of the logarithm.
+
+        Its floor is an amount, not a factor: in fresh water it reaches as far up as that amount
+        does, and no decades beyond.
+        """
         stated = self.salinity.query.standard_error
         if stated is not None:
             return np.full(self.count, stated)
-        own = self.salinity.model.discrepancy.standard_uncertainty(
-            value, clay=self.salinity.clay, fitted=self.salinity.fitted
-        )
-        return own / np.where(value > 0, value, np.nan)
+        known = self.salinity.model.discrepancy
+        share = known.relative_uncertainty(clay=self.salinity.clay, fitted=self.salinity.fitted)
+        with np.errstate(invalid="ignore", divide="ignore"):
+            floor = np.log1p(USUAL * known.floor / np.where(value > 0, value, np.nan)) / USUAL
+        return np.maximum(share, floor)
 
 
 @np.errstate(all="ignore")
