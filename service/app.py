@@ -13,7 +13,7 @@ from starlette.types import ASGIApp
 from service import __version__
 from service.access import LimitRate, RequireKey, keys_of
 from service.answers.together import Together
-from service.batch.workers import yield_to_requests
+from service.batch.workers import spare_what_is_loaded, yield_to_requests
 from service.errors import add_error_handlers
 from service.formats.arrow import load_ahead
 from service.limits import LimitBody
@@ -57,6 +57,7 @@ TAGS = [
 WARMING: tuple[Callable[[FastAPI], object], ...] = (
     lambda api: api.openapi(),
     lambda _: yield_to_requests(),
+    lambda _: spare_what_is_loaded(),
     lambda _: load_ahead(),
 )
 """Called before the first request, so that no request waits for them."""

@@ -1,29 +1,35 @@
 """Estimates for the blocks of one table: settled at its first block, the same for all of it."""
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import replace
+
+import numpy as np
 
 from models.advisories import Advice
 from models.conversion import from_si
 from models.estimate import Basis, Estimates, Remarks, columns_of, estimate
 from models.estimate.beside.ensemble import COLUMNS, EveryModel
+from models.flags import BIT
 from models.quantity import band_names
 from models.readings import Readings
+from service.answers.by_name import MOST_TOLD, Grounds, naming
 from service.answers.effort import refuse_effort
 from service.errors import Unprocessable
 from service.faults import Fault, nearest, shown
 from service.formats.block import Answer, Block
-from service.schemas.echo import echo_of, headers_of, units_of_answer
+from service.formats.header import check_permittivity
+from service.schemas.echo import echo_of, headers_of, headers_of_several, units_of_answer
 from service.schemas.echo_beside import ensemble_echo
-from service.schemas.estimates import EstimatesSettings
+from service.schemas.estimates import ALL, EstimatesSettings, model_name
 from service.schemas.query import basis_of
 
+CONDUCTIVITIES = ("bulk_conductivity_25", "pore_water_conductivity",
+                  "saturation_extract_conductivity")  # fmt: skip
 APPENDED = frozenset({
     "conduction_correction",
     "model_spread",
     *band_names("water_content"),
-    *band_names("bulk_conductivity_25"),
-    *band_names("pore_water_conductivity"),
-    *band_names("saturation_extract_conductivity"),
+    *(name for quantity in CONDUCTIVITIES for name in band_names(quantity)),
 })  # fmt: skip
 """Every column an answer may append, so that no table already has one of the name."""
 
@@ -50,13 +56,26 @@ def wanted_columns(text: str | None) -> tuple[str, ...] | None:
 class TableEstimates:
     """What a conversion calls with each block of a table."""
 
-    def __init__(self, settings: EstimatesSettings, drawn_values: int | None = None) -> None:
-        """drawn_values: the limit on draws times readings times models, where there is one."""
+    def __init__(
+        self,
+        settings: EstimatesSettings,
+        drawn_values: int | None = None,
+        grounds: Callable[[tuple[str, ...]], Grounds] | None = None,
+    ) -> None:
+        """drawn_values: the limit on draws times readings times models, where there is one.
+
+        grounds: makes what the rows rest on, from the columns that are read, for a table whose
+        rows name their soil or probe; None: such a column passes through.
+        """
         self.settings, self.drawn_values = settings, drawn_values
         self.rows = 0
         self.columns: tuple[str, ...] = ()
         self.basis: Basis | EveryModel | None = None
         self.remarks = Remarks()
+        self._make = grounds
+        self._naming: tuple[str, ...] = ()
+        self._grounds: Grounds | None = None
+        self._begun = False
 
     def __call__(self, block: Block) -> Answer:
         """The estimates of a block, in the caller's units.
@@ -67,30 +86,89 @@ class TableEstimates:
         self.rows += len(block)
         if self.drawn_values is not None:
             refuse_effort(self.settings, self.rows, self.drawn_values)
-        if self.basis is None:
-            self.columns = tuple(block.values)
-            self.basis = basis_of(self.settings, self.columns)
+        if not self._begun:
+            self._begin(block)
         units = self.settings.units
-        readings: Readings = block.readings(units)
-        if isinstance(self.basis, EveryModel):
-            together = self.basis.estimate(readings)
-            result = Estimates(together.columns, together.flags)
+        answer = self._by_name(block) if self._grounds else self._by_request(block)
+        self.remarks.note(block.values, units, answer.flags, answer.columns)
+        columns = {name: from_si(name, v, units) for name, v in answer.columns.items()}
+        return replace(answer, columns=columns)
+
+    def _begin(self, block: Block) -> None:
+        self._begun, self.columns = True, tuple(block.values)
+        if block.header.form == "ndjson":  # others have told it by their header
+            kind = "key" if block.header.names else "JSON object with a key"
+            check_permittivity(block.header.names, self.columns, int(block.lines[0]), kind)
+        named = naming(block.header.names) if self._make else ()
+        if self._make and named:
+            self._naming, self._grounds = named, self._make(self.columns)
         else:
-            result = estimate(readings, self.basis)
-        self.remarks.note(block.values, units, result.flags, result.columns)
-        columns = {name: from_si(name, v, units) for name, v in result.columns.items()}
-        return Answer(columns, result.flags)
+            self.basis = basis_of(self.settings, self.columns)
+
+    def _by_request(self, block: Block) -> Answer:
+        assert self.basis is not None  # noqa: S101 - settled at the first block
+        result = _estimated(block.readings(self.settings.units), self.basis)
+        return Answer(result.columns, result.flags)
+
+    def _by_name(self, block: Block) -> Answer:
+        """Each row by the soil and probe it names; the columns do not depend on which."""
+        assert self._grounds is not None  # noqa: S101 - see _begin
+        readings = block.readings(self.settings.units)
+        nothing = np.full(readings.count, np.nan)
+        columns = {name: nothing.copy() for name in self._answered}
+        flags, refusals = readings.flags.copy(), []
+        for part in self._grounds.parts(block):
+            rows = part.rows
+            if part.ground is None:
+                flags[rows] |= np.where(block.broken[rows], np.uint64(0), BIT["not-estimated"])
+                refusals += [part.refusal] if part.refusal else []
+                continue
+            some = {name: values[rows] for name, values in readings.columns.items()}
+            own = Readings(len(rows), some, readings.flags[rows])
+            result = _estimated(own, part.ground.basis)
+            flags[rows] = result.flags
+            for name in columns.keys() & result.columns.keys():
+                columns[name][rows] = result.columns[name]
+        return Answer(columns, flags, tuple(refusals))
+
+    @property
+    def _answered(self) -> tuple[str, ...]:
+        """The columns of an answer by name: whatever these readings can tell of some soil."""
+        if model_name(self.settings) == ALL:
+            return COLUMNS
+        names = list(band_names("water_content"))
+        if {"imaginary_permittivity", "bulk_conductivity"} & set(self.columns):
+            names.append("conduction_correction")
+        if "bulk_conductivity" in self.columns:
+            for quantity in CONDUCTIVITIES:
+                names += band_names(quantity)
+        return tuple(names)
 
     @property
     def advice(self) -> tuple[Advice, ...]:
         """What the answer must be read with."""
-        if self.basis is None:
-            return ()
-        return (*self.basis.advice, *self.remarks.advice(self.settings.units))
+        bases = [self.basis] if self.basis is not None else []
+        bases += [ground.basis for ground in self._grounds.used] if self._grounds else []
+        said = (one for basis in bases for one in basis.advice)
+        return tuple(dict.fromkeys((*said, *self.remarks.advice(self.settings.units))))
+
+    @property
+    def troubles(self) -> tuple[str, ...]:
+        """Why rows were not estimated, name by name."""
+        return tuple(self._grounds.troubles) if self._grounds else ()
 
     def headers(self) -> Mapping[str, str]:
         """What a table cannot say in its cells: model, units, advisories, every constant."""
         basis, units = self.basis, self.settings.units
+        told = {"Columns-Read": ", ".join((*self._naming, *self.columns))}
+        if self._grounds is not None:
+            answered = units_of_answer(self._answered, units)
+            used = [
+                (dict(zip(("soil", "probe"), one.named, strict=True)), one.revisions, one.basis)
+                for one in self._grounds.used
+            ]
+            told |= headers_of_several(used, (one.code for one in self.advice), answered)
+            return told | _troubles_told(self.troubles)
         if basis is None:
             return {}
         remarks = self.remarks.advice(units)
@@ -98,5 +176,21 @@ class TableEstimates:
             echo, names = ensemble_echo(basis, self.settings, remarks), COLUMNS
         else:
             echo, names = echo_of(basis, self.settings, remarks), columns_of(basis)
-        told = {"Columns-Read": ", ".join(self.columns)}
         return told | headers_of(echo, units_of_answer(names, units))
+
+
+def _estimated(readings: Readings, basis: Basis | EveryModel) -> Estimates:
+    if isinstance(basis, EveryModel):
+        together = basis.estimate(readings)
+        return Estimates(together.columns, together.flags)
+    return estimate(readings, basis)
+
+
+def _troubles_told(troubles: Sequence[str]) -> dict[str, str]:
+    """Why rows were not estimated, as far as a header can say it."""
+    if not troubles:
+        return {}
+    told = [text[:200] for text in troubles[:MOST_TOLD]]
+    if len(troubles) > MOST_TOLD:
+        told.append(f"and {len(troubles) - MOST_TOLD} more")
+    return {"Not-Estimated": "; ".join(told).encode("ascii", "backslashreplace").decode()}

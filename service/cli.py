@@ -4,8 +4,10 @@ import errno
 import json
 import logging
 import os
+import signal
 import socket
 import sys
+import time
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any, get_args
@@ -28,6 +30,8 @@ from service.store.opening import open_store
 
 log = logging.getLogger("gleyline")
 
+PAUSE = 0.1
+"""Seconds between two looks at processes that are to end."""
 METAVARS = {int: "N", float: "SECONDS", Path: "DIR", str: "TEXT"}
 
 
@@ -89,13 +93,29 @@ def serve(**given: str | None) -> None:
     try:
         if settings.workers > 1:
             with shared_by(settings.workers):
-                Multiprocess(config, sockets=[listener]).run()
+                Workers(config, sockets=[listener]).run()
         else:
             server.run(sockets=[listener])
             if not server.started:
                 sys.exit(1)
     except KeyboardInterrupt:
         click.echo()
+
+
+class Workers(Multiprocess):
+    """Server processes that are told again when the signal to stop comes again."""
+
+    def join_all(self) -> None:
+        """Wait for the end of what is under way, or of patience."""
+        told = len(self.signal_queue)
+        while any(process.exitcode is None for process in self.processes):
+            time.sleep(PAUSE)
+            if len(self.signal_queue) > told:
+                told = len(self.signal_queue)
+                for process in self.processes:
+                    if process.exitcode is None and process.pid is not None:
+                        os.kill(process.pid, signal.SIGTERM)
+        super().join_all()
 
 
 def _listen(settings: Settings) -> socket.socket:

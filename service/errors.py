@@ -20,7 +20,7 @@ from starlette.routing import compile_path
 from starlette.types import Scope
 
 from models.errors import ModelError, ParameterError
-from service.faults import Fault, faults_of, pointer
+from service.faults import Fault, faults_of, nearest, pointer, shortened
 from service.formats.errors import (
     AnswerTooLong,
     CellError,
@@ -167,7 +167,8 @@ def _of_parameters(error: ParameterError) -> Problem:
 
 def _of_table(error: FormatError) -> Problem:
     """What a table holds that it should not; strict reading and headers are the caller's words."""
-    place = f"line {error.line}" if error.column is None else f"line {error.line}, {error.column}"
+    place = f"row {error.row}" if error.line is None else f"line {error.line}"
+    place = place if error.column is None else f"{place}, {error.column}"
     faults = [Fault(str(error), place)]
     if isinstance(error, HeaderError | CellError):
         return Unprocessable(str(error), faults)
@@ -217,10 +218,26 @@ def _methods(request: Request, told: str) -> list[str]:
     return sorted(taken)
 
 
+def _no_address(request: Request) -> str:
+    """That there is no such address, and the nearest that there is."""
+    path = request.url.path
+    known = [template for template in request.app.openapi()["paths"] if "{" not in template]
+    ends = [template for template in known if template.endswith(path.rstrip("/"))]
+    meant = ends[0] if len(ends) == 1 and len(path) > 1 else nearest(path, known)
+    hint = f"; did you mean {meant}?" if meant else "; /docs and /openapi.json list them all"
+    return f"no operation has the address {shortened(path)}{hint}"
+
+
 def add_error_handlers(api: FastAPI) -> None:
     """Let routes raise what the layers below raise."""
 
     async def handle(request: Request, error: Exception) -> Response:
+        if (
+            isinstance(error, HTTPException)
+            and type(error) is HTTPException
+            and (error.status_code == NotFound.status)
+        ):
+            error = NotFound(_no_address(request))
         if isinstance(error, HTTPException) and error.status_code == MethodNotAllowed.status:
             told = (error.headers or {}).get("Allow", "")
             error.headers = {"Allow": ", ".join(_methods(request, told))}

@@ -172,9 +172,25 @@ def _detail(place: Location, item: Mapping[str, Any], schema: Mapping[str, Any])
     if kind in EXPECTED:
         choices = re.findall("'([^']*)'", context.get("expected", ""))
         meant = hint(str(given), choices) if choices else ""
-        return f"expected {EXPECTED[kind].format_map(context)}, found {shown(given)}{meant}"
+        expected = EXPECTED[kind].format_map(context) + _or_else(place, kind)
+        return f"expected {expected}, found {shown(given)}{meant}{_percent(place, given)}"
     message = re.sub(r"^(Input|Value) should be ", "expected ", str(item["msg"]))
     return f"{message[:1].lower()}{message[1:]}, found {shown(given)}"
+
+
+def _or_else(place: Location, kind: str) -> str:
+    """What may stand in place of an object at some places."""
+    name = place[-1] if place else None
+    stored = name in {"soil", "probe"} and kind.endswith("_type")
+    return f" or the name of a stored {name}" if stored else ""
+
+
+def _percent(place: Location, given: Any) -> str:
+    """What a share that is written in per cent should be."""
+    shares = {"coverage_probability", "propagation_velocity_factor"}
+    if place[-1:] == () or place[-1] not in shares or not isinstance(given, float | int):
+        return ""
+    return f"; for {given:g} % send {given / 100:g}" if 1 < given < 100 else ""
 
 
 def _unknown(name: str, known: Sequence[str]) -> str:

@@ -88,6 +88,11 @@ class LimitBody:
 class Decoder(Protocol):
     """Bytes go in by ``feed`` and come out by ``take``."""
 
+    @property
+    def at_end(self) -> bool:
+        """Whether nothing comes out any more, unless more goes in."""
+        ...
+
     def feed(self, data: bytes) -> None:
         """Add bytes as they came."""
         ...
@@ -103,6 +108,8 @@ class Decoder(Protocol):
 
 class Plain:
     """Nothing to decode."""
+
+    at_end = True
 
     def __init__(self) -> None:
         self._waiting = b""
@@ -122,6 +129,9 @@ class Plain:
 
 class Gunzip:
     """Gzip of one or more members, at most PIECE bytes at a time."""
+
+    at_end = False
+    """Only what comes next tells."""
 
     def __init__(self) -> None:
         self._member = zlib.decompressobj(_GZIP)
@@ -176,17 +186,20 @@ class Body:
         """
         if self._over:
             return await self._receive()
-        await asyncio.sleep(0)  # what was decoded is there at once: let others have their turn
-        while not (piece := self._decoder.take()) and not self._arrived:
+        piece = self._decoder.take()
+        if piece:
+            await asyncio.sleep(0)  # what was decoded is there at once: let others have their turn
+        while not piece and not self._arrived:
             message = await self._next()
             if message["type"] != "http.request":
                 return message
             self._take_in(message.get("body", b""))
             self._arrived = not message.get("more_body", False)
+            piece = self._decoder.take()
         self._decoded += len(piece)
         if self._decoded > self._limit.decoded:
             raise self._limit.refusal("after decoding", self._limit.decoded)
-        if not piece:
+        if not piece or (self._arrived and self._decoder.at_end):
             self._decoder.close()
             self._over = True
         return {"type": "http.request", "body": piece, "more_body": not self._over}

@@ -1,13 +1,12 @@
 """The outermost layer: request ids, timing, HEAD, the access log, and answers to what failed."""
 
 import logging
+import os
 import re
 import time
-import uuid
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field
 
-from starlette.datastructures import Headers, MutableHeaders
 from starlette.types import ASGIApp, Message, Receive, Scope, Send
 
 from service.errors import InternalError, answer, as_problem
@@ -47,10 +46,13 @@ class Exchange:
 
 
 Observer = Callable[[Exchange], None]
+Header = tuple[bytes, bytes]
 
 
 def write_access_log(exchange: Exchange) -> None:
     """One line per request, without the query."""
+    if not access.isEnabledFor(logging.INFO):
+        return
     access.info(
         "%s %s %d",
         exchange.method,
@@ -117,8 +119,9 @@ def _log_failure(exchange: Exchange, error: Exception) -> None:
 
 
 def _request_id(scope: Scope) -> str:
-    given = Headers(scope=scope).get("x-request-id", "")
-    return given if REQUEST_ID.fullmatch(given) else uuid.uuid4().hex
+    given = next((value for name, value in scope["headers"] if name == b"x-request-id"), b"")
+    text: str = given.decode("latin-1")
+    return text if REQUEST_ID.fullmatch(text) else os.urandom(16).hex()
 
 
 def _sender(exchange: Exchange, send: Send) -> Send:
@@ -129,14 +132,7 @@ def _sender(exchange: Exchange, send: Send) -> Send:
         if message["type"] == "http.response.start":
             exchange.status = message["status"]
             exchange.scope["method"] = exchange.method  # the server frames the answer by it
-            headers = MutableHeaders(scope=message)
-            headers["X-Request-Id"] = exchange.request_id
-            exchange.rows = int(headers.get("row-count", "0"))
-            exchange.flagged = int(headers.get("flagged-count", "0"))
-            stages = headers.get("server-timing")
-            total = f"total;dur={exchange.milliseconds:.1f}"
-            headers["Server-Timing"] = f"{stages}, {total}" if stages else total
-            headers["X-Content-Type-Options"] = "nosniff"
+            message["headers"] = _told(exchange, message.get("headers", ()))
         elif message["type"] == "http.response.body":
             if head:
                 message = {**message, "body": b""}
@@ -145,3 +141,28 @@ def _sender(exchange: Exchange, send: Send) -> Send:
         await send(message)
 
     return outwards
+
+
+def _told(exchange: Exchange, given: Iterable[Header]) -> list[Header]:
+    """The headers of an answer with those that every answer has; its counts are noted."""
+    headers, stages = [], b""
+    for header in given:
+        name, value = header
+        if name == b"server-timing":
+            stages = value + b", "
+            continue
+        if name == b"row-count":
+            exchange.rows = int(value)
+        elif name == b"flagged-count":
+            exchange.flagged = int(value)
+        if name not in _OURS:
+            headers.append(header)
+    return [
+        *headers,
+        (b"x-request-id", exchange.request_id.encode()),
+        (b"server-timing", b"%stotal;dur=%.1f" % (stages, exchange.milliseconds)),
+        (b"x-content-type-options", b"nosniff"),
+    ]
+
+
+_OURS = frozenset({b"x-request-id", b"x-content-type-options"})

@@ -43,7 +43,7 @@ def answer_document(document: dict[str, Any], answered: str, limits: Settings) -
     settings = settings_of(document)
     refuse_effort(settings, sent.count, limits.drawn_values)
     basis = basis_of(settings, (*sent.numbers, *sent.texts))
-    readings = read(sent.numbers, settings.units, {}, sent.absent)
+    readings = raw.with_shared(read(sent.numbers, settings.units, {}, sent.absent))
     raw.mark(readings.flags)
     if isinstance(basis, EveryModel):
         return _of_every_model(basis, readings, sent, settings, answered, raw.echo)

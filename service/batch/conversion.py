@@ -7,7 +7,7 @@ encoded and the next one decoded. Order and answers are the same either way.
 import time
 from collections.abc import Callable, Collection, Iterable, Iterator
 from concurrent.futures import Executor
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import partial
 from typing import IO
 
@@ -103,7 +103,7 @@ class Conversion:
     def _encoded(self, block: Block, result: Callable[[], Answer]) -> Iterator[bytes]:
         answer = result()
         if self.strict:
-            refuse_first(block, answer)
+            refuse_first(block, answer, self.counts.rows)
         answer = self._wanted(answer)
         begin = b""
         with _clocked(self.stages, "encode"):
@@ -127,7 +127,7 @@ class Conversion:
                 mend="leave it out of ?columns=, or send the readings it needs",
             )  # fmt: skip
         kept = {name: cells for name, cells in answer.columns.items() if name in self.columns}
-        return Answer(kept, answer.flags)
+        return replace(answer, columns=kept)
 
 
 class _clocked:

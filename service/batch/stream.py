@@ -5,6 +5,7 @@ while the request is still read loses bodies: a client that sends everything bef
 would wait for ever, and a server that looks for a disconnect swallows what is still arriving.
 """
 
+import asyncio
 import time
 from collections.abc import AsyncIterator, Callable, Iterator
 
@@ -28,13 +29,21 @@ async def convert_stream(
 
     check: called before each piece of work; what it raises ends the conversion.
 
-    While a piece is worked on, nothing more is taken in: a client sends no faster than that, and
-    one piece is held. Raises FormatError, SpoolFull, and what ``chunks`` and ``check`` raise.
+    While a piece is worked on, the next one is taken in and nothing more: a client sends no faster
+    than that. Raises FormatError, SpoolFull, and what ``chunks`` and ``check`` raise.
     """
     conversion.beside = workers.estimates()
-    async for piece in _pieces(chunks):
+    pieces = _pieces(chunks)
+    piece = await anext(pieces, None)
+    while piece is not None:
         check()
-        await on_worker(_write_all, spool, conversion, piece)
+        coming = asyncio.ensure_future(_next(pieces))
+        try:
+            await on_worker(_write_all, spool, conversion, piece)
+            piece = await coming
+        finally:
+            coming.cancel()
+            await asyncio.gather(coming, return_exceptions=True)
     rest = conversion.close()
     more = True
     while more:
@@ -54,13 +63,18 @@ def deadline(seconds: float, late: Callable[[], Exception]) -> Callable[[], None
     return check
 
 
+async def _next(pieces: AsyncIterator[bytes]) -> bytes | None:
+    return await anext(pieces, None)
+
+
 async def _pieces(chunks: AsyncIterator[bytes]) -> AsyncIterator[bytes]:
     """The same bytes, in pieces of one size."""
     waiting = bytearray()
     async for chunk in chunks:
         waiting += chunk
         while len(waiting) >= PIECE:
-            piece = bytes(waiting[:PIECE])
+            with memoryview(waiting) as view:
+                piece = bytes(view[:PIECE])
             del waiting[:PIECE]
             yield piece
     if waiting:

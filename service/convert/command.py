@@ -10,7 +10,7 @@ from typing import Any, NoReturn
 import click
 
 from service.batch_estimates import wanted_columns
-from service.convert.job import Job, Outcome, Refused, Wish, run
+from service.convert.job import Job, Outcome, Refused, Wish, run, stored_in
 from service.convert.plan import Ledger, into_folder, plan
 from service.convert.processes import run_all
 from service.convert.progress import Progress
@@ -18,11 +18,9 @@ from service.errors import Problem
 from service.formats import FORMATS
 from service.schemas.batch_query import PLACES, document_of, meaning
 from service.schemas.query import settings_of
-from service.settings import SettingsError, read_settings
-from service.stations.documents import Shelf
+from service.settings import SettingsError
 from service.stations.named import names_something, with_stored
 from service.store.errors import StoreError
-from service.store.opening import open_store
 
 BAD_INPUT = 2
 """Exit code for what the caller can mend."""
@@ -91,7 +89,8 @@ def convert(  # noqa: PLR0913, PLR0917 - click passes every option by name
         pairs += [_split(pair) for pair in extra]
         document = _described(document_of(pairs), data)
         settings_of(document)
-        wish = Wish(document, strict, wanted_columns(columns))
+        folder = None if data is None else str(data)
+        wish = Wish(document, strict, wanted_columns(columns), folder)
         jobs = plan(files, output, read, written)
     except Problem as problem:
         faults = "".join(f"\n  {fault.pointer}: {fault.detail}" for fault in problem.errors)
@@ -108,13 +107,7 @@ def _described(document: dict[str, Any], data: Path | None) -> dict[str, Any]:
     """The request with stored soils and probes in place of their names."""
     if not names_something(document):
         return document
-    settings = read_settings(**({} if data is None else {"data": data}))
-    store = open_store(settings)
-    try:
-        _, documents = Shelf(store).fresh()
-    finally:
-        store.close()
-    return with_stored(document, documents)
+    return with_stored(document, stored_in(None if data is None else str(data)))
 
 
 def _several(jobs: Sequence[Job], wish: Wish, folder: Path, processes: int | None, *, again: bool

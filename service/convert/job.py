@@ -11,12 +11,18 @@ from pathlib import Path
 from typing import IO, Any
 
 from models.errors import ModelError
+from service.answers.by_name import Grounds
 from service.batch import Conversion, Counts, convert_file
 from service.batch_estimates import APPENDED, TableEstimates
 from service.errors import Problem
 from service.formats import FORMATS
 from service.formats.errors import FormatError, SpoolFull
 from service.schemas.query import settings_of
+from service.settings import SettingsError, read_settings
+from service.stations.documents import Documents, Shelf
+from service.store.errors import StoreError
+from service.store.opening import open_store
+from service.store.sqlite import FILE
 
 
 class Refused(Exception):
@@ -31,6 +37,8 @@ class Wish:
     """As the JSON body of POST /v1/estimates, without readings."""
     strict: bool = False
     columns: tuple[str, ...] | None = None
+    data: str | None = None
+    """Folder of the store of soils and probes that rows may name; None: the usual one."""
 
     def digest(self) -> str:
         """The same for the same wishes."""
@@ -74,7 +82,8 @@ def run(
     beside: where estimates are made while another part of the table is read and written.
     """
     try:
-        estimates = TableEstimates(settings_of(wish.document))
+        settings = settings_of(wish.document)
+        estimates = TableEstimates(settings, grounds=lambda columns: _grounds(wish, columns))
         conversion = Conversion(
             FORMATS[job.read].decoder(APPENDED),
             FORMATS[job.written].encoder(),
@@ -88,10 +97,26 @@ def run(
     except Problem as problem:
         faults = "".join(f"\n  {fault.pointer}: {fault.detail}" for fault in problem.errors)
         raise Refused(f"{problem.detail}{faults}") from None
-    except (FormatError, ModelError, SpoolFull) as error:
+    except (FormatError, ModelError, SpoolFull, SettingsError, StoreError) as error:
         raise Refused(str(error)) from None
-    advice = tuple(f"{said.code}: {said.text}" for said in estimates.advice)
-    return Outcome(counts, advice)
+    advice = [f"{said.code}: {said.text}" for said in estimates.advice]
+    return Outcome(counts, (*advice, *(f"not-estimated: {text}" for text in estimates.troubles)))
+
+
+def stored_in(data: str | None) -> Documents:
+    """The soils and probes of a store. Raises SettingsError, StoreError."""
+    settings = read_settings(**({} if data is None else {"data": data}))
+    if not settings.database_url and not (settings.data / FILE).is_file():
+        return Documents()
+    store = open_store(settings)
+    try:
+        return Shelf(store).fresh()[1]
+    finally:
+        store.close()
+
+
+def _grounds(wish: Wish, columns: tuple[str, ...]) -> Grounds:
+    return Grounds(wish.document, stored_in(wish.data), columns)
 
 
 @contextmanager

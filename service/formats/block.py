@@ -96,6 +96,16 @@ class Block:
 
 
 @dataclass(frozen=True, slots=True)
+class Refusal:
+    """Cells that can be read, and name what cannot be used."""
+
+    column: str
+    rows: Marks
+    expected: str
+    mend: str = ""
+
+
+@dataclass(frozen=True, slots=True)
 class Answer:
     """What is appended to the rows of a block."""
 
@@ -103,6 +113,8 @@ class Answer:
     """In the unit of the answer, shape (n,), NaN: no number. The first is what was asked for;
     every block of a table has the same columns."""
     flags: Flags
+    refusals: tuple[Refusal, ...] = ()
+    """What strictness refuses besides cells that cannot be read."""
 
 
 class Decoder(Protocol):
@@ -140,13 +152,15 @@ class Encoder(Protocol):
         ...
 
 
-def refuse_first(block: Block, answer: Answer) -> None:
-    """Raise CellError for the first cell that cannot be read, or is missing and needed.
+def refuse_first(block: Block, answer: Answer, before: int = 0) -> None:
+    """Raise CellError for the first cell that cannot be read or used, or is missing and needed.
+
+    before: rows of the table before this block.
 
     A missing value was needed where the row has no number and no other flag says why.
     """
     unread = block.broken.copy()
-    for odd in block.unreadable.values():
+    for odd in (*block.unreadable.values(), *(refusal.rows for refusal in answer.refusals)):
         unread |= odd
     numbers = next(iter(answer.columns.values()), np.zeros(len(block)))
     missing = np.isnan(numbers) & ((answer.flags & _MISSING) != 0)
@@ -155,20 +169,35 @@ def refuse_first(block: Block, answer: Answer) -> None:
     if not refused.size:
         return
     row = int(refused[0])
-    line = int(block.lines[row])
+    line = None if block.batch is not None else int(block.lines[row])
+    where: Any = {"line": line, "row": before + row + 1}
     if block.broken[row]:
-        raise CellError("a row that fits the table", shown(block.records[row]), line=line)
+        raise CellError(_whole(block.header), shown(block.records[row]), **where)
     for name, odd in block.unreadable.items():
         if odd[row]:
-            raise CellError("a number", _shown_cell(block, name, row), line=line, column=name)
+            raise CellError("a number", _shown_cell(block, name, row), column=name, **where)
+    for refusal in answer.refusals:
+        if refusal.rows[row]:
+            raise CellError(refusal.expected, _shown_cell(block, refusal.column, row),
+                            column=refusal.column, mend=refusal.mend, **where)  # fmt: skip
     slugs = slugs_of(int(answer.flags[row] & _MISSING))
     name = slugs[0].partition(":")[2]
-    raise CellError("a number", "none", line=line, column=name, mend="the model needs it")
+    raise CellError("a number", "none", column=name, mend="the model needs it", **where)
+
+
+def _whole(header: Header) -> str:
+    """What a row of the table should be."""
+    count = len(header.names)
+    return (
+        f"{count} cell{'s' if count != 1 else ''}, as many as the header has"
+        if (header.form == "csv")
+        else "a JSON object"
+    )
 
 
 def _shown_cell(block: Block, name: str, row: int) -> str:
     cells = (column[row] for column in block.cells() if folded(column.name) == name)
-    return shown(next(cells))
+    return shown(next(cells, None) or "")
 
 
 _MISSING = np.bitwise_or.reduce([BIT[slug] for slug in BIT if slug.startswith("missing:")])

@@ -162,5 +162,6 @@ def _places(header: Header, appends: Collection[str], line: int) -> dict[str, in
     check_width(header.names, line)
     places = recognised(header.names, appends, line)
     check_separator(header.text, header.names, line)
-    check_permittivity(header.names, places, line)
+    if appends:  # what nothing is appended to is not estimated: any numbers will do
+        check_permittivity(header.names, places, line)
     return places

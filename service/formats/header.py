@@ -29,6 +29,15 @@ _DESCRIBES: Mapping[str, str] = MappingProxyType(
     }
 )
 _SYMBOLS = MappingProxyType({QUANTITIES[name].symbol.lower(): name for name in NUMBERS})
+_SAID = MappingProxyType(
+    dict.fromkeys(
+        ("permittivity", "dielectric_permittivity", "dielectric_constant", "epsilon", "dielectric"),
+        "apparent_permittivity",
+    )
+    | dict.fromkeys(("ec", "electrical_conductivity", "conductivity"), "bulk_conductivity")
+    | dict.fromkeys(("temp", "soil_temperature"), "temperature")
+)
+"""Other words for what is measured, where one of ours is most likely meant."""
 
 
 def folded(name: str) -> str:
@@ -67,6 +76,11 @@ def recognised(names: Sequence[str], appends: Collection[str], line: int) -> dic
     return found
 
 
+def meant_by(name: str) -> str | None:
+    """The quantity that people write so; None where no one is known."""
+    return _SAID.get(folded(name)) or _SYMBOLS.get(folded(name))
+
+
 def check_width(names: Sequence[str], line: int) -> None:
     """Raise HeaderError for more columns than are taken."""
     if len(names) > MOST_COLUMNS:
@@ -85,22 +99,28 @@ def check_separator(text: str, names: Sequence[str], line: int) -> None:
             )  # fmt: skip
 
 
-def check_permittivity(names: Sequence[str], found: Iterable[str], line: int) -> None:
-    """Raise HeaderError unless there is something to convert, with the column perhaps meant."""
+def check_permittivity(
+    names: Sequence[str], found: Iterable[str], line: int, kind: str = "column"
+) -> None:
+    """Raise HeaderError unless there is something to convert, with the column perhaps meant.
+
+    kind: what names stand on.
+    """
     if not any(name in NEEDED for name in found):
         listed = ", ".join(shown(name) for name in names[:20]) + (", ..." if names[20:] else "")
         raise HeaderError(
-            f"a column {' or '.join(NEEDED)}", f"the columns {listed}", line=line,
-            mend=_likely(names),
+            f"a {kind} {' or '.join(NEEDED)}", f"the {kind}s {listed}" if names else "none",
+            line=line,
+            mend=_likely(names, kind),
         )  # fmt: skip
 
 
-def _likely(names: Sequence[str]) -> str:
+def _likely(names: Sequence[str], kind: str) -> str:
     for written in names:
         name = folded(written)
-        meant = _SYMBOLS.get(name) or next(iter(get_close_matches(name[:80], NEEDED, n=1)), None)
+        meant = meant_by(name) or next(iter(get_close_matches(name[:80], NEEDED, n=1)), None)
         if meant in NEEDED:
             return f"is {shown(written)} the {meant}? then name it so"
     if any(name.strip()[:1].isdigit() for name in names):
         return "the first line must name the columns"
-    return "name the column that holds the permittivity so"
+    return f"name the {kind.rpartition(' ')[2]} that holds the permittivity so"

@@ -65,6 +65,23 @@ def encode_members(members: Mapping[str, JsonEstimates], shape: str) -> bytes:
     return b'"models":{' + b",".join(told) + b"}"
 
 
+def rows_of(answer: JsonEstimates) -> list[dict[str, Any]]:
+    """The answer row by row; NaN where there is no number."""
+    words, places = combinations(answer.flags)
+    told = [words[place] for place in places.tolist()]
+    cells = [*answer.texts.values(), *(values.tolist() for values in answer.numbers.values()), told]
+    names = (*answer.names, "flags")
+    return [dict(zip(names, row, strict=True)) for row in zip(*cells, strict=True)]
+
+
+def with_rest(rows: Sequence[Mapping[str, Any]], rest: bytes) -> bytes:
+    """Rows and what stands behind them.
+
+    rest: a JSON object without its opening brace.
+    """
+    return b'{"estimates":%b,%b' % (orjson.dumps(rows), rest)
+
+
 def tabulate(answer: JsonEstimates, media_type: str) -> bytes:
     """The estimates alone, as a table."""
     frame, text = _frame(answer), BytesIO()
@@ -83,11 +100,7 @@ def _rows(answer: JsonEstimates) -> bytes:
     """Row by row; a frame is worth its price only for many."""
     if len(answer.flags) > FEW:
         return _frame(answer).write_json().encode()
-    words, places = combinations(answer.flags)
-    told = [words[place] for place in places.tolist()]
-    cells = [*answer.texts.values(), *(values.tolist() for values in answer.numbers.values()), told]
-    names = (*answer.names, "flags")
-    return orjson.dumps([dict(zip(names, row, strict=True)) for row in zip(*cells, strict=True)])
+    return orjson.dumps(rows_of(answer))
 
 
 def _columns(answer: JsonEstimates) -> bytes:

@@ -15,6 +15,7 @@ from models.quantity import NOISE, QUANTITIES, READING
 from models.relation import Array
 from service.errors import Unprocessable
 from service.faults import Fault, nearest, pointer, shown
+from service.formats.header import meant_by
 
 TEXTS = tuple(name for name in READING if not QUANTITIES[name].unit)
 NUMBERS = (*(n for n in READING if QUANTITIES[n].unit), *(f"{n}_u" for n in NOISE))
@@ -49,7 +50,8 @@ def decode(readings: Any, *, most: int) -> JsonReadings:
         return _decode_rows(readings, most)
     if isinstance(readings, dict):
         return _decode_columns(readings, most)
-    _refuse([Fault("expected a list of objects or one object of arrays", "#/readings")])
+    expected = "expected a list of objects or one object of arrays"
+    _refuse([Fault(f"{expected}, found {shown(readings)}", "#/readings")])
     raise AssertionError  # pragma: no cover - the line above has raised
 
 
@@ -132,7 +134,7 @@ def _typed(
 
 
 def _stranger(name: str, place: str) -> Fault:
-    meant = nearest(name, KNOWN)
+    meant = meant_by(name) or nearest(name, KNOWN)
     hint = f"did you mean {meant}?" if meant else f"known are {', '.join(sorted(KNOWN))}"
     return Fault(f"unknown key {shown(name)}; {hint}", place)
 

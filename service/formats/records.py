@@ -13,9 +13,10 @@ import numpy as np
 import polars as pl
 from numpy.typing import NDArray
 
-from service.formats.errors import FormatError, RecordTooLong
+from service.formats.errors import MAGIC, FormatError, RecordTooLong, looks_like
 
-BLOCK_BYTES = 1 << 20
+BLOCK_BYTES = 768 << 10
+"""Some fifteen thousand rows of a logger: one block of the estimates."""
 LINE_BYTES = 1 << 20
 FIRST_BYTES = 64 << 10
 """The records that begin in so many bytes decide what is read of a table, whatever the block."""
@@ -183,7 +184,8 @@ class RecordCutter:
         for size in self._sizes:
             if len(self._waiting) < size and not last:
                 return None
-            window = bytes(self._waiting[:size])
+            with memoryview(self._waiting) as waiting:
+                window = bytes(waiting[:size])
             ends = self._find(window)
             if len(ends.places):
                 return self._cut(window, ends)
@@ -229,6 +231,8 @@ class RecordCutter:
             if error.end == len(text) and "unexpected end" in error.reason:
                 return
             line, found = self._line + text.count(b"\n", 0, at), f"the byte 0x{text[at]:02x}"
+            if self._line == 1 and (meant := looks_like(text[:MAGIC])):
+                raise FormatError("text in UTF-8", meant) from None
             raise FormatError("UTF-8", found, line=line, mend="save the table as UTF-8") from None
 
     def _too_long(self, line: int, mend: str = "") -> RecordTooLong:

@@ -1,15 +1,18 @@
 """POST /v1/estimates: readings in, water content with its band out."""
 
+from functools import lru_cache
 from typing import Any
 
 import anyio.to_thread
 import orjson
 from fastapi import APIRouter, Request
 from fastapi.responses import Response
+from starlette.requests import ClientDisconnect
 
 from service.answers import answer_document
+from service.answers.few import COSTLY, few_readings
 from service.errors import Malformed, Unprocessable, UnsupportedMediaType
-from service.faults import Fault
+from service.faults import Fault, nearest, shown
 from service.formats import MEDIA_TYPES, format_of
 from service.negotiate import choose
 from service.routes.estimates_description import DESCRIPTION
@@ -17,14 +20,14 @@ from service.routes.tables import answer_table, described
 
 router = APIRouter(tags=["estimates"])
 
+PATH = "/v1/estimates"
 JSON = "application/json"
-INLINE = 10_000
+EXAMPLE = '{"readings": [{"apparent_permittivity": 17.2, "temperature": 14.1}]}'
+INLINE = 1_000
 """Readings up to which the answer is worked out at once; more of them go to a thread."""
-COSTLY = frozenset({"raw_records", "propagation", "budget", "validate", "explain"})
-"""Keys that may make few readings costly."""
 
 
-@router.post("/v1/estimates", summary="Water content with its band", openapi_extra=DESCRIPTION)
+@router.post(PATH, summary="Water content with its band", openapi_extra=DESCRIPTION)
 async def post_estimates(request: Request) -> Response:
     """Water content of each reading, with its standard uncertainty, interval and flags."""
     media_type = request.headers.get("content-type", "")
@@ -34,17 +37,39 @@ async def post_estimates(request: Request) -> Response:
     if media_type.partition(";")[0].strip().lower() != JSON:
         accepted = ", ".join((JSON, *MEDIA_TYPES.values()))
         raise UnsupportedMediaType(
-            f"expected a Content-Type of {accepted}, found {media_type[:80] or 'none'}",
+            f"expected a Content-Type of {accepted}, found {media_type[:80] or 'none'}"
+            f"{_instead(media_type)}",
             headers={"Accept": accepted},
         )
-    offered = {"json": JSON, **MEDIA_TYPES}
-    answered = choose(request.headers.get("accept"), request.query_params.get("format"), offered)
-    _refuse_query(request)
-    document = await described(request, _parsed(await request.body()))
+    if request.scope["query_string"]:
+        _refuse_query(request)
+    answered = _answered(request.headers.get("accept"), request.query_params.get("format"))
+    document = await described(request, _parsed(await _body(request)))
     limits = request.app.state.settings
+    few = few_readings(document, limits.json_readings) if answered == JSON else None
+    if few is not None:
+        return await request.app.state.together.ask(*few)
     if _count(document["readings"]) <= INLINE and not COSTLY & document.keys():
         return answer_document(document, answered, limits)
     return await anyio.to_thread.run_sync(answer_document, document, answered, limits)
+
+
+@lru_cache(64)
+def _answered(accept: str | None, format_name: str | None) -> str:
+    return choose(accept, format_name, {"json": JSON, **MEDIA_TYPES})
+
+
+async def _body(request: Request) -> bytes:
+    """All of the body; most come in one piece."""
+    pieces: list[bytes] = []
+    more = True
+    while more:
+        message = await request.receive()
+        if message["type"] != "http.request":
+            raise ClientDisconnect
+        pieces.append(message.get("body", b""))
+        more = message.get("more_body", False)
+    return b"".join(pieces)
 
 
 def _count(readings: Any) -> int:
@@ -52,6 +77,15 @@ def _count(readings: Any) -> int:
     if isinstance(readings, dict):
         readings = next(iter(readings.values()), ())
     return len(readings) if isinstance(readings, list) else 0
+
+
+def _instead(media_type: str) -> str:
+    """What to do about some media types that are not read."""
+    if media_type.startswith("application/x-www-form-urlencoded"):
+        return "; with curl: -H 'Content-Type: application/json'"
+    if media_type.startswith("application/vnd.apache.arrow.file"):
+        return "; write the table as an Arrow stream"
+    return ""
 
 
 def _refuse_query(request: Request) -> None:
@@ -62,6 +96,8 @@ def _refuse_query(request: Request) -> None:
 
 
 def _parsed(body: bytes) -> dict[str, Any]:
+    if not body.strip():
+        raise Malformed(f"the body is not JSON, but empty; expected an object such as {EXAMPLE}")
     try:
         document = orjson.loads(body)
     except orjson.JSONDecodeError as error:
@@ -70,7 +106,10 @@ def _parsed(body: bytes) -> dict[str, Any]:
             hint = "; JSON has no NaN and no Infinity: send null where there is no number"
         raise Malformed(f"the body is not JSON: {error}{hint}") from None
     if not isinstance(document, dict):
-        raise Unprocessable("expected an object", [Fault("expected an object", "#")])
+        detail = f"expected an object such as {EXAMPLE}, found {shown(document)}"
+        raise Unprocessable(detail, [Fault(detail, "#")])
     if "readings" not in document:
-        raise Unprocessable("readings is missing", [Fault("readings is missing", "#/readings")])
+        meant = nearest("readings", document)
+        detail = f"readings is missing{f': is {shown(meant)} meant?' if meant else ''}"
+        raise Unprocessable(detail, [Fault(detail, "#/readings")])
     return document

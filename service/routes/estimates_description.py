@@ -4,7 +4,7 @@ from typing import Any
 
 from service.formats import MEDIA_TYPES
 from service.schemas.batch_query import ASIDE, PLACES, TEXTS, meaning
-from service.schemas.estimates import answer_schema, request_schema
+from service.schemas.estimates_described import answer_schema, request_schema
 
 
 def _parameter(name: str) -> dict[str, Any]:
@@ -25,7 +25,10 @@ DESCRIPTION: dict[str, Any] = {
         "required": True,
         "description": "JSON says everything in its body. A table (CSV, NDJSON, Arrow, "
         "Parquet) holds readings only, everything else stands in the query; its other columns pass "
-        "through. NDJSON: keys on lines that begin in the first 64 KiB decide what is read. "
+        "through. Columns `soil` and `probe` name what is stored, row by row: an empty cell stands "
+        "for what the query describes, a name that is not stored gives its row the flag "
+        "not-estimated, and all tables with such a column get the same columns. "
+        "NDJSON: keys on lines that begin in the first 64 KiB decide what is read. "
         "`columns` names what a table is to get.",
         "content": {
             "application/json": {"schema": request_schema()},
@@ -38,6 +41,11 @@ DESCRIPTION: dict[str, Any] = {
             "headers": {
                 "Row-Count": {"schema": {"type": "integer"}, "description": "rows of a table"},
                 "Flagged-Count": {"schema": {"type": "integer"}, "description": "with a flag"},
+                "Not-Estimated": {
+                    "schema": {"type": "string"},
+                    "description": "soils and probes that rows name and that cannot be used, each "
+                    "with its first line",
+                },
             },
             "content": {
                 "application/json": {"schema": answer_schema()},

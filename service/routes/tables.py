@@ -8,6 +8,7 @@ import anyio.to_thread
 from fastapi import FastAPI, Request
 from fastapi.responses import Response
 
+from service.answers.by_name import Grounds
 from service.batch import Conversion, Spool, SpooledResponse, Stages, convert_stream, deadline
 from service.batch_estimates import APPENDED, TableEstimates, wanted_columns
 from service.errors import Problem, Stalled, TooLarge, Unavailable, Unprocessable
@@ -18,6 +19,7 @@ from service.negotiate import VARY, choose
 from service.schemas.batch_query import document_of
 from service.schemas.query import settings_of
 from service.settings import Settings
+from service.stations.documents import Shelf
 from service.stations.named import names_something, with_stored
 
 
@@ -28,8 +30,12 @@ async def answer_table(request: Request, sent: Format) -> Response:
     preferred = {sent.key: sent.media_type, **MEDIA_TYPES}
     answered = choose(request.headers.get("accept"), query.get("format"), preferred)
     document = await described(request, document_of(query.multi_items()))
-    settings = settings_of(document)
-    table = TableEstimates(settings, limits.drawn_values)
+    shelf: Shelf = request.app.state.shelf
+
+    def grounds(columns: tuple[str, ...]) -> Grounds:
+        return Grounds(document, shelf.fresh()[1], columns)
+
+    table = TableEstimates(settings_of(document), limits.drawn_values, grounds)
     target = next(f for f in FORMATS.values() if f.media_type == answered)
     conversion = Conversion(
         sent.decoder(APPENDED, block_bytes=limits.block_bytes, line_bytes=limits.line_bytes),

@@ -43,6 +43,8 @@ def surroundings_echo(query: Query, settings: EstimatesSettings) -> dict[str, An
     }
 
 
+MOST_GROUNDS = 20
+"""Soils and probes of a table that a header can tell."""
 NOT_BRIEF = frozenset({"advisories", "mixing_models", "not_answering", "raw_records"})
 """Too long for a header, many of which end at 4 or 8 KiB on their way."""
 
@@ -65,6 +67,35 @@ def headers_of(echo: Mapping[str, Any], units: Mapping[str, str]) -> dict[str, s
         "Units": ", ".join(f"{name}={unit}" for name, unit in units.items()),
         "Advisories": ", ".join(codes),
         "Estimate-Basis": json.dumps(constants, separators=(",", ":")),
+    }
+
+
+def headers_of_several(
+    used: Iterable[tuple[Mapping[str, str], Mapping[str, int], Any]],
+    codes: Iterable[str],
+    units: Mapping[str, str],
+) -> dict[str, str]:
+    """What a table cannot say in its cells, where its rows name their soils and probes.
+
+    used: names of soil and probe, their revisions, and the basis of the rows that name them.
+    """
+    models: dict[str, None] = {}
+    grounds: list[dict[str, Any]] = []
+    for named, revisions, basis in used:
+        told: dict[str, Any] = {kind: name for kind, name in named.items() if name}
+        told["revision"] = max(revisions.values(), default=None)
+        model = getattr(basis, "model", None)
+        told["mixing_model"] = model.key if model else "all"
+        models[told["mixing_model"]] = None
+        salinity = getattr(basis, "salinity", None)
+        if salinity is not None:
+            told["pore_water_model"] = salinity.model.key
+        grounds.append(told)
+    return {
+        "Mixing-Model": ", ".join(models),
+        "Units": ", ".join(f"{name}={unit}" for name, unit in units.items()),
+        "Advisories": ", ".join(dict.fromkeys(codes)),
+        "Estimate-Basis": json.dumps(grounds[:MOST_GROUNDS], separators=(",", ":")),
     }
 
 

@@ -50,7 +50,7 @@ PROBLEM: dict[str, Any] = {
         "type": "/problems/unprocessable",
         "title": "The request can be read, but not computed as asked",
         "status": 422,
-        "detail": "the request has 1 item that cannot be used",
+        "detail": "#/soil/clay: expected a number, found true",
         "request_id": "3f0c9a52d7f44c5f8f5e4b7c7a4b2f10",
         "errors": [{"detail": "expected a number, found true", "pointer": "#/soil/clay"}],
     },

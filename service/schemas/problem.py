@@ -45,7 +45,7 @@ class Problem(HTTPException):
             "type": f"/problems/{self.slug}",
             "title": self.title(),
             "status": self.status,
-            "detail": self.detail,
+            "detail": self._first(),
             "request_id": request_id,
         }
         if self.errors:
@@ -53,3 +53,10 @@ class Problem(HTTPException):
         if len(self.errors) > MOST_FAULTS:
             body["errors_not_shown"] = len(self.errors) - MOST_FAULTS
         return body
+
+    def _first(self) -> str:
+        """The detail, or the first of the items where the detail does not tell it."""
+        if not self.errors or self.errors[0].detail in self.detail:
+            return self.detail
+        first, more = self.errors[0], len(self.errors) - 1
+        return f"{first.pointer}: {first.detail}" + (f"; and {more} more" if more else "")

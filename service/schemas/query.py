@@ -87,6 +87,15 @@ def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis | Eve
     return prepare(query) if name else choose(query)
 
 
+def refuse_unknown_names(settings: EstimatesSettings) -> None:
+    """Raise ParameterError for units and models that are none, whatever soil they are meant for."""
+    refuse_units(settings.units)
+    model_of("mixing_model", MIXING_MODELS, settings.mixing_model, settings.units)
+    model_of("pore_water_model", PORE_WATER_MODELS, settings.pore_water_model, settings.units)
+    compensation = ("temperature_compensation",)
+    named_in(TEMPERATURE_COMPENSATIONS, settings.temperature_compensation, compensation)
+
+
 def named_in(registry: Registry[Any], name: str, place: tuple[str, ...]) -> Any:
     """The member of that name.
 

@@ -25,6 +25,8 @@ def main():
     levels = traces(late.start, late.step, np.repeat(late.rho, MANY, axis=0))
     one = Record(drawn.rows(np.array([0])), levels.rows(np.array([0])))
     saline = noisy([(soil(0.30, 0.2), 1.0)], 0.0015, 1, seed=1, points=POINTS)
+    wet_clay = soil(0.35, 0.05, 0.5, clay=((10, 40e6), (4, 300e6)))
+    clay = noisy([(wet_clay, 1.0)], 0.0015, 1, seed=1, points=POINTS)
     sample = drawn.rho[0]
     calm = quiet()
     found = medians({
@@ -33,6 +35,7 @@ def main():
         "many": lambda: by_travel_time(Record(drawn, levels), bench, known),
         "whole": lambda: by_whole_trace(one, bench, known),
         "saline": lambda: by_whole_trace(Record(saline), bench, known),
+        "clay": lambda: by_whole_trace(Record(clay), bench, known),
     })  # fmt: skip
     once = found["pass"]
     milliseconds = {"pass_ms": 1e3 * once, "calm": calm}
@@ -42,7 +45,7 @@ def main():
     report("1000 traces in one call, each, in smoothing passes", found["many"] / MANY / once,
            "vectorised: below one trace alone", case_ms=1e3 * found["many"],
            alone=found["one"] / once, **milliseconds)  # fmt: skip
-    for name in ("whole", "saline"):
+    for name in ("whole", "saline", "clay"):
         report(f"inversion of a whole trace ({name}), in smoothing passes", found[name] / once,
                "below 1000", case_ms=1e3 * found[name], **milliseconds)  # fmt: skip
 

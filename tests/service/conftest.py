@@ -86,7 +86,8 @@ def start(tmp_path: Path) -> Iterator[Callable[..., Service]]:
 
 
 @pytest.fixture(scope="session")
-def echo() -> Iterator[httpx2.Client]:
+def echo(tmp_path_factory: pytest.TempPathFactory) -> Iterator[httpx2.Client]:
     """A service with small limits whose POST routes answer with what arrived."""
-    with running(echo_app()) as base_url, httpx2.Client(base_url=base_url, timeout=20) as client:
+    app = echo_app(tmp_path_factory.mktemp("echo"))
+    with running(app) as base_url, httpx2.Client(base_url=base_url, timeout=20) as client:
         yield client

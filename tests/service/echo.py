@@ -5,6 +5,7 @@ import socket
 import threading
 from collections.abc import Iterator
 from contextlib import contextmanager
+from pathlib import Path
 
 import uvicorn
 from fastapi import APIRouter, Request
@@ -55,8 +56,9 @@ async def fail_on_parameter() -> None:
     raise ParameterError("crim", [Complaint("porosity", "needs porosity (share of pores)")])
 
 
-def echo_app() -> ASGIApp:
+def echo_app(data: Path) -> ASGIApp:
     settings = Settings(
+        data=data,
         json_body_bytes=LIMIT,
         batch_body_bytes=BATCH_LIMIT,
         wire_body_bytes=BATCH_LIMIT // 10,

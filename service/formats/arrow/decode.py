@@ -15,16 +15,16 @@ from typing import IO
 import pyarrow as pa
 import pyarrow.parquet as pq
 
+from service.formats.arrow.bounded import ROWS, bounded, check_types, written_out
 from service.formats.arrow.columns import block_of
 from service.formats.arrow.messages import check_messages
+from service.formats.arrow.pages import check_pages
 from service.formats.block import Block, Header
-from service.formats.errors import FormatError, shown
+from service.formats.errors import MAGIC, FormatError, looks_like, shown
 from service.formats.header import check_permittivity, check_width, recognised
 from service.formats.records import BLOCK_BYTES, LINE_BYTES
 from service.formats.spool import write_to
 
-ROWS = 16_384
-"""Rows of a block."""
 PAGES = 1 << 20
 """Bytes of a Parquet column that are read at a time."""
 
@@ -38,13 +38,15 @@ class TypedDecoder:
         self,
         key: str,
         promised: str,
+        begins: bytes,
         opened: Callable[[IO[bytes]], Opened],
         appends: Collection[str],
         *,
         block_bytes: int = BLOCK_BYTES,  # noqa: ARG002 - blocks are cut by rows here
         line_bytes: int = LINE_BYTES,  # noqa: ARG002
     ) -> None:
-        self._key, self._promised, self._opened, self._appends = key, promised, opened, appends
+        self._key, self._promised, self._begins = key, promised, begins
+        self._opened, self._appends = opened, appends
         self._file: IO[bytes] = tempfile.TemporaryFile()  # noqa: SIM115 - closed by the next line
         weakref.finalize(self, self._file.close)
 
@@ -59,6 +61,8 @@ class TypedDecoder:
             raise FormatError(self._promised, "an empty body")
         self._file.flush()
         self._file.seek(0)
+        self._check_beginning(self._file.read(MAGIC))
+        self._file.seek(0)
         try:
             yield from self._blocks()
         except (pa.ArrowException, OSError, ValueError) as error:
@@ -68,18 +72,24 @@ class TypedDecoder:
         finally:
             self._file.close()
 
+    def _check_beginning(self, begin: bytes) -> None:
+        if not begin.startswith(self._begins):
+            found = looks_like(begin) or f"bytes that begin with {shown(begin.decode('latin-1'))}"
+            raise FormatError(self._promised, found)
+
     def _blocks(self) -> Iterator[Block]:
         schema, batches = self._opened(self._file)
+        check_types(schema)
         names = tuple(schema.names)
         check_width(names, line=1)
         places = recognised(names, self._appends, line=1)
-        check_permittivity(names, places, line=1)
+        if self._appends:  # what nothing is appended to is not estimated: any numbers will do
+            check_permittivity(names, places, line=1)
         header = Header(names, self._key, schema=schema)
         row = 1
         for batch in batches:
-            for start in range(0, batch.num_rows, ROWS):
-                some = batch.slice(start, ROWS)
-                yield block_of(some, header, places, row)
+            for some in bounded(batch):
+                yield block_of(written_out(some, schema), header, places, row)
                 row += some.num_rows
         if row == 1:
             yield block_of(_no_rows(schema), header, places, row)
@@ -108,9 +118,13 @@ def _checked(reader: pa.RecordBatchReader, mapped: mmap.mmap) -> Iterator[pa.Rec
 
 
 def _parquet(file: IO[bytes]) -> Opened:
-    table = pq.ParquetFile(file, buffer_size=PAGES)
-    return table.schema_arrow, table.iter_batches(batch_size=ROWS, use_threads=False)
+    metadata = pq.read_metadata(file)
+    with mmap.mmap(file.fileno(), 0, access=mmap.ACCESS_READ) as mapped, memoryview(mapped) as data:
+        long = check_pages(data, metadata)
+    schema = pq.ParquetFile(file, metadata=metadata).schema_arrow
+    table = pq.ParquetFile(file, metadata=metadata, buffer_size=PAGES, read_dictionary=long)
+    return schema, table.iter_batches(batch_size=ROWS, use_threads=False)
 
 
-ArrowDecoder = partial(TypedDecoder, "arrow", "an Arrow stream", _stream)
-ParquetDecoder = partial(TypedDecoder, "parquet", "a Parquet file", _parquet)
+ArrowDecoder = partial(TypedDecoder, "arrow", "an Arrow stream", b"\xff\xff\xff\xff", _stream)
+ParquetDecoder = partial(TypedDecoder, "parquet", "a Parquet file", b"PAR1", _parquet)

@@ -106,7 +106,7 @@ def test_an_answer_that_is_not_complete_is_not_there(folder):
     target.write_bytes(b"of yesterday")
     code, _, told = convert(folder / "in" / "a.csv", "-o", target, "--strict")
     assert code == 2
-    assert "line 3, column apparent_permittivity: expected a number, found 'warm'" in told
+    assert "line 3 (row 2), column apparent_permittivity: expected a number, found 'warm'" in told
     assert target.read_bytes() == b"of yesterday"
     assert sorted(path.name for path in folder.iterdir()) == ["a_out.csv", "in"]
 

@@ -1,11 +1,14 @@
 """Several processes, their numbers together, and how they end."""
 
 import http.client
+import os
 import re
 import signal
+import socket
 import threading
 import time
-from contextlib import closing, contextmanager
+from contextlib import closing, contextmanager, suppress
+from pathlib import Path
 
 import httpx2
 import pytest
@@ -167,3 +170,44 @@ def wait_for(holds):
     while time.monotonic() < end and not holds():
         time.sleep(0.02)
     return holds()
+
+
+@pytest.mark.parametrize("workers", [1, 2])
+def test_a_second_signal_ends_what_is_under_way(start, workers):
+    service = start(workers=workers)
+    head = b"POST /v1/estimates HTTP/1.1\r\nHost: x\r\nContent-Type: text/csv\r\n"
+    with socket.create_connection(service.address, timeout=20) as connection:
+        connection.sendall(head + b"Content-Length: 1000\r\n\r\napparent_permittivity\n")
+        time.sleep(0.5)
+        service.process.send_signal(signal.SIGTERM)
+        time.sleep(1.0)
+        assert service.process.poll() is None
+        service.process.send_signal(signal.SIGTERM)
+        service.process.wait(15)
+
+
+def test_a_table_whose_process_died_is_worked_on_no_more(start):
+    service = start(workers=2)
+    head = b"POST /v1/estimates HTTP/1.1\r\nHost: x\r\nContent-Type: text/csv\r\n"
+    with socket.create_connection(service.address, timeout=20) as connection:
+        connection.sendall(head + b"Content-Length: 1000\r\n\r\napparent_permittivity\n")
+        until(lambda: numbers(service)["gleyline_tables"] == 1)
+        children = Path(f"/proc/{service.process.pid}/task/{service.process.pid}/children")
+        workers = [pid for pid in map(int, children.read_text().split()) if is_worker(pid)]
+        for pid in workers:
+            os.kill(pid, signal.SIGKILL)
+        until(lambda: numbers(service)["gleyline_tables"] == 0)
+
+
+def is_worker(pid):
+    return b"spawn_main" in Path(f"/proc/{pid}/cmdline").read_bytes()
+
+
+def until(holds, seconds=20):
+    end = time.monotonic() + seconds
+    while time.monotonic() < end:
+        with suppress(httpx2.TransportError, KeyError):
+            if holds():
+                return
+        time.sleep(0.1)
+    raise AssertionError("it never held")

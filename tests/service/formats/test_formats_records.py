@@ -101,7 +101,9 @@ def test_bytes_that_are_not_utf_8_are_told_by_their_line():
     body = "a,b\n1,2\n3,M\u00fcnde\n".encode("latin-1")
     with pytest.raises(FormatError, match="line 3: expected UTF-8, found the byte 0xfc: save the"):
         records_of([body], block_bytes=3)
-    with pytest.raises(FormatError, match="line 1: expected UTF-8, found the byte 0xff"):
+    with pytest.raises(
+        FormatError, match="line 1: expected text in UTF-8, found UTF-16 text: save"
+    ):
         records_of(["a,b\n1,2\n".encode("utf-16")])
 
 

@@ -36,10 +36,10 @@ def test_it_serves_and_says_where_in_one_line(start):
     assert line.endswith(f"gleyline {__version__} serves {service.base_url}")
 
 
-def test_a_port_that_is_taken_ends_it_with_a_reason():
+def test_a_port_that_is_taken_ends_it_with_a_reason(tmp_path):
     with socket.create_server(("127.0.0.1", 0)) as taken:
         port = str(taken.getsockname()[1])
-        ended = gleyline("serve", "--port", port)
+        ended = gleyline("serve", "--port", port, "--data", str(tmp_path))
     assert ended.returncode != 0
     assert f"port {port}; another program has it" in ended.stderr
     assert "Traceback" not in ended.stderr
