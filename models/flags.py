@@ -169,15 +169,20 @@ FLAGS: Registry[Flag] = Registry(
     Flag(key="no-upper-end", condition="Of the errors that are possible, more than the band leaves "
          "out above leave the pore-water model without an end (a permittivity at its offset, water "
          "content at zero), or the end would be above 25 S/m, what saturated brine conducts.",
-         text="The conductivity of the pore water, or of the extract, has no upper bound that "
-         "these readings could tell: that end of the band is empty.",
-         reason="Division by what may be zero; a finite end would be made up.",
+         text="These readings tell no upper end for pore water or extract: it is empty.",
+         reason="Division by what may be zero; a finite end would be made up.", keeps_number=True),
+    Flag(key="no-lower-end", condition="Of the errors that are possible, more than the band leaves "
+         "out below leave no salt at all: surfaces alone would conduct as the soil does.",
+         text="The conductivity of the pore water, or of the extract, cannot be told from none: "
+         "the lower end of its band is 0.",
+         reason="Surface conduction and bulk conductivity are each known to a width, and differ by "
+         "less than both.", keeps_number=True),
+    Flag(key="pore-water-from-draws", condition="The chain from the reading to the pore water, or "
+         "to the extract, bends so much within its uncertainty that only draws tell the band.",
+         text="The band of pore water or extract is that of shared quasi-random draws.",
+         reason="In rows without this flag bands are first order where nothing bends, else the "
+         "curve of each input, taken together by inverse first-order reliability.",
          keeps_number=True),
-    Flag(key="pore-water-from-draws", condition="The chain from the reading to the pore water "
-         "bends so much within its uncertainty that only draws tell the band.",
-         text="The bands of pore water and extract are those of shared quasi-random draws.",
-         reason="In rows without this flag they follow the curve of each input, taken together by "
-         "inverse first-order reliability.", keeps_number=True),
     Flag(key="outside-water-range", condition="The temperature or frequency is outside the range "
          "of the water model.",
          text="The permittivity of water is less well known here.",

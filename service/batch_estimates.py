@@ -7,7 +7,7 @@ import numpy as np
 
 from models.advisories import Advice
 from models.conversion import from_si
-from models.estimate import Basis, Estimates, Remarks, columns_of, estimate
+from models.estimate import Basis, Estimates, Remarks, columns_of, estimate, without_extract
 from models.estimate.beside.ensemble import COLUMNS, EveryModel
 from models.flags import BIT
 from models.quantity import band_names
@@ -23,8 +23,9 @@ from service.schemas.echo_beside import ensemble_echo
 from service.schemas.estimates import ALL, EstimatesSettings, model_name
 from service.schemas.query import basis_of
 
+EXTRACT = "saturation_extract_conductivity"
 CONDUCTIVITIES = ("bulk_conductivity_25", "pore_water_conductivity",
-                  "saturation_extract_conductivity")  # fmt: skip
+                  EXTRACT)  # fmt: skip
 APPENDED = frozenset({
     "conduction_correction",
     "model_spread",
@@ -61,8 +62,10 @@ class TableEstimates:
         settings: EstimatesSettings,
         drawn_values: int | None = None,
         grounds: Callable[[tuple[str, ...]], Grounds] | None = None,
+        wanted: Sequence[str] | None = None,
     ) -> None:
         """drawn_values: the limit on draws times readings times models, where there is one.
+        wanted: the columns that are asked for; None: all.
 
         grounds: makes what the rows rest on, from the columns that are read, for a table whose
         rows name their soil or probe; None: such a column passes through.
@@ -71,8 +74,10 @@ class TableEstimates:
         self.rows = 0
         self.columns: tuple[str, ...] = ()
         self.basis: Basis | EveryModel | None = None
+        self._worked: Basis | EveryModel | None = None
         self.remarks = Remarks()
         self._make = grounds
+        self._extract = wanted is None or any(name.startswith(EXTRACT) for name in wanted)
         self._naming: tuple[str, ...] = ()
         self._grounds: Grounds | None = None
         self._begun = False
@@ -103,11 +108,13 @@ class TableEstimates:
         if self._make and named:
             self._naming, self._grounds = named, self._make(self.columns)
         else:
-            self.basis = basis_of(self.settings, self.columns)
+            self.basis = self._worked = basis_of(self.settings, self.columns)
+            if isinstance(self.basis, Basis) and not self._extract:
+                self._worked = without_extract(self.basis)
 
     def _by_request(self, block: Block) -> Answer:
-        assert self.basis is not None  # noqa: S101 - settled at the first block
-        result = _estimated(block.readings(self.settings.units), self.basis)
+        assert self._worked is not None  # noqa: S101 - settled at the first block
+        result = _estimated(block.readings(self.settings.units), self._worked)
         return Answer(result.columns, result.flags)
 
     def _by_name(self, block: Block) -> Answer:

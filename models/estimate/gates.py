@@ -7,7 +7,7 @@ from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
 from models.estimate.permittivity import Permittivity
-from models.estimate.salt.conductivities import Conductivities
+from models.estimate.salt.conductivities import EXTRACT, PORE, Conductivities
 from models.estimate.salt.pore_water import PoreWater
 from models.estimate.surroundings import Surroundings
 from models.estimate.water_content import CONSISTENT, WaterContent
@@ -129,10 +129,11 @@ def _flag_spreads(
 ) -> None:
     """How the ends of both bands were found, and where there is none."""
     draws = basis.query.draws
-    for spread in (salt.pore, salt.extract):
+    for name, spread in ((PORE, salt.pore), (EXTRACT, salt.extract)):
         if spread is None:
             continue
-        _set(flags, known & spread.unbounded, "no-upper-end")
+        _set(flags, known & np.isnan(salt.columns[f"{name}_upper"]), "no-upper-end")
+        _set(flags, known & (salt.columns[f"{name}_lower"] == 0.0), "no-lower-end")
         if draws is None:
             _set(flags, known & (spread.method == Method.DRAWS), "pore-water-from-draws")
         else:

@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 
 from models.estimate.equation import OWN, Equation
 from models.relation import Array
-from models.uncertainty.coverage import Interval, coverage_factor
+from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval
 from models.uncertainty.distributions import Normal
 from models.uncertainty.draws import Draws
 from models.uncertainty.first_order import Propagated
@@ -81,7 +81,9 @@ def by_quantiles(
     some = equation.rows(rows)
     every = some.distributions(own[rows], own[rows]) | {OWN: Normal(0.0, own[rows])}
     found = band(some, every, probability=equation.basis.query.probability)
-    below, above = (found.value - found.lower) / z, (found.upper - found.value) / z
+    # An end on the wrong side of the value is one that the value itself lies beyond.
+    below = np.maximum(found.value - found.lower, 0.0) / z
+    above = np.maximum(found.upper - found.value, 0.0) / z
     if lean is not None:
         below = np.sqrt(np.square(below) + np.square(lean[rows]))
     lower, upper = plain.below.copy(), plain.above.copy()
@@ -103,7 +105,7 @@ def by_draws(
     """JCGM 101: draws of every input; draws with an impossible water content are left out.
 
     The interval is the shortest one of the draws that are left, and reaches to the value where
-    that lies outside it.
+    that lies outside it. Rows of which hardly any draw is left keep first order.
     """
     query = equation.basis.query
     reach = own if lean is None else np.sqrt(np.square(own) + np.square(lean))
@@ -125,16 +127,18 @@ def by_draws(
         probability=query.probability,
         interval="shortest",
     )
-    method[rows] = Method.DRAWS
-    lower, upper, standard = (np.full(computed.shape, np.nan) for _ in range(3))
     outside = np.zeros(computed.shape, dtype=np.intp)
-    lower[rows], upper[rows] = (
-        np.minimum(found.lower, peak[rows]),
-        np.maximum(found.upper, peak[rows]),
+    outside[rows] = found.outside
+    told = np.isfinite(found.lower) & np.isfinite(found.standard_uncertainty)
+    at, standard = rows[told], plain.standard_uncertainty.copy()
+    without = shortest_interval(
+        computed, plain.below, plain.above, low=0.0, high=high, probability=query.probability
     )
-    standard[rows], outside[rows] = found.standard_uncertainty, found.outside
+    lower, upper = without.lower, without.upper
+    lower[at] = np.minimum(found.lower[told], peak[at])
+    upper[at] = np.maximum(found.upper[told], peak[at])
+    standard[at], method[at] = found.standard_uncertainty[told], Method.DRAWS
     z = coverage_factor(query.probability)
-    below = np.where(np.isnan(lower), plain.below, (peak - lower) / z)
-    above = np.where(np.isnan(upper), plain.above, (upper - peak) / z)
-    below, above = np.maximum(below, plain.below), np.maximum(above, plain.above)
+    below, above = np.maximum((peak - lower) / z, plain.below), (upper - peak) / z
+    above = np.maximum(above, plain.above)
     return Spread(below, above, standard, method, outside), Interval(lower, upper, peak)

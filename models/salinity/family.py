@@ -37,7 +37,7 @@ class Discrepancy:
     clay: float
     reason: str
     floor: float = 0.01
-    """S/m; no answer is better known than this."""
+    """S/m; what an answer may be off by in fresh water, where a share of it would be nothing."""
     fitted: float | None = None
     """In place of all three, once every one of ``fitted_parameters`` is the site's own."""
     fitted_parameters: tuple[str, ...] = ()

@@ -13,7 +13,7 @@ from models.series.bounds import Bounds
 from models.series.rules import MEAN_RULES
 from models.series.series import Series
 from models.series.time_weights import time_weights
-from models.uncertainty.aggregation import Aggregate, Labels, weighted_mean
+from models.uncertainty.aggregation import Labels, mean_band, weighted_mean
 
 
 @dataclass(frozen=True, slots=True)
@@ -67,12 +67,13 @@ def resample(
         i + 1. Bins may differ in length, as days do.
     step: s, how far apart readings are expected. gap: s, how far apart neighbouring readings may be
         and still be joined by a line (``time-weighted``).
-    bounds: what is physically possible, in the unit of the values, and the probability of bands.
+    bounds: what is physically possible, in the unit of the values, and the probability of bands,
+        for rows that state no ends of their own.
 
     A time-weighted mean takes in lines from readings just outside: give rows from ``gap`` before
     the first edge to ``gap`` after the last, so that a bin does not depend on what was asked
     beside it. The uncertainty of a mean keeps what its readings share; it does not hold what
-    happened between them.
+    happened between them. The band of a mean of one is that reading's own.
     Raises ParameterError when edges do not rise, or step or gap is not positive; UnknownName for
     a rule that is none.
     """
@@ -103,7 +104,7 @@ def resample(
         flagged_count=np.bincount(of_row[inside.flags != 0], minlength=bins),
         flags=marked,
         coverage_fraction=_coverage(within.seconds, of_number, first, limits, step),
-        means={key: _banded(_mean(key, numbers, limits, gap), bins, bounds) for key in rules},
+        means={key: _mean(key, numbers, limits, gap, bounds) for key in rules},
         minimum=spread(np.minimum.reduceat(within.value, first) if some else within.value),
         maximum=spread(np.maximum.reduceat(within.value, first) if some else within.value),
         last=spread(within.value[last]),
@@ -111,32 +112,25 @@ def resample(
     )
 
 
-def _mean(key: str, numbers: Series, edges: Array, gap: float) -> Aggregate:
-    """Means of the bins up to the last that has one."""
+def _mean(key: str, numbers: Series, edges: Array, gap: float, bounds: Bounds) -> Mean:
+    """Means of all bins by one rule."""
     if MEAN_RULES[key].key == "plain":
         held, bins, _ = _binned(numbers, edges)
         weights = np.ones(held.seconds.size)
     else:
         row, bins, weights = time_weights(numbers.seconds, edges, gap)
         held = numbers.rows(row)
-    return weighted_mean(
-        held.value,
-        held.standard_uncertainty,
-        held.shared,
-        weights=weights,
-        groups=bins,
-        sources=held.sources,
-    )
-
-
-def _banded(found: Aggregate, bins: int, bounds: Bounds) -> Mean:
-    """Means of all bins, with the band of each."""
-    value, u, shared = (
-        np.concatenate([known, np.full(bins - known.size, np.nan)])
-        for known in (found.value, found.standard_uncertainty, found.shared)
-    )
-    band = bounds.band(value, u)
-    return Mean(value, u, shared, band.lower, band.upper)
+    parts = (held.value, held.standard_uncertainty, held.shared)
+    among = {"weights": weights, "groups": bins, "sources": held.sources}
+    found = weighted_mean(*parts, **among)
+    ends = held.ends
+    if ends is None:
+        band = bounds.band(held.value, held.standard_uncertainty)
+        ends = (band.lower, band.upper)
+    lower, upper = mean_band(ends, *parts, **among)
+    missing = edges.size - 1 - found.value.size
+    columns = (found.value, found.standard_uncertainty, found.shared, lower, upper)
+    return Mean(*(np.concatenate([known, np.full(missing, np.nan)]) for known in columns))
 
 
 def _coverage(seconds: Array, bins: Labels, first: Labels, edges: Array, step: float) -> Array:

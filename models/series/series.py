@@ -23,6 +23,8 @@ class Series:
     flags: Flags
     sources: Labels
     """Rows with the same label share an error."""
+    ends: tuple[Array, Array] | None = None
+    """Lower and upper end of the band of each value, NaN where there is none; None: not stated."""
 
     def numbers(self) -> "Series":
         """The rows that have a number."""
@@ -38,6 +40,7 @@ class Series:
             self.shared[kept],
             self.flags[kept],
             self.sources[kept],
+            None if self.ends is None else (self.ends[0][kept], self.ends[1][kept]),
         )
 
 
@@ -49,6 +52,7 @@ def series(
     *,
     flags: ArrayLike | None = None,
     sources: ArrayLike | None = None,
+    ends: tuple[ArrayLike, ArrayLike] | None = None,
 ) -> Series:
     """Columns brought into time order; any order in gives the same series out.
 
@@ -59,6 +63,7 @@ def series(
     flags: shape (n,), bits as in ``models.flags``, or true and false; None: no row is flagged.
     sources: shape (n,), who shares an error with whom, 0, 1, 2, ... (for instance one label for
         each soil and probe that was installed in turn); None: all rows do.
+    ends: lower and upper end of the band of each value; None: not stated.
 
     Raises ReadingError when the columns differ in length or a time is no number.
     """
@@ -71,13 +76,17 @@ def series(
         "flags": np.asarray(0 if flags is None else flags).astype(np.uint64),
         "sources": np.asarray(0 if sources is None else sources).astype(np.intp),
     }
+    if ends is not None:
+        given |= {"lower": column(ends[0]), "upper": column(ends[1])}
     misfit = [name for name, held in given.items() if held.shape not in {(), shape}]
     if times.ndim != 1 or misfit:
         told = ", ".join(f"{name} {given[name].shape}" for name in misfit)
         raise ReadingError(f"columns must be of equal length: seconds {shape}, {told}")
     if not np.isfinite(times).all():
         raise ReadingError("every row needs a time; one is no number")
-    found = Series(times, *(np.broadcast_to(held, shape) for held in given.values()))
+    held = {name: np.broadcast_to(values, shape) for name, values in given.items()}
+    stated = (held.pop("lower"), held.pop("upper")) if ends is not None else None
+    found = Series(seconds=times, ends=stated, **held)
     if np.all(np.diff(times) > 0):
         return found
     return found.rows(np.lexsort((

@@ -83,6 +83,48 @@ def weighted_mean(
     )
 
 
+def mean_band(
+    ends: tuple[ArrayLike, ArrayLike],
+    value: ArrayLike,
+    standard_uncertainty: ArrayLike,
+    shared: ArrayLike,
+    *,
+    weights: ArrayLike = 1.0,
+    groups: ArrayLike | None = None,
+    sources: ArrayLike | None = None,
+) -> tuple[Array, Array]:
+    """Lower and upper end of the mean of the estimates in each group, from the ends of theirs.
+
+    ends: lower and upper, shape (n,), around each value; NaN: there is none, and the mean of its
+        group has none on that side. Else as ``weighted_mean``.
+
+    The arm from the value to an end is divided as the uncertainty is: its shared part stays, the
+    other shrinks, each side for itself. So the mean of one has the band of that one, and no end
+    lies beyond the outermost of its readings' (Minkowski's inequality; rounding is cut off).
+    """
+    known = column(value)
+    present = np.isfinite(known)
+    whole, common = (
+        np.broadcast_to(column(p), known.shape) for p in (standard_uncertainty, shared)
+    )
+    labels = _labels(groups, known.shape)
+    share = np.divide(common, whole, out=np.ones(known.shape), where=whole > 0)
+    number = int(labels.max(initial=-1)) + 1
+    found = []
+    for side, outermost in enumerate((np.minimum, np.maximum)):
+        end = np.broadcast_to(column(ends[side]), known.shape)
+        arm = np.maximum(end - known if side else known - end, 0.0)
+        mean = weighted_mean(
+            known, arm, share * arm, weights=weights, groups=labels, sources=sources
+        )
+        limit = np.full(number, np.inf if side == 0 else -np.inf)
+        outermost.at(limit, labels[present], end[present])
+        sign = 1.0 if side else -1.0
+        inner = np.minimum if side else np.maximum
+        found.append(inner(mean.value + sign * mean.standard_uncertainty, limit))
+    return found[0], found[1]
+
+
 def _summed(
     value: Array,
     uncertainty: tuple[ArrayLike, ArrayLike],

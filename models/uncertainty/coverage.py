@@ -93,7 +93,8 @@ def _restricted(
     rest = _point(mass_low[cut] + kept[cut], value[cut], below[cut], above[cut])
     upper[cut] = np.minimum(rest, high[cut])
     lower[also] = _point(mass_high[also] - kept[also], value[also], below[also], above[also])
-    lower, upper = np.minimum(lower, held), np.maximum(upper, held)  # to the last digit
+    lower = np.minimum(np.maximum(lower, low), held)  # to the last digit
+    upper = np.maximum(np.minimum(upper, high), held)
     return np.where(point, held, lower), np.where(point, held, upper)
 
 

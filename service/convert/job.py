@@ -83,7 +83,9 @@ def run(
     """
     try:
         settings = settings_of(wish.document)
-        estimates = TableEstimates(settings, grounds=lambda columns: _grounds(wish, columns))
+        estimates = TableEstimates(
+            settings, grounds=lambda columns: _grounds(wish, columns), wanted=wish.columns
+        )
         conversion = Conversion(
             FORMATS[job.read].decoder(APPENDED),
             FORMATS[job.written].encoder(),

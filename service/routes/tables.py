@@ -35,14 +35,15 @@ async def answer_table(request: Request, sent: Format) -> Response:
     def grounds(columns: tuple[str, ...]) -> Grounds:
         return Grounds(document, shelf.fresh()[1], columns)
 
-    table = TableEstimates(settings_of(document), limits.drawn_values, grounds)
+    wanted = wanted_columns(query.get("columns"))
+    table = TableEstimates(settings_of(document), limits.drawn_values, grounds, wanted)
     target = next(f for f in FORMATS.values() if f.media_type == answered)
     conversion = Conversion(
         sent.decoder(APPENDED, block_bytes=limits.block_bytes, line_bytes=limits.line_bytes),
         target.encoder(),
         table,
         strict=_is_true(query.get("strict")),
-        columns=wanted_columns(query.get("columns")),
+        columns=wanted,
     )
     with _place_for(request.app):
         return await _converted(request, conversion, table, answered)

@@ -8,28 +8,28 @@ curve: those rows go along the gradient of the whole chain.
 """
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from models.estimate.equation import OWN
-from models.estimate.salt.chain import Chain
+from models.estimate.salt.chain import BEYOND_ALL, Chain
 from models.estimate.salt.stepped import Stepped
 from models.estimate.sources import Sources
 from models.estimate.water_content import WaterContent
 from models.relation import Array
 from models.uncertainty.coverage import coverage_factor
-from models.uncertainty.draws import Draws
-from models.uncertainty.monte_carlo import simulate
+from models.uncertainty.draws import Draws, interval_of, moments_of
+from models.uncertainty.evaluation import blocks_of, scores_of, values_of
 from models.uncertainty.quantiles.additive import Point, ends
 from models.uncertainty.quantiles.curves import Steps
 from models.uncertainty.quantiles.intermediate import Intermediate
 from models.uncertainty.quantiles.reliability import Method, band
 
-FEW = Draws(512)
-"""For rows that nothing else settles."""
+FEWEST, OUTSIDE = 512, 20
+"""Draws for rows that nothing else settles, and how many of them the interval leaves out."""
 CALM = 0.05
 """Shift of an end by curvature, in half-widths, up to which first order and that shift will do;"""
 BARE = 0.002
@@ -56,7 +56,7 @@ class Asked:
 
 @dataclass(frozen=True, slots=True)
 class Spread:
-    """Of a logarithm, shape (n,): ends, and how they were found."""
+    """Of a logarithm, shape (n,): ends, infinite where there is none, and how they were found."""
 
     lower: Array
     upper: Array
@@ -64,7 +64,6 @@ class Spread:
     """Standard uncertainty,"""
     shared: Array
     """and the part that all readings of a soil and probe share."""
-    unbounded: NDArray[np.bool_]
     method: NDArray[np.uint8]
     """Codes of ``Method`` for rows that the curves did not settle, 0 for the others."""
     outside: NDArray[np.intp] = field(default_factory=lambda: np.zeros(1, dtype=np.intp))
@@ -87,20 +86,26 @@ def spread_of(
     shift, calm = _shift(stepped, through, content, total, asked)
     reach = coverage_factor(asked.probability) * total
     lower, upper = stepped.value + shift - reach, stepped.value + shift + reach
-    unbounded = np.zeros(lower.shape, dtype=np.bool_)
     method = np.zeros(lower.shape, dtype=np.uint8)
     known = np.isfinite(stepped.value) & np.isfinite(content.standard_uncertainty)
     rows = np.flatnonzero(known & ~calm)
-    plain = Spread(lower, upper, total, shared, unbounded, method)
-    if rows.size:
-        _curved(plain, rows, stepped, through, content, asked)
-        hard = rows if asked.bare else rows[np.isnan(lower[rows])]
-        if hard.size and asked.draws is None:
-            lower[hard], upper[hard], method[hard] = _by_chain(chain().rows(hard), asked)
-            upper[unbounded] = np.nan
-    if asked.draws is None:
+    plain = Spread(lower, upper, total, shared, method)
+    if asked.draws is not None:
+        rows = np.flatnonzero(known)
+        drawn = _simulated(chain().sided(effects).rows(rows), asked.draws, asked.probability)
+        return _put(plain, rows, stepped.value, drawn)
+    if not rows.size:
         return plain
-    return _drawn(plain, np.flatnonzero(known), stepped, chain(), asked)
+    _curved(plain, rows, stepped, through, content, asked)
+    if asked.bare:
+        _sharpened(plain, rows, chain().rows(rows), asked)
+    hard = rows[np.isnan(lower[rows])]
+    if not hard.size:
+        return plain
+    few = Draws(max(FEWEST, int(np.ceil(OUTSIDE / (1.0 - asked.probability)))))
+    drawn = _simulated(chain().sided(effects).rows(hard), few, asked.probability)
+    found = _put(plain, hard, stepped.value, drawn)
+    return replace(found, total=total, shared=shared)
 
 
 def _shift(
@@ -170,36 +175,51 @@ def _curved(
     direct = {name: stepping(steps) for name, steps in stepped.direct.items()}
     found = ends(measurand, stepped.value[rows], direct, moved, probability=asked.probability)
     plain.lower[rows], plain.upper[rows] = found.lower, found.upper
-    plain.unbounded[rows] = found.unbounded
 
 
-def _by_chain(some: Chain, asked: Asked) -> tuple[Array, Array, NDArray[np.uint8]]:
-    """Ends by the whole chain: along its gradient where they must be sharp, else by few draws."""
-    every, probability = some.distributions(), asked.probability
-    if asked.bare:
-        sharp = band(some, every, probability=probability)
-        return sharp.lower, sharp.upper, sharp.method
-    told = simulate(some, every, draws=FEW, probability=probability)
-    method = np.full(told.lower.shape, Method.DRAWS, dtype=np.uint8)
-    return told.lower, told.upper, method
+def _sharpened(plain: Spread, rows: NDArray[np.intp], some: Chain, asked: Asked) -> None:
+    """Ends along the gradient of the whole chain, where the curves found any."""
+    sharp = band(some, some.distributions(), probability=asked.probability)
+    for found, better in ((plain.lower, sharp.lower), (plain.upper, sharp.upper)):
+        found[rows] = np.where(np.isinf(found[rows]), found[rows], better)
+    plain.method[rows] = sharp.method
 
 
-def _drawn(
-    plain: Spread, rows: NDArray[np.intp], stepped: Stepped, chain: Chain, asked: Asked
-) -> Spread:
-    """JCGM 101 on the whole chain; the ends reach to the value where that lies outside them."""
-    lower, upper, total = (np.full(plain.lower.shape, np.nan) for _ in range(3))
-    outside = np.zeros(lower.shape, dtype=np.intp)
-    if rows.size:
-        some = chain.rows(rows)
-        told = simulate(
-            some, some.distributions(), draws=asked.draws, probability=asked.probability
-        )
-        lower[rows], upper[rows] = told.lower, told.upper
-        total[rows], outside[rows] = told.standard_uncertainty, told.outside
-    lower, upper = np.fmin(lower, stepped.value), np.fmax(upper, stepped.value)
+@dataclass(frozen=True, slots=True)
+class _Draws:
+    lower: Array
+    upper: Array
+    standard_uncertainty: Array
+    outside: NDArray[np.intp]
+
+
+def _simulated(some: Chain, draws: Draws, probability: float) -> _Draws:
+    """JCGM 101 on the whole chain; a draw without an answer is beyond one end or the other."""
+    every, parts = some.distributions(), []
+    scores = scores_of(draws, every, None)
+    for rows in blocks_of(every, draws.count):
+        (values,) = values_of(some, every, rows, scores)
+        inside = np.abs(values) < 0.5 * BEYOND_ALL
+        within, possible = inside.sum(axis=1), np.isfinite(values).sum(axis=1)
+        ends = interval_of(values, possible, probability=probability, kind="symmetric")
+        beyond = [np.where(np.abs(end) < 0.5 * BEYOND_ALL, end, end * np.inf) for end in ends]
+        _, u = moments_of(np.where(inside, values, np.nan), within)
+        parts.append((*beyond, u, values.shape[1] - within))
+    return _Draws(*(np.concatenate(each) for each in zip(*parts, strict=True)))
+
+
+def _put(plain: Spread, rows: NDArray[np.intp], value: Array, drawn: _Draws) -> Spread:
+    """The draws in their rows; the ends reach to the value where that lies outside them.
+
+    Rows with too few draws that are possible keep what they have.
+    """
+    lower, upper, total = plain.lower.copy(), plain.upper.copy(), plain.total.copy()
+    method, outside = plain.method.copy(), np.zeros(lower.shape, dtype=np.intp)
+    told = np.isfinite(drawn.standard_uncertainty) & ~np.isnan(drawn.lower)
+    at = rows[told]
+    lower[at] = np.minimum(drawn.lower[told], value[at])
+    upper[at] = np.maximum(drawn.upper[told], value[at])
+    total[at], method[at] = drawn.standard_uncertainty[told], Method.DRAWS
+    outside[rows] = drawn.outside
     share = np.divide(plain.shared, plain.total, out=np.ones_like(total), where=plain.total > 0)
-    return Spread(
-        lower, np.where(plain.unbounded, np.nan, upper), total, total * share, plain.unbounded,
-        np.where(np.isnan(total), 0, Method.DRAWS).astype(np.uint8), outside,
-    )  # fmt: skip
+    return Spread(lower, upper, total, total * share, method, outside)

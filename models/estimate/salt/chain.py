@@ -24,6 +24,7 @@ from models.estimate.moving import (
 )
 from models.estimate.permittivity import Permittivity
 from models.estimate.salt.pore_water import PoreWater, logarithm
+from models.estimate.sources import Sources
 from models.estimate.water_content import WaterContent
 from models.relation import Array, column
 from models.salinity.saturation_extract import to_extract
@@ -32,6 +33,8 @@ from models.uncertainty.exact import Exact
 from models.uncertainty.first_order import Input
 
 OWN_OF_SALT = "pore_water_model"
+BEYOND_ALL = 1e6
+"""In place of a logarithm that no conductivity has."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,7 +50,10 @@ class Chain:
     columns: Mapping[str, Any]
     """Every column by name, scalar or shape (n,)."""
     most: float
-    """Most water there can be, m3/m3; more has no answer, nor has none."""
+    """Most water there can be, m3/m3; more is impossible."""
+    leading: tuple[str, ...] = ()
+    """Sources by whose first order a draw without an answer counts as below or above all others;
+    empty: it has none."""
 
     @classmethod
     def of(
@@ -78,6 +84,13 @@ class Chain:
         chain = replace(self, paste=paste)
         return replace(chain, columns={**self.columns, **chain._of_quantities()})
 
+    def sided(self, effects: Sources) -> Self:
+        """The same for draws: without an answer they are beyond one end or the other."""
+        every = {**effects.per_reading, **effects.shared}
+        leading = tuple(name for name in self.sources if name in every)
+        columns = {f"leading {name}": every[name] for name in leading}
+        return replace(self, leading=leading, columns={**self.columns, **columns})
+
     @property
     def sources(self) -> tuple[str, ...]:
         """Everything uncertain, in a fixed order."""
@@ -104,13 +117,18 @@ class Chain:
         z = columns[OWN]
         error = z * np.where(z < 0, columns["own below"], columns["own above"])
         theta = self.equation(**at) + error
-        theta = np.where((theta > 0.0) & (theta <= self.most), theta, np.nan)
+        impossible = theta > self.most
+        theta = np.where(theta > 0.0, theta, np.nan)
         at = {n: each.among(columns, f"salt {n}") for n, each in self.pore.moving.items()}
         answer = self.pore.at_25(water_content=theta, **at)
         if self.paste:
             at = {n: _positive(each, columns, f"paste {n}") for n, each in self.paste.items()}
             answer = to_extract(answer, water_content=theta, **at)
-        return logarithm(answer) + columns[f"{OWN_OF_SALT} own"] * columns[OWN_OF_SALT]
+        found = logarithm(answer) + columns[f"{OWN_OF_SALT} own"] * columns[OWN_OF_SALT]
+        if self.leading:
+            towards = sum(columns[f"leading {n}"] * columns[n] for n in self.leading)
+            found = np.where(np.isnan(found), np.copysign(BEYOND_ALL, towards), found)
+        return np.where(impossible, np.nan, found)
 
     def _quantities(self) -> list[tuple[str, Moving]]:
         kinds = {"mixing": self.mixing, "salt": self.pore.moving, "paste": self.paste}

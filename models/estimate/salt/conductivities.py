@@ -25,8 +25,8 @@ from models.uncertainty.first_order import Input
 
 Columns = dict[str, Array]
 BRINE = 25.0
-"""S/m at 25 Cel of water saturated with sodium chloride, common practice, from memory: an end beyond
-it says no more than that there is none."""
+"""S/m at 25 Cel of water saturated with sodium chloride, common practice, from memory: an upper end
+beyond it says no more than that there is none."""
 PORE, EXTRACT = "pore_water_conductivity", "saturation_extract_conductivity"
 
 
@@ -107,9 +107,8 @@ def _bulk_at_25(pore: PoreWater, probability: float) -> Columns:
 def _factor(name: str, value: Array, spread: Spread) -> Columns:
     """Value, standard uncertainty and ends; the second is the value's share times the value."""
     known, upper = np.where(value > 0, value, np.nan), np.exp(spread.upper)
-    beyond = upper > np.maximum(BRINE, known)
-    spread.unbounded[beyond] = True
+    upper = np.where(upper > np.maximum(BRINE, known), np.nan, upper)
     return {
         name: known, f"{name}_u": known * spread.total, f"{name}_u_shared": known * spread.shared,
-        f"{name}_lower": np.exp(spread.lower), f"{name}_upper": np.where(beyond, np.nan, upper),
+        f"{name}_lower": np.exp(spread.lower), f"{name}_upper": upper,
     }  # fmt: skip

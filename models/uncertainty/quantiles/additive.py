@@ -6,9 +6,9 @@ sum inverse first-order reliability and its curvature term are closed forms, a f
 The measurand itself is then taken at the two points found, so that only the way to them is
 approximate; how far both are apart says whether the sum is good enough.
 
-A curve that ends leaves some of its input's probability beyond: nothing can be there, so what is
-left counts as all, once the measurand itself was seen to end there. Where it runs off upwards and
-leaves out more than the interval does on that side, there is no upper end.
+A curve that ends leaves some of its input's probability beyond, once the measurand itself was seen
+to end there. Where more of it runs off upwards, or downwards, than the interval leaves out on that
+side, there is no end: infinity.
 """
 
 from collections.abc import Callable, Mapping
@@ -16,7 +16,7 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import ndtr, ndtri
+from scipy.special import ndtr
 
 from models.numerics.added import added, dotted
 from models.relation import Array
@@ -32,10 +32,8 @@ NOTABLE = 0.05
 """Likewise: a curve of less cannot leave out any of the whole."""
 NEARLY = 5.0
 """Standard uncertainties to the end of a curve beyond which that end does not count."""
-BEYOND = 1.05
+BEYOND = 1.25
 """Of the distance to the end of a curve: where there must be nothing, for the end to be real."""
-MOST = 0.45
-"""Of the probability that is taken to lie beyond the ends on one side."""
 APART = 0.3
 """In half-widths, of measurand and sum of curves at an end: beyond, the row is not settled."""
 
@@ -53,12 +51,10 @@ Measurand = Callable[[Point], Array]
 
 @dataclass(frozen=True, slots=True)
 class Ends:
-    """Ends of the interval, shape (n,); what is not settled holds NaN."""
+    """Ends of the interval, shape (n,); infinite where there is none, NaN where not settled."""
 
     lower: Array
     upper: Array
-    unbounded: NDArray[np.bool_]
-    """Rows without an upper end."""
     settled: NDArray[np.bool_]
 
 
@@ -82,25 +78,21 @@ def ends(
     sums = _Sum.of(value, direct, through)
     low, high = sums.left_out(measurand)
     tail = float(ndtr(-coverage_factor(probability)))
-    left = 1.0 - low - high
-    below = sums.end(ndtri(low + left * tail))
-    above = sums.end(ndtri(low + left * (1.0 - tail)))
+    z = np.full_like(value, coverage_factor(probability))
+    below, above = sums.end(-z), sums.end(z)
     at_lower, at_upper = measurand(sums.point(below)), measurand(sums.point(above))
     # What the inputs do together shows along the way; half of its square is missing across it.
     together = 1.0 / coverage_factor(probability) ** 2
     off_below, off_above = at_lower - below.value, at_upper - above.value
     lower = at_lower + below.curvature - together * off_below
     upper = at_upper + above.curvature - together * off_above
-    unbounded = high > tail
-    half = np.where(unbounded, value - lower, 0.5 * (upper - lower))
-    off = np.maximum(np.abs(off_below), np.where(unbounded, 0.0, np.abs(off_above)))
-    settled = sums.sound & (off <= within * half) & (half >= 0.0)
-    return Ends(
-        np.where(settled, lower, np.nan),
-        np.where(settled & ~unbounded, upper, np.nan),
-        unbounded & sums.sound,
-        settled,
-    )
+    lower, off_below = np.where(low > tail, -np.inf, lower), np.where(low > tail, 0.0, off_below)
+    upper, off_above = np.where(high > tail, np.inf, upper), np.where(high > tail, 0.0, off_above)
+    half = np.minimum(0.5 * (upper - lower), np.maximum(value - lower, upper - value))
+    half = np.where(np.isinf(half), np.minimum(value - lower, upper - value), half)
+    off = np.maximum(np.abs(off_below), np.abs(off_above))
+    settled = sums.sound & (off <= within * half) & (lower <= upper)
+    return Ends(np.where(settled, lower, np.nan), np.where(settled, upper, np.nan), settled)
 
 
 @dataclass(frozen=True, slots=True)
@@ -154,7 +146,8 @@ class _Sum:
 
         An end is real where the measurand has nothing just beyond it.
         """
-        over = Curve(self.over.bend, self.over.scale * self.through.reach)
+        reach = self._reach()
+        over = Curve(self.over.bend, self.over.scale * reach)
         size = np.abs(self.curves.scale)
         notable = NOTABLE * (added(size) + np.abs(over.scale))
         low, high = np.zeros_like(self.value), np.zeros_like(self.value)
@@ -166,17 +159,24 @@ class _Sum:
                 continue
             there = np.zeros_like(self.value)
             there[counts] = -np.sign(curve.bend * curve.scale)[counts] * distance[counts] * BEYOND
-            real = np.isnan(measurand(self._only(place, there)))[counts]
+            real = np.isnan(measurand(self._only(place, there, reach)))[counts]
             mass, falls = np.where(real, ndtr(-distance[counts]), 0.0), curve.bend[counts] > 0
             low[counts] += np.where(falls, mass, 0.0)
             high[counts] += np.where(falls, 0.0, mass)
-        return np.minimum(low, MOST), np.minimum(high, MOST)
+        return low, high
 
-    def _only(self, place: int, score: Array) -> Point:
+    def _reach(self) -> Array:
+        """Of the intermediate, on the side on which its curve ends."""
+        down = self.over.bend * self.over.scale > 0
+        own = np.where(down, self.through.below, self.through.above)
+        square = np.square(self.rest.width) + np.square(own)
+        return np.sqrt(square + dotted(self.effects, self.effects))
+
+    def _only(self, place: int, score: Array, reach: Array) -> Point:
         """Where one input is off, or, after the last of them, the intermediate."""
         scores = {name: np.zeros_like(score) for name in self.names}
         if place == len(self.names):
-            return Point(score * self.through.reach, scores)
+            return Point(score * reach, scores)
         scores[self.names[place]] = score
         return Point(self.effects[place] * score, scores)
 

@@ -21,6 +21,7 @@ from tests.models.estimate.test_estimate_salinity import (
 )
 
 PORE, EXTRACT = "pore_water_conductivity", "saturation_extract_conductivity"
+ENDS = ("_lower", "_upper")
 ALL = [key for key in PORE_WATER_MODELS if key != "complex-refractive"]
 
 
@@ -62,13 +63,15 @@ def test_quantiles_are_those_of_draws(texture, key):
     for name in (PORE, EXTRACT):
         if name not in found:
             continue
-        half = 0.5 * np.log(drawn[f"{name}_upper"] / drawn[f"{name}_lower"])
-        known = np.isfinite(half) & np.isfinite(found[f"{name}_upper"])
-        for end in (f"{name}_lower", f"{name}_upper"):
-            off = np.abs(np.log(found[end] / drawn[end])) / half
+        known = (drawn[f"{name}_lower"] > 0) & (found[f"{name}_lower"] > 0)
+        known &= np.isfinite(drawn[f"{name}_upper"] + found[f"{name}_upper"])
+        ours, theirs = ({e: each[f"{name}{e}"][known] for e in ENDS} for each in (found, drawn))
+        half = 0.5 * np.log(theirs["_upper"] / theirs["_lower"])
+        for end in ENDS:
+            off = np.abs(np.log(ours[end] / theirs[end])) / half
             # There the surfaces alone conduct more than the soil in one draw of three.
             hard = (texture, key) == ("clay", "rhoades-1976")
-            assert np.quantile(off[known], 0.9) < (0.2 if hard else 0.08)
+            assert np.quantile(off, 0.9) < (0.2 if hard else 0.08)
 
 
 @pytest.mark.parametrize("draws", [None, Draws(256)], ids=["quantiles", "draws"])
@@ -128,3 +131,57 @@ def test_loss_that_the_readings_tell_is_drawn_row_by_row():
     answer = estimate(readings_of(ka, np.full(40, 0.05), np.full(40, 20.0)), basis).columns
     assert np.isfinite(answer["water_content_u"]).all()
     assert np.all(np.diff(answer["water_content_lower"]) > 0)
+
+
+@pytest.mark.parametrize("key", ["rhoades-1976", "mualem-friedman-1991"])
+@pytest.mark.parametrize("draws", [None, Draws(2048)], ids=["quantiles", "draws"])
+def test_dry_soil_whose_surfaces_conduct_as_it_does_is_covered(key, draws):
+    """Where more errors than the band leaves out leave no salt at all, its lower end is 0."""
+    rng = np.random.default_rng(12)
+    count = 1500 if draws else 8000
+    theta, pore = rng.uniform(0.16, 0.22, count), rng.uniform(0.02, 0.1, count)
+    basis = basis_for(key, 1e9, own=0.1)
+    basis = drawing(basis, draws) if draws else basis
+    sent = readings_of(
+        *simulate(basis, theta, pore, rng.uniform(6.0, 30.0, count), rng), rng, NOISE
+    )
+    answer = estimate(sent, basis)
+    told = answer.columns
+    known = np.isfinite(told[PORE])
+    upper = np.where(np.isnan(told[f"{PORE}_upper"]), np.inf, told[f"{PORE}_upper"])
+    inside = (told[f"{PORE}_lower"] <= pore) & (pore <= upper)
+    assert 0.92 < inside[known].mean() < 0.985
+    open_below = (answer.flags & BIT["no-lower-end"]) != 0
+    assert (told[f"{PORE}_lower"][open_below & known] == 0.0).any()
+
+
+@pytest.mark.parametrize("probability", [0.5, 0.68, 0.95, 0.99, 0.999])
+@pytest.mark.parametrize("draws", [None, Draws(4096)], ids=["quantiles", "draws"])
+def test_the_value_lies_in_its_band_and_every_end_is_told(probability, draws):
+    """An empty upper end has its flag, and no end is on the wrong side."""
+    rng = np.random.default_rng(8)
+    columns = {
+        "apparent_permittivity": rng.uniform(4.0, 34.0, 120),
+        "apparent_permittivity_u": rng.uniform(0.0, 2.0, 120),
+        "temperature": rng.uniform(2.0, 35.0, 120),
+        "bulk_conductivity": rng.uniform(0.01, 3.0, 120),
+        "bulk_conductivity_u": rng.uniform(0.0, 0.3, 120),
+    }
+    for key in ("rhoades-1976", "rhoades-1989", "hilhorst-2000", "mualem-friedman-1991"):
+        query = basis_for(key, 1e9).query
+        query = replace(
+            query, draws=draws, probability=probability, columns=frozenset(columns),
+            standard_error=None, soil=describe("clay", {}, {}),
+            salinity=replace(query.salinity, given={}, standard_error=None),
+        )  # fmt: skip
+        answer = estimate(read(columns, {}, {}), prepare(query))
+        unbounded = (answer.flags & BIT["no-upper-end"]) != 0
+        for name in (PORE, EXTRACT):
+            value, lower, upper = (answer.columns[f"{name}{e}"] for e in ("", "_lower", "_upper"))
+            known = np.isfinite(value)
+            assert known.any()
+            assert np.isfinite(lower[known]).all()
+            assert (lower[known] <= value[known]).all()
+            assert (np.isnan(upper) <= unbounded)[known].all()
+            bounded = known & ~np.isnan(upper)
+            assert (upper[bounded] >= value[bounded]).all()

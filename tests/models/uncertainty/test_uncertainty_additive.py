@@ -92,9 +92,22 @@ def test_a_denominator_that_may_be_zero_leaves_no_upper_end():
     value = np.zeros(1)
     found = ends(lambda p: function(p.scores), value, stepped(function, "b", value),
                  alone(value), probability=0.95)  # fmt: skip
-    assert found.unbounded.all()
-    assert np.isnan(found.upper).all()
+    assert np.isposinf(found.upper).all()
     assert np.isfinite(found.lower).all()
+
+
+def test_a_numerator_that_may_be_zero_leaves_no_lower_end():
+    """A difference of 1 with a standard uncertainty of 0.6 is below zero once in twenty-one."""
+
+    def function(scores):
+        with np.errstate(invalid="ignore", divide="ignore"):
+            return np.log(1.0 + 0.6 * scores.get("b", 0.0 * ONE))
+
+    value = np.zeros(1)
+    found = ends(lambda p: function(p.scores), value, stepped(function, "b", value),
+                 alone(value), probability=0.95)  # fmt: skip
+    assert np.isneginf(found.lower).all()
+    assert_allclose(found.upper, np.log(1.0 + 0.6 * Z), rtol=0.02)
 
 
 def test_what_works_on_both_ways_is_counted_once():
@@ -170,4 +183,4 @@ def test_an_end_that_the_measurand_does_not_have_is_not_believed():
     value = np.zeros(1)
     direct = {"a": Steps(function(ONE), function(-ONE))}
     found = ends(lambda p: function(p.scores["a"]), value, direct, alone(value), probability=0.95)
-    assert not found.unbounded.any()
+    assert not np.isinf(found.upper).any()
