@@ -5,6 +5,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
+from models.estimate.derived import sources_of
 from models.estimate.moving import BULK, TEMPERATURE, WATER_MODEL, moving_permittivity
 from models.estimate.permittivity import Permittivity
 from models.estimate.water_content import WaterContent
@@ -64,7 +65,10 @@ def of_water_content(
         elif name in water:
             effects = effects.plus(_of_water(effect, water[name]))
         else:
-            effects.shared[name] = effect
+            for source, share in _shares(content, name).items():
+                moved = effect * share
+                known = effects.shared.get(source)
+                effects.shared[source] = moved if known is None else known + moved
     effects.shared["mixing_model"] = content.of_model
     return effects
 
@@ -79,6 +83,14 @@ def _of_water(effect: Array, given: Input) -> Sources:
     if np.any(given.shared):
         parts.shared["water_model"] = unit * given.shared
     return parts
+
+
+def _shares(content: WaterContent, name: str) -> dict[str, float]:
+    """What moves a parameter of the mixing model, over its standard uncertainty; signed."""
+    basis = content.equation.basis
+    u = basis.uncertainties[name]
+    moved = sources_of(basis.query.soil, name, u, basis.origins[name])
+    return {source: width / u for source, width in moved.items() if width}
 
 
 def bends_of_water_content(
@@ -97,7 +109,7 @@ def bends_of_water_content(
         elif name in water:
             moved = {TEMPERATURE: water[name].per_reading, WATER_MODEL: water[name].shared}
         else:
-            moved = {name: 1.0}
+            moved = _shares(content, name)
         whole = sum(np.square(width) for width in moved.values()) + np.zeros_like(bend)
         part = np.divide(bend, whole, out=np.zeros_like(bend), where=whole > 0)
         part = np.nan_to_num(part)

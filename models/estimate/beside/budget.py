@@ -18,6 +18,8 @@ from models.uncertainty.budget import NOBODY, Budget, budget_of
 MEND: Mapping[str, str] = {
     "mixing_model": "a calibration for this soil",
     "porosity": "a measured porosity or bulk density",
+    "bulk_density": "a measured bulk density",
+    "particle_density": "a measured density of the solids",
     "solid_permittivity": "a measured permittivity of the solids",
     "clay": "a measured clay content",
     "apparent_permittivity": "less noise in the permittivity, or a mean over several readings",

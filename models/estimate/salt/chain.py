@@ -13,6 +13,8 @@ from typing import Any, Self
 import numpy as np
 from numpy.typing import NDArray
 
+from models.estimate.basis import Basis
+from models.estimate.derived import sources_of
 from models.estimate.equation import OWN, Equation
 from models.estimate.moving import (
     BULK,
@@ -71,7 +73,8 @@ class Chain:
         found, water: what the water content came from. own: standard uncertainty of the pore-water
         model itself, of the logarithm.
         """
-        mixing = {g.name: _of_mixing(g, found, water) for g in content.equation.inputs}
+        basis = content.equation.basis
+        mixing = {g.name: _of_mixing(g, found, water, basis) for g in content.equation.inputs}
         below, above = content.scales
         columns: dict[str, Any] = {
             "own below": below, "own above": above, f"{OWN_OF_SALT} own": own,
@@ -147,7 +150,9 @@ def _positive(each: Moving, columns: Mapping[str, Array], name: str) -> Array:
     return column(value * np.exp(each.among({**columns, name: 0.0 * value}, name) / value))
 
 
-def _of_mixing(given: Input, found: Permittivity, water: Mapping[str, Input]) -> Moving:
+def _of_mixing(
+    given: Input, found: Permittivity, water: Mapping[str, Input], basis: Basis
+) -> Moving:
     """What moves an input of the mixing model."""
     if given.name == "permittivity":
         return moving_permittivity(found)
@@ -155,4 +160,7 @@ def _of_mixing(given: Input, found: Permittivity, water: Mapping[str, Input]) ->
         return moving(given.value, **{BULK: given.per_reading})
     if given.name in water:
         return moving(given.value, **{TEMPERATURE: given.per_reading, WATER_MODEL: given.shared})
-    return moving(given.value, **{given.name: given.total})
+    if given.name not in basis.uncertainties:
+        return moving(given.value)
+    origin, u = basis.origins[given.name], basis.uncertainties[given.name]
+    return moving(given.value, **sources_of(basis.query.soil, given.name, u, origin))

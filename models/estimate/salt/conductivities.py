@@ -10,6 +10,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from models.estimate.basis import Basis
+from models.estimate.derived import sources_of
 from models.estimate.moving import Moving, moving
 from models.estimate.permittivity import Permittivity
 from models.estimate.salt.bands import Asked, Spread, Through, spread_of
@@ -79,11 +80,12 @@ def _paste(pore: PoreWater) -> dict[str, Moving]:
     paste, density = pore.salinity.paste, pore.salinity.density
     if paste is None or density is None:
         return {}
+    soil, origin = pore.soil, pore.soil.origins["bulk_density"]
     return {
         "saturation_percentage": moving(
             paste.value, saturation_percentage=paste.standard_uncertainty
         ),
-        "bulk_density": moving(density[0], bulk_density=density[1]),
+        "bulk_density": moving(density[0], **sources_of(soil, "bulk_density", density[1], origin)),
     }
 
 

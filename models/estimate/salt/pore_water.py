@@ -12,6 +12,7 @@ from typing import Any
 import numpy as np
 
 from models.estimate.basis import Basis
+from models.estimate.derived import sources_of
 from models.estimate.moving import BULK, TEMPERATURE, Moving, moving, moving_permittivity
 from models.estimate.permittivity import Permittivity, noise_of
 from models.estimate.salt.salinity import Salinity
@@ -39,7 +40,7 @@ class PoreWater:
         around: Surroundings,
         content: WaterContent,
     ) -> None:
-        self.salinity, self.count = salinity, readings.count
+        self.salinity, self.count, self.soil = salinity, readings.count, basis.query.soil
         unknown = np.full(readings.count, np.nan)
         warmth = unknown if around.temperature is None else around.temperature
         self.inputs: dict[str, Any] = {
@@ -75,7 +76,7 @@ class PoreWater:
         if "real_permittivity" in self.salinity.takes:
             found["real_permittivity"] = moving_permittivity(self.real)
         return found | {
-            name: moving(bound.values[name], **{name: u})
+            name: moving(bound.values[name], **sources_of(self.soil, name, u, bound.origins[name]))
             for name, u in bound.uncertainties.items()
             if u > 0
         }

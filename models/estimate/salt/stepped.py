@@ -59,9 +59,10 @@ class Stepped:
         """Of the extract: the more water above one paste, the more salt in it."""
         theta, reach = pore.content.computed, pore.content.standard_uncertainty
         here = logarithm(extract)
+        drying = dict.fromkeys(source for each in paste.values() for source in each.by)
 
-        def diluted(name: str, size: Array | float) -> Array | float:
-            return -_log(paste[name], size) if name in paste else 0.0
+        def diluted(source: str, size: Any) -> Any:
+            return -sum(_log(each, source, size) for each in paste.values())
 
         def along(name: str) -> Steps:
             of = self.direct.get(name, NONE)
@@ -77,11 +78,11 @@ class Stepped:
         def measurand(point: Point) -> Array:
             moved = self.measurand(point) - self.value + here
             moved = moved + logarithm(1.0 + point.intermediate / theta)
-            for name in paste:
-                moved = moved + diluted(name, point.scores[name])
+            for source in drying:
+                moved = moved + diluted(source, point.scores[source])
             return moved
 
-        direct = {name: along(name) for name in dict.fromkeys((*self.direct, *paste))}
+        direct = {name: along(name) for name in dict.fromkeys((*self.direct, *drying))}
         return Stepped(here, direct, through, self.own, measurand)
 
     def effects(self, through: Sources, reach: Array) -> Sources:
@@ -105,7 +106,6 @@ def _steps(at: Callable[[Any], Array], here: Array) -> Steps:
     return Steps(at(size) - here, at(-size) - here, size)
 
 
-def _log(each: Moving, score: Any) -> Any:
-    """Logarithm of a quantity over its value, where its one source is so far off; lognormal."""
-    (width,) = each.by.values() or (0.0,)
-    return width / each.value * score
+def _log(each: Moving, source: str, score: Any) -> Any:
+    """Logarithm of a quantity over its value, where one source is so far off; lognormal."""
+    return each.by.get(source, 0.0) / each.value * score

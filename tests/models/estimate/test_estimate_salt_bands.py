@@ -71,7 +71,7 @@ def test_quantiles_are_those_of_draws(texture, key):
             off = np.abs(np.log(ours[end] / theirs[end])) / half
             # There the surfaces alone conduct more than the soil in one draw of three.
             hard = (texture, key) == ("clay", "rhoades-1976")
-            assert np.quantile(off, 0.9) < (0.2 if hard else 0.08)
+            assert np.quantile(off, 0.9) < (0.25 if hard else 0.08)
 
 
 @pytest.mark.parametrize("draws", [None, Draws(256)], ids=["quantiles", "draws"])
@@ -185,3 +185,27 @@ def test_the_value_lies_in_its_band_and_every_end_is_told(probability, draws):
             assert (np.isnan(upper) <= unbounded)[known].all()
             bounded = known & ~np.isnan(upper)
             assert (upper[bounded] >= value[bounded]).all()
+
+
+def test_one_density_moves_porosity_water_and_extract_together():
+    """The answers at both ends of the bulk density say what its share of the variance is."""
+
+    def of(density, spread):
+        soil = describe(
+            None,
+            {"bulk_density": density, "particle_density": 2650.0, "solid_permittivity": 4.7,
+             "saturation_percentage": 0.45, "clay": 0.2},
+            {"bulk_density": spread},
+        )  # fmt: skip
+        query = basis_for("archie-1942", 1e9, error=0.0, own=0.0).query
+        exact = {"cementation_exponent": 1.5, "saturation_exponent": 2.0, "tortuosity": 1.0}
+        query = replace(query, soil=soil, salinity=replace(query.salinity, given=exact))
+        sent = readings_of(np.array([15.0]), np.array([0.002]), np.array([25.0]))
+        return estimate(sent, prepare(query)).columns
+
+    found, without = of(1400.0, 40.0), of(1400.0, 0.0)
+    low, high = of(1360.0, 0.0), of(1440.0, 0.0)
+    for name in ("water_content", PORE, EXTRACT):
+        half = np.abs(np.log(high[name][0] / low[name][0])) / 2
+        added = np.sqrt(found[f"{name}_u"][0] ** 2 - without[f"{name}_u"][0] ** 2)
+        assert added / found[name][0] == pytest.approx(half, rel=0.02)
