@@ -163,9 +163,10 @@ def _real(readings: Readings, probe: Mapping[str, float]) -> _Part | None:
 
 def _given(readings: Readings, name: str, probe: Mapping[str, float]) -> _Part:
     """A column as it came; what raw records of one probe share of its uncertainty stands apart."""
-    u = noise_of(readings, name, probe)
-    shared = np.nan_to_num(readings.columns.get(f"{name}{SHARED}", 0.0 * u))
-    shared = np.minimum(shared, u)
+    u, told = noise_of(readings, name, probe), readings.columns.get(f"{name}{SHARED}")
+    if told is None:
+        return _Part(readings.columns[name], u, np.zeros_like(u))
+    shared = np.minimum(np.nan_to_num(told), u)
     return _Part(readings.columns[name], np.sqrt(np.square(u) - np.square(shared)), shared)
 
 

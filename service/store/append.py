@@ -1,5 +1,6 @@
 """What became of readings whose keys are not all new: accepted, the same, more, or in conflict."""
 
+import math
 import zlib
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
@@ -16,11 +17,14 @@ from service.store.interface import (
     Outcome,
     Row,
 )
+from service.store.possible import is_possible
 
 Key = tuple[int, int]
 """Channel number and time."""
 Fetch = Callable[[int, Sequence[int]], list[Row]]
 """The kept readings of a channel at some times: time, revision, every column."""
+ROUNDING = 1e-12
+"""By how much equal numbers may differ, as a part of them and in the unit of the API."""
 _RAW = COLUMNS.index(RAW)
 _IN_PLACE = [COLUMNS.index(name) for name in IN_PLACE_OF_RAW]
 
@@ -35,10 +39,13 @@ class Examined:
     clashes: list[Clash] = field(default_factory=list)
     keys: list[Key] = field(default_factory=list)
     """Of the clashes."""
+    gave_way: list[tuple[Key, Mapping[str, Any]]] = field(default_factory=list)
+    """Impossible values of kept readings, in whose place there are possible ones now."""
 
     def outcome(self) -> Outcome:
         """As the caller is told."""
-        return Outcome(self.accepted, self.duplicates, self.clashes, self.completed)
+        gone = sum(len(values) for _, values in self.gave_way)
+        return Outcome(self.accepted, self.duplicates, self.clashes, self.completed, gone)
 
 
 @dataclass(slots=True)
@@ -73,11 +80,13 @@ def examine(
         for moment, arrived, *known in fetch(number, wanted):
             key = (number, moment)
             kept[key] = Kept(key, arrived, known, known, arrived == revision)
-    found = [_examine(batch, numbers, kept) for batch, numbers in batches]
+    found = [_examine(batch, numbers, kept, revision) for batch, numbers in batches]
     return found, [known for known in kept.values() if known.values is not known.before]
 
 
-def _examine(batch: Batch, numbers: Sequence[int], kept: Mapping[Key, Kept]) -> Examined:
+def _examine(
+    batch: Batch, numbers: Sequence[int], kept: Mapping[Key, Kept], revision: int
+) -> Examined:
     found = Examined()
     places = [COLUMNS.index(name) for name in batch.values]
     empty: list[Any] = [None] * len(COLUMNS)
@@ -88,7 +97,8 @@ def _examine(batch: Batch, numbers: Sequence[int], kept: Mapping[Key, Kept]) -> 
         sent = empty.copy()
         for place, value in zip(places, values, strict=True):
             sent[place] = value
-        together = sent if sent == known.values else _together(known.values, sent)
+        late = known.revision < revision
+        together = sent if sent == known.values else _together(known.values, sent, late=late)
         if together is None:
             found.keys.append(key)
             found.clashes.append(Clash(row, told(known.values), told(sent)))
@@ -98,6 +108,8 @@ def _examine(batch: Batch, numbers: Sequence[int], kept: Mapping[Key, Kept]) -> 
             found.accepted += 1
         elif more:
             found.completed += 1
+            if gone := _gave_way(known.values, together):
+                found.gave_way.append((key, gone))
         else:
             found.duplicates += 1
         known.unclaimed = False
@@ -106,16 +118,36 @@ def _examine(batch: Batch, numbers: Sequence[int], kept: Mapping[Key, Kept]) -> 
     return found
 
 
-def _together(known: Sequence[Any], sent: Sequence[Any]) -> list[Any] | None:
-    """One reading of two that hold nothing different; None where they contradict each other."""
+def _together(known: Sequence[Any], sent: Sequence[Any], *, late: bool) -> list[Any] | None:
+    """One reading of two that hold nothing different; None where they contradict each other.
+
+    late: the kept one is of an earlier revision, where it stays as it was. Then a number that is
+    impossible counts as missing, so that a possible one completes the reading.
+    """
     both: list[Any] = []
-    for old, new in zip(known, sent, strict=True):
-        if old is not None and new is not None and old != new:
+    for name, old, new in zip(COLUMNS, known, sent, strict=True):
+        if old is None or new is None:
+            both.append(new if old is None else old)
+        elif old == new or (name != RAW and _alike(old, new)):
+            both.append(old)
+        elif late and name != RAW and not is_possible(name, old) and is_possible(name, new):
+            both.append(new)
+        else:
             return None
-        both.append(new if old is None else old)
     if both[_RAW] is not None and any(both[place] is not None for place in _IN_PLACE):
         return None
     return both
+
+
+def _alike(old: float, new: float) -> bool:
+    """Whether two numbers differ by no more than a change of unit does to their last digits."""
+    return math.isclose(old, new, rel_tol=ROUNDING, abs_tol=ROUNDING)
+
+
+def _gave_way(known: Sequence[Any], together: Sequence[Any]) -> dict[str, Any]:
+    """What a reading held before it was completed, where it holds something else now."""
+    pairs = zip(COLUMNS, known, together, strict=True)
+    return {name: old for name, old, new in pairs if old is not None and old != new}
 
 
 def told(values: Sequence[Any]) -> dict[str, Any]:

@@ -112,8 +112,9 @@ class SqlStore(Restoring):
         received = now()
         rows = []
         for examined in found:
-            for (number, moment), clash in zip(examined.keys, examined.clashes, strict=True):
-                sent = orjson.dumps(clash.sent, option=orjson.OPT_SORT_KEYS)
+            clashes = zip(examined.keys, (clash.sent for clash in examined.clashes), strict=True)
+            for (number, moment), values in (*clashes, *examined.gave_way):
+                sent = orjson.dumps(values, option=orjson.OPT_SORT_KEYS)
                 rows.append(
                     {
                         "channel": number, "time": moment, "revision": revision,

@@ -118,7 +118,9 @@ class Outcome:
     duplicates: int = 0
     clashes: Sequence[Clash] = field(default=())
     completed: int = 0
-    """Kept readings that got values they lacked."""
+    """Kept readings that got values they lacked, or had only impossible ones for."""
+    gave_way: int = 0
+    """Impossible values in whose place there are possible ones now."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -153,7 +155,8 @@ class Store(Protocol):
         """Keep the readings, all in one transaction; durable once this returns.
 
         The same reading twice, or less of it, is one reading. What the kept one lacks completes
-        it, at a new revision; at the earlier one it is as it was. One that contradicts it is kept
+        it, at a new revision; at the earlier one it is as it was. An impossible value counts as
+        lacking, and is shown among the conflicts from then on. One that contradicts it is kept
         as a conflict. A batch checked against older documents is handed back, nothing kept.
         """
         ...

@@ -23,9 +23,12 @@ _TOLD = {
     "start": "first moment, RFC 3339",
     "end": "the moment before which it ends, RFC 3339",
     "probe": "readings that name this probe",
-    "depth": "readings that name this depth [m] instead of a probe",
+    "depth": "readings at this depth [m]: those that name it, and those of the probe there",
+    "columns": "comma-separated names of the columns of the answer, beside time, probe, depth and "
+    "flags; all unless given",
     "at_revision": "as the store was at this revision: readings, soils, probes, installations",
-    "limit": "rows of a page",
+    "limit": "rows of a page; unless given 1000 of JSON, and of a table as many as an answer holds "
+    "(page_rows at /v1/limits)",
     "after": "where a page begins: follow the Link of the one before",
     "shape": "rows or columns, of JSON",
     "every": f"means over {', '.join(EVERY)} instead of rows",
@@ -49,9 +52,9 @@ def described(names: tuple[str, ...]) -> dict[str, Any]:
     }  # fmt: skip
 
 
-SERIES = (*RANGE, "every", "zone", "mean")
+SERIES = (*RANGE, "columns", "every", "zone", "mean")
 CHART = ("start", "end", "probe", "depth", "zone", "quantity", "at_revision")
-PROFILE = ("time", "within", "probe", "depth", "at_revision", "shape")
+PROFILE = ("time", "within", "probe", "depth", "columns", "at_revision", "shape")
 
 
 @router.get(

@@ -1,16 +1,23 @@
 """Answers from the store, page by page: media type, entity tag, link to what follows."""
 
 from collections.abc import Callable
+from dataclasses import replace
 from urllib.parse import urlencode
 
 import anyio.to_thread
 from fastapi import Request, Response
 
+from service.batch_estimates import APPENDED
+from service.errors import Unprocessable
+from service.faults import Fault, hint, shown
 from service.negotiate import VARY, choose
 from service.routes.etag import matches
-from service.stations.ask.answers import OFFERED, encoded
+from service.stations.ask.answers import JSON, OFFERED, encoded
 from service.stations.ask.asked import Asked
 from service.stations.ask.questions import Page, Scene, scene_of, tag_of
+
+KEYS = frozenset({"time", "end", "probe", "depth", "age_seconds", "flags"})
+"""Columns that an answer has whatever is asked for."""
 
 
 async def answered(
@@ -19,6 +26,9 @@ async def answered(
     """The answer to a question about a station; 304 where the caller has it already.
 
     key: under which JSON holds the rows.
+
+    A table that names no limit holds all rows an answer may; where rows are left, `Truncated` and
+    the link to them are among its headers.
     """
     media_type = choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
 
@@ -31,17 +41,37 @@ async def answered(
             headers["ETag"] = tag
             if matches(", ".join(request.headers.getlist("if-none-match")), tag):
                 return Response(None, 304, headers)
-        page = question(scene, asked)
+        most = request.app.state.settings.page_rows
+        whole = media_type != JSON and not asked.limited
+        page = _with_columns(question(scene, replace(asked, limit=most) if whole else asked), asked)
         headers["Row-Count"] = str(page.frame.height)
         rest = dict(page.rest)
         if page.after is not None:
             rest["next"] = next_of(request, page.after)
             headers["Link"] = f'<{rest["next"]}>; rel="next"'
+            headers["Truncated"] = "true"
         return Response(
             encoded(page.frame, media_type, key, rest, asked.shape), 200, headers, media_type
         )
 
     return await anyio.to_thread.run_sync(work)
+
+
+def _with_columns(page: Page, asked: Asked) -> Page:
+    """The page with the columns asked for beside its keys; raises Unprocessable for others."""
+    if asked.columns is None:
+        return page
+    there = page.frame.columns
+    known = APPENDED.union(there)
+    faults = [
+        Fault(f"no answer has a column {shown(name)}{hint(name, known)}", "?columns")
+        for name in asked.columns
+        if name not in known and there
+    ]
+    if faults:
+        raise Unprocessable("columns names what no answer has", faults)
+    kept = [name for name in there if name in KEYS or name in asked.columns]
+    return replace(page, frame=page.frame.select(kept))
 
 
 def next_of(request: Request, after: str) -> str:

@@ -10,16 +10,19 @@ from typing import Any
 
 from models.conversion import refuse_units
 from models.errors import ParameterError
+from models.readings import quantity_of
 from service.errors import Malformed, Unprocessable
-from service.faults import Fault, hint, shown
-from service.schemas.batch_query import document_of
+from service.faults import Fault, hint, nearest, shown
+from service.schemas.batch_query import PLACES, document_of
+from service.schemas.estimates import ESTIMATED
 from service.series_edges import zone_of
+from service.stations.ingest.arrival import converter
 from service.stations.times import SECOND, TimeError, microseconds
-from service.store.interface import Channel, place_at
+from service.store.interface import place_at
 
 OWN = (
     "start", "end", "probe", "depth", "every", "zone", "mean", "limit", "after", "at_revision",
-    "shape", "time", "within", "quantity",
+    "shape", "time", "within", "quantity", "columns", "strict",
 )  # fmt: skip
 """Parameters of the question rather than of the estimate."""
 DEFAULT_LIMIT = 1000
@@ -40,6 +43,10 @@ class Asked:
     zone: str | None = None
     mean: str = "plain"
     limit: int = DEFAULT_LIMIT
+    limited: bool = False
+    """Whether the question says how many rows a page holds."""
+    columns: tuple[str, ...] | None = None
+    """Of the estimates that are answered; None: all."""
     after: tuple[int, int] | None = None
     at_revision: str | None = None
     shape: str = "rows"
@@ -50,16 +57,6 @@ class Asked:
     """What of a request for estimates is stated, in the unit of the API."""
     units: Mapping[str, str]
     """Of the answer."""
-
-    def wanted(self, channels: Iterable[Channel]) -> list[Channel]:
-        """The series that are asked for, in the order of their numbers."""
-        found = [
-            c
-            for c in channels
-            if (self.probe is None or c.probe == self.probe)
-            and (self.place is None or c.place == self.place)
-        ]
-        return sorted(found, key=lambda c: c.number)
 
 
 def asked_of(
@@ -81,20 +78,62 @@ def asked_of(
         elif name in known:
             own[name] = text
         elif name in OWN or not estimates:
-            detail = f"this question takes no {shown(name)}{hint(name, known)}"
+            mend = f"; it takes {', '.join(known)}" if known else ""
+            mend = mend if name in OWN else hint(name, known) or mend
+            detail = f"this question takes no {shown(name)}{mend}"
             faults.append(Fault(detail, f"?{name[:80]}"))
         else:
             rest.append((name, text))
     found = _read(own, faults)
     if found.get("limit", 1) > most:
-        faults.append(Fault(f"limit: at most {most}, found {found['limit']}", "?limit"))
+        faults.append(Fault(f"at most {most}, found {found['limit']}", "?limit"))
     faults += _backwards(own, found)
     if faults:
         raise Unprocessable("the query holds what cannot be used", faults)
-    document = document_of(rest)
+    document, units = _estimate_of(rest, known)
+    return Asked(**{"limit": min(DEFAULT_LIMIT, most), **found}, estimate=document, units=units)
+
+
+def _estimate_of(
+    rest: list[tuple[str, str]], known: tuple[str, ...]
+) -> tuple[dict[str, Any], Mapping[str, str]]:
+    """What is stated of a request for estimates, in the unit of the API, and the units."""
+    try:
+        document = document_of(rest)
+    except Unprocessable as error:
+        faults = [_with_own_hint(fault, known) for fault in error.errors]
+        raise Unprocessable(error.detail, faults) from None
     units = document.pop("units", {})
     refuse_units(units)
-    return Asked(**{"limit": min(DEFAULT_LIMIT, most), **found}, estimate=document, units=units)
+    used = set()
+    for section in ("soil", "probe", "assume"):
+        words = document.get(section)
+        for name, value in words.items() if isinstance(words, dict) else ():
+            about, is_width = quantity_of(name)
+            if about in units and isinstance(value, float):
+                used.add(about)
+                convert = converter(about, units[about], is_width=is_width)
+                document[section] = {**document[section], name: float(convert(value))}
+    faults = [
+        Fault(_NO_COLUMN.format(name=name, columns=", ".join(ESTIMATED)), "?units")
+        for name in units
+        if name not in ESTIMATED and name not in used
+    ]
+    if faults:
+        raise Unprocessable("the query holds what cannot be used", faults)
+    return document, units
+
+
+_NO_COLUMN = "this answer has no {name} that could be in another unit; it has {columns}"
+
+
+def _with_own_hint(fault: Fault, known: tuple[str, ...]) -> Fault:
+    """What is wrong with a parameter that is most likely one of the question's own."""
+    name = fault.pointer.removeprefix("?")
+    meant = nearest(name, (*known, *PLACES))
+    if meant not in known or not fault.detail.startswith("unknown parameter"):
+        return fault
+    return Fault(f"unknown parameter {shown(name)}; did you mean {meant}?", fault.pointer)
 
 
 def _read(own: Mapping[str, str], faults: list[Fault]) -> dict[str, Any]:
@@ -103,7 +142,7 @@ def _read(own: Mapping[str, str], faults: list[Fault]) -> dict[str, Any]:
         try:
             found |= _READERS[name](text)
         except ValueError as error:
-            faults.append(Fault(f"{name}: {error}", f"?{name}"))
+            faults.append(Fault(str(error), f"?{name}"))
     return found
 
 
@@ -141,8 +180,19 @@ def _moment(name: str, text: str) -> dict[str, Any]:
     try:
         return {name: microseconds(text)}
     except TimeError as error:
-        plus = "; write + as %2B in an address" if re.search(r" \d\d:\d\d$", text) else ""
-        raise ValueError(f"{error}, found {shown(text)}{plus}") from None
+        raise ValueError(f"{error}, found {shown(text)}{_plus(text)}") from None
+
+
+def _plus(text: str) -> str:
+    """What became of a plus sign that stood for itself in an address."""
+    return "; write + as %2B in an address" if re.search(r" \d\d:\d\d$", text) else ""
+
+
+def _columns(text: str) -> dict[str, Any]:
+    names = tuple(name.strip() for name in text.split(",") if name.strip())
+    if not names:
+        raise ValueError("expected names of columns, comma-separated")
+    return {"columns": names}
 
 
 def _depth(text: str) -> dict[str, Any]:
@@ -154,7 +204,7 @@ def _depth(text: str) -> dict[str, Any]:
 def _limit(text: str) -> dict[str, Any]:
     if not re.fullmatch(r"[1-9]\d{0,8}", text, re.ASCII):
         raise ValueError(f"expected a whole number from 1, found {shown(text)}")
-    return {"limit": int(text)}
+    return {"limit": int(text), "limited": True}
 
 
 def _within(text: str) -> dict[str, Any]:
@@ -168,7 +218,9 @@ def _zone(text: str) -> dict[str, Any]:
     try:
         zone_of(text)
     except ParameterError as error:
-        raise ValueError(error.complaints[0].detail) from None
+        offset = "; an offset is no zone" if re.search(r"\d\d:\d\d$", text) else ""
+        detail = f"{error.complaints[0].detail}{offset}{_plus(text)}"
+        raise ValueError(detail.replace("takes", "expected", 1)) from None
     return {"zone": text}
 
 
@@ -188,6 +240,7 @@ _READERS: Mapping[str, Any] = {
     "zone": _zone,
     "mean": lambda text: _one_of("mean", ("plain", "time-weighted"), text),
     "limit": _limit,
+    "columns": _columns,
     "after": _after,
     "at_revision": lambda text: {"at_revision": text},
     "shape": lambda text: _one_of("shape", ("rows", "columns"), text),

@@ -19,6 +19,7 @@ from service.schemas.estimates import EstimatesSettings
 from service.stations.ask.planning import Part, Places, planned
 from service.stations.ask.stored import Stored
 from service.stations.ask.taking_in import Taken, columns_with, take_in
+from service.stations.ask.wording import named_soil
 from service.stations.documents import Documents
 from service.stations.settings import basis_for
 
@@ -140,7 +141,7 @@ def _ground(
     part: Part, documents: Documents, asked: Mapping[str, Any], troubles: list[str]
 ) -> Ground | None:
     """What estimates with this soil and probe rest on; None where that cannot be settled."""
-    soil, probe, held, kind = part
+    soil, probe, held, kind = named_soil(asked) or part[0], *part[1:]
     kept_soil, kept_probe = documents.find("soil", soil), documents.find("probe", probe)
     if kept_soil is None or kept_probe is None:
         troubles.append(f"the soil {soil} or the probe {probe} is not there")
@@ -149,7 +150,10 @@ def _ground(
     try:
         settings, basis = basis_for(kept_soil.body or {}, kept_probe.body or {}, asked, columns)
     except (ModelError, Unprocessable) as error:
-        told = error.detail if isinstance(error, Unprocessable) else error
+        told: object = error
+        if isinstance(error, Unprocessable):
+            details = dict.fromkeys(fault.detail for fault in error.errors)
+            told = "; ".join(details) or error.detail
         troubles.append(f"soil {soil}, probe {probe}: {told}")
         return None
     return Ground(soil, probe, settings, basis)

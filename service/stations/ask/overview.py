@@ -14,6 +14,7 @@ from service.stations.ask.joining import newest_of_each
 from service.stations.ask.planning import within_effort
 from service.stations.ask.questions import Page, table_of
 from service.stations.ask.stored import newest, stored
+from service.stations.ask.wording import refuse_words
 from service.stations.documents import Documents, Shelf
 from service.store.interface import VALUES, Span
 
@@ -24,6 +25,7 @@ def latest_page(shelf: Shelf, asked: Asked, allowed: Collection[str]) -> tuple[P
     allowed: names of the stations that may be told; empty: all.
     """
     head, documents = shelf.fresh()
+    refuse_words(asked.estimate, documents)
     stations = documents.by_kind["station"]
     channels = [
         c

@@ -12,7 +12,7 @@ import polars as pl
 from models.quantity import QUANTITIES
 from service import __version__
 from service.errors import Unprocessable
-from service.faults import Fault, hint
+from service.faults import Fault
 from service.routes.stored.documents import absent, revision_of
 from service.schemas.echo import units_of_answer
 from service.stations.ask.answers import frame_of, numbers, slugs
@@ -20,12 +20,14 @@ from service.stations.ask.asked import Asked, cursor_of, now
 from service.stations.ask.estimating import Estimated, estimated
 from service.stations.ask.joining import newest_of_each, probe_names
 from service.stations.ask.planning import within_effort
+from service.stations.ask.selecting import at_place, wanted
 from service.stations.ask.stored import Stored, newest, raw_rows, stored
+from service.stations.ask.wording import refuse_words
 from service.stations.documents import Documents, Shelf
 from service.stations.station import Station
 from service.stations.times import text_of
 from service.store.append import unpacked
-from service.store.interface import RAW, VALUES, Channel, Span
+from service.store.interface import RAW, VALUES, Channel, Row, Span
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,6 +42,12 @@ class Scene:
     documents: Documents
     station: Station
     channels: Sequence[Channel]
+    place: str | None = None
+    """Of the depth that is asked about; None: all of them."""
+
+    def here(self, rows: Sequence[Row]) -> Sequence[Row]:
+        """Those rows of the series that are of the depth asked about."""
+        return at_place(rows, self.channels, self.station, self.place)
 
     def columns(self) -> list[str]:
         """Numbers that any of the series holds."""
@@ -68,10 +76,10 @@ def scene_of(shelf: Shelf, name: str, asked: Asked) -> Scene:
     if station is None:
         raise absent("station", name, documents)
     known = shelf.store.channels(name)
-    channels = asked.wanted(known)
-    if not channels and asked.probe is not None:
-        _refuse_unknown(asked.probe, station, known)
-    return Scene(shelf, head.revision if upto is None else upto, upto, documents, station, channels)
+    channels = wanted(known, station, asked.probe, asked.place)
+    refuse_words(asked.estimate, documents, known, upto)
+    reached = head.revision if upto is None else upto
+    return Scene(shelf, reached, upto, documents, station, channels, asked.place)
 
 
 def span_of(scene: Scene, asked: Asked, columns: Sequence[str], limit: int | None) -> Span:
@@ -98,6 +106,7 @@ def readings_page(scene: Scene, asked: Asked) -> Page:
     raw = [RAW] if any(RAW in c.held_at(scene.upto) for c in scene.channels) else []
     rows = scene.shelf.store.readings(span_of(scene, asked, (*columns, *raw), asked.limit + 1))
     page, after = _cut(rows, asked.limit)
+    page = scene.here(page)
     records = [unpacked(row[-1]) if row[-1] else None for row in page] if raw else []
     found = stored([row[: 3 + len(columns)] for row in page], scene.channels, columns)
     own = np.where(np.isnan(d := _named_depth(found)), found.values.get("depth", d), d)
@@ -123,6 +132,7 @@ def estimates_page(scene: Scene, asked: Asked) -> Page:
     span = span_of(scene, asked, columns, asked.limit + 1)
     rows = scene.shelf.store.readings(span)
     page, after = _cut(rows, asked.limit)
+    page = scene.here(page)
     found = stored(page, scene.channels, columns, raw_rows(scene.shelf.store, span, page))
     fits = within_effort(found, scene.documents, scene.upto)
     if fits < len(page):
@@ -136,9 +146,10 @@ def readings_between(scene: Scene, start: int | None, end: int | None, most: int
     """All readings of a time; raises Unprocessable where they are more than one answer holds."""
     store, columns = scene.shelf.store, scene.columns()
     span = Span(scene.channels, columns, start, end, None, scene.upto, most + 1)
-    rows = store.readings(span)
-    if len(rows) > most:
+    all_rows = store.readings(span)
+    if len(all_rows) > most:
         _refuse_long(f"more than {most} readings lie in that time")
+    rows = scene.here(all_rows)
     found = stored(rows, scene.channels, columns, raw_rows(store, span, rows))
     fits = within_effort(found, scene.documents, scene.upto)
     if fits < len(found):
@@ -157,8 +168,8 @@ def profile_page(scene: Scene, asked: Asked) -> Page:
     columns = scene.columns()
     moment = now() if asked.moment is None else asked.moment
     span = Span(scene.channels, columns, end=moment + 1, upto=scene.upto)
-    rows, raw = newest(scene.shelf.store, span)
-    rows = [row for row in rows if row[1] > moment - asked.within]
+    last, raw = newest(scene.shelf.store, span)
+    rows = [row for row in scene.here(last) if row[1] > moment - asked.within]
     found = stored(rows, scene.channels, columns, raw)
     fits = within_effort(found, scene.documents, scene.upto)
     result = estimated(found, scene.documents, asked.estimate, asked.units, scene.upto, fits)
@@ -224,10 +235,3 @@ def _is_quantity(name: str) -> bool:
 
 def _text(record: Any) -> str:
     return orjson.dumps(record).decode()
-
-
-def _refuse_unknown(probe: str, station: Station, known: Sequence[Channel]) -> None:
-    names = {c.probe for c in known if c.probe} | {i.probe for i in station.installations}
-    if probe not in names:
-        detail = f"{station.name} has no probe {probe[:80]}{hint(probe, names)}"
-        raise Unprocessable(detail, [Fault(detail, "?probe")])

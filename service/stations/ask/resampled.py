@@ -1,16 +1,15 @@
 """Estimates in bins of a quarter of an hour, an hour or a day, series by series."""
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from typing import Any
 
 import numpy as np
 import polars as pl
 from numpy.typing import NDArray
 
-from models.conversion import from_si
 from models.flags import Flags
 from models.relation import Array
-from models.series import COVERAGE_RULE, MEAN_RULES, Bins, Bounds, resample, series, usual_step
+from models.series import COVERAGE_RULE, MEAN_RULES, Bins, resample, series, usual_step
 from service.schemas.estimates import ESTIMATED
 from service.series_edges import EVERY, bin_edges, zone_of
 from service.stations.ask.answers import frame_of, numbers, slugs
@@ -19,7 +18,7 @@ from service.stations.ask.estimating import Estimated, estimated
 from service.stations.ask.joining import probe_names, series_of
 from service.stations.ask.questions import Page, Scene, readings_between, rest_of
 from service.stations.ask.stored import Stored
-from service.stations.times import SECOND, text_of
+from service.stations.times import SECOND, rfc3339, text_of
 
 _NUMBER, _START = "#series", "#start"
 """Columns that lead to the next page and are not answered."""
@@ -49,7 +48,24 @@ def resampled_page(scene: Scene, asked: Asked) -> Page:
     }
     if asked.mean != "plain":
         rules["gap_seconds"] = gap
-    return Page(page, {**rules, **rest_of(scene, asked, result)}, after, result)
+    rest = rest_of(scene, asked, result)
+    rest["advisories"] = [*_widened(asked, (start, end), every), *rest["advisories"]]
+    return Page(page, {**rules, **rest}, after, result)
+
+
+def _widened(
+    asked: Asked, whole: tuple[int | None, int | None], every: str
+) -> Iterator[dict[str, str]]:
+    """That more was taken in than was asked for, where bins begin before or end after it."""
+    ends = zip(("start", "end"), (asked.start, asked.end), whole, strict=True)
+    beyond = [
+        f"{name} {rfc3339(stated)} became {rfc3339(used)}"
+        for name, stated, used in ends
+        if stated is not None and used is not None and stated != used
+    ]
+    if beyond:
+        text = f"means are of whole intervals of {every}: {' and '.join(beyond)}"
+        yield {"code": "whole-intervals", "text": text}
 
 
 def _whole(asked: Asked, every: str, zone: Any) -> tuple[int | None, int | None]:
@@ -83,16 +99,20 @@ def _binned(
     table: dict[str, Any] = {}
     gap = 0.0
     for name in ESTIMATED:
-        if name not in result.columns:
+        if name not in result.columns and name != ESTIMATED[0]:
             continue
-        parts = (result.columns[name + suffix][rows] for suffix in ("", "_u", "_u_shared"))
+        nothing = np.full(len(found), np.nan)  # where none of the readings can be estimated
+        parts = (
+            result.columns.get(name + suffix, nothing)[rows]
+            for suffix in ("", "_u", "_u_shared", "_lower", "_upper")
+        )
         sources = result.source[rows] + 1
-        line = series(seconds, *map(_known, parts), flags=flags, sources=sources)
+        value, u, shared, lower, upper = map(_known, parts)
+        line = series(seconds, value, u, shared, flags=flags, sources=sources, ends=(lower, upper))
         step = scene.station.interval or usual_step(line)
         step = step if np.isfinite(step) else EVERY[every]
         gap = GAP_STEPS * step
-        bins = resample(line, edges, step=step, gap=gap, rules=(asked.mean,),
-                        bounds=_bounds(name, asked))  # fmt: skip
+        bins = resample(line, edges, step=step, gap=gap, rules=(asked.mean,))
         if not table:
             table = _keys(bins, result, rows[_last_rows(seconds, bins)])
         table |= _told(name, bins, asked.mean, main=name == ESTIMATED[0])
@@ -101,12 +121,6 @@ def _binned(
 
 def _known(values: Array) -> Array:
     return np.ascontiguousarray(values)
-
-
-def _bounds(name: str, asked: Asked) -> Bounds:
-    probability = asked.estimate.get("coverage_probability", 0.95)
-    high = float(from_si(name, 1.0, asked.units)) if name == "water_content" else np.inf
-    return Bounds(0.0, high, probability)
 
 
 def _last_rows(seconds: Array, bins: Bins) -> NDArray[np.intp]:

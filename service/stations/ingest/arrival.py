@@ -6,6 +6,7 @@ from dataclasses import dataclass, field
 from difflib import get_close_matches
 from typing import Any
 
+from models.numerics.digits import without_rounding
 from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from models.units import UNITS
@@ -13,7 +14,7 @@ from service.faults import shown
 from service.stations.documents import Documents
 from service.stations.station import Station
 from service.stations.times import SECOND, rfc3339
-from service.store.interface import IN_PLACE_OF_RAW, VALUES, Batch
+from service.store.interface import IN_PLACE_OF_RAW, VALUES, Batch, place_at
 
 SHOWN = 1000
 """Rejected rows and conflicts that an answer lists; of the others it says how many there are."""
@@ -151,6 +152,20 @@ class Rules:
         listed = f"; installed here are {', '.join(named[:10])}" if named else ""
         return f"there is no probe {probe[:80]}{listed}"
 
+    def depth_fault(self, depth: float) -> str | None:
+        """What is wrong with a depth that readings name instead of a probe, m."""
+        if not DEPTH_GATE.low <= depth <= DEPTH_GATE.high:
+            return f"expected a depth from 0 to {DEPTH_GATE.high:g} m, found {depth:g}"
+        above = depth < 0 and place_at(depth) not in {
+            place_at(item.depth) for item in self.station.installations
+        }
+        if above:
+            return (
+                f"a depth is counted downwards, found {depth:g} m: send {-depth:g}, or install the "
+                "probe above the surface first"
+            )
+        return None
+
     def converters(self) -> dict[str, Callable[[Any], Any]]:
         """For each column in another unit, what brings its values to the unit of the API."""
         found: dict[str, Callable[[Any], Any]] = {}
@@ -163,8 +178,12 @@ class Rules:
 
 
 def converter(quantity: str, code: str, *, is_width: bool = False) -> Callable[[Any], Any]:
-    """What brings values of a quantity from a unit to that of the API."""
+    """What brings values of a quantity from a unit to that of the API.
+
+    The same number comes out as would have been sent in the unit of the API.
+    """
     unit, own = UNITS[code], UNITS[QUANTITIES[quantity].unit]
     if is_width:
-        return lambda value: own.width_from_si(unit.width_to_si(value))
-    return lambda value: own.from_si(unit.to_si(value))
+        return lambda value: without_rounding(own.width_from_si(unit.width_to_si(value)))
+    offset = float(own.from_si(unit.offset))
+    return lambda value: without_rounding(own.from_si(unit.to_si(value)), offset)

@@ -8,7 +8,6 @@ from models.conversion import refuse_units
 from service.errors import Unprocessable
 from service.faults import Fault, shown
 from service.stations.ingest.arrival import (
-    DEPTH_GATE,
     KNOWN,
     RAW_RECORDS,
     Arrival,
@@ -183,8 +182,8 @@ def _place(row: Row, found: dict[str, Any], rules: Rules) -> str:
     depth = found.pop("depth", None)
     if depth is None:
         raise RowError("probe", "expected a probe or a depth: without one, the key is not complete")
-    if DEPTH_GATE.excludes(depth):
-        raise RowError("depth", f"expected a depth from -1 to 1000 m, found {shown(depth)}")
+    if fault := rules.depth_fault(depth):
+        raise RowError("depth", fault)
     return place_at(depth)
 
 

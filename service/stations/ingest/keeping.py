@@ -10,8 +10,10 @@ import anyio.to_thread
 from service.errors import NotFound
 from service.stations.documents import Documents, Shelf
 from service.stations.ingest.arrival import SHOWN, Arrival, Rejected
-from service.stations.ingest.remarking import Suspicions, advice_on_names
+from service.stations.ingest.placing import Misplaced
+from service.stations.ingest.remarking import Suspicions, advice_on_gone, advice_on_names
 from service.stations.problems import Conflicted
+from service.stations.station import Station
 from service.stations.times import rfc3339
 from service.store.errors import Stale
 from service.store.interface import Batch, Channel, Outcome
@@ -35,20 +37,25 @@ class Tally:
     missing: int = 0
     ignored: dict[str, None] = field(default_factory=dict)
     suspicions: Suspicions = field(default_factory=Suspicions)
+    misplaced: Misplaced = field(default_factory=Misplaced)
+    gave_way: int = 0
 
-    def note(self, arrival: Arrival) -> None:
+    def note(self, arrival: Arrival, station: Station | None, documents: Documents) -> None:
         """Add what was found before anything was kept."""
         self.rejected += arrival.rejected[: SHOWN - len(self.rejected)]
         self.rejected_count += arrival.rejected_count
         self.missing += arrival.missing
         self.ignored |= dict.fromkeys(arrival.ignored)
-        self.suspicions.note(arrival.rows.values)
+        self.suspicions.note(arrival.rows)
+        if station is not None:
+            self.misplaced.note(arrival.rows, station, documents)
 
     def add(self, outcome: Outcome, batch: Batch, numbers: Sequence[int]) -> None:
         """Add what became of a batch."""
         self.accepted += outcome.accepted
         self.completed += outcome.completed
         self.duplicates += outcome.duplicates
+        self.gave_way += outcome.gave_way
         self.conflict_count += len(outcome.clashes)
         for clash in outcome.clashes[: SHOWN - len(self.conflicts)]:
             place = batch.places[clash.row]
@@ -75,7 +82,12 @@ class Tally:
             ],
             "missing": self.missing,
             "ignored": list(self.ignored),
-            "advisories": [*advice_on_names(self.ignored), *self.suspicions.advisories()],
+            "advisories": [
+                *advice_on_names(self.ignored),
+                *self.suspicions.advisories(),
+                *advice_on_gone(self.gave_way),
+                *self.misplaced.advisories(),
+            ],
         }
         for name, count in (("conflicts", self.conflict_count), ("rejected", self.rejected_count)):
             if count > len(told[name]):
@@ -96,7 +108,7 @@ async def keep(
 
     Raises NotFound when the station is gone, Conflicted when a probe is.
     """
-    tally.note(arrival)
+    tally.note(arrival, documents.station(station), documents)
     parts = list(arrival.rows.batches(station, documents.revision, MOST_ROWS))
     if len(parts) == 1:
         outcomes = [await _kept(writer, shelf, parts[0][1])]

@@ -1,4 +1,4 @@
-"""What an answer to readings should say of them as a whole: names and units perhaps meant."""
+"""What an answer to readings should say of them as a whole: names, units and values meant."""
 
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
@@ -7,40 +7,75 @@ import numpy as np
 
 from models.flags import BIT, Flags
 from models.quantity import QUANTITIES
+from models.readings import quantity_of
 from models.remarks import Remarks
 from service.faults import shown
 from service.schemas.echo import advice_echo
-from service.stations.ingest.arrival import Values, likely
-from service.store.interface import VALUES
+from service.stations.ingest.arrival import Rows, likely
+from service.store.possible import POSSIBLE
 
-_GATES: Mapping[str, tuple[float, float]] = {
-    name: (QUANTITIES[name].gate.low, QUANTITIES[name].gate.high)  # type: ignore[union-attr]
-    for name in VALUES
-    if name in QUANTITIES and QUANTITIES[name].lookalikes and QUANTITIES[name].gate
-}
-"""What is possible of quantities that are often sent in another unit, in the unit of the API."""
 MOST_NAMES = 20
 
 
 class Suspicions:
-    """Values that are impossible in their unit and would be possible in another."""
+    """Values that are impossible in their unit, some of which another unit would explain."""
 
     def __init__(self) -> None:
         self._remarks: Remarks | None = None
+        self._odd: dict[str, tuple[int, float, int]] = {}
+        """By column: the first row, its value, and how many there are."""
 
-    def note(self, values: Values) -> None:
+    def note(self, rows: Rows) -> None:
         """Look at some readings, in the unit of the API."""
-        for name, (low, high) in _GATES.items():
-            cells: Sequence[Any] = values.get(name, ())
-            odd = [cell for cell in cells if cell is not None and not low <= cell <= high]
+        for name, (low, high) in POSSIBLE.items():
+            cells: Sequence[Any] = rows.values.get(name, ())
+            odd = [
+                (row, cell)
+                for row, cell in enumerate(cells)
+                if cell is not None and not low <= cell <= high
+            ]
             if odd:
-                self._remarks = self._remarks or Remarks()
-                flags: Flags = np.full(len(odd), BIT[f"out-of-gate:{name}"])
-                self._remarks.note({name: np.array(odd, dtype=np.float64)}, {}, flags)
+                row, value = odd[0]
+                first, example, count = self._odd.get(name, (rows.numbers[row], value, 0))
+                self._odd[name] = (first, example, count + len(odd))
+                self._suspect(name, [cell for _, cell in odd])
 
-    def advisories(self) -> list[dict[str, str]]:
+    def advisories(self) -> list[dict[str, Any]]:
         """What was suspected."""
-        return [] if self._remarks is None else advice_echo(self._remarks.advice({}))
+        told: list[dict[str, Any]] = list(_impossible(self._odd))
+        return told + ([] if self._remarks is None else advice_echo(self._remarks.advice({})))
+
+    def _suspect(self, name: str, odd: Sequence[float]) -> None:
+        if name in QUANTITIES and QUANTITIES[name].lookalikes:
+            self._remarks = self._remarks or Remarks()
+            flags: Flags = np.full(len(odd), BIT[f"out-of-gate:{name}"])
+            self._remarks.note({name: np.array(odd, dtype=np.float64)}, {}, flags)
+
+
+def _impossible(odd: Mapping[str, tuple[int, float, int]]) -> Iterator[dict[str, Any]]:
+    """What became of impossible values, and what to do now."""
+    for name, (row, value, count) in odd.items():
+        low, high = POSSIBLE[name]
+        unit = QUANTITIES[quantity_of(name)[0]].unit
+        rest = f" and {count - 1} more" if count > 1 else ""
+        text = (
+            f"{name} {value:g} in row {row}{rest}: possible is {low:g} to {high:g} {unit}. What is "
+            "impossible is kept as it was sent, gives no estimate, and counts as missing: send the "
+            "reading again with the right number, or with its unit in units, and it is completed. "
+            "A number that stands for no value belongs into sentinels of the station."
+        )
+        yield {"code": "impossible-value", "text": text, "row": row}
+
+
+def advice_on_gone(count: int) -> Iterator[dict[str, str]]:
+    """That possible values came for impossible ones that were kept."""
+    if count:
+        told = "1 impossible value" if count == 1 else f"{count} impossible values"
+        text = (
+            f"{told} gave way to what came now; as of earlier revisions, and among the conflicts, "
+            "what was sent first is still there"
+        )
+        yield {"code": "impossible-gave-way", "text": text}
 
 
 def advice_on_names(ignored: Iterable[str]) -> Iterator[dict[str, str]]:

@@ -11,7 +11,7 @@ from service.formats.block import Block
 from service.formats.errors import HeaderError
 from service.formats.header import folded
 from service.formats.ndjson_rows import KEY as NDJSON
-from service.stations.ingest.arrival import DEPTH_GATE, KNOWN, Arrival, Rows, Rules, nothing_known
+from service.stations.ingest.arrival import KNOWN, Arrival, Rows, Rules, nothing_known
 from service.stations.ingest.table_cells import Checks, TableCells, cells_of, records_in
 from service.stations.times import TimeError, microseconds, read_column
 from service.store.interface import RAW, VALUES, place_at
@@ -119,8 +119,13 @@ class TableReader:
         depth = values.get("depth", np.full(count, np.nan))
         if self._depth is not None:
             depth = np.where(np.isnan(depth), self._depth, depth)
-        lost = bare & ~((depth >= DEPTH_GATE.low) & (depth <= DEPTH_GATE.high))
-        checks.refuse(lost, "probe", lambda _: "expected a probe or a depth from -1 to 1000 m")
+        lost = bare & np.isnan(depth)
+        checks.refuse(lost, "probe", lambda _: "expected a probe or a depth")
+        wrong = {v: told for v in np.unique(depth[bare & ~lost]).tolist()
+                 if (told := self.rules.depth_fault(v))}  # fmt: skip
+        astray = bare & np.isin(depth, list(wrong))
+        checks.refuse(astray, "depth", lambda row: wrong[float(depth[row])])
+        lost = lost | astray
         spelt = {value: place_at(value) for value in np.unique(depth[bare & ~lost]).tolist()}
         for row in np.flatnonzero(bare & ~lost).tolist():
             places[row] = spelt[depth[row]]

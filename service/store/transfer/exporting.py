@@ -14,7 +14,18 @@ Line = dict[str, Any]
 
 
 def exported(opened: SqlStore) -> Iterator[Line]:
-    """Everything that is kept up to one revision, oldest documents first; see Restoring."""
+    """Everything that is kept up to one revision, oldest documents first; see Restoring.
+
+    The last line says how many there are before it, so that a file that was cut off is known.
+    """
+    count = 0
+    for line in _everything(opened):
+        count += 1
+        yield line
+    yield {"end": {"lines": count}}
+
+
+def _everything(opened: SqlStore) -> Iterator[Line]:
     head = opened.head()
     yield {"store": {"form": FORM, "revision": head.revision, "documents": head.documents}}
     for d in opened.documents(upto=head.revision):

@@ -15,7 +15,7 @@ from service.store.asking import Asking
 from service.store.errors import RestoreError
 from service.store.interface import COLUMNS, RAW, Row
 
-FORM = 1
+FORM = 2
 """Of the lines of an export."""
 AT_ONCE = 10_000
 """Lines that are put in at a time."""
@@ -49,8 +49,18 @@ class Restoring(Asking):
                 )
             numbered = enumerate(lines, 1)
             head = _head(*next(numbered, (1, b"")))
+            ended, last = False, 1
             while part := list(islice(numbered, AT_ONCE)):
-                self._put_in(connection, [_entry(number, line) for number, line in part])
+                entries = [_entry(number, line) for number, line in part]
+                last = entries[-1][0]
+                ended = _is_end(entries)
+                self._put_in(connection, entries[:-1] if ended else entries)
+            if not ended:
+                raise RestoreError(
+                    f"the file ends with line {last}, which does not say that it is the end: it "
+                    "was cut off, and nothing of it was imported; make it again with gleyline "
+                    "store export"
+                )
             connection.execute(_REACHED, head)
         return int(head["revision"])
 
@@ -98,6 +108,17 @@ class Restoring(Asking):
             grouped.setdefault(names, []).append(row)
         for names, rows in grouped.items():
             self._insert(connection, names, rows)
+
+
+def _is_end(entries: Sequence[tuple[int, str, Entry]]) -> bool:
+    """Whether these are the last lines; raises RestoreError where lines before are missing."""
+    number, kind, entry = entries[-1]
+    if kind == "end" and entry.get("lines") != number - 1:
+        raise RestoreError(
+            f"line {number} is the end after {entry.get('lines')} lines, and {number - 1} came: "
+            "the file is no whole export; make it again with gleyline store export"
+        )
+    return kind == "end"
 
 
 _REACHED = text("UPDATE store SET revision = :revision, documents = :documents")

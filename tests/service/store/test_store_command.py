@@ -138,7 +138,7 @@ def test_an_export_goes_into_an_empty_store_of_either_database(store, filled, tm
         other.close()
 
 
-HEAD = b'{"store":{"form":1,"revision":3,"documents":2}}\n'
+HEAD = b'{"store":{"form":2,"revision":3,"documents":2}}\n'
 
 
 @pytest.mark.parametrize(
