@@ -67,7 +67,7 @@ class Settings(BaseSettings):
         default=16384 * MIB, ge=1024, description="longest answer to a table, kept until it ends"
     )
     drawn_values: int = Field(
-        default=1_000_000_000,
+        default=300_000_000,
         ge=1_000_000,
         description="most draws times readings times models of one request",
     )

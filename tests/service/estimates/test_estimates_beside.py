@@ -89,7 +89,7 @@ def test_more_draws_than_one_request_may_have_are_refused_before_they_are_made(s
     assert answer.status_code == 422
     (fault,) = answer.json()["errors"]
     assert fault["pointer"] == "#/propagation/draws"
-    assert "at most 500000 draws" in fault["detail"]
+    assert "at most 150000 draws" in fault["detail"]
 
 
 def test_draws_of_a_table_are_those_of_json(server):
