@@ -160,6 +160,8 @@ def add_key(label: str, scopes: tuple[Reach, ...], stations: tuple[str, ...], da
         raise click.ClickException(str(error)) from None
     click.echo(secret)
     click.echo("Keep it now: only its hash is stored. Send it as Authorization: Bearer.", err=True)
+    if stations:
+        click.echo(f"It reaches {', '.join(stations)} alone, be it there or not.", err=True)
 
 
 @key.command("list")

@@ -221,6 +221,8 @@ def _methods(request: Request, told: str) -> list[str]:
 def _no_address(request: Request) -> str:
     """That there is no such address, and the nearest that there is."""
     path = request.url.path
+    if len(path) > 1 and path.endswith("/"):
+        return f"addresses have no trailing slash: ask for {shortened(path.rstrip('/'))}"
     known = [template for template in request.app.openapi()["paths"] if "{" not in template]
     ends = [template for template in known if template.endswith(path.rstrip("/"))]
     meant = ends[0] if len(ends) == 1 and len(path) > 1 else nearest(path, known)

@@ -111,7 +111,7 @@ def mean_band(
     share = np.divide(common, whole, out=np.ones(known.shape), where=whole > 0)
     number = int(labels.max(initial=-1)) + 1
     found = []
-    for side, outermost in enumerate((np.minimum, np.maximum)):
+    for side, outermost in enumerate((np.fmin, np.fmax)):
         end = np.broadcast_to(column(ends[side]), known.shape)
         arm = np.maximum(end - known if side else known - end, 0.0)
         mean = weighted_mean(
@@ -139,10 +139,13 @@ def _summed(
         raise ParameterError("uncertainty", [Complaint("shared", detail)])
     labels, source = _labels(groups, value.shape), _labels(sources, value.shape)
     number = labels.max(initial=-1) + 1
-    several = source.max(initial=0) + 1
-    pairs, pair = np.unique(labels * several + source, return_inverse=True)
-    of_pair = np.square(np.bincount(pair, weight * shared))
-    common = np.bincount(pairs // several, of_pair, minlength=number)
+    if source.size and np.ptp(source) == 0:
+        common = np.square(np.bincount(labels, weight * shared, minlength=number))
+    else:
+        several = source.max(initial=0) + 1
+        pairs, pair = np.unique(labels * several + source, return_inverse=True)
+        of_pair = np.square(np.bincount(pair, weight * shared))
+        common = np.bincount(pairs // several, of_pair, minlength=number)
     alone = np.bincount(labels, np.square(weight) * np.maximum(own, 0.0), minlength=number)
     return Aggregate(
         column(np.bincount(labels, weight * value, minlength=number)),

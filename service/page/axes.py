@@ -36,11 +36,18 @@ class Axis:
 
 
 def axis_for(
-    values: Array, start: float, end: float, *, logarithmic: bool = False, floor: float = -math.inf
+    values: Array,
+    start: float,
+    end: float,
+    *,
+    logarithmic: bool = False,
+    floor: float = -math.inf,
+    least: float = 0.0,
 ) -> Axis:
     """An axis that holds all values with a little room, and not less than ``floor``.
 
     values: any shape; those that are no number, or have no logarithm, do not count.
+    least: what a linear axis spans at least, so that the last digits of numbers do not fill it.
     """
     known = values[np.isfinite(values) & ((values > 0) | (not logarithmic))]
     if not known.size:
@@ -49,6 +56,8 @@ def axis_for(
     if logarithmic:
         room = max(high / low, 1.1) ** 0.04
         return Axis(low / room, high * room, start, end, logarithmic=True)
+    if high - low < least:
+        low, high = 0.5 * (low + high - least), 0.5 * (low + high + least)
     room = 0.06 * (high - low) or 0.05 * abs(high) or 0.5
     return Axis(max(low - room, min(floor, low)), high + room, start, end)
 

@@ -14,6 +14,7 @@ import numpy as np
 
 from models.errors import Complaint, ParameterError
 from service.page.axes import Axis, axis_for
+from service.page.chart_changes import Change, draw_changes
 from service.page.chart_key import draw_key
 from service.page.chart_lanes import LANE, draw_lanes, shortened
 from service.page.chart_lines import Look, draw_band, draw_flagged, draw_line, look_of
@@ -22,7 +23,7 @@ from service.page.svg import MEDIA_TYPE, Drawing
 from service.page.time_axis import Tick, date, time_ticks
 from service.series_edges import FIRST, LAST
 
-__all__ = ["MEDIA_TYPE", "Line", "Panel", "lines_by_depth", "time_chart"]
+__all__ = ["MEDIA_TYPE", "Change", "Line", "Panel", "lines_by_depth", "time_chart"]
 
 WIDTH, LEFT, RIGHT = 960.0, 66.0, 150.0
 TOP, HEIGHT, BETWEEN, BOTTOM = 96.0, 230.0, 44.0, 56.0
@@ -55,12 +56,14 @@ def time_chart(
     zone: ZoneInfo,
     gap: float,
     notes: Iterable[str] = (),
+    changes: Sequence[Change] = (),
 ) -> str:
     """Panels one under the other over one time axis, as an SVG document.
 
     span: start and end of the axis, s since the epoch. zone: of its dates and clock times.
     gap: s, positive; numbers further apart are not joined, and the time between is shown as a gap.
     notes: a line each under the chart: what the bands hold, the rule of a mean.
+    changes: moments from which on a line rests on something else; each has a rule and its words.
 
     Where readings lie closer than a pixel, the line is their mean and a darker strip reaches from
     the lowest to the highest of them. The same input gives the same bytes.
@@ -75,7 +78,7 @@ def time_chart(
         lines = [(line.name, drawn(line, time, gap), looks[line.name]) for line in panel.lines]
         placed.append(_Placed(panel, lines, placed[-1].bottom + BETWEEN if placed else TOP))
     bottom = placed[-1].bottom if placed else TOP
-    said = [*notes, f"Hatched: no number for more than {_duration(gap)}."]
+    said = [*notes, f"Hatched: no number for more than {_longest(panels, gap)}."]
     if any(line.lowest is not None for place in placed for _, line, _ in place.lines):
         said.append("Each pixel shows the mean of its readings, the dark strip their extremes.")
     if any(_cut(place) for place in placed):
@@ -89,6 +92,7 @@ def time_chart(
     ticks = time_ticks(*span, zone, int((time.end - time.start) / TICKS_APART))
     for number, place in enumerate(placed):
         _draw_panel(drawing, place, f"panel-{number}", time, ticks)
+        draw_changes(drawing, changes, time, (place.top, HEIGHT), named=number == 0)
         draw_lanes(drawing, place.lines, place.top + HEIGHT + 6.0, time, hatching)
     _draw_time(drawing, ticks, bottom, time)
     draw_key(drawing, looks, WIDTH - RIGHT + 18.0, TOP, hatching)
@@ -196,6 +200,13 @@ def _described(placed: Sequence[_Placed], when: str) -> str:
 def _moment(seconds: float, zone: ZoneInfo) -> str:
     local = datetime.fromtimestamp(seconds, zone)
     return f"{date(local)} {local:%H:%M}"
+
+
+def _longest(panels: Sequence[Panel], gap: float) -> str:
+    """How long a line may be without a number and still be joined."""
+    own = [line.gap for panel in panels for line in panel.lines if line.gap is not None]
+    short, long = (_duration(end(own, default=gap)) for end in (min, max))
+    return short if short == long else f"{short} to {long}, line by line"
 
 
 def _duration(seconds: float) -> str:

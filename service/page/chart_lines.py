@@ -15,6 +15,8 @@ DASHES = ("", "9 4", "2.5 3", "11 3 2.5 3", "6 3 2 3 2 3")
 SHAPES = ("circle", "square", "triangle", "diamond", "plus", "cross", "wedge")
 MARKERS_APART = 88.0
 """Pixels between the markers of a line."""
+FEW = 10
+"""Points of a line up to which each has its marker."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,7 +53,10 @@ def draw_band(drawing: Drawing, line: Drawn, look: Look, time: Axis, height: Axi
 
 
 def draw_line(drawing: Drawing, line: Drawn, look: Look, time: Axis, height: Axis) -> None:
-    """The line itself over a strip from lowest to highest, with markers along it."""
+    """The line itself over a strip from lowest to highest, with markers along it.
+
+    A marker is hollow where every reading behind it is flagged.
+    """
     x, y = time.place(line.seconds), height.place(line.value)
     if line.lowest is not None and line.highest is not None:
         low, high = height.place(line.lowest), height.place(line.highest)
@@ -59,8 +64,10 @@ def draw_line(drawing: Drawing, line: Drawn, look: Look, time: Axis, height: Axi
     dash = {"stroke_dasharray": look.dash} if look.dash else {}
     drawing.curve(x, y, stroke=look.colour, stroke_width=1.8, stroke_linejoin="round", **dash)
     at = _marked(x, time, look.place)
-    drawing.markers(look.shape, x[at], y[at], fill=look.colour, stroke=look.colour,
-                    stroke_width=1.2)  # fmt: skip
+    for doubtful, fill in ((False, look.colour), (True, "#ffffff")):
+        some = at[line.doubtful[at] == doubtful]
+        drawing.markers(look.shape, x[some], y[some], fill=fill, stroke=look.colour,
+                        stroke_width=1.2)  # fmt: skip
 
 
 def draw_flagged(drawing: Drawing, line: Drawn, time: Axis, height: Axis) -> None:
@@ -76,10 +83,10 @@ def _within(pixels: Array, height: Axis) -> Array:
 
 
 def _marked(x: Array, time: Axis, place: int) -> "np.ndarray[tuple[int], np.dtype[np.intp]]":
-    """Points nearest to evenly spaced places, and every point that is joined to no other."""
+    """Points nearest to evenly spaced places, and those joined to no other; all where few are."""
     known = np.flatnonzero(np.isfinite(x))
     alone = [run.start for run in runs(x) if run.stop - run.start == 1]
-    if not known.size:
+    if known.size <= FEW:
         return known
     wanted = np.arange(time.start + 14.0 + 23.0 * (place % 4), time.end, MARKERS_APART)
     after = np.clip(np.searchsorted(x[known], wanted), 0, known.size - 1)

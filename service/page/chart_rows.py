@@ -31,6 +31,8 @@ class Line:
     upper: Array
     flagged: NDArray[np.bool_]
     """Rows that carry a flag, with a number or without."""
+    gap: float | None = None
+    """s, how far apart its numbers may be and still be joined; None: as in the whole chart."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,6 +55,8 @@ class Drawn:
     lowest: Array | None
     """Of the readings behind each point; None where a point is a reading."""
     highest: Array | None
+    doubtful: NDArray[np.bool_]
+    """Points behind which there are none but flagged readings."""
     flagged: Array
     """Times of flagged rows, at most one per pixel."""
     flagged_seconds: Array
@@ -83,6 +87,7 @@ def lines_by_depth(
 
 def drawn(line: Line, time: Axis, gap: float) -> Drawn:
     """The part of a line that a time axis shows; numbers further apart than gap (s) not joined."""
+    gap = gap if line.gap is None else line.gap
     shown = np.flatnonzero((line.seconds >= time.low) & (line.seconds <= time.high))
     shown = shown[np.lexsort((line.value[shown], line.seconds[shown]))]
     seconds, value = line.seconds[shown], line.value[shown]
@@ -94,6 +99,8 @@ def drawn(line: Line, time: Axis, gap: float) -> Drawn:
     if numbers.size > CROWDED * pixels:
         edges = np.linspace(time.low, np.nextafter(time.high, np.inf), pixels + 1)
         place, columns, lowest, highest = _by_pixel(columns, edges)
+    doubtful = np.ones(columns[0].size, dtype=np.bool_)
+    doubtful[place[~line.flagged[shown][numbers]]] = False
     apart = np.flatnonzero(np.diff(seconds[numbers]) > gap)
     apart = apart[place[apart] != place[apart + 1]] if apart.size else apart
 
@@ -114,6 +121,7 @@ def drawn(line: Line, time: Axis, gap: float) -> Drawn:
         upper=upper,
         lowest=None if lowest is None else broken(lowest),
         highest=None if highest is None else broken(highest),
+        doubtful=np.insert(doubtful, place[apart] + 1, False),
         flagged=line.seconds[marked[_one_per(1.0, line.seconds[marked], time)]],
         flagged_seconds=line.seconds[with_number],
         flagged_value=line.value[with_number],

@@ -55,6 +55,8 @@ class Panel:
     y_logarithmic: bool = False
     one_scale: bool = False
     """A unit is as long up as it is across, so that circles are round."""
+    y_least: float = 0.0
+    """What a linear axis of y spans at least, so that the last digits do not fill the plot."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -111,7 +113,8 @@ def _placed(panel: Panel, top: float) -> _Placed:
     up = [part for one in panel.series for part in (one.y, one.lower, one.upper)
           if part is not None]  # fmt: skip
     x = axis_for(across, LEFT, WIDTH - RIGHT, logarithmic=panel.x_logarithmic)
-    y = axis_for(_held(panel, up), top + tall, top, logarithmic=panel.y_logarithmic)
+    y = axis_for(_held(panel, up), top + tall, top, logarithmic=panel.y_logarithmic,
+                 least=panel.y_least)  # fmt: skip
     if panel.one_scale:
         x, y = _one_scale(x, y)
     return _Placed(panel, x, y)

@@ -1,5 +1,6 @@
 """What PUT takes for a soil, a probe and a station."""
 
+import re
 from collections.abc import Mapping
 from typing import Annotated, Any
 from zoneinfo import ZoneInfo
@@ -24,8 +25,24 @@ from service.stations.times import TimeError, microseconds
 from service.store.interface import VALUES, Kind
 
 NAME = r"^[A-Za-z][A-Za-z0-9._-]{0,63}$"
-Name = Annotated[str, Field(pattern=NAME)]
-Text = Annotated[str, Field(min_length=1, max_length=200)]
+
+
+def name_of(text: str) -> str:
+    """The name of something stored; raises ValueError for what is none."""
+    if not re.fullmatch(NAME, text):
+        rule = "a letter, then at most 63 letters, digits, . _ or -"
+        raise ValueError(f"expected a name: {rule}, found {shown(text)}")
+    return text
+
+
+def _plain(text: str) -> str:
+    if any(ord(letter) < 32 for letter in text):  # below are no letters
+        raise ValueError(f"expected text without control characters, found {shown(text)}")
+    return text
+
+
+Name = Annotated[str, Field(json_schema_extra={"pattern": NAME}), AfterValidator(name_of)]
+Text = Annotated[str, Field(min_length=1, max_length=200), AfterValidator(_plain)]
 
 MODEL_WORDS = ("mixing_model", "pore_water_model", "temperature_compensation", "assume")
 """Keys of a stored soil that stand beside the soil in a request for estimates."""

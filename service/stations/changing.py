@@ -11,10 +11,11 @@ from models.conversion import refuse_units
 from models.errors import ModelError, ParameterError
 from models.quantity import READING
 from models.readings import quantity_of
+from models.soil.contradictions import contradictions, is_inverted
 from service.errors import NotFound, Unprocessable
 from service.faults import Fault, hint, pointer, problems_of
 from service.formats.raw_records import SETTINGS
-from service.schemas.query import basis_of, settings_of
+from service.schemas.query import basis_of, settings_of, soil_of
 from service.stations.bodies import BODIES
 from service.stations.documents import Documents, Shelf
 from service.stations.ingest.arrival import converter
@@ -96,7 +97,11 @@ def _check_science(kind: Kind, document: Mapping[str, Any]) -> None:
     if kind == "probe":
         document = {**document, "mixing_model": "topp-1980"}  # any that asks nothing of a probe
     try:
-        basis_of(settings_of(document), everything)
+        settings = settings_of(document)
+        if is_inverted(soil_of(settings.soil, {})):
+            detail = "field_capacity must be above wilting_point: are they exchanged?"
+            raise Unprocessable(detail, [Fault(detail, "#/field_capacity")])
+        basis_of(settings, everything)
     except ParameterError as error:
         faults = [
             Fault(c.detail, pointer(c.place[1:] if c.place[:1] == (kind,) else c.place))
@@ -105,6 +110,14 @@ def _check_science(kind: Kind, document: Mapping[str, Any]) -> None:
         raise Unprocessable(str(error), faults) from None
     except ModelError as error:
         raise Unprocessable(str(error), [Fault(str(error), "#")]) from None
+
+
+def advisories_of(kind: Kind, body: Mapping[str, Any]) -> list[dict[str, str]]:
+    """What a kept document should be read with: parts of a soil that contradict each other."""
+    if kind != "soil":
+        return []
+    told = contradictions(soil_of(settings_of(settings_document(body, {}, {})).soil, {}))
+    return [{"code": "soil-contradicts-itself", "text": text} for text in told]
 
 
 def apply(shelf: Shelf, wish: Wish) -> Change:
@@ -130,6 +143,7 @@ def apply(shelf: Shelf, wish: Wish) -> Change:
             kept = shelf.store.put(new, documents.revision, current.revision if current else 0)
         except (Stale, Changed):
             continue
+        shelf.fresh()  # readings that come next are checked against it
         return Change(kept, created=current is None)
     raise Conflicted("soils, probes and stations keep changing: try again")
 
@@ -146,8 +160,12 @@ def _check_condition(wish: Wish, current: Document | None, documents: Documents)
         raise PreconditionFailed(f"there is no {wish.kind} {wish.name} to be replaced")
     asked = wish.if_match.strip()
     if asked != "*" and str(current.revision) not in _TAG.findall(asked):
+        found = f"is at revision {current.revision}, not {asked[:80]}"
+        if asked.isdecimal():
+            found = f"is at revision {current.revision}; send the tag with its quotes: "
+            found += f'If-Match: "{asked[:18]}"'
         raise PreconditionFailed(
-            f"the {wish.kind} {wish.name} is at revision {current.revision}, not {asked[:80]}",
+            f"the {wish.kind} {wish.name} {found}",
             headers={"ETag": f'"{current.revision}"'},
         )
 

@@ -99,8 +99,12 @@ def faults_of_station(
             found.append(Fault("until must be after from", f"{where}/until"))
         for earlier in station.installations[:place]:
             if earlier.probe == item.probe and earlier.overlaps(item):
-                since = "ever" if earlier.start == EVER else rfc3339(earlier.start)
-                detail = f"{item.probe} is at {earlier.depth:g} m since {since}: end that first"
+                since = "" if earlier.start == EVER else f" since {rfc3339(earlier.start)}"
+                until = "" if earlier.end == NEVER else f" until {rfc3339(earlier.end)}"
+                detail = (
+                    f"{item.probe} is at {earlier.depth:g} m{since}{until} already: say with until "
+                    "and from when it moved"
+                )
                 found.append(Fault(detail, f"{where}/probe"))
                 break
     return found

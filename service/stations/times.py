@@ -45,11 +45,14 @@ def rfc3339(moment: int) -> str:
 
 
 def text_of(moments: Sequence[int] | NDArray[np.int64]) -> pl.Series:
-    """Moments as text in UTC; fractions of a second only where one of them has any."""
+    """Moments as text in UTC, each with a fraction of a second only where it has one."""
     values = np.asarray(moments, dtype=np.int64)
     stamps = pl.Series(values).cast(pl.Datetime("us"))
-    whole = not np.any(values % SECOND)
-    return stamps.dt.to_string("%Y-%m-%dT%H:%M:%SZ" if whole else "%Y-%m-%dT%H:%M:%S%.6fZ")
+    whole = stamps.dt.to_string("%Y-%m-%dT%H:%M:%SZ")
+    odd = values % SECOND != 0
+    if not odd.any():
+        return whole
+    return stamps.dt.to_string("%Y-%m-%dT%H:%M:%S%.6fZ").zip_with(pl.Series(odd), whole)
 
 
 def read_column(text: pl.Series) -> tuple[NDArray[np.int64], NDArray[np.bool_]]:

@@ -12,7 +12,7 @@ import orjson
 from service.settings import SettingsError, read_settings, variable
 from service.store.base import SqlStore
 from service.store.errors import StoreError
-from service.store.opening import open_store, store_of
+from service.store.opening import missing_file, open_store, store_of
 from service.store.transfer.exporting import exported
 
 
@@ -34,10 +34,20 @@ def where(command: Callable[..., None]) -> Callable[..., None]:
 
 
 @contextmanager
-def _opened(given: dict[str, Any], *, prepared: bool = True) -> Iterator[SqlStore]:
-    """The store that the options name; what goes wrong with it ends the command with a sentence."""
+def _opened(
+    given: dict[str, Any], *, prepared: bool = True, existing: bool = False
+) -> Iterator[SqlStore]:
+    """The store that the options name; what goes wrong with it ends the command with a sentence.
+
+    existing: none is made where there is none.
+    """
     try:
         settings = read_settings(**{name: text for name, text in given.items() if text is not None})
+        absent = missing_file(settings) if existing else None
+        if absent is not None:
+            raise click.ClickException(
+                f"there is no store in {absent.parent}: name the folder of one with --data"
+            )
         opened = open_store(settings) if prepared else store_of(settings)
         try:
             yield opened
@@ -52,8 +62,8 @@ def _opened(given: dict[str, Any], *, prepared: bool = True) -> Iterator[SqlStor
 @store.command()
 @where
 def check(**given: str | None) -> None:
-    """Say whether the store is whole; ends with 1 where it is not."""
-    with _opened(given) as opened:
+    """Say whether the store is whole; ends with 1 where it is not, or where there is none."""
+    with _opened(given, existing=True) as opened:
         faults = list(opened.check())
         head = opened.head()
         series = len(opened.channels())
@@ -84,7 +94,7 @@ def backup(file: Path, **given: str | None) -> None:
     an empty database by PostgreSQL's own tool: pg_restore --no-owner --dbname=URL FILE. Where
     there is no pg_dump of the server's version, export does the same.
     """
-    with _opened(given) as opened:
+    with _opened(given, existing=True) as opened:
         opened.backup(file)
 
 
@@ -99,7 +109,7 @@ def export(output: IO[bytes], **given: str | None) -> None:
     what they were before), then conflicts. Times are microseconds since 1970; numbers are in the
     unit of the API.
     """
-    with _opened(given) as opened:
+    with _opened(given, existing=True) as opened:
         for line in exported(opened):
             output.write(orjson.dumps(line) + b"\n")
 

@@ -1,5 +1,7 @@
 """The store that the settings name."""
 
+from pathlib import Path
+
 from service.settings import Settings
 from service.store.base import SqlStore
 from service.store.sqlite import FILE, SqliteStore
@@ -15,6 +17,12 @@ def store_of(settings: Settings) -> SqlStore:
 
         return PostgresqlStore(settings.database_url)
     return SqliteStore(settings.data / FILE)
+
+
+def missing_file(settings: Settings) -> Path | None:
+    """The file that the settings mean and that is not there; None: it is, or no file is meant."""
+    file = None if settings.database_url else settings.data / FILE
+    return file if file is not None and not file.exists() else None
 
 
 def open_store(settings: Settings) -> SqlStore:

@@ -6,13 +6,15 @@ from typing import Annotated, Any
 import anyio.to_thread
 import orjson
 from fastapi import APIRouter, Path, Request, Response
+from pydantic import AfterValidator
 
-from service.errors import Malformed, NotFound, Unprocessable, UnsupportedMediaType
+from service.errors import NotFound, Unprocessable, UnsupportedMediaType
 from service.faults import Fault, hint, shortened
 from service.negotiate import VARY, choose
 from service.routes.etag import matches
-from service.stations.bodies import BODIES, NAME
-from service.stations.changing import Wish, apply, checked
+from service.routes.stored.json_body import loaded
+from service.stations.bodies import BODIES, NAME, name_of
+from service.stations.changing import Wish, advisories_of, apply, checked
 from service.stations.documents import Documents, Shelf
 from service.stations.times import rfc3339
 from service.store.interface import Document, Kind
@@ -21,7 +23,16 @@ JSON = "application/json"
 OFFERED: Mapping[str, str] = {"json": JSON}
 ADDED = ("name", "revision", "changed", "changed_by")
 """What an answer adds to what was put; sent back, it is read past."""
-Name = Annotated[str, Path(pattern=NAME, description="a letter, then letters, digits, . _ or -")]
+ADVISORIES = "advisories"
+"""What it says of parts that contradict each other, where they do; sent back, it is read past."""
+Name = Annotated[
+    str,
+    Path(
+        description="a letter, then letters, digits, . _ or -",
+        json_schema_extra={"pattern": NAME},
+    ),
+    AfterValidator(name_of),
+]
 
 MANNERS = (
     "Every change is a new revision; the old ones stay, and `at_revision` shows them. `ETag` is "
@@ -50,7 +61,7 @@ def router_of(kind: Kind) -> APIRouter:
         documents = await _documents(request)
         document = documents.find(kind, name)
         if document is None:
-            raise absent(kind, name, documents)
+            raise absent(kind, name, documents, request.query_params.get("at_revision"))
         tag = _tag(document)
         if matches(", ".join(request.headers.getlist("if-none-match")), tag["ETag"]):
             return Response(None, 304, {**tag, **VARY})
@@ -86,13 +97,23 @@ def router_of(kind: Kind) -> APIRouter:
 
 def told(document: Document) -> dict[str, Any]:
     """A document as an answer shows it."""
+    body = document.body or {}
     added = (document.name, document.revision, rfc3339(document.changed), document.author)
-    return {**dict(zip(ADDED, added, strict=True)), **(document.body or {})}
+    said = advisories_of(document.kind, body)
+    return {
+        **dict(zip(ADDED, added, strict=True)),
+        **body,
+        **({ADVISORIES: said} if said else {}),
+    }
 
 
-def absent(kind: Kind, name: str, documents: Documents) -> NotFound:
-    """The answer about something that is not there."""
-    return NotFound(f"there is no {kind} {shortened(name)}{hint(name, documents.by_kind[kind])}")
+def absent(
+    kind: Kind, name: str, documents: Documents, revision: int | str | None = None
+) -> NotFound:
+    """The answer about something that is not there, or was not at an earlier revision."""
+    when = "is no" if revision is None else f"was, at revision {revision}, no"
+    near = hint(name, documents.by_kind[kind])
+    return NotFound(f"there {when} {kind} {shortened(name)}{near}")
 
 
 async def _documents(request: Request) -> Documents:
@@ -124,13 +145,11 @@ async def _body(request: Request, kind: Kind) -> Mapping[str, Any]:
             f"expected a Content-Type of {JSON}, found {media_type[:80] or 'none'}",
             headers={"Accept": JSON},
         )
-    try:
-        document = orjson.loads(await request.body())
-    except orjson.JSONDecodeError as error:
-        raise Malformed(f"the body is not JSON: {error}") from None
+    document = loaded(await request.body())
     if not isinstance(document, dict):
         raise Unprocessable("expected an object", [Fault("expected an object", "#")])
-    return checked(kind, {key: value for key, value in document.items() if key not in ADDED})
+    added = {*ADDED, ADVISORIES}
+    return checked(kind, {key: value for key, value in document.items() if key not in added})
 
 
 def _author(request: Request) -> str | None:

@@ -67,7 +67,11 @@ async def get_estimates(request: Request, name: Name) -> Response:
     """Each reading with the soil and the probe that were installed at its time.
 
     So a better calibration corrects the whole record, and `at_revision` gives what was answered
-    before. Words of POST /v1/estimates in the query, such as mixing_model, beat what is stored.
+    before. Words of POST /v1/estimates in the query, such as mixing_model, beat what is stored, and
+    `soil` names a stored soil in place of the installed ones; words that cannot be used are refused
+    as they are there. The band of a mean is that of its readings: the part they share stays, the
+    other shrinks, below and above by itself. Headers of a table: `Row-Count`, `Truncated` where
+    rows are left, `Not-Estimated` with the reasons for rows without a number.
     """
     asked = asked_of(
         request.query_params.multi_items(), SERIES, request.app.state.settings.page_rows

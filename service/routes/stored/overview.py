@@ -69,7 +69,10 @@ async def get_stations_geojson(request: Request) -> Response:
 @router.get("/stations/{name}/conflicts", summary="Readings that contradict kept ones",
             response_class=Response)  # fmt: skip
 async def get_conflicts(request: Request, name: Name) -> Response:
-    """Those that came with the key of a kept reading and other values, newest first."""
+    """Those that came with the key of a kept reading and other values, newest first.
+
+    Impossible values in whose place there are possible ones now are among them.
+    """
     choose(request.headers.get("accept"), request.query_params.get("format"), {"json": JSON})
     asked_of(request.query_params.multi_items(), (), 1, estimates=False)
 

@@ -1,6 +1,6 @@
 """Answers from the store, page by page: media type, entity tag, link to what follows."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 from urllib.parse import urlencode
 
@@ -16,6 +16,8 @@ from service.stations.ask.answers import JSON, OFFERED, encoded
 from service.stations.ask.asked import Asked
 from service.stations.ask.questions import Page, Scene, scene_of, tag_of
 
+MOST_TOLD = 5
+"""Reasons in a header; of the others it says how many there are."""
 KEYS = frozenset({"time", "end", "probe", "depth", "age_seconds", "flags"})
 """Columns that an answer has whatever is asked for."""
 
@@ -46,6 +48,8 @@ async def answered(
         page = _with_columns(question(scene, replace(asked, limit=most) if whole else asked), asked)
         headers["Row-Count"] = str(page.frame.height)
         rest = dict(page.rest)
+        if media_type != JSON and page.found is not None and page.found.troubles:
+            headers["Not-Estimated"] = _in_header(page.found.troubles)
         if page.after is not None:
             rest["next"] = next_of(request, page.after)
             headers["Link"] = f'<{rest["next"]}>; rel="next"'
@@ -72,6 +76,15 @@ def _with_columns(page: Page, asked: Asked) -> Page:
         raise Unprocessable("columns names what no answer has", faults)
     kept = [name for name in there if name in KEYS or name in asked.columns]
     return replace(page, frame=page.frame.select(kept))
+
+
+def _in_header(troubles: Sequence[str]) -> str:
+    """Why rows were not estimated, as far as a header can say it."""
+    several = list(dict.fromkeys(troubles))
+    told = [text[:200] for text in several[:MOST_TOLD]]
+    if len(several) > MOST_TOLD:
+        told.append(f"and {len(several) - MOST_TOLD} more")
+    return "; ".join(told).encode("ascii", "backslashreplace").decode()
 
 
 def next_of(request: Request, after: str) -> str:

@@ -8,12 +8,13 @@ import orjson
 from fastapi import APIRouter, Request, Response
 
 from models.conversion import refuse_units
-from service.errors import Malformed, Unprocessable, UnsupportedMediaType
+from service.errors import Unprocessable, UnsupportedMediaType
 from service.faults import Fault
 from service.formats import FORMATS, Format, format_of
 from service.negotiate import VARY, choose
 from service.routes.stored.documents import Name, absent
 from service.routes.stored.estimates import RANGE, described
+from service.routes.stored.json_body import loaded
 from service.routes.stored.paging import answered
 from service.schemas.batch_query import document_of
 from service.stations.ask.asked import asked_of, now
@@ -31,6 +32,8 @@ JSON = "application/json"
 OFFERED: Mapping[str, str] = {"json": JSON}
 AT_ONCE = 200
 """Readings of a JSON body up to which they are checked without a thread."""
+SMALL = 32_768
+"""Bytes of a JSON body up to which it is read without a thread."""
 
 router = APIRouter(prefix="/v1/stations/{name}", tags=["stations"])
 
@@ -73,10 +76,13 @@ async def post_readings(request: Request, name: Name) -> Response:
 
     The key of a reading is station, probe or depth, and time. What a kept reading lacks completes
     it, and as of an earlier revision it is as it was; the same key with other values is a conflict:
-    kept beside, never over the first. Rows that cannot be kept are told one by one; the others are
-    kept. A reading may carry a raw record (waveform, reflection, scattering, spectrum) instead of
-    a permittivity; the probe says with `raw_records` how it is read. Names that are not known and
-    values that another unit would explain are told in `advisories`.
+    kept beside, never over the first. A value that is physically impossible counts as lacking: a
+    possible one completes it, and the first is shown among the conflicts from then on. Numbers that
+    differ by no more than a change of unit leaves behind are the same. Rows that cannot be kept are
+    told one by one; the others are kept. A reading may carry a raw record (waveform, reflection,
+    scattering, spectrum) instead of a permittivity; the probe says with `raw_records` how it is
+    read. Names that are not known, values that another unit would explain, and readings where
+    nothing is installed are told in `advisories`.
     """
     choose(request.headers.get("accept"), request.query_params.get("format"), OFFERED)
     sent = request.headers.get("content-type", "")
@@ -88,7 +94,8 @@ async def post_readings(request: Request, name: Name) -> Response:
             f"expected a Content-Type of {accepted}, found {media_type[:80] or 'none'}",
             headers={"Accept": accepted},
         )
-    documents = await _documents_with(request.app.state.shelf, name)
+    shelf = request.app.state.shelf
+    documents = await _documents_with(shelf, name, seen=table is None)
     tally = Tally()
     if table is not None:
         await _keep_table(request, name, table, documents, tally)
@@ -114,13 +121,14 @@ async def get_readings(request: Request, name: Name) -> Response:
     return await answered(request, name, asked, readings_page, "readings")
 
 
-async def _documents_with(shelf: Shelf, name: str) -> Documents:
-    """Documents that hold the station; as last seen where they do, for the writer checks that.
+async def _documents_with(shelf: Shelf, name: str, *, seen: bool) -> Documents:
+    """Documents that hold the station.
 
+    seen: as last seen will do where they hold it, for the writer checks that.
     Raises NotFound.
     """
     documents = shelf.current
-    if documents.find("station", name) is None:
+    if not seen or documents.find("station", name) is None:
         _, documents = await anyio.to_thread.run_sync(shelf.fresh)
     if documents.find("station", name) is None:
         raise absent("station", name, documents)
@@ -135,22 +143,29 @@ async def _keep_json(
         raise Unprocessable(detail, [Fault(detail, f"?{stray[:80]}")])
     settings, state = request.app.state.settings, request.app.state
     body = await request.body()
-    try:
-        document = orjson.loads(body)
-    except orjson.JSONDecodeError as error:
-        raise Malformed(f"the body is not JSON: {error}") from None
+    if len(body) <= SMALL:
+        document = loaded(body)
+    else:
+        document = await anyio.to_thread.run_sync(loaded, body)
     if media_type == SENML:
         rules = _rules(name, documents, settings.future_seconds, {})
         rows, point = resolved(document, rules, now())
-        shared: Mapping[str, Any] = {}
+        rest: Mapping[str, Any] = {"units": {}, "shared": {}}
     else:
         rows, point, rest = taken_apart(document, settings.json_readings)
-        shared = rest["shared"]
+
+    async def arrived() -> Arrival:
         rules = _rules(name, documents, settings.future_seconds, rest["units"])
-    if len(rows) <= AT_ONCE:
-        arrival = check_rows(rows, point, shared, rules)
-    else:
-        arrival = await anyio.to_thread.run_sync(check_rows, rows, point, shared, rules)
+        if len(rows) <= AT_ONCE:
+            return check_rows(rows, point, rest["shared"], rules)
+        return await anyio.to_thread.run_sync(check_rows, rows, point, rest["shared"], rules)
+
+    arrival = await arrived()
+    if arrival.rejected_count:  # perhaps only by documents that are not the current ones
+        latest = await _documents_with(state.shelf, name, seen=False)
+        if latest.revision != documents.revision:
+            documents = latest
+            arrival = await arrived()
     await keep(state.writer, state.shelf, name, arrival, documents, tally)
 
 

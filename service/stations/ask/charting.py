@@ -1,6 +1,7 @@
 """The chart of a station: what is asked, worked out and handed to the page that draws it."""
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -8,7 +9,8 @@ from models.conversion import unit_of
 from models.series import series, usual_step
 from service.errors import Unprocessable
 from service.faults import Fault, hint
-from service.page.chart import Line, Panel, lines_by_depth, time_chart
+from service.page.chart import Change, Line, Panel, lines_by_depth, time_chart
+from service.page.chart_lanes import shortened
 from service.schemas.estimates import ESTIMATED
 from service.series_edges import zone_of
 from service.stations.ask.asked import Asked, now
@@ -22,6 +24,8 @@ from service.store.interface import Span
 
 USUAL_DAYS = 7
 """Days up to the last reading that are shown where no start is asked for."""
+MOST_NOTES = 3
+"""Reasons for readings without a number that stand under a chart."""
 TITLES = {
     "water_content": "Water content",
     "bulk_conductivity_25": "Bulk conductivity at 25 Cel",
@@ -45,13 +49,15 @@ def chart_of(scene: Scene, asked: Asked) -> str:
     title = (document.body or {}).get("title") if document else None
     probability = asked.estimate.get("coverage_probability", 0.95)
     notes = [f"Bands hold the truth with probability {probability:g}, of the inputs stated."]
+    notes += [shortened(text, 130) for text in dict.fromkeys(result.troubles[:MOST_NOTES])]
     return time_chart(
-        [_panel(name, found, result, asked) for name in shown or ESTIMATED[:1]],
+        [_panel(name, scene, found, result, asked) for name in shown or ESTIMATED[:1]],
         title=f"{scene.station.name}: {title}" if title else scene.station.name,
         span=(start / SECOND, end / SECOND),
         zone=zone_of(asked.zone or scene.station.zone),
-        gap=_gap(scene, found),
+        gap=GAP_STEPS * (scene.station.interval or 3600.0),
         notes=notes,
+        changes=_changes(found, result),
     )
 
 
@@ -69,17 +75,13 @@ def _last(scene: Scene) -> int:
     return max((row[1] for row in rows), default=now())
 
 
-def _gap(scene: Scene, found: Stored) -> float:
-    """Seconds without a number that are a gap: three steps of the slowest series."""
-    steps = [scene.station.interval] if scene.station.interval else []
-    for number in np.unique(found.number).tolist() if not steps else ():
-        times = found.time[found.number == number] / SECOND
-        step = usual_step(series(times, np.zeros(times.size)))
-        steps += [step] if np.isfinite(step) else []
-    return GAP_STEPS * max(steps, default=3600.0)
+def _gap(scene: Scene, line: Line) -> float:
+    """Seconds without a number that are a gap of a line: three of its steps."""
+    step = scene.station.interval or usual_step(series(line.seconds, np.zeros(line.seconds.size)))
+    return GAP_STEPS * (step if np.isfinite(step) else 3600.0)
 
 
-def _panel(name: str, found: Stored, result: Estimated, asked: Asked) -> Panel:
+def _panel(name: str, scene: Scene, found: Stored, result: Estimated, asked: Asked) -> Panel:
     unit = unit_of(name, asked.units).code
     nothing = np.full(len(found), np.nan)
     rows = np.concatenate([*series_of(found, result).values(), np.zeros(0, np.intp)])
@@ -87,4 +89,21 @@ def _panel(name: str, found: Stored, result: Estimated, asked: Asked) -> Panel:
     lines: Sequence[Line] = lines_by_depth(
         result.depth[rows], found.time[rows] / SECOND, band, result.flags[rows] != 0
     )
+    lines = [replace(line, gap=_gap(scene, line)) for line in lines]
     return Panel(TITLES[name], unit, lines)
+
+
+def _changes(found: Stored, result: Estimated) -> list[Change]:
+    """Where the readings of a depth begin to rest on another soil or another probe."""
+    changes = []
+    for depth in np.unique(result.depth[result.source >= 0]).tolist():
+        rows = np.flatnonzero((result.depth == depth) & (result.source >= 0))
+        rows = rows[np.argsort(found.time[rows], kind="stable")]
+        sources = result.source[rows]
+        for at in (np.flatnonzero(np.diff(sources)) + 1).tolist():
+            before, after = result.grounds[sources[at - 1]], result.grounds[sources[at]]
+            new = [n for n, o in ((after.soil, before.soil), (after.probe, before.probe)) if n != o]
+            if new:
+                words = f"{depth:.2f} m: {', '.join(new)}"
+                changes.append(Change(found.time[rows[at]] / SECOND, words))
+    return sorted(changes, key=lambda change: change.seconds)

@@ -38,6 +38,20 @@ def series_of(found: Stored, result: Estimated) -> Mapping[int, Places]:
     return {n: order[of_row[order] == n] for n in np.unique(of_row).tolist()}
 
 
+def doubled(found: Stored, result: Estimated) -> list[dict[str, str]]:
+    """What is said of readings that name a depth while the probe there has one of its own."""
+    counted = sum(rows.size for rows in series_of(found, result).values())
+    count = len(found) - counted
+    if not count:
+        return []
+    told = "1 reading names" if count == 1 else f"{count} readings name"
+    text = (
+        f"{told} a depth at a moment of which the probe there has a reading of its own: both are "
+        "kept, and means and charts count the one that names the probe"
+    )
+    return [{"code": "read-twice", "text": text}]
+
+
 def newest_of_each(table: pl.DataFrame, *keys: str) -> pl.DataFrame:
     """One row for each sensor: the last one of those that name its probe or its depth."""
     return table.sort("time", maintain_order=True).unique(

@@ -59,11 +59,17 @@ def planned(rows: Stored, documents: Documents, upto: int | None) -> Plan:
                 plan.parts.setdefault((item.soil, item.probe, held, kind), []).append(those)
         if alone:
             plan.troubles.append(
-                f"{channel.station}: {alone} readings of {channel.probe or f'{channel.depth:g} m'} "
-                "are from times for which no one installation is on record"
+                f"{channel.station}: {_counted(alone)} of "
+                f"{channel.probe or f'{channel.depth:g} m'} "
+                f"{'is from a time' if alone == 1 else 'are from times'} for which no one "
+                "installation is on record"
             )
     plan.probes = list(known)
     return plan
+
+
+def _counted(count: int) -> str:
+    return "1 reading" if count == 1 else f"{count} readings"
 
 
 def within_effort(rows: Stored, documents: Documents, upto: int | None) -> int:

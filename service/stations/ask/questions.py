@@ -18,9 +18,9 @@ from service.schemas.echo import units_of_answer
 from service.stations.ask.answers import frame_of, numbers, slugs
 from service.stations.ask.asked import Asked, cursor_of, now
 from service.stations.ask.estimating import Estimated, estimated
-from service.stations.ask.joining import newest_of_each, probe_names
+from service.stations.ask.joining import doubled, newest_of_each, probe_names
 from service.stations.ask.planning import within_effort
-from service.stations.ask.selecting import at_place, wanted
+from service.stations.ask.selecting import at_place, left_out, wanted
 from service.stations.ask.stored import Stored, newest, raw_rows, stored
 from service.stations.ask.wording import refuse_words
 from service.stations.documents import Documents, Shelf
@@ -74,7 +74,7 @@ def scene_of(shelf: Shelf, name: str, asked: Asked) -> Scene:
         documents = shelf.at(upto)
     station = documents.station(name)
     if station is None:
-        raise absent("station", name, documents)
+        raise absent("station", name, documents, upto)
     known = shelf.store.channels(name)
     channels = wanted(known, station, asked.probe, asked.place)
     refuse_words(asked.estimate, documents, known, upto)
@@ -139,7 +139,7 @@ def estimates_page(scene: Scene, asked: Asked) -> Page:
         page, after = _cut(page, fits)
         found = stored(page, scene.channels, columns, raw_rows(scene.shelf.store, span, page))
     result = estimated(found, scene.documents, asked.estimate, asked.units, scene.upto)
-    return Page(table_of(found, result), rest_of(scene, asked, result), after, result)
+    return Page(table_of(found, result), rest_of(scene, asked, found, result), after, result)
 
 
 def readings_between(scene: Scene, start: int | None, end: int | None, most: int) -> Stored:
@@ -169,14 +169,18 @@ def profile_page(scene: Scene, asked: Asked) -> Page:
     moment = now() if asked.moment is None else asked.moment
     span = Span(scene.channels, columns, end=moment + 1, upto=scene.upto)
     last, raw = newest(scene.shelf.store, span)
-    rows = [row for row in scene.here(last) if row[1] > moment - asked.within]
+    here = scene.here(last)
+    rows = [row for row in here if row[1] > moment - asked.within]
+    older = [row for row in here if row[1] <= moment - asked.within]
     found = stored(rows, scene.channels, columns, raw)
     fits = within_effort(found, scene.documents, scene.upto)
     result = estimated(found, scene.documents, asked.estimate, asked.units, scene.upto, fits)
     ages = pl.Series((moment - found.time) / 1e6)
     table = newest_of_each(table_of(found, result).with_columns(age_seconds=ages))
     told = {"time": text_of([moment])[0]}
-    return Page(table.sort("depth", nulls_last=True), {**told, **rest_of(scene, asked, result)})
+    rest = {**told, **rest_of(scene, asked, found, result)}
+    rest["advisories"] = [*rest["advisories"], *left_out(older, scene.channels)]
+    return Page(table.sort("depth", nulls_last=True), rest)
 
 
 def table_of(found: Stored, result: Estimated) -> pl.DataFrame:
@@ -191,13 +195,13 @@ def table_of(found: Stored, result: Estimated) -> pl.DataFrame:
     )
 
 
-def rest_of(scene: Scene, asked: Asked, result: Estimated) -> dict[str, Any]:
+def rest_of(scene: Scene, asked: Asked, found: Stored, result: Estimated) -> dict[str, Any]:
     """What JSON says beside the estimates: units, what they rest on, what was in the way."""
     return {
         **_about(scene),
         "units": units_of_answer(("depth", *result.columns), asked.units),
         "grounds": result.echo(),
-        "advisories": result.advisories(),
+        "advisories": [*result.advisories(), *doubled(found, result)],
     }
 
 

@@ -48,7 +48,7 @@ def resampled_page(scene: Scene, asked: Asked) -> Page:
     }
     if asked.mean != "plain":
         rules["gap_seconds"] = gap
-    rest = rest_of(scene, asked, result)
+    rest = rest_of(scene, asked, found, result)
     rest["advisories"] = [*_widened(asked, (start, end), every), *rest["advisories"]]
     return Page(page, {**rules, **rest}, after, result)
 

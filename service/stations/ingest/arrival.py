@@ -34,7 +34,8 @@ def likely(name: str) -> str:
     symbols = [known for known in VALUES if _SYMBOLS.get(known) == written]
     close = get_close_matches(written[:80], KNOWN, n=4, cutoff=0.65)
     alike = [known for known in close if known.endswith("_u") == written.endswith("_u")]
-    return " or ".join((symbols or alike)[:2])
+    begun = [known for known in KNOWN if len(written) > 3 and known.startswith(written)]
+    return " or ".join((symbols or alike or begun[:1])[:2])
 
 
 def nothing_known(names: Iterable[str]) -> str:

@@ -111,7 +111,7 @@ def _checked(
         told = str(row) if type(row) is Broken else f"expected an object, found {shown(row)}"
         raise RowError("", told)
     row = {**shared, **row} if shared else row
-    moment = _moment(row.get("time"), rules)
+    moment = _moment(row, rules)
     found: dict[str, Any] = {"missing": 0, "ignored": []}
     for key, value in row.items():
         if key in _VALUES:
@@ -137,9 +137,15 @@ def _take_record(found: dict[str, Any], row: Row, units: Mapping[str, str]) -> N
         found[RAW] = packed({kind: row[kind]})
 
 
-def _moment(text: Any, rules: Rules) -> int:
+def _moment(row: Row, rules: Rules) -> int:
+    text = row.get("time")
+    if "time" not in row:
+        near = next((name for name in row if name.strip().casefold() == "time"), None)
+        mend = f"; does {shown(near)} mean time?" if near else ""
+        raise RowError("time", f"the time is missing{mend}")
     if type(text) is not str:
-        raise RowError("time", f"expected the time as text, found {shown(text)}")
+        form = 'RFC 3339 text with an offset, such as "2026-05-04T06:00:00Z"'
+        raise RowError("time", f"expected the time as {form}, found {shown(text)}")
     try:
         moment = microseconds(text)
     except TimeError as error:

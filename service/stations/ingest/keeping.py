@@ -10,8 +10,14 @@ import anyio.to_thread
 from service.errors import NotFound
 from service.stations.documents import Documents, Shelf
 from service.stations.ingest.arrival import SHOWN, Arrival, Rejected
-from service.stations.ingest.placing import Misplaced
-from service.stations.ingest.remarking import Suspicions, advice_on_gone, advice_on_names
+from service.stations.ingest.placing import Misplaced, read_twice
+from service.stations.ingest.remarking import (
+    Suspicions,
+    advice_on_gone,
+    advice_on_names,
+    advice_on_nothing,
+    advice_on_twice,
+)
 from service.stations.problems import Conflicted
 from service.stations.station import Station
 from service.stations.times import rfc3339
@@ -39,6 +45,7 @@ class Tally:
     suspicions: Suspicions = field(default_factory=Suspicions)
     misplaced: Misplaced = field(default_factory=Misplaced)
     gave_way: int = 0
+    read_twice: list[tuple[str, int]] = field(default_factory=list)
 
     def note(self, arrival: Arrival, station: Station | None, documents: Documents) -> None:
         """Add what was found before anything was kept."""
@@ -83,10 +90,14 @@ class Tally:
             "missing": self.missing,
             "ignored": list(self.ignored),
             "advisories": [
+                *advice_on_nothing(
+                    self.accepted + self.completed + self.duplicates, self.rejected_count
+                ),
                 *advice_on_names(self.ignored),
                 *self.suspicions.advisories(),
                 *advice_on_gone(self.gave_way),
                 *self.misplaced.advisories(),
+                *advice_on_twice(self.read_twice),
             ],
         }
         for name, count in (("conflicts", self.conflict_count), ("rejected", self.rejected_count)):
@@ -114,6 +125,10 @@ async def keep(
         outcomes = [await _kept(writer, shelf, parts[0][1])]
     else:
         outcomes = await asyncio.gather(*(_kept(writer, shelf, batch) for _, batch in parts))
+    known = documents.station(station)
+    if known is not None and any(place.startswith("@") for place in arrival.rows.places):
+        found = await anyio.to_thread.run_sync(read_twice, shelf.store, arrival.rows, known)
+        tally.read_twice += found
     for (start, batch), outcome in zip(parts, outcomes, strict=True):
         tally.add(outcome, batch, arrival.rows.numbers[start : start + len(batch)])
 

@@ -67,6 +67,31 @@ def _impossible(odd: Mapping[str, tuple[int, float, int]]) -> Iterator[dict[str,
         yield {"code": "impossible-value", "text": text, "row": row}
 
 
+def advice_on_nothing(kept: int, rejected: int) -> Iterator[dict[str, str]]:
+    """That nothing of a request was kept because of its rows."""
+    if rejected and not kept:
+        rows = "the one row was" if rejected == 1 else f"all {rejected} rows were"
+        yield {"code": "nothing-kept", "text": f"{rows} rejected: nothing was kept"}
+
+
+def advice_on_twice(found: Sequence[tuple[str, int]]) -> Iterator[dict[str, Any]]:
+    """That readings name a depth while the probe there has readings of its own.
+
+    found: the probe, and a row of the request that it read as well.
+    """
+    first: dict[str, tuple[int, int]] = {}
+    for probe, row in found:
+        told, count = first.get(probe, (row, 0))
+        first[probe] = (told, count + 1)
+    for probe, (row, count) in first.items():
+        rest = f" and {count - 1} more" if count > 1 else ""
+        text = (
+            f"row {row}{rest} names the depth that {probe} is at, which has a reading of its own "
+            "of that moment: both are kept, and means and charts count that of the probe"
+        )
+        yield {"code": "read-twice", "text": text, "row": row}
+
+
 def advice_on_gone(count: int) -> Iterator[dict[str, str]]:
     """That possible values came for impossible ones that were kept."""
     if count:

@@ -14,8 +14,9 @@ from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from service.errors import Unprocessable
 from service.faults import Fault, shown
+from service.series_edges import FIRST, LAST
 from service.stations.ingest.arrival import Broken, Rules, converter, likely
-from service.stations.times import rfc3339
+from service.stations.times import SECOND, rfc3339
 from service.store.interface import VALUES
 
 MEDIA_TYPE = "application/senml+json"
@@ -127,17 +128,16 @@ def _place(where: str) -> str | float:
     return float(where) if _DEPTH.fullmatch(where) else where
 
 
+_NO_DATE = "the time is out of any calendar: SenML times are seconds since 1970, not milliseconds"
+
+
 def _moment(base: Mapping[str, Any], record: Mapping[str, Any], now: int) -> int:
     """Microseconds; decimal arithmetic, so that a time is the same however it is split."""
     seconds = Decimal(repr(_number(base, "bt"))) + Decimal(repr(_number(record, "t")))
     moment = int(seconds * 1_000_000)
-    if abs(moment) > 2**61:
-        raise ValueError("the time is out of any calendar")
     moment = now + moment if seconds < RELATIVE else moment
-    try:
-        rfc3339(moment)
-    except (ValueError, OverflowError):
-        raise ValueError("the time is out of any calendar") from None
+    if not FIRST * SECOND < moment < LAST * SECOND:
+        raise ValueError(_NO_DATE)
     return moment
 
 

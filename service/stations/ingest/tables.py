@@ -59,10 +59,12 @@ class TableReader:
             checks.refuse(odd, name, partial(_no_number, texts.get(name)))
         checks.refuse(cells.empty, "", lambda _: nothing_known(arrival.ignored))
         times = self._times(texts["time"], checks)
-        values = {name: self._values(name, cells, arrival) for name in cells.values}
+        gone: dict[str, NDArray[np.bool_]] = {}
+        values = {name: self._values(name, cells, gone) for name in cells.values}
         records = records_in(texts, values, checks, self.rules.units)
         places = self._places(texts.get("probe"), values, checks)
         kept = np.flatnonzero(checks.fine)
+        arrival.missing = sum(int(np.count_nonzero(empty[kept])) for empty in gone.values())
         columns = _filled(values, kept)
         if records:
             columns[RAW] = [records.get(row) for row in kept.tolist()]
@@ -81,16 +83,15 @@ class TableReader:
         checks.refuse(wrong, "time", lambda row: self.rules.time_fault(int(times[row])) or "")
         return times
 
-    def _values(self, name: str, cells: TableCells, arrival: Arrival) -> NDArray[np.float64]:
-        """A column in the unit of the API, NaN where there is no number."""
+    def _values(
+        self, name: str, cells: TableCells, gone: dict[str, NDArray[np.bool_]]
+    ) -> NDArray[np.float64]:
+        """A column in the unit of the API, NaN where there is no number; ``gone`` learns where."""
         values = cells.values[name]
         agreed = self.rules.station.sentinels.get(name)
         if agreed:
             values = np.where(np.isin(values, list(agreed)), np.nan, values)
-        gone = np.isnan(values)
-        if name in cells.unreadable:
-            gone &= ~cells.unreadable[name]
-        arrival.missing += int(np.count_nonzero(gone))
+        gone[name] = np.isnan(values)
         convert = self._convert.get(name)
         return values if convert is None else np.asarray(convert(values), dtype=np.float64)
 

@@ -68,7 +68,10 @@ class Restoring(Asking):
         by_kind: dict[str, list[Entry]] = {}
         for number, kind, entry in entries:
             if kind not in _ROWS and kind != "reading":
-                raise RestoreError(f"line {number}: an export has no {kind[:40]}")
+                raise RestoreError(
+                    f"line {number}: an export has no {kind[:40]} there: the file is no whole "
+                    "export; make it again with gleyline store export"
+                )
             by_kind.setdefault(kind, []).append(entry)
         try:
             for kind in ("document", "series"):

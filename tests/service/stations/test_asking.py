@@ -241,3 +241,41 @@ def test_a_station_without_readings_or_none_at_all(day, what):
     put(day, "station", "silent", {})
     assert day.get(f"/v1/stations/silent/{what}").status_code == 200
     assert day.get(f"/v1/stations/slient/{what}").status_code == 404
+
+
+@pytest.fixture(scope="module")
+def salty(client):
+    """Readings whose bands are lopsided: wet soil, and salt that loss leaves open."""
+    furnish(client, "salty")
+    rows = [reading(15 * i, 12.0 + i / 3, temperature=15.0, bulk_conductivity=0.2 + i / 50)
+            for i in range(96)]  # fmt: skip
+    assert post(client, rows, "salty").json()["accepted"] == 96
+    return client
+
+
+NAMES = ("water_content", "pore_water_conductivity", "bulk_conductivity_25")
+
+
+@pytest.mark.parametrize("mean", ["plain", "time-weighted"])
+def test_a_mean_has_the_band_of_its_readings(salty, mean):
+    address = "/v1/stations/salty/estimates"
+    rows = salty.get(address, params=DAY).json()["estimates"]
+    for every, count in (("15m", 1), ("1h", 4), ("1d", 96)):
+        words = {**DAY, "every": every, "zone": "UTC", "mean": mean}
+        bins = salty.get(address, params=words).json()["estimates"]
+        assert len(bins) == 96 // count
+        for place, found in enumerate(bins):
+            of_bin = rows[place * count : (place + 1) * count + (mean != "plain")]
+            for name in NAMES:
+                if found[name] is None:
+                    continue
+                lower = [row[f"{name}_lower"] for row in of_bin]
+                upper = [row[f"{name}_upper"] for row in of_bin]
+                assert min(lower) <= found[f"{name}_lower"] <= found[name]
+                if None in upper:
+                    assert found[f"{name}_upper"] is None
+                else:
+                    assert found[name] <= found[f"{name}_upper"] <= max(upper)
+                if count == 1 and mean == "plain":
+                    ends = (found[f"{name}_lower"], found[f"{name}_upper"])
+                    assert ends == pytest.approx((lower[0], upper[0]), rel=1e-12)

@@ -113,3 +113,60 @@ def test_markup_in_a_title_stays_text(client):
     chart = client.get("/v1/stations/marked/chart.svg").text
     assert "<script" not in chart
     assert "&lt;script&gt;" in chart
+
+
+@pytest.mark.parametrize(
+    ("body", "told"),
+    [
+        ({"porosity": 0.3, "bulk_density": 1.0}, "contradict each other"),
+        ({"texture": "sand", "clay": 0.6}, "clay 0.6 is far from a soil called sand"),
+        ({"texture": "clay", "sand": 0.9, "clay": 0.05}, "sand 0.9 is far"),
+    ],
+)
+def test_a_soil_that_contradicts_itself_is_kept_and_told(client, body, told):
+    name = f"odd-{len(told)}"
+    for answer in (client.put(f"/v1/soils/{name}", json=body), client.get(f"/v1/soils/{name}")):
+        assert answer.status_code in {200, 201}
+        assert any(told in one["text"] for one in answer.json()["advisories"])
+    again = client.put(f"/v1/soils/{name}", json=answer.json())
+    assert again.json()["revision"] == answer.json()["revision"]
+
+
+def test_a_soil_in_harmony_with_itself_has_no_advisories(client):
+    body = {"texture": "loam", "clay": 0.22, "porosity": 0.46, "bulk_density": 1.42}
+    assert "advisories" not in client.put("/v1/soils/even", json=body).json()
+
+
+def test_a_field_capacity_below_the_wilting_point_is_refused(client):
+    body = {"field_capacity": 0.1, "wilting_point": 0.3}
+    answer = client.put("/v1/soils/inverted", json=body)
+    assert answer.status_code == 422
+    assert answer.json()["errors"][0]["pointer"] == "#/field_capacity"
+    assert client.put(
+        "/v1/soils/upright", json={"field_capacity": 0.3, "wilting_point": 0.1}
+    ).is_success
+
+
+def test_messages_about_names_tags_and_revisions_say_what_to_send(client):
+    made = client.put("/v1/soils/tagged-once", json={"texture": "loam"})
+    number = made.json()["revision"]
+    unquoted = client.put("/v1/soils/tagged-once", json={"texture": "clay"},
+                          headers={"If-Match": str(number)})  # fmt: skip
+    assert (unquoted.status_code, f'If-Match: "{number}"' in unquoted.json()["detail"]) == (
+        412,
+        True,
+    )
+    spaced = client.put("/v1/soils/a%20name", json={"texture": "loam"})
+    assert (spaced.status_code, "a letter, then at most 63" in spaced.json()["detail"]) == (
+        422,
+        True,
+    )
+    early = client.get("/v1/soils/tagged-once", params={"at_revision": number - 1})
+    assert (early.status_code, f"at revision {number - 1}" in early.json()["detail"]) == (404, True)
+    title = client.put("/v1/soils/titled", json={"title": "a\x00b", "texture": "loam"})
+    assert (title.status_code, "control characters" in title.json()["detail"]) == (422, True)
+    slash = client.get("/v1/soils/tagged-once/")
+    assert (slash.status_code, "ask for /v1/soils/tagged-once" in slash.json()["detail"]) == (
+        404,
+        True,
+    )

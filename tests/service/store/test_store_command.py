@@ -138,6 +138,15 @@ def test_an_export_goes_into_an_empty_store_of_either_database(store, filled, tm
         other.close()
 
 
+@pytest.mark.parametrize("command", ["check", "export"])
+def test_a_folder_without_a_store_is_told_and_none_is_made(tmp_path, command):
+    absent = tmp_path / "typo"
+    ended = gleyline("store", command, "--data", str(absent))
+    assert ended.exit_code == 1
+    assert f"there is no store in {absent}" in ended.stderr
+    assert not (absent / "gleyline.sqlite").exists()
+
+
 HEAD = b'{"store":{"form":2,"revision":3,"documents":2}}\n'
 
 
@@ -181,7 +190,7 @@ def test_older_tables_are_upgraded_and_keep_what_they_hold(tmp_path):
 
 
 def test_the_service_does_not_start_on_newer_tables(tmp_path):
-    assert gleyline("store", "check", "--data", str(tmp_path)).exit_code == 0
+    assert gleyline("store", "upgrade", "--data", str(tmp_path)).exit_code == 0
     with sqlite3.connect(tmp_path / "gleyline.sqlite") as connection:
         connection.execute("UPDATE store SET schema_version = 99")
     for command in (("serve", "--port", "0"), ("store", "upgrade"), ("store", "check")):
@@ -206,3 +215,18 @@ def test_a_file_that_is_no_store_is_told(tmp_path):
     ended = gleyline("store", "check", "--data", str(tmp_path))
     assert ended.exit_code != 0
     assert "the store failed" in ended.stderr
+
+
+def test_an_export_that_was_cut_off_is_refused_and_nothing_of_it_kept(filled, tmp_path):
+    whole = gleyline("store", "export", *filled).stdout.splitlines(keepends=True)
+    assert json.loads(whole[-1]) == {"end": {"lines": len(whole) - 1}}
+    cut = [whole[:count] for count in range(1, len(whole))]
+    lacking = [*whole[:3], *whole[4:]]
+    longer = [*whole, whole[-2]]
+    for number, lines in enumerate([*cut, lacking, longer]):
+        file, folder = tmp_path / f"cut-{number}", tmp_path / f"store-{number}"
+        file.write_text("".join(lines))
+        ended = gleyline("store", "import", str(file), "--data", str(folder))
+        assert ended.exit_code == 1, lines
+        assert "make it again with gleyline store export" in ended.stderr
+        assert "revision 0, 0 series" in gleyline("store", "check", "--data", str(folder)).stderr

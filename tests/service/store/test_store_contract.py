@@ -299,3 +299,38 @@ def test_the_table_of_readings_has_a_column_for_every_number_of_the_vocabulary(s
 def test_a_sound_store_has_no_faults(store):
     put(store)
     assert [fault for fault in store.check() if "fsync" not in fault] == []
+
+
+def test_numbers_that_differ_by_rounding_are_the_same(store):
+    put(store)
+    store.append([batch(store, [T0], [17.2], bulk_conductivity=[0.23799999999999996])])
+    (again,) = store.append([batch(store, [T0], [17.2], bulk_conductivity=[0.238])])
+    (other,) = store.append([batch(store, [T0], [17.2], bulk_conductivity=[0.238001])])
+    assert (again.duplicates, len(again.clashes), len(other.clashes)) == (1, 0, 1)
+
+
+def test_an_impossible_value_gives_way_and_is_shown_and_stays_at_its_revision(store):
+    put(store)
+    store.append([batch(store, [T0], [-7999.0], temperature=[14.0])])
+    before = store.head().revision
+    (right,) = store.append([batch(store, [T0], [17.2])])
+    assert (right.completed, right.gave_way, len(right.clashes)) == (1, 1, 0)
+    for upto, value in ((None, 17.2), (before, -7999.0)):
+        (row,) = store.readings(span(store, ("apparent_permittivity", "temperature"), upto=upto))
+        assert row[3:] == (value, 14.0)
+    (shown,) = store.conflicts("north-1", 9)
+    assert shown["sent"] == {"apparent_permittivity": -7999.0}
+    (late,) = store.append([batch(store, [T0], [-7999.0])])
+    assert (late.completed, len(late.clashes)) == (0, 1)
+
+
+def test_an_impossible_value_of_the_same_transaction_is_not_lost(store):
+    """As of no revision would it be there: the right one waits among the conflicts for a resend."""
+    put(store)
+    wrong, right = batch(store, [T0], [-7999.0]), batch(store, [T0], [17.2])
+    _, contradicting = store.append([wrong, right])
+    assert len(contradicting.clashes) == 1
+    (again,) = store.append([right])
+    assert (again.completed, again.gave_way) == (1, 1)
+    sent = [row["sent"]["apparent_permittivity"] for row in store.conflicts("north-1", 9)]
+    assert sorted(sent) == [-7999.0, 17.2]
