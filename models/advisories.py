@@ -101,7 +101,20 @@ ADVISORIES: Registry[Advisory] = Registry(
     Advisory(key="probe-not-calibrated", condition="A waveform came without traces of its probe in "
              "air and in water.",
              text="Length and offset of the rods are as described, or as a single trace shows "
-             "them: traces of the same probe in air and in water tell what both really are."),
+             "them: traces of the same probe in air and in water tell what both really are. Where "
+             "an end cannot be seen, the rods may begin elsewhere than it seems: probe_offset or "
+             "head say where."),
+    Advisory(key="unlike-calibration", condition="The first reflection of a waveform is elsewhere "
+             "than that of its calibration, of the other sign, after another level, or none.",
+             text="{count} waveforms do not begin as their calibration does, whose first "
+             "reflection {way} at {time} ns of two-way time from a level of {level}, and have "
+             "no numbers: another cable or velocity factor, an axis in one-way time, reflections "
+             "upside down or on another scale, or no trace of this probe."),
+    Advisory(key="calibration-misfit", condition="The line that explains the calibration traces "
+             "best leaves a reduced chi-square above 25.",
+             text="No line explains the traces in air, in water and shorted together: the best "
+             "misses them by {times} times their noise. Water that conducts, a wrong temperature "
+             "of it, another cable, or a trace of something else does that."),
     Advisory(key="effective-length", condition="The effective length of rods differs from their "
              "own by more than 5 %.",
              text="Air and water give the rods an effective length of {length} m, their own is "
@@ -115,6 +128,18 @@ ADVISORIES: Registry[Advisory] = Registry(
              "traces in air and in water."),
     Advisory(key="permittivities-beside", condition="More than one kind of permittivity came.",
              text="Several kinds of permittivity came ({names}); {used} was used."),
+    Advisory(key="sample-length-suspected", condition="The permeability of a sample between two "
+             "ports is not 1, and its two sides are alike.",
+             text="Check sample_length before calling the sample magnetic: with {length} m the "
+             "permeability would be 1, {own} m was given."),
+    Advisory(key="aperture-not-told", condition="A tip was calibrated with three standards.",
+             text="Three standards cannot tell the aperture: the {model} model was taken at its "
+             "word{share}. A fourth standard, such as methanol or ethanol at a known temperature, "
+             "fits the aperture and shows what is wrong."),
+    Advisory(key="raw-record-flags", condition="What a raw record was turned into carries a flag "
+             "of its own there, or the record was conjugated.",
+             text="Raw records are flagged {flag} where they were read, {count} in all ({places}): "
+             "{meaning}"),
 )  # fmt: skip
 
 

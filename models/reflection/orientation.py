@@ -1,4 +1,4 @@
-"""Which time convention sweeps were written in, as their phase tells."""
+"""Which time convention sweeps were written in, as their phase and their loss tell."""
 
 import numpy as np
 
@@ -33,3 +33,11 @@ def rises(read: ComplexArray) -> bool:
 def falls(read: ComplexArray) -> bool:
     """Whether phase clearly falls with frequency."""
     return phase_run(read) < -FALL
+
+
+def loss_share(permittivity: ComplexArray) -> float:
+    """Median loss beside |eps|, over everything that has a number; zero where nothing has."""
+    with np.errstate(all="ignore"):
+        share = -permittivity.imag / np.abs(permittivity)
+    usable = share[np.isfinite(share)]
+    return float(np.median(usable)) if usable.size else 0.0

@@ -38,8 +38,8 @@ SWEEP_FLAGS: Registry[Flag] = Registry(
     Flag(key="below-vacuum", condition="The permittivity is below 1 by more than three standard "
          "uncertainties and 0.1.",
          text="Less than the permittivity of nothing: no medium has it.",
-         reason="A length in another unit (mm for m), a poor calibration, a record of something "
-         "else.", keeps_number=False),
+         reason="A length in another unit (mm for m), radians read as degrees, a poor "
+         "calibration, a record of something else.", keeps_number=False),
     Flag(key="above-water", condition="From 0.1 GHz on the real part exceeds 88, that of water at "
          "0 Cel, by more than three standard uncertainties.",
          text="No soil, and nothing that holds water, has a permittivity above that of water.",
@@ -124,9 +124,33 @@ SWEEP_FLAGS: Registry[Flag] = Registry(
          keeps_number=True),
     Flag(key="magnetic", condition="The permeability differs from 1 by more than three "
          "standard uncertainties and 0.05 in the middle of the band.",
-         text="The sample is magnetic: with a permeability of 1 the permittivity is wrong.",
-         reason="Iron oxides; reflection and transmission together tell.",
+         text="What was read contradicts a permeability of 1: the sample is magnetic, or its "
+         "length, its position or an end of the cell is not as described.",
+         reason="Iron oxides; a sample of another length looks just like that: two reads tell "
+         "two numbers of it.",
          keeps_number=True),
+    Flag(key="permeability-below-one", condition="The real part of the permeability is below 1 by "
+         "more than three standard uncertainties and 0.2 in the middle of the band.",
+         text="No soil has a permeability so far below 1: check the length of the sample.",
+         reason="A length that is too long halves both constants alike; what is left of the "
+         "permittivity is no measurement.", keeps_number=False),
+    Flag(key="not-shorted", condition="The cell that is called shorted reflects like a "
+         "capacitance, by more than three standard uncertainties and 0.05, where even one full of "
+         "water is shorter than a sixth of a wavelength.",
+         text="The shorted cell reads like an open one: check which end was on.",
+         reason="A short behind a short stretch of anything is an inductance.",
+         keeps_number=True),
+    Flag(key="not-symmetric", condition="S11 and S22 at the faces of the sample differ by more "
+         "than three standard uncertainties and 0.02 in the root mean square; by 0.05 where none "
+         "was stated.",
+         text="The two reflections contradict the position of the sample, or its symmetry.",
+         reason="air_before or holder_length as of another set-up, planes that are not at the "
+         "faces, a sample that is packed unevenly.", keeps_number=True),
+    Flag(key="not-reciprocal", condition="S21 and S12 differ by more than three standard "
+         "uncertainties and 0.02 in the root mean square; by 0.05 where none was stated.",
+         text="What passes one way is not what passes the other way.",
+         reason="No soil does that: a calibration of one direction alone, columns of another "
+         "order, a cable that moved.", keeps_number=True),
 )  # fmt: skip
 
 _BITS = Bits(SWEEP_FLAGS)

@@ -17,7 +17,7 @@ from service.errors import Unprocessable
 from service.faults import Fault
 from service.formats.json_estimates import encode, encode_members, laid_out, tabulate
 from service.formats.json_readings import JsonReadings, decode
-from service.formats.raw_records import take_in
+from service.formats.raw_records import TakenIn, take_in
 from service.negotiate import VARY
 from service.schemas.echo import echo_of, headers_of, units_of_answer
 from service.schemas.echo_beside import (
@@ -46,10 +46,11 @@ def answer_document(document: dict[str, Any], answered: str, limits: Settings) -
     readings = raw.with_shared(read(sent.numbers, settings.units, {}, sent.absent))
     raw.mark(readings.flags)
     if isinstance(basis, EveryModel):
-        return _of_every_model(basis, readings, sent, settings, answered, raw.echo)
+        return _of_every_model(basis, readings, sent, settings, answered, raw)
     result = estimate(readings, basis)
     remarks = _remarks(sent, settings, result)
-    echo = {**echo_of(basis, settings, remarks.advice(settings.units)), **raw.echo}
+    said = (*remarks.advice(settings.units), *raw.advice)
+    echo = {**echo_of(basis, settings, said), **raw.echo}
     if answered != JSON:
         return _table(result, sent, settings, answered, echo)
     answer = laid_out(result, sent, settings.units)
@@ -76,14 +77,15 @@ def _of_every_model(
     sent: JsonReadings,
     settings: EstimatesSettings,
     answered: str,
-    told: Mapping[str, Any],
+    raw: TakenIn,
 ) -> Response:
     """All models side by side: their combination as ``estimates``, each one under ``models``."""
     _refuse_beside(settings)
     found = basis.estimate(readings)
     result = Estimates(found.columns, found.flags)
     remarks = _remarks(sent, settings, result)
-    echo = {**ensemble_echo(basis, settings, remarks.advice(settings.units)), **told}
+    said = (*remarks.advice(settings.units), *raw.advice)
+    echo = {**ensemble_echo(basis, settings, said), **raw.echo}
     if answered != JSON:
         return _table(result, sent, settings, answered, echo)
     answer = laid_out(result, sent, settings.units)

@@ -4,7 +4,7 @@ A reading may carry a raw record under its key (``waveform``); what all of them 
 the probe and its calibration, stands once under ``raw_records`` in the request.
 """
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 from typing import Any
@@ -12,11 +12,13 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from models.advisories import Advice, advise
 from models.conversion import Units, from_si
 from models.estimate.permittivity import SHARED
 from models.flags import BIT, Flags
 from models.quantity import QUANTITIES
 from models.readings import Readings, quantity_of
+from models.reflection.sweep_flags import SWEEP_FLAGS
 from models.relation import Array
 from service.errors import Unprocessable
 from service.faults import Fault, hint, pointer, shown
@@ -91,6 +93,8 @@ class TakenIn:
     echo: Mapping[str, Any] = field(default_factory=dict)
     shared: Mapping[str, Array] = field(default_factory=dict)
     """As of RawColumns."""
+    advice: tuple[Advice, ...] = ()
+    """Flags of the records themselves, each with the readings it is about."""
 
     def with_shared(self, readings: Readings) -> Readings:
         """The readings, with what those of one probe share."""
@@ -103,11 +107,19 @@ class TakenIn:
         if self.flags is None:
             return
         flags |= self.flags
-        explained = (self.flags & BIT["no-end-reflection"]) != 0
-        flags[explained] &= ~_UNSAID
+        for reason, missing in _UNSAID.items():
+            flags[(self.flags & BIT[reason]) != 0] &= ~missing
 
 
-_UNSAID = BIT["missing:apparent_permittivity"] | BIT["missing:frequency"]
+_OF_TRACE = BIT["missing:apparent_permittivity"] | BIT["missing:frequency"]
+_OF_SWEEP = BIT["missing:real_permittivity"] | BIT["missing:imaginary_permittivity"]
+_UNSAID: Mapping[str, np.uint64] = MappingProxyType({
+    "no-end-reflection": _OF_TRACE,
+    **dict.fromkeys(("out-of-gate:real_permittivity", "no-solution", "no-permittivity"), _OF_SWEEP),
+})  # fmt: skip
+"""What is not missing from a row whose record says why it gives no number."""
+MOST_NAMED = 5
+"""Readings that an advisory names, of those it is about."""
 
 
 def take_in(document: dict[str, Any]) -> TakenIn:
@@ -130,6 +142,7 @@ def take_in(document: dict[str, Any]) -> TakenIn:
     told: dict[str, None] = {}
     echo: dict[str, Any] = {}
     shared: dict[str, Array] = {}
+    advice: list[Advice] = []
     for kind, reader in RAW_RECORDS.items():
         records, where, count = _pulled(readings, kind)
         if not records:
@@ -140,9 +153,24 @@ def take_in(document: dict[str, Any]) -> TakenIn:
         told |= dict.fromkeys(_put(readings, kind, records, found.numbers, units))
         flags = found.flags if flags is None else flags | found.flags
         echo[kind] = found.echo
+        advice += _advice_of(found.echo, where)
         for name, values in found.shared.items():
             shared[name] = np.fmax(shared.get(name, values), values)
-    return TakenIn(flags, tuple(told), {SETTINGS: echo} if echo else {}, shared)
+    return TakenIn(flags, tuple(told), {SETTINGS: echo} if echo else {}, shared, tuple(advice))
+
+
+def _advice_of(echo: Mapping[str, Any], where: Mapping[int, Place]) -> Iterator[Advice]:
+    """What the remarks on raw records say of their sweeps, flag by flag."""
+    by_flag: dict[str, list[int]] = {}
+    for remark in echo.get("remarks", ()):
+        for flag in remark["flags"]:
+            if flag in SWEEP_FLAGS:
+                by_flag.setdefault(flag, []).append(remark["row"])
+    for flag, rows in by_flag.items():
+        places = ", ".join(pointer(where[row]) for row in rows[:MOST_NAMED])
+        more = f" and {len(rows) - MOST_NAMED} more" if len(rows) > MOST_NAMED else ""
+        yield advise("raw-record-flags", count=len(rows), flag=flag, places=places + more,
+                     meaning=SWEEP_FLAGS[flag].text)  # fmt: skip
 
 
 def _refuse(detail: str, place: Place) -> None:

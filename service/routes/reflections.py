@@ -48,7 +48,8 @@ DESCRIPTION = description_of(
     "Sweeps of one port as complex numbers or Touchstone text, all at the same frequencies. "
     "Sweeps of the other time convention are conjugated once, with an advisory that says so.",
     "The spectrum with standard uncertainties: `_u` all of it, `_u_shared` what repeating the "
-    "sweep does not lessen (standards, lengths); flags of each frequency; every check of practice "
+    "sweep does not lessen (standards, lengths, the aperture where three standards leave it open); "
+    "flags of each frequency; every check of practice "
     "with its number and limit. `departure` of a standard: how far it reads from what it is "
     "taken for when the others are taken at their word. `sensing_depth` of the aperture [m]: what "
     "lies further away changes the reading by less than 1 %.",

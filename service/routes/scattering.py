@@ -21,7 +21,9 @@ DESCRIPTION = description_of(
     "S-parameters of an air line with a sample in it, as complex numbers or Touchstone text. With "
     "`holder_length` and without `air_before` the position of the sample is found.",
     "The spectrum with standard uncertainties: `_u` all of it, `_u_shared` what lengths and "
-    "position leave open; permeability where the sample is magnetic, or the method tells it.",
+    "position leave open; permeability where the sample is magnetic, or the method tells it. "
+    "What contradicts a permeability of 1, the position or the symmetry of the sample is flagged "
+    "at every point; a permeability far below 1 is that of no soil and leaves no number.",
 )
 
 

@@ -16,6 +16,7 @@ from models.spectrum.description import Banded, spread
 from models.spectrum.doubts import TERM as UNRESOLVED
 from models.spectrum.doubts import doubts
 from models.spectrum.fit import Fit
+from models.spectrum.flags import Finding
 from models.spectrum.form import ELECTRODE_FREQUENCY, Form
 from models.spectrum.views import VIEWS, seen_as, sensitivity
 from models.spectrum.weights import NOISES
@@ -52,7 +53,7 @@ def answer_of(found: Interpretation, body: SpectraBody, cell: float) -> dict[str
         answer["circuit"]["materials"] = materials_echo(constants, body.geometry, body.units)
     if body.views:
         answer["views"] = {view: _view(fit, view, cell) for view in dict.fromkeys(body.views)}
-    advisories = [{"code": f.flag, "text": f"{f.text}."} for f in found.findings]
+    advisories = _said_once(found.findings)
     if found.soil is not None:
         answer["soil"] = soil_echo(found.soil, body.units)
         for code in ("indirect-measurement", "numbers-not-verdicts", "generic-equation"):
@@ -65,6 +66,14 @@ def answer_of(found: Interpretation, body: SpectraBody, cell: float) -> dict[str
         "flags": list(dict.fromkeys(finding.flag for finding in found.findings)),
         "advisories": advisories,
     }
+
+
+def _said_once(findings: Sequence[Finding]) -> list[dict[str, str]]:
+    """An advisory for each flag, with everything that it was raised for."""
+    by_flag: dict[str, list[str]] = {}
+    for finding in findings:
+        by_flag.setdefault(finding.flag, []).append(finding.text)
+    return [{"code": flag, "text": f"{'; '.join(texts)}."} for flag, texts in by_flag.items()]
 
 
 TOLD = ("frequency", "real_permittivity", "imaginary_permittivity", "static_permittivity",

@@ -15,6 +15,8 @@ POINTS = 240
 """Of a fitted line."""
 DECADES = 1.5
 """Span of a part beyond which its axis is logarithmic."""
+LEAST = 1e-5
+"""Of the largest magnitude, what an axis spans at least: less is rounding."""
 MHZ = 1e6
 STILL = "without conduction"
 UNITS = {"1": "", "Ohm": " in Ohm", "S": " in S"}
@@ -89,7 +91,7 @@ def _label(view: View, place: int) -> str:
 def _part(view: View, lines: list[_Line], place: int) -> Panel:
     values = [line.part(place, down=view.downward) for line in lines]
     drawn = np.concatenate(values[:2])
-    positive = bool(np.all(drawn > 0))
+    positive = bool(np.all(drawn > 0)) and float(np.ptp(drawn)) > LEAST * _size(lines)
     wide = positive and np.log10(drawn.max() / drawn.min()) > DECADES
     series = []
     for line, part in zip(lines, values, strict=True):
@@ -103,7 +105,13 @@ def _part(view: View, lines: list[_Line], place: int) -> Panel:
                    upper=None if half is None else part + half)
         )  # fmt: skip
     return Panel("Frequency in MHz", _label(view, place), series, x_logarithmic=True,
-                 y_logarithmic=wide)  # fmt: skip
+                 y_logarithmic=wide, y_least=LEAST * _size(lines))  # fmt: skip
+
+
+def _size(lines: list[_Line]) -> float:
+    """Largest magnitude of what is drawn."""
+    sizes = np.abs(np.concatenate([line.values for line in lines]))
+    return float(np.nanmax(sizes)) if np.isfinite(sizes).any() else 0.0
 
 
 def _plane(view: View, lines: list[_Line]) -> Panel:

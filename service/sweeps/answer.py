@@ -44,8 +44,16 @@ def tip_answer(body: ReflectionsBody, found: TipEstimate) -> dict[str, Any]:
         or [{"name": s.name} for s in calibration.standards],
         "closest_standards": {"names": [one, other], "difference": _number(apart)},
         "noise": _noise(misfit.noise, source or ("repeats" if misfit.known else None)),
-        **_rest(body, found.estimate),
+        **_rest(body, found.estimate, _of_three(found)),
     }
+
+
+def _of_three(found: TipEstimate) -> Sequence[Advice]:
+    """What three standards leave open, and whether the uncertainty holds it."""
+    if len(found.calibration.standards) > 3:
+        return ()
+    share = "; what another model would say is in the uncertainty" if found.aperture_open else ""
+    return (advise("aperture-not-told", model=found.calibration.aperture.model, share=share),)
 
 
 def line_answer(body: ReflectionsBody, found: LineEstimate) -> dict[str, Any]:
@@ -61,6 +69,10 @@ def line_answer(body: ReflectionsBody, found: LineEstimate) -> dict[str, Any]:
 
 def two_port_answer(body: ScatteringBody, found: TwoPortEstimate) -> dict[str, Any]:
     """The spectrum of permittivity and, where it is not 1, permeability."""
+    said = []
+    if found.length_if_not_magnetic is not None:
+        length, own = found.length_if_not_magnetic, body.line.sample_length
+        said.append(advise("sample-length-suspected", length=f"{length:.4g}", own=f"{own:.4g}"))
     source = "stated" if body.reflection_u or body.sample.reflection_u else "symmetry"
     return {
         "method": found.method,
@@ -69,7 +81,7 @@ def two_port_answer(body: ScatteringBody, found: TwoPortEstimate) -> dict[str, A
                      "air_before_u": _number(found.position_u)},
         "whole_wavelengths": found.turns,
         "noise": _noise(found.noise, source if found.noise_known else None),
-        **_rest(body, found.estimate),
+        **_rest(body, found.estimate, said),
     }  # fmt: skip
 
 
@@ -158,8 +170,8 @@ def _noise(level: float, source: str | None) -> dict[str, Any]:
     return {"reflection_u": _number(level) if known else None, "source": source or "not known"}
 
 
-def _rest(body: Common, estimate: SweepEstimate) -> dict[str, Any]:
-    said = [advise("indirect-measurement")]
+def _rest(body: Common, estimate: SweepEstimate, more: Sequence[Advice] = ()) -> dict[str, Any]:
+    said = [advise("indirect-measurement"), *more]
     if not estimate.noise_known:
         said.append(advise("no-uncertainty-stated", names="reflection", example="reflection_u"))
     units = {"frequency": body.units.get("frequency", "Hz"), **_permittivities(estimate)}

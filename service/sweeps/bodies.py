@@ -2,14 +2,25 @@
 
 from typing import Annotated, Any, Literal
 
-from pydantic import Field, TypeAdapter, WithJsonSchema
+from pydantic import BeforeValidator, Field, TypeAdapter, WithJsonSchema
 
 from models.reflection.tip.aperture import MODELS
 from models.reflection.tip.media import MEDIA
+from service.faults import shown
 from service.schemas.words import Body, Number, described
 
 Numbers = list[Number]
 NotNegative = Annotated[Number, Field(ge=0)]
+
+
+def _number_or_list(given: Any) -> Any:
+    """What is neither a number nor a list is told both."""
+    if given is None or (isinstance(given, int | float | list) and not isinstance(given, bool)):
+        return given
+    raise ValueError(f"expected a number, or a list with one for each point, found {shown(given)}")
+
+
+Uncertainty = Annotated[NotNegative | list[NotNegative], BeforeValidator(_number_or_list)]
 Positive = Annotated[Number, Field(gt=0)]
 ApertureKey = Annotated[str, WithJsonSchema({"type": "string", "enum": list(MODELS)})]
 Kind = Literal["tip", "filled-line", "cell"]
@@ -47,7 +58,7 @@ class OnePortSweep(Body):
     touchstone: str | list[str] | None = Field(
         None, description="text of a Touchstone 1.1 or 2.0 file of one port; a list: repeats"
     )
-    reflection_u: NotNegative | list[NotNegative] | None = Field(
+    reflection_u: Uncertainty | None = Field(
         None,
         description="standard uncertainty of the real and of the imaginary part of each "
         "reflection, of all points or of each; else that of the request",
@@ -108,7 +119,8 @@ class ApertureBody(Body):
     model: ApertureKey | None = Field(
         None,
         description="left out: fitted where four or more standards are given, else aperture-field "
-        "with radii, else capacitive. " + "; ".join(f"{k}: {v}" for k, v in MODELS.items()),
+        "with radii, else capacitive; what another model would say is then in the uncertainty. "
+        + "; ".join(f"{k}: {v}" for k, v in MODELS.items()),
     )
     inner_radius: Positive | None = Field(None, description="of the inner conductor [m]")
     outer_radius: Positive | None = Field(None, description="inside of the outer conductor [m]")
@@ -142,7 +154,7 @@ class Common(Body):
     frequency: Numbers | None = Field(
         None, description=f"of sweeps that bring none. {described('frequency')}"
     )
-    reflection_u: NotNegative | list[NotNegative] | None = Field(
+    reflection_u: Uncertainty | None = Field(
         None, description="standard uncertainty of each part, of sweeps that state none"
     )
     largest_relative_uncertainty: Positive | None = Field(
@@ -187,7 +199,7 @@ class TwoPortSweep(Body):
     touchstone: str | None = Field(
         None, description="text of a Touchstone 1.1 or 2.0 file of two ports"
     )
-    reflection_u: NotNegative | list[NotNegative] | None = Field(
+    reflection_u: Uncertainty | None = Field(
         None, description="standard uncertainty of each part of each S-parameter"
     )
     grain_size: Positive | None = Field(None, description="of the largest grain [m]")

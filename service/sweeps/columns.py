@@ -10,27 +10,16 @@ from models.quantity import QUANTITIES
 from models.reflection.repeats import Repeated, repeated
 from models.relation import Array, ComplexArray, column
 from models.units import UNITS
-from service.errors import Unprocessable
-from service.faults import Fault, pointer
+from service.faults import pointer
 from service.formats.errors import FormatError
 from service.formats.networks import touchstone
+from service.formats.networks.options import HERTZ
 from service.sweeps.bodies import ComplexColumn, Numbers, OnePortSweep
+from service.sweeps.values import Place, complex_of, refuse, refuse_large
 
 MOST_POINTS = 10_001
 MOST_REPEATS = 100
-LARGEST = 2.0
-"""Magnitude beyond that of any reflection, even as read through a poor port: ohm, decibels."""
-PARTS = (("real", "imaginary"), ("magnitude", "degrees"))
 SAME = 1e-9
-TURN = 4.0
-"""Range of a phase that stays within -pi and pi, from which it is in radians."""
-
-Place = tuple[int | str, ...]
-
-
-def refuse(detail: str, place: Place) -> Unprocessable:
-    """A refusal of one thing, at its place."""
-    return Unprocessable(detail, [Fault(detail, pointer(place))])
 
 
 @dataclass(frozen=True, slots=True)
@@ -166,7 +155,7 @@ def _files(body: OnePortSweep, place: Place) -> tuple[Axis, list[ComplexArray]]:
     texts = [body.touchstone] if isinstance(body.touchstone, str) else list(body.touchstone or ())
     _refuse_count(len(texts), place)
     networks = [network(text, 1, place) for text in texts]
-    first = Axis(checked_axis(networks[0].frequency, place), place)
+    first = Axis(checked_axis(networks[0], place), place)
     for one in networks[1:]:
         if not np.array_equal(one.frequency, networks[0].frequency):
             raise refuse("repeated sweeps have the same frequencies", place)
@@ -175,19 +164,40 @@ def _files(body: OnePortSweep, place: Place) -> tuple[Axis, list[ComplexArray]]:
     return first, [one.parameters[:, 0, 0] for one in networks]
 
 
-def checked_axis(hertz: Array, place: Place) -> Array:
+def checked_axis(held: touchstone.Network, place: Place) -> Array:
     """The axis of a file, within what is possible."""
+    hertz, gate = held.frequency, QUANTITIES["frequency"].gate_si
     if hertz.size > MOST_POINTS:
         raise refuse(f"expected at most {MOST_POINTS} frequencies, found {hertz.size}", place)
+    bad = np.flatnonzero(gate.excludes(hertz))
+    if bad.size:
+        fitting = [
+            unit for unit, scale in HERTZ.items()
+            if not gate.excludes(held.as_written * scale).any()
+        ]  # fmt: skip
+        meant = f"; in {' or '.join(fitting)} all are: change the unit there" if fitting else ""
+        detail = (
+            f"expected frequencies in {gate} Hz, found {held.as_written[bad[0]]:g} in the unit "
+            f"{held.unit} of the option line (line {held.option_line}){meant}"
+        )
+        raise refuse(detail, place)
     return _rising(hertz, "Hz", place)
 
 
 def network(text: str, ports: int, place: Place) -> touchstone.Network:
     """A Touchstone file. Raises Unprocessable with the line of what is wrong."""
     try:
-        return touchstone.read(text, ports)
+        held = touchstone.read(text, ports)
     except FormatError as error:
         raise refuse(str(error), place) from None
+    if len(set(held.references)) > 1:
+        told = " ".join(f"{one:g}" for one in held.references)
+        detail = (
+            f"expected one [Reference] for both ports, found {told} ohm: a sample lies in one "
+            "line; renormalise the file to the impedance of that line"
+        )
+        raise refuse(detail, place)
+    return held
 
 
 def _columns(
@@ -203,44 +213,3 @@ def _columns(
 def _refuse_count(count: int, place: Place) -> None:
     if not 1 <= count <= MOST_REPEATS:
         raise refuse(f"expected 1 to {MOST_REPEATS} sweeps, found {count}", place)
-
-
-def complex_of(body: ComplexColumn, place: Place) -> ComplexArray:
-    """Complex numbers from their parts, of a size that a reflection has."""
-    given = tuple(n for pair in PARTS for n in pair if getattr(body, n) is not None)
-    if given not in PARTS:
-        found = ", ".join(given) or "none of them"
-        raise refuse(f"expected real and imaginary, or magnitude and degrees; found {found}", place)
-    first, second = (column(getattr(body, name)) for name in given)
-    if first.size != second.size:
-        detail = f"{given[0]} has {first.size} values, {given[1]} {second.size}"
-        raise refuse(detail, (*place, given[1]))
-    if given == PARTS[0]:
-        values = first + 1j * second
-    else:
-        _refuse_radians(second, (*place, "degrees"))
-        values = first * np.exp(1j * np.radians(second))
-    refuse_large(values, place)
-    return np.asarray(values, dtype=np.complex128)
-
-
-def _refuse_radians(phase: Array, place: Place) -> None:
-    """A sweep that runs through all of -pi to pi, and no further, was written in radians."""
-    within = phase.size > 3 and float(np.abs(phase).max()) <= np.pi + 1e-3
-    if within and float(np.ptp(phase)) > TURN:
-        detail = (
-            "every phase lies between -3.1416 and 3.1416: these look like radians; send "
-            "degrees (radians times 57.29578), or real and imaginary parts"
-        )
-        raise refuse(detail, place)
-
-
-def refuse_large(values: ComplexArray, place: Place) -> None:
-    """Refuse what is no reflection coefficient: ohm, decibels, degrees read as a part."""
-    if values.size and np.abs(values).max() > LARGEST:
-        detail = (
-            f"a reflection coefficient is about 1 at most, found {np.abs(values).max():.4g}: "
-            "send rho = (Z - Z0) / (Z + Z0) in place of ohm, magnitudes in place of decibels, "
-            "degrees as degrees"
-        )
-        raise refuse(detail, place)

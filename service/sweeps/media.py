@@ -9,7 +9,7 @@ from models.relation import Array, column
 from models.units import UNITS
 from service.faults import hint
 from service.sweeps.bodies import Numbers, StandardBody
-from service.sweeps.columns import Place, refuse
+from service.sweeps.values import Place, refuse
 
 ALIASES = {"open": "air"}
 DECI = 0.1  # S/m in a dS/m

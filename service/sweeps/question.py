@@ -14,7 +14,8 @@ from service.errors import Unprocessable
 from service.faults import problems_of
 from service.schemas.lengths import in_metres, too_long
 from service.sweeps.bodies import LENGTHS, ReflectionsBody, SampleBody, StandardBody
-from service.sweeps.columns import Axes, Place, Sweep, one_port, refuse
+from service.sweeps.columns import Axes, Sweep, one_port
+from service.sweeps.values import Place, refuse
 
 LONGEST_LENGTH = 1.0
 """m, beyond which a length was written in another unit."""

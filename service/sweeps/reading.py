@@ -1,6 +1,7 @@
 """Sweeps as the raw records of readings: permittivity at one frequency, for an estimate."""
 
 from collections.abc import Callable, Mapping, Sequence
+from types import MappingProxyType
 from typing import Any
 
 import numpy as np
@@ -8,7 +9,7 @@ import numpy as np
 from models.advisories import advise
 from models.conversion import Units
 from models.errors import ParameterError
-from models.flags import Flags
+from models.flags import BIT, Flags
 from models.quantity import QUANTITIES
 from models.reflection.estimates import SweepEstimate
 from models.reflection.line.estimate import estimate_line
@@ -20,16 +21,22 @@ from models.units import UNITS
 from service.errors import Unprocessable
 from service.faults import Fault, pointer
 from service.sweeps.bodies import REFLECTIONS, SCATTERING
-from service.sweeps.columns import Place, refuse
 from service.sweeps.question import body_of, line_question
 from service.sweeps.tip import tip_question
 from service.sweeps.two_port import two_port_question
+from service.sweeps.values import Place, refuse
 
 AT = "at_frequency"
 MOST, MOST_SEARCHED = 200, 40
 """Raw sweeps in one request; fewer where each of them is searched for its roots."""
 TAKEN = ("real_permittivity", "real_permittivity_u", "imaginary_permittivity",
          "imaginary_permittivity_u", "frequency")  # fmt: skip
+NO_NUMBER: Mapping[str, str] = MappingProxyType({
+    "below-vacuum": "out-of-gate:real_permittivity",
+    "no-root": "no-solution",
+    "too-uncertain": "no-permittivity",
+})  # fmt: skip
+"""What a row is flagged by where the sweep is flagged so and has no number."""
 Answer = tuple[Mapping[str, Array], Flags, Mapping[str, Any], Mapping[str, Array]]
 Records = Mapping[int, Any]
 Where = Mapping[int, Place]
@@ -142,17 +149,15 @@ def _columns(held: Sequence[Held], count: int, at: float, place: Place) -> Answe
     """Spectra at one frequency; a loss below zero by no more than noise is read as none."""
     columns = {name: np.full(count, np.nan) for name in TAKEN}
     shared = np.full(count, np.nan)
+    flags = np.zeros(count, dtype=np.uint64)
     remarks: list[dict[str, Any]] = []
     for row, found, n in held:
         if not found.frequency[0] <= at <= found.frequency[-1]:
             ends = f"{found.frequency[0]:g} to {found.frequency[-1]:g}"
             raise refuse(f"the sweeps span {ends} Hz, found {at:g} Hz", (*place, AT))
-        values = _at(found, n, at)
-        loss, loss_u = values["imaginary_permittivity"], values["imaginary_permittivity_u"]
-        told = sorted(_near(found, n, at))
-        if -MARGIN * loss_u <= loss < 0:
-            values["imaginary_permittivity"] = 0.0
-            told.append("loss-below-zero")
+        values, told = _reading(found, n, at)
+        if np.isnan(values["real_permittivity"]):
+            flags[row] |= BIT[_why_none(told)]
         for name, value in values.items():
             columns[name][row] = value
         shared[row] = float(np.interp(at, found.frequency, found.band.real_shared[n]))
@@ -165,7 +170,25 @@ def _columns(held: Sequence[Held], count: int, at: float, place: Place) -> Answe
         advice = advise("no-uncertainty-stated", names="reflection", example="reflection_u")
         said.append({"code": advice.code, "text": advice.text})
     echo = {AT: at, "remarks": remarks, "advisories": said}
-    return columns, np.zeros(count, dtype=np.uint64), echo, {"real_permittivity": shared}
+    return columns, flags, echo, {"real_permittivity": shared}
+
+
+def _reading(found: SweepEstimate, place: int, at: float) -> tuple[dict[str, float], list[str]]:
+    """One spectrum at one frequency, and what is to be said of it."""
+    values = _at(found, place, at)
+    loss, loss_u = values["imaginary_permittivity"], values["imaginary_permittivity_u"]
+    told = sorted(_near(found, place, at))
+    if -MARGIN * loss_u <= loss < 0:
+        values["imaginary_permittivity"] = 0.0
+        told.append("loss-below-zero")
+    if found.conjugated:
+        told.append("conjugated")
+    return values, told
+
+
+def _why_none(told: Sequence[str]) -> str:
+    """The flag of a row whose sweep has no permittivity where it was read."""
+    return next((NO_NUMBER[flag] for flag in told if flag in NO_NUMBER), "no-permittivity")
 
 
 def _at(found: SweepEstimate, place: int, at: float) -> dict[str, float]:

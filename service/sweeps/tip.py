@@ -10,9 +10,10 @@ from models.reflection.tip.sample import Sample
 from models.relation import Array
 from service.faults import hint
 from service.sweeps.bodies import ReflectionsBody, SampleBody, StandardBody
-from service.sweeps.columns import Axes, Place, Sweep, one_port, refuse
+from service.sweeps.columns import Axes, Sweep, one_port
 from service.sweeps.media import known_of
 from service.sweeps.question import LONGEST_LENGTH, metres, refuse_ends, refuse_twice, start
+from service.sweeps.values import Place, refuse
 
 LONGEST_RADIUS = 0.05
 """m, beyond which a radius was written in another unit."""

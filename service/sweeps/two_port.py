@@ -7,17 +7,8 @@ from models.reflection.two_port.estimate import Parameters, TwoPortQuery
 from models.relation import ComplexArray
 from service.schemas.lengths import too_long
 from service.sweeps.bodies import ScatteringBody, TwoPortSweep
-from service.sweeps.columns import (
-    Axes,
-    Axis,
-    Place,
-    checked_axis,
-    complex_of,
-    network,
-    refuse,
-    refuse_large,
-    spread_of,
-)
+from service.sweeps.columns import Axes, Axis, checked_axis, network, spread_of
+from service.sweeps.values import Place, complex_of, refuse, refuse_large
 
 LONGEST: Mapping[str, float] = {"sample_length": 1.0, "holder_length": 5.0, "air_before": 5.0}
 """m, beyond which a length was written in another unit."""
@@ -31,6 +22,12 @@ def two_port_question(body: ScatteringBody) -> TwoPortQuery:
     refuse_units(body.units)
     axes = Axes(body.frequency, body.units)
     parameters = _parameters(body.sample, axes)
+    if not parameters[1].any():
+        detail = (
+            "every s21 is 0: nothing passed through the sample; expected a sweep with both ports "
+            "connected, through a sample short enough to let some of it through"
+        )
+        raise refuse(detail, ("sample", "s21" if body.sample.touchstone is None else "touchstone"))
     size = axes.hertz.size
     own = body.sample.reflection_u
     at: Place = ("reflection_u",) if own is None else ("sample", "reflection_u")
@@ -73,7 +70,7 @@ def _parameters(body: TwoPortSweep, axes: Axes) -> Parameters:
 def _from_file(text: str, axes: Axes) -> Parameters:
     place: Place = ("sample", "touchstone")
     held = network(text, 2, place)
-    axes.settle(Axis(checked_axis(held.frequency, place), place), ("sample",))
+    axes.settle(Axis(checked_axis(held, place), place), ("sample",))
     s = held.parameters
     refuse_large(s, place)
     return s[:, 0, 0], s[:, 1, 0], s[:, 0, 1], s[:, 1, 1]

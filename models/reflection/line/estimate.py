@@ -8,12 +8,11 @@ import numpy as np
 from models.reflection.analytic_fit import solve
 from models.reflection.error_terms import fit
 from models.reflection.estimates import Band, SweepEstimate, flag_loss, flag_uncertain, kept
-from models.reflection.line import cell, filled
+from models.reflection.line import cell, filled, practice
 from models.reflection.line.cell import ENDS, End
 from models.reflection.line.gaps import CoaxialGap
-from models.reflection.line.practice import findings_of, flag, magnetic_finding
 from models.reflection.line.roots import smooth_roots
-from models.reflection.orientation import falls, rises
+from models.reflection.orientation import falls, loss_share, rises
 from models.reflection.plausible import judge
 from models.reflection.propagation import through_air
 from models.relation import Array, ComplexArray
@@ -75,17 +74,21 @@ class LineEstimate:
 
 @np.errstate(all="ignore")
 def estimate_line(query: LineQuery) -> LineEstimate:
-    """Permittivity over frequency; permeability too where both ends of a cell show one."""
+    """Permittivity over frequency, with a finding where both ends of a cell contradict one.
+
+    Raises ParameterError where both ends were read alike.
+    """
+    practice.refuse_alike({end: query.reads[end].reflection for end in query.ends})
     reads = [*query.reads.values(), *query.standards.values()]
     everything = np.stack([read.reflection for read in reads])
     face, here = _first(query)
-    loss = _loss(here)
+    loss = loss_share(here.permittivity)
     if rises(everything) or (loss < -LOSS and not falls(everything)):
         turned = replace(
             query, reads=_conjugated(query.reads), standards=_conjugated(query.standards)
         )
         other = _first(turned)
-        if _loss(other[1]) > max(loss, -LOSS):
+        if loss_share(other[1].permittivity) > max(loss, -LOSS):
             return _estimated(turned, *other, conjugated=True)
     return _estimated(query, face, here, conjugated=False)
 
@@ -94,15 +97,6 @@ def _conjugated(reads: Mapping[str, Read]) -> Mapping[str, Read]:
     return {
         name: replace(read, reflection=np.conj(read.reflection)) for name, read in reads.items()
     }
-
-
-def _loss(solution: "_Solution") -> float:
-    """Median loss beside |eps|; zero where there is no number at all."""
-    eps = solution.permittivity
-    with np.errstate(all="ignore"):
-        share = -eps.imag / np.abs(eps)
-    usable = share[np.isfinite(share)]
-    return float(np.median(usable)) if usable.size else 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -204,12 +198,16 @@ def _estimated(query: LineQuery, face: _Face, here: _Solution, *, conjugated: bo
     flags = np.zeros((1, f.size), dtype=np.uint64)
     flag_loss(eps[None], band, flags)
     flag_uncertain(eps[None], band, flags, query.largest_relative_uncertainty)
-    flag(face.reflection, face.spread, flags)
+    practice.flag(face.reflection, face.spread, flags)
     (plausible,) = judge(f, eps[None], band, flags)
-    findings = (*findings_of(query, eps, face.reflection), *plausible)
+    findings = (*practice.findings_of(query, eps, face.reflection), *plausible)
+    if "short" in query.ends and query.length is not None:
+        first = face.reflection[0], face.spread[0]
+        findings = (*findings, practice.short_finding(f, query.length, *first, flags))
     if len(query.ends) == 2 and query.length is not None:
         both = cell.from_both(face.reflection[0], face.reflection[1], f, query.length)
-        findings = (*findings, magnetic_finding(both[1], here.residual, known=face.known))
+        magnetic = practice.magnetic_finding(both[1], here.residual, flags, known=face.known)
+        findings = (*findings, magnetic)
     freedom = min(read.freedom for read in query.reads.values())
     estimate = SweepEstimate(
         f, kept(eps[None], flags), band, flags, (findings,), np.full((1, f.size), freedom),

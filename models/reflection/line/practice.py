@@ -1,12 +1,15 @@
 """Good practice with a filled line or cell."""
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import replace
 from typing import Protocol
 
 import numpy as np
+from scipy.constants import speed_of_light
 
+from models.errors import Complaint, ParameterError
 from models.flags import Flags
+from models.reflection.plausible import WATER
 from models.reflection.propagation import attenuation_length, propagation_constant
 from models.reflection.sweep_flags import MARGIN, Finding, at_least, at_most, raised
 from models.relation import Array, ComplexArray
@@ -17,6 +20,9 @@ ENDLESS = 2.3
 """Attenuation lengths after which a hundredth comes back from the end."""
 SHORT = 0.01
 MAGNETIC = 0.05
+CAPACITIVE = 0.05
+SAME = 1e-9
+"""Difference of two reflections that is none."""
 
 
 class Described(Protocol):
@@ -52,6 +58,43 @@ def flag(reflection: ComplexArray, spread: Array, flags: Flags) -> None:
         raised(flags[0], row, "reflection-above-one")
 
 
+def short_finding(
+    frequency: Array, length: float, reflection: ComplexArray, spread: Array, flags: Flags
+) -> Finding:
+    """Whether a shorted cell is one; where not, every point is marked.
+
+    reflection: of the shorted cell at the face of the sample, shape (f,). length: m.
+
+    Its impedance tanh(x) / sqrt(eps) is that of an inductance, lossy or not, while |x| is small.
+    """
+    sixth = frequency * length * np.sqrt(WATER) / speed_of_light < 1 / 6
+    capacitive = -reflection.imag[sixth]
+    worst = np.median(capacitive) if capacitive.size else np.nan
+    limit = max(CAPACITIVE, MARGIN * float(np.median(spread)))
+    about = "capacitive part of the reflection of the shorted cell, median of its low end"
+    found = at_most("not-shorted", about, worst, limit)
+    if not found.holds:
+        raised(flags[0], np.ones(flags.shape[1], dtype=bool), found.key)
+    return found
+
+
+def refuse_alike(reads: Mapping[str, ComplexArray]) -> None:
+    """Refuse one reading for both ends: short and open never reflect alike all along.
+
+    reads: by what ended the cell, shape (f,). Raises ParameterError that names both.
+    """
+    if len(reads) < 2:
+        return
+    (one, first), (other, second) = reads.items()
+    apart = float(np.nanmedian(np.abs(first - second)))
+    if apart <= SAME:
+        detail = (
+            f"the {other} cell was read exactly like the {one} one: found a median difference of "
+            f"{apart:.2g}, expected more than {SAME:g}; one sweep was probably sent for both"
+        )
+        raise ParameterError("sample", [Complaint(other, detail, ("sample", other))])
+
+
 def findings_of(
     query: Described, eps: ComplexArray, reflection: ComplexArray
 ) -> tuple[Finding, ...]:
@@ -59,8 +102,8 @@ def findings_of(
     return (_of_reflection(query.frequency, reflection), *_of_sample(query, eps))
 
 
-def magnetic_finding(mu: ComplexArray, residual: Array, *, known: bool) -> Finding:
-    """Whether both ends of a cell agree on a permeability of 1.
+def magnetic_finding(mu: ComplexArray, residual: Array, flags: Flags, *, known: bool) -> Finding:
+    """Whether both ends of a cell agree on a permeability of 1; where not, every point is marked.
 
     residual: of the fit with a permeability of 1, over its spread; it counts where noise is known.
     """
@@ -69,7 +112,10 @@ def magnetic_finding(mu: ComplexArray, residual: Array, *, known: bool) -> Findi
     about = "median departure of permeability from 1, from both ends"
     found = at_most("magnetic", about, abs(middle - 1), MAGNETIC)
     fits = known and float(np.median(residual)) < MARGIN
-    return replace(found, holds=True) if fits else found
+    found = replace(found, holds=True) if fits else found
+    if not found.holds:
+        raised(flags[0], np.ones(flags.shape[1], dtype=bool), found.key)
+    return found
 
 
 def _of_reflection(frequency: Array, reflection: ComplexArray) -> Finding:

@@ -5,12 +5,12 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from models.reflection.estimates import Band, SweepEstimate, flag_loss, flag_uncertain, kept
-from models.reflection.orientation import falls, rises
+from models.reflection.orientation import falls, loss_share, rises
 from models.reflection.plausible import judge
-from models.reflection.tip.aperture import Aperture, Geometry, Model
+from models.reflection.tip.aperture import USUAL, Aperture, Geometry, Model
 from models.reflection.tip.calibration import Calibration, Standard, calibrate
 from models.reflection.tip.consistency import Departure, departures, refuse_alike
-from models.reflection.tip.inversion import Response, invert, of_noise, of_standards
+from models.reflection.tip.inversion import Response, Variance, invert, of_noise, of_standards
 from models.reflection.tip.layers import without_gap
 from models.reflection.tip.misfit import USUAL_NOISE, Misfit, judged
 from models.reflection.tip.practice import findings_of, flag
@@ -23,6 +23,8 @@ LOSS = 2e-3
 """Share of |eps| below zero in the median from which the time convention is doubted."""
 USUAL_CHI_SQUARE = 10.0
 """Reduced, up to which nobody looks for a mistake."""
+USUAL_TIP = Geometry(1.5e-3 / USUAL, 1.5e-3)
+"""Of the 3.6 mm line that most open tips are cut from; where no radii are given."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -48,6 +50,8 @@ class TipEstimate:
     calibration: Calibration
     departures: tuple[Departure, ...]
     misfit: Misfit
+    aperture_open: bool = False
+    """Whether the bands hold what other models of the aperture would say."""
 
 
 @np.errstate(all="ignore")
@@ -63,6 +67,9 @@ def estimate_permittivity(query: TipQuery) -> TipEstimate:
     calibration = calibration.scaled(misfit.factor)
     spread = _sample_spread(query, misfit)
     shared = of_standards(calibration, answer)
+    aperture_open = query.model is None and len(query.standards) == 3
+    if aperture_open:
+        shared = shared + _of_aperture(query, calibration, answer, conjugated=conjugated)
     total = of_noise(calibration, answer, spread) + shared
     band = Band(*(np.sqrt(v) for v in (total.real, total.loss, shared.real, shared.loss)))
     eps, band = _gaps_closed(query, answer.permittivity, band)
@@ -83,13 +90,33 @@ def estimate_permittivity(query: TipQuery) -> TipEstimate:
         conjugated,
         noise_known=misfit.known,
     )
-    return TipEstimate(estimate, calibration, departures(calibration), misfit)
+    return TipEstimate(estimate, calibration, departures(calibration), misfit, aperture_open)
 
 
 def _usual(query: TipQuery) -> Model:
     if len(query.standards) > 3:
         return "fitted"
     return "capacitive" if query.geometry is None else "aperture-field"
+
+
+def _of_aperture(
+    query: TipQuery, calibration: Calibration, answer: Response, *, conjugated: bool
+) -> Variance:
+    """What the models of an aperture disagree about, which three standards cannot settle.
+
+    The difference from another model counts as one standard uncertainty of each part: with radii
+    the one that radiates only, else the field of a usual tip.
+    """
+    if query.geometry is None:
+        other = Aperture("aperture-field", USUAL_TIP)
+    else:
+        other = Aperture("radiating", query.geometry)
+    read = np.stack([sample.read for sample in query.samples])
+    read = np.conj(read) if conjugated else read
+    _, there = _solved(query, other, calibration.standards, read)
+    change = there.permittivity - answer.permittivity
+    size = np.square(np.abs(np.where(np.isfinite(change), change, 0.0)))
+    return Variance(size, size)
 
 
 def _oriented(query: TipQuery, aperture: Aperture) -> tuple[Calibration, Response, bool]:
@@ -100,7 +127,10 @@ def _oriented(query: TipQuery, aperture: Aperture) -> tuple[Calibration, Respons
     read = np.stack([sample.read for sample in query.samples])
     everything = np.concatenate([np.stack([s.read for s in query.standards]), read])
     first = _solved(query, aperture, query.standards, read)
-    loss, fits = _loss(first[1]), _fits(first[0], stated=query.standard_spread is not None)
+    loss, fits = (
+        loss_share(first[1].permittivity),
+        _fits(first[0], stated=query.standard_spread is not None),
+    )
     if loss >= -LOSS and fits and not rises(everything):
         return *first, False
     turned = tuple(replace(s, read=np.conj(s.read)) for s in query.standards)
@@ -108,10 +138,10 @@ def _oriented(query: TipQuery, aperture: Aperture) -> tuple[Calibration, Respons
     before, after = first[0].chi_square, other[0].chi_square
     if len(query.standards) > 3 and not fits:
         signs = loss < -LOSS and after < WORSE * before
-        turn = after < BETTER * before or (signs and _loss(other[1]) > LOSS)
+        turn = after < BETTER * before or (signs and loss_share(other[1].permittivity) > LOSS)
     else:
         turn = (rises(everything) or (loss < -LOSS and not falls(everything))) and (
-            _loss(other[1]) >= -LOSS
+            loss_share(other[1].permittivity) >= -LOSS
             and (other[0].passive or not first[0].passive)
             and _fits(other[0], stated=query.standard_spread is not None)
         )
@@ -135,14 +165,6 @@ def _solved(
         spread = np.ones((len(standards), query.frequency.size))
     calibration = calibrate(query.frequency, standards, aperture, spread)
     return calibration, invert(calibration, read)
-
-
-def _loss(answer: Response) -> float:
-    """Median loss beside |eps|; zero where there is no number at all."""
-    with np.errstate(all="ignore"):
-        share = -answer.permittivity.imag / np.abs(answer.permittivity)
-    usable = share[np.isfinite(share)]
-    return float(np.median(usable)) if usable.size else 0.0
 
 
 def _sample_spread(query: TipQuery, misfit: Misfit) -> Array:

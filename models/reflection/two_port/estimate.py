@@ -7,13 +7,19 @@ import numpy as np
 
 from models.reflection.analytic_fit import solve
 from models.reflection.estimates import Band, SweepEstimate, flag_loss, flag_uncertain, kept
-from models.reflection.orientation import falls, rises
+from models.reflection.orientation import falls, loss_share, rises
 from models.reflection.plausible import judge
 from models.reflection.two_port import nicolson_ross_weir
 from models.reflection.two_port.baker_jarvis_1990 import all_four
 from models.reflection.two_port.baker_jarvis_1990 import permittivity as baker_jarvis
 from models.reflection.two_port.position import Planes, at_faces, found
-from models.reflection.two_port.practice import findings_of, flag, magnetic_finding
+from models.reflection.two_port.practice import (
+    findings_of,
+    flag,
+    flag_everywhere,
+    likeness_findings,
+    permeability_findings,
+)
 from models.relation import Array, ComplexArray
 
 Method = Literal["least-squares", "non-iterative", "baker-jarvis-1990", "nicolson-ross-weir"]
@@ -63,6 +69,8 @@ class TwoPortEstimate:
     """Standard uncertainty of each part of an S-parameter, median over frequency."""
     noise_known: bool
     turns: int
+    length_if_not_magnetic: float | None = None
+    """m, with which the permeability would be 1; None: it is, or something else is amiss."""
 
 
 @np.errstate(all="ignore")
@@ -81,10 +89,7 @@ def estimate_constants(query: TwoPortQuery) -> TwoPortEstimate:
 def _loss(query: TwoPortQuery) -> float:
     """Median loss beside |eps|, the sample being taken as not magnetic."""
     eps, _ = _seen(query, "non-iterative", *_planes(query, 1e-3)[:1], query.length)
-    with np.errstate(all="ignore"):
-        share = -eps.imag / np.abs(eps)
-    usable = share[np.isfinite(share)]
-    return float(np.median(usable)) if usable.size else 0.0
+    return loss_share(eps)
 
 
 def _planes(query: TwoPortQuery, spread: float) -> tuple[Planes, float]:
@@ -131,7 +136,9 @@ def _estimated(query: TwoPortQuery, *, conjugated: bool) -> TwoPortEstimate:
     response = nicolson_ross_weir.response(both.permittivity, both.permeability, f, length)
     fewer = 1.0 if query.both_ways else np.sqrt(2.0)
     mu_u = np.sqrt(np.square(np.abs(response[:, 1])).sum(axis=-1) / 2) * noise * fewer
-    magnetic = magnetic_finding(f, both, mu_u)
+    magnetic, whole = permeability_findings(f, both, mu_u)
+    if query.both_ways:
+        whole = (*whole, *likeness_findings(s, query.spread))
     method = query.method or ("least-squares" if magnetic.holds else "nicolson-ross-weir")
     eps, mu = _seen(query, method, planes, length)
     own = _own(query, method, eps, response[:, 0], noise) * fewer
@@ -141,15 +148,19 @@ def _estimated(query: TwoPortQuery, *, conjugated: bool) -> TwoPortEstimate:
     flag_loss(eps[None], band, flags)
     flag_uncertain(eps[None], band, flags, query.largest_relative_uncertainty)
     flag(query, s, eps, mu, noise, flags, certain=both.certain)
+    flag_everywhere((magnetic, *whole), flags)
     (plausible,) = judge(f, eps[None], band, flags)
-    found_here = (*findings_of(query, eps, mu, magnetic, s), *plausible)
+    found_here = (*findings_of(query, eps, mu, magnetic, s), *whole, *plausible)
     estimate = SweepEstimate(
         f, kept(eps[None], flags), band, flags, (found_here,), np.full((1, f.size), np.inf),
         conjugated, None if mu is None else kept(mu[None], flags),
         None if shared_mu is None else _band(mu_u, shared_mu), known,
     )  # fmt: skip
     level = float(np.median(noise))
-    return TwoPortEstimate(estimate, method, planes, position_u, level, known, both.turns)
+    other = None
+    if not magnetic.holds and all(f.holds for f in whole if f.key != "permeability-below-one"):
+        other = length * float(np.nanmedian(both.permeability.real))
+    return TwoPortEstimate(estimate, method, planes, position_u, level, known, both.turns, other)
 
 
 def _noise(query: TwoPortQuery) -> tuple[Array, bool]:

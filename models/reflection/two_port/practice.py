@@ -1,6 +1,6 @@
 """Good practice with a sample between two ports."""
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from typing import Protocol
 
 import numpy as np
@@ -15,6 +15,10 @@ ABOVE_ONE = 0.02
 GRAINS = 50.0
 MAGNETIC, KNOWN = 0.05, 0.1
 """Departure of permeability from 1 that counts, and the uncertainty up to which it is looked at."""
+IMPOSSIBLE = 0.2
+"""By how much the real part of a permeability may be below 1, beside its uncertainty."""
+UNLIKE, UNSTATED = 0.02, 0.05
+"""Difference of S-parameters that are equal in a sample; where no noise was stated."""
 DARK = 0.05
 """Reflection below which permittivity and permeability part no more."""
 SHORT = 0.01
@@ -45,16 +49,43 @@ class Described(Protocol):
         """Between the conductors."""
 
 
-def magnetic_finding(frequency: Array, both: Constants, mu_u: Array) -> Finding:
-    """Whether the permeability is 1, over the frequencies at which it is well known."""
+def permeability_findings(
+    frequency: Array, both: Constants, mu_u: Array
+) -> tuple[Finding, tuple[Finding, ...]]:
+    """Whether the permeability is 1, over the frequencies at which it is well known.
+
+    Returns that, and whether it is a possible one where it is known at all.
+    """
     mu = both.permeability
     seen = np.isfinite(mu) & (mu_u < KNOWN) & np.isfinite(mu_u)
     about = "median departure of permeability from 1 where it is known to 0.1"
     if seen.sum() < max(3, frequency.size // 20):
-        return at_most("magnetic", about, np.nan, MAGNETIC)
+        return at_most("magnetic", about, np.nan, MAGNETIC), ()
     middle = complex(np.median(mu[seen].real), np.median(mu[seen].imag))
-    limit = max(MAGNETIC, MARGIN * float(np.median(mu_u[seen])))
-    return at_most("magnetic", about, abs(middle - 1), limit)
+    doubt = MARGIN * float(np.median(mu_u[seen]))
+    magnetic = at_most("magnetic", about, abs(middle - 1), max(MAGNETIC, doubt))
+    about = "median real part of permeability where it is known to 0.1"
+    least = 1 - max(IMPOSSIBLE, doubt)
+    return magnetic, (at_least("permeability-below-one", about, middle.real, least),)
+
+
+@np.errstate(all="ignore")
+def likeness_findings(s: Parameters, stated: Array | None) -> tuple[Finding, ...]:
+    """Whether the sample is the same from both sides, S-parameters being those at its faces.
+
+    stated: standard uncertainty of each part, shape (f,); None: not known.
+    """
+    told = []
+    for key, one, other, names in (
+        ("not-symmetric", s[0], s[3], "S11 and S22"), ("not-reciprocal", s[1], s[2], "S21 and S12")
+    ):  # fmt: skip
+        size = np.sqrt(np.nanmean(np.square(np.abs(one - other))))
+        limit = UNSTATED
+        if stated is not None:
+            limit = max(UNLIKE, 2 * MARGIN * float(np.sqrt(np.mean(np.square(stated)))))
+        about = f"difference of {names} at the faces of the sample, root mean square"
+        told.append(at_most(key, about, size, limit))
+    return tuple(told)
 
 
 @np.errstate(all="ignore")
@@ -81,6 +112,13 @@ def flag(
         raised(flags[0], near, "half-wave")
     if not certain:
         raised(flags[0], np.ones(eps.shape, dtype=bool), "branch-uncertain")
+
+
+def flag_everywhere(findings: Iterable[Finding], flags: Flags) -> None:
+    """Mark every frequency, in place, by what does not hold of the sweep as a whole."""
+    for finding in findings:
+        if not finding.holds:
+            raised(flags[0], np.ones(flags.shape[1], dtype=bool), finding.key)
 
 
 def findings_of(

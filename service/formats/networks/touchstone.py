@@ -1,17 +1,15 @@
 """Touchstone 1.1 and 2.0: S-parameters of one or two ports, as network analysers write them."""
 
 import re
-from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass, field
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
 
 import numpy as np
 
 from models.relation import Array, ComplexArray
-from service.formats.errors import FormatError, shown
+from service.formats.errors import FormatError
+from service.formats.networks.options import HERTZ, Header, cells_of, read_keyword, read_options
 
-HERTZ: Mapping[str, float] = {"HZ": 1.0, "KHZ": 1e3, "MHZ": 1e6, "GHZ": 1e9}
-FORMS = ("DB", "MA", "RI")
-PARAMETERS = ("S", "Y", "Z", "G", "H")
 LONGEST = 1_000_000
 """Numbers that a file may hold."""
 _KEYWORD = re.compile(r"\[\s*([^\]]*?)\s*\]\s*(.*)")
@@ -27,27 +25,22 @@ class Network:
     """Shape (f, n, n): parameters[:, 1, 0] is S21."""
     impedance: float
     """Reference of the first port, ohm."""
+    references: tuple[float, ...] = ()
+    """Of each port, where the file states them one by one."""
+    unit: str = "GHZ"
+    """Of frequency, as the option line has it."""
+    option_line: int = 1
+    """Where that stands, counted from 1."""
+
+    @property
+    def as_written(self) -> Array:
+        """Frequencies in the unit of the file, shape (f,)."""
+        return self.frequency / HERTZ[self.unit]
 
     @property
     def ports(self) -> int:
         """One or two."""
         return self.parameters.shape[1]
-
-
-@dataclass(slots=True)
-class _Header:
-    """What the lines before the data say."""
-
-    scale: float = 1e9
-    form: str = "MA"
-    impedance: float = 50.0
-    options: bool = False
-    version: str = "1.1"
-    ports: int | None = None
-    points: int | None = None
-    order: str = "21_12"
-    matrix: str = "full"
-    references: list[float] = field(default_factory=list)
 
 
 def read(text: str, ports: int) -> Network:
@@ -56,7 +49,7 @@ def read(text: str, ports: int) -> Network:
     Version 1.1 does not say how many ports it is about: its numbers must fit.
     Raises FormatError with the line of what does not fit, and how to mend it.
     """
-    header = _Header()
+    header = Header()
     numbers, lines = _numbers(text, header)
     if not header.options:
         raise FormatError("an option line that starts with #", "none", mend="# Hz S RI R 50")
@@ -68,29 +61,32 @@ def read(text: str, ports: int) -> Network:
     frequency = rows[:, 0] * header.scale
     _refuse_order(frequency, lines, width, header)
     impedance = header.references[0] if header.references else header.impedance
-    return Network(frequency, _matrices(rows[:, 1:], ports, header), impedance)
+    matrices = _matrices(rows[:, 1:], ports, header)
+    references = tuple(header.references)
+    return Network(frequency, matrices, impedance, references, header.unit, header.option_line)
 
 
-def _numbers(text: str, header: _Header) -> tuple[Array, Sequence[int]]:
+def _numbers(text: str, header: Header) -> tuple[Array, Sequence[int]]:
     """All numbers of the network data, and the line each stands on."""
     found: list[float] = []
     lines: list[int] = []
     expecting_references = False
     for number, line in _stripped(text):
         if line.startswith("#"):
-            _read_options(line, number, header)
+            read_options(line, number, header)
             continue
         keyword = _KEYWORD.fullmatch(line)
         if keyword:
             name, value = keyword[1].lower(), keyword[2]
             if name in {"noise data", "end"}:
+                header.ended = True
                 break
             expecting_references = name == "reference"
             if name == "begin information":
                 expecting_references = False
-            _read_keyword(name, value, number, header)
+            read_keyword(name, value, number, header)
             continue
-        cells = _cells(line, number)
+        cells = cells_of(line, number)
         if expecting_references:
             header.references += cells
             continue
@@ -113,84 +109,11 @@ def _stripped(text: str) -> Iterator[tuple[int, str]]:
             yield number, bare
 
 
-def _cells(line: str, number: int) -> list[float]:
-    try:
-        cells = [float(cell) for cell in line.split()]
-    except ValueError:
-        raise FormatError(
-            "numbers", shown(line), line=number, mend="comments start with !"
-        ) from None
-    if not np.isfinite(cells).all():
-        raise FormatError("finite numbers", shown(line), line=number)
-    return cells
-
-
-def _read_options(line: str, number: int, header: _Header) -> None:
-    """Unit, parameter, format and R, in any order; only the first such line counts."""
-    if header.options:
-        return
-    header.options = True
-    words = iter(line[1:].upper().split())
-    for word in words:
-        if word in HERTZ:
-            header.scale = HERTZ[word]
-        elif word in FORMS:
-            header.form = word
-        elif word == "R":
-            header.impedance = _positive(next(words, ""), number)
-        elif word in PARAMETERS and word != "S":
-            raise FormatError("S-parameters", f"{word}-parameters", line=number,
-                              mend="export S-parameters")  # fmt: skip
-        elif word != "S":
-            raise FormatError("a unit, S, a format and R", shown(word), line=number,
-                              mend="# Hz S RI R 50")  # fmt: skip
-
-
-def _positive(word: str, number: int) -> float:
-    try:
-        value = float(word)
-    except ValueError:
-        value = -1.0
-    if not 0 < value < 1e6:
-        raise FormatError("an impedance in ohm above 0 after R", shown(word), line=number)
-    return value
-
-
-def _read_keyword(name: str, value: str, number: int, header: _Header) -> None:
-    if name == "version":
-        _one_of(value, ("2.0", "2.1"), number)
-        header.version = "2.0"
-    elif name == "number of ports":
-        header.ports = _whole(value, number)
-    elif name == "number of frequencies":
-        header.points = _whole(value, number)
-    elif name == "two-port data order":
-        header.order = _one_of(value, ("21_12", "12_21"), number)
-    elif name == "matrix format":
-        header.matrix = _one_of(value.lower(), ("full", "lower", "upper"), number)
-    elif name == "reference":
-        header.references += _cells(value, number)
-    elif name == "mixed-mode order":
-        raise FormatError("single-ended ports", "[Mixed-Mode Order]", line=number)
-
-
-def _whole(value: str, number: int) -> int:
-    if not value.isdecimal():
-        raise FormatError("a whole number", shown(value), line=number)
-    return int(value[:9])
-
-
-def _one_of(value: str, known: tuple[str, ...], number: int) -> str:
-    if value not in known:
-        raise FormatError(f"one of {', '.join(known)}", shown(value), line=number)
-    return value
-
-
 def _held(ports: int, matrix: str) -> int:
     return ports * ports if matrix == "full" else ports * (ports + 1) // 2
 
 
-def _rows(numbers: Array, lines: Sequence[int], width: int, header: _Header) -> Array:
+def _rows(numbers: Array, lines: Sequence[int], width: int, header: Header) -> Array:
     """Shape (f, width). Noise data of version 1.1 follow where frequency falls back."""
     if header.version == "1.1":
         per_line = np.bincount(np.asarray(lines, dtype=int)) if lines else np.zeros(1, int)
@@ -201,12 +124,19 @@ def _rows(numbers: Array, lines: Sequence[int], width: int, header: _Header) -> 
             found = f"{per_line[wrong[0]]}"
             raise FormatError(f"{width} numbers", found, line=wrong[0],
                               mend="a frequency and two numbers for each S-parameter")  # fmt: skip
-    if not numbers.size or numbers.size % width:
-        line = lines[-1] if lines else 1
+    if not numbers.size:
+        raise FormatError(f"lines of {width} numbers", "no line of numbers at all", line=None,
+                          mend="a frequency and two numbers for each S-parameter")  # fmt: skip
+    if numbers.size % width:
+        line = lines[-1]
         raise FormatError(f"a multiple of {width} numbers", str(numbers.size), line=line)
     rows = numbers.reshape(-1, width)
     if header.points is not None and header.points != len(rows):
-        raise FormatError(f"{header.points} frequencies, as announced", str(len(rows)))
+        raise FormatError(f"{header.points} frequencies, as announced here", str(len(rows)),
+                          line=header.points_line)  # fmt: skip
+    if header.version != "1.1" and header.points is None and not header.ended:
+        raise FormatError("[End] or [Number of Frequencies]", "neither: the file may be cut off",
+                          line=lines[-1])  # fmt: skip
     return rows
 
 
@@ -217,14 +147,14 @@ def _is_noise(
     return held == 5 and place >= width and numbers[place] <= numbers[place - width]
 
 
-def _refuse_order(frequency: Array, lines: Sequence[int], width: int, header: _Header) -> None:
+def _refuse_order(frequency: Array, lines: Sequence[int], width: int, header: Header) -> None:
     if frequency.size > 1 and np.any(np.diff(frequency) <= 0):
         place = int(np.argmax(np.diff(frequency) <= 0)) + 1
         raise FormatError("frequencies that rise", f"{frequency[place] / header.scale:g}",
                           line=lines[place * width])  # fmt: skip
 
 
-def _matrices(cells: Array, ports: int, header: _Header) -> ComplexArray:
+def _matrices(cells: Array, ports: int, header: Header) -> ComplexArray:
     first, second = cells[:, 0::2], cells[:, 1::2]
     if header.form == "RI":
         values = first + 1j * second

@@ -238,3 +238,30 @@ def test_a_raw_spectrum_that_is_none_is_refused_at_its_place(server):
     answer = server.client.post("/v1/estimates", json=body)
     assert answer.status_code == 422
     assert answer.json()["errors"][0]["pointer"] == "#/readings/1/spectrum/frequency"
+
+
+FLAT = {"frequency": [1e7, 1e8, 1e9, 2e9], "real_permittivity": [5.0] * 4,
+        "imaginary_permittivity": [0.0] * 4}  # fmt: skip
+
+
+def test_rounding_does_not_fill_the_chart_of_a_flat_spectrum(server):
+    answer = post(server, {"spectrum": FLAT}, Accept="image/svg+xml")
+    assert answer.status_code == 200, answer.text
+    drawing = ElementTree.fromstring(answer.text)  # noqa: S314 - our own
+    texts = list(drawing.iter("{http://www.w3.org/2000/svg}text"))
+    ticks = [one.text for one in texts if one.get("text-anchor") == "end"]
+    assert len(ticks) >= 6
+    assert len(set(ticks)) == len(ticks)
+    # a digit is about 7 pixels wide at this size, and the labels have 70 pixels
+    assert max(map(len, ticks)) <= 10
+    assert all(abs(float(tick)) < 1e-3 or abs(float(tick) - 5) < 1e-3 for tick in ticks)
+
+
+def test_a_flag_is_one_advisory_however_many_things_it_is_about(server):
+    answer = post(server, {"spectrum": FLAT, "model": {"terms": ["debye", "cole-cole"]}}).json()
+    codes = [said["code"] for said in answer["advisories"]]
+    assert "term-not-resolved" in codes
+    assert len(codes) == len(set(codes))
+    (told,) = [s["text"] for s in answer["advisories"] if s["code"] == "term-not-resolved"]
+    assert "Term 1 (debye)" in told
+    assert "Term 2 (cole-cole)" in told

@@ -135,3 +135,85 @@ def test_what_cannot_be_used_is_named_where_it_stands(server, steps, value, sent
     text, places = refused(ask(server, changed(steps, value)))
     assert sentence in text
     assert pointer in places
+
+
+def mirrored(text, factor=1.0):
+    """A Touchstone text in real and imaginary parts with every reflection conjugated."""
+    lines = []
+    for line in text.splitlines():
+        if line.startswith(("!", "#")) or not line.strip():
+            lines.append(line)
+            continue
+        frequency, real, imaginary = line.split()
+        lines.append(f"{frequency} {factor * float(real)!r} {-factor * float(imaginary)!r}")
+    return "\n".join(lines)
+
+
+def of_records(answer):
+    """What the answer says of its raw records."""
+    said = answer["advisories"]
+    return [one["text"] for one in said if one["code"] == "raw-record-flags"]
+
+
+def test_standards_that_were_mistaken_are_told_beside_the_estimate(server):
+    body = request()
+    standards = [one for one in body["raw_records"]["reflection"]["standards"]
+                 if one["name"] != "methanol"]  # fmt: skip
+    short, air, water = standards
+    air["touchstone"], water["touchstone"] = water["touchstone"], air["touchstone"]
+    body["raw_records"]["reflection"]["standards"] = [short, air, water]
+    told = " ".join(of_records(ask(server, body).json()))
+    assert "flagged port-not-passive where they were read, 2 in all" in told
+    assert "#/readings/0/reflection, #/readings/1/reflection" in told
+    assert not of_records(ask(server, request()).json())
+
+
+def test_a_sample_conjugated_alone_is_told_as_its_sweep_is_flagged(server):
+    body = request()
+    body["readings"][0]["reflection"]["touchstone"] = mirrored(tip_text("loam"))
+    answer = ask(server, body).json()
+    row = answer["estimates"][0]
+    assert row["water_content"] is None
+    assert not any(flag.startswith("missing:") for flag in row["flags"])
+    assert "above-water where they were read, 1 in all (#/readings/0/reflection)" in " ".join(
+        of_records(answer)
+    )
+
+
+# From an air line R = 0.5 is eps = (0.5 / 1.5)^2 = 0.11, and R = -1 has no permittivity.
+@pytest.mark.parametrize(
+    ("read", "flagged", "own"),
+    [("0.5", "out-of-gate:real_permittivity", "below-vacuum"), ("-1.0", "no-solution", "no-root")],
+)
+def test_a_sweep_that_gives_no_permittivity_is_not_missing_from_its_row(server, read, flagged, own):
+    text = "# GHz S RI R 50\n" + "".join(f"{f} {read} 0.0\n" for f in (0.5, 1.0, 1.5))
+    body = request(
+        raw_records={"reflection": {"kind": "filled-line", "at_frequency": 1e9}},
+        readings=[{"temperature": 20, "reflection": {"touchstone": text}}],
+    )
+    answer = ask(server, body).json()
+    row = answer["estimates"][0]
+    assert row["water_content"] is None
+    assert flagged in row["flags"]
+    assert not any(flag.startswith("missing:") for flag in row["flags"])
+    assert f"flagged {own} where" in " ".join(of_records(answer))
+
+
+def test_a_sweep_less_certain_than_asked_for_is_told_with_its_reason(server):
+    body = request()
+    body["raw_records"]["reflection"]["largest_relative_uncertainty"] = 1e-6
+    answer = ask(server, body).json()
+    assert answer["estimates"][0]["flags"] == ["no-permittivity"]
+    assert "flagged too-uncertain where" in " ".join(of_records(answer))
+
+
+def test_conjugated_sweeps_are_told_beside_the_estimate(server):
+    body = request()
+    for one in (*body["raw_records"]["reflection"]["standards"],
+                *(row["reflection"] for row in body["readings"])):  # fmt: skip
+        one["touchstone"] = mirrored(one["touchstone"])
+    answer = ask(server, body).json()
+    assert answer["estimates"][0]["water_content"] == pytest.approx(0.25, abs=0.002)
+    assert "flagged conjugated where they were read, 2 in all" in " ".join(of_records(answer))
+    every = ask(server, {**body, "mixing_model": "all"}).json()
+    assert "flagged conjugated where they were read, 2 in all" in " ".join(of_records(every))

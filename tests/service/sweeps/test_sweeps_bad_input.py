@@ -63,6 +63,13 @@ CASES = [
     (sample(reflection=RADIANS), "look like radians", "#/sample/reflection/degrees"),
     (sample(reflection={"real": (50 * LOAM.real).tolist(), "imaginary": READ["imaginary"]}),
      "in place of ohm", "#/sample/reflection"),
+    (sample(reflection={"magnitude": [-12.5] * len(AXIS), "degrees": [10.0] * len(AXIS)}),
+     "found -12.5: these look like decibels", "#/sample/reflection/magnitude/0"),
+    (sample(reflection={"real": [*READ["real"][:4], 26.8, *READ["real"][5:]],
+                        "imaginary": READ["imaginary"]}), "at point 5", "#/sample/reflection"),
+    (with_standard(3, touchstone="# MHz S RI R 50\n0.03 .5 .1\n6 .5 .1\n"),
+     "found 0.03 in the unit MHZ of the option line (line 1); in GHZ all are: change the unit",
+     "#/standards/3/touchstone"),
     (sample(touchstone="x"), "found both", "#/sample"),
     (sample(reflection_u=[0.1, 0.1]), "where frequency has", "#/sample/reflection_u"),
     (sample(grain_size=1e-3), "give its inner_radius", "#/sample/grain_size"),
@@ -85,6 +92,8 @@ CASES = [
      "must grow", "#/line/gap"),
     ({"units": {"frequency": "K"}}, "takes Hz", "#/units/frequency"),
     ({"reflection_u": -1.0}, "at least 0", "#/reflection_u"),
+    ({"reflection_u": "0.001"}, "expected a number, or a list with one for each point",
+     "#/reflection_u"),
 ]  # fmt: skip
 
 
@@ -114,6 +123,9 @@ THREE = [1e9, 2e9, 3e9]
         ({"sample": {"touchstone": FILE},
           "line": {**LINE, "holder_length": 0.05, "air_before": 0.04}}, "leave 0.02 m of air",
          "#/line/air_before"),
+        ({"sample": {"touchstone": "[Version] 2.0\n# GHz S RI\n[Number of Ports] 2\n"
+                     "[Reference] 50 75\n[Network Data]\n1 .1 0 .2 0 .2 0 .1 0\n[End]\n"},
+          "line": LINE}, "found 50 75 ohm", "#/sample/touchstone"),
         ({"sample": {"touchstone": FILE, "s11": ONE}, "line": LINE}, "leave it out",
          "#/sample/s11"),
         ({"sample": {"touchstone": "# GHz S RI R 50\n1 .5 0\n"}, "line": LINE},

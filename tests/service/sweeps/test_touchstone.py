@@ -114,7 +114,7 @@ def test_noise_data_of_version_1_are_left_alone():
     [
         ("", 1, "option line that starts with #, found none"),
         ("1 0.5 0\n", 1, "option line that starts with #"),
-        ("# GHz S RI R 50\n", 1, "a multiple of 3 numbers"),
+        ("# GHz S RI R 50\n", 1, "expected lines of 3 numbers, found no line of numbers at all"),
         ("# GHz S RI R 50\n1 0.5\n", 1, "line 2: expected 3 numbers, found 2"),
         ("# GHz S RI R 50\n1 .1 0 .2 0 .2 0 .1 0\n", 1, "line 2: expected 3 numbers, found 9"),
         ("# GHz S RI R 50\n1 0.5 0\n", 2, "line 2: expected 9 numbers, found 3"),
@@ -128,7 +128,11 @@ def test_noise_data_of_version_1_are_left_alone():
         ("[Version] 2.0\n# GHz S RI\n[Number of Ports] 4\n", 1, "a file of 1 port"),
         ("[Version] 2.0\n# GHz S RI\n[Number of Ports] two\n", 1, "expected a whole number"),
         ("[Version] 2.0\n# GHz S RI\n[Mixed-Mode Order] S2,1\n", 1, "single-ended ports"),
-        ("[Version] 2.0\n# GHz S RI\n[Number of Frequencies] 3\n1 .5 0\n", 1, "3 frequencies"),
+        ("[Version] 2.0\n# GHz S RI\n[Number of Frequencies] 3\n1 .5 0\n", 1,
+         "line 3: expected 3 frequencies, as announced here, found 1"),
+        ("[Version] 2.0\n# GHz S RI\n[Network Data]\n1 .5 0\n", 1, "the file may be cut off"),
+        ("[Version] 2.0\n# GHz S RI\n[Impedance] 50\n1 .5 0\n[End]\n", 1,
+         "line 3: expected a keyword of Touchstone 2.0, found '[impedance]'"),
     ],
 )  # fmt: skip
 def test_what_is_no_such_file_says_where_and_how_to_mend_it(text, ports, sentence):

@@ -175,3 +175,33 @@ def test_air_along_the_conductors_of_a_7_mm_line_is_taken_out(true, read):
 def test_diameters_that_do_not_grow_are_refused():
     with pytest.raises(ParameterError, match="must grow"):
         CoaxialGap(3e-3, 2e-3, 6e-3, 7e-3)
+
+
+def flags_of(reads):
+    """Share of the points that carry each flag."""
+    found = estimate_line(LineQuery(frequency=WIDE, reads=reads, length=LENGTH)).estimate
+    keys = [keys_of(int(mask)) for mask in found.flags[0]]
+    return {key: np.mean([key in point for point in keys]) for key in {k for p in keys for k in p}}
+
+
+@pytest.mark.parametrize("spread", [0.0, 1e-3])
+def test_ends_of_a_cell_that_were_mistaken_are_flagged_at_every_point(spread):
+    both = reads_of(("short", "open"), spread=spread)
+    assert "magnetic" not in flags_of(both)
+    swapped = {"short": both["open"], "open": both["short"]}
+    assert flags_of(swapped)["magnetic"] == 1
+    open_twice = reads_of(("open",), spread=1e-4, seed=1)["open"]
+    assert flags_of({"short": open_twice, "open": both["open"]})["magnetic"] == 1
+
+
+def test_one_sweep_for_both_ends_is_refused():
+    read = reads_of(("open",))["open"]
+    with pytest.raises(ParameterError, match="open cell was read exactly like the short one"):
+        estimate_line(LineQuery(frequency=WIDE, reads={"short": read, "open": read}, length=LENGTH))
+
+
+@pytest.mark.parametrize("eps", [SOIL, WET, CLAY, np.full(WIDE.size, 3.0 - 0.01j)])
+def test_a_short_that_is_an_open_end_is_flagged_at_every_point(eps):
+    shorted, opened = (reads_of((end,), 1e-3, eps=eps)[end] for end in ("short", "open"))
+    assert "not-shorted" not in flags_of({"short": shorted})
+    assert flags_of({"short": opened})["not-shorted"] == 1

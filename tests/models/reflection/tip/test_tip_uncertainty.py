@@ -7,9 +7,11 @@ import pytest
 
 from models.reflection.tip.aperture import Aperture
 from models.reflection.tip.calibration import calibrate
+from models.reflection.tip.estimate import TipQuery, estimate_permittivity
 from models.reflection.tip.inversion import invert, of_noise, of_standards
 from models.reflection.tip.media import Known
-from tests.models.reflection.sweep_records import TIP, standard, tip_sweep
+from models.reflection.tip.sample import Sample
+from tests.models.reflection.sweep_records import TIP, standard, tip_sweep, truths
 
 FREQUENCY, LOAM = tip_sweep("loam")
 NAMES = ("short", "air", "water25", "methanol25", "ethanol25")
@@ -78,3 +80,25 @@ def test_the_variance_by_noise_is_that_of_many_draws():
     seen = np.var([eps.real for eps in found], axis=0)
     np.testing.assert_allclose(np.mean(seen / told.real[0]), 1.0, atol=0.08)
     np.testing.assert_allclose(seen, told.real[0], rtol=0.5)
+
+
+@pytest.mark.parametrize("geometry", [None, TIP])
+@pytest.mark.parametrize("medium", ["loam", "drysand", "methanol25", "ethanol25", "saline25"])
+def test_a_model_taken_for_three_standards_leaves_the_truth_in_its_band(medium, geometry):
+    """The sweeps were made with an aperture that radiates; nobody said so."""
+    frequency, read = tip_sweep(medium)
+    standards = tuple(
+        standard(name, tip_sweep(name)[1], frequency) for name in ("short", "air", "water25")
+    )
+    query = TipQuery(frequency=frequency, standards=standards, samples=(Sample(read=read),),
+                     geometry=geometry)  # fmt: skip
+    found = estimate_permittivity(query)
+    truth = truths("tip")[medium][1]
+    away = found.estimate.permittivity[0] - truth
+    inside = np.abs(away.real) <= 1.96 * found.estimate.band.real[0]
+    assert found.aperture_open
+    assert inside.mean() >= 0.95
+    assert (np.abs(away.imag) <= 1.96 * found.estimate.band.loss[0]).mean() >= 0.95
+    said = estimate_permittivity(replace(query, model="capacitive"))
+    assert not said.aperture_open
+    assert said.estimate.band.real[0].max() < found.estimate.band.real[0].max()
