@@ -189,15 +189,15 @@ FLAGS: Registry[Flag] = Registry(
          reason="Each water model has its own range, Kaatze (1989) from -4.1 to 60 Cel; "
          "outside, it goes on smoothly and counts as known to 2 %.", keeps_number=True),
     Flag(key="no-end-reflection", condition="No rise in the trace stands out from noise and from "
-         "its surroundings where the rods may end, or its permittivity would be below 1 or above "
-         "90.",
+         "its surroundings where the rods may end, its permittivity would be below 1 or above 90, "
+         "the trace begins unlike its calibration, or it is that of a short.",
          text="The end of the rods cannot be seen in the trace.",
-         reason="Conduction takes the reflection from the end: the largest peak that is left is "
-         "noise. Inversion of the whole trace needs no end reflection.", keeps_number=False),
-    Flag(key="record-too-short", condition="The level of the record still changes by more than "
-         "0.002, and by more than noise, over its last tenth.",
+         reason="Conduction takes it (a whole trace does without), the rods begin elsewhere (give "
+         "probe_offset, head, or air and water), or this is no such trace.", keeps_number=False),
+    Flag(key="record-too-short", condition="The level still changes by more than 0.002, and by "
+         "more than noise, over the last tenth, or will by that much as reflections return.",
          text="The reflection had not settled when the record ended: the conductivity is that of "
-         "its end, with the change as part of its uncertainty.",
+         "its end, with what is to come in its uncertainty.",
          reason="Conductivity follows from the level after all reflections have died away: a "
          "record of more than three round trips.", keeps_number=True),
     Flag(key="model-too-simple", condition="The fitted line leaves a reduced chi-square above "

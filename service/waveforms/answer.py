@@ -10,8 +10,9 @@ from models.advisories import Advice, advise
 from models.conversion import Units, from_si
 from models.flags import slugs_of
 from models.quantity import QUANTITIES
-from models.reflection.tdr.bench import Bench, circuit
+from models.reflection.tdr.bench import Bench
 from models.reflection.tdr.calibration import SUSPECT_LENGTH
+from models.reflection.tdr.circuit import circuit
 from models.reflection.tdr.probe import System
 from models.relation import Array
 from models.uncertainty.coverage import coverage_factor
@@ -31,6 +32,9 @@ FLOORS: Mapping[str, float] = MappingProxyType(
     {"apparent_permittivity": 1.0, "bulk_conductivity": 0.0}
 )
 """No medium has less: bands end there."""
+WAYS: Mapping[bool | None, str] = MappingProxyType({True: "goes upwards", False: "goes downwards",
+                                                  None: "lies"})  # fmt: skip
+"""Of a first reflection."""
 SCALES: Mapping[str, float] = MappingProxyType({"ns": 1e9, "1": 1.0})
 
 
@@ -101,8 +105,7 @@ def probe_echo(found: Answered, units: Units) -> dict[str, Any]:
     echo: dict[str, Any] = {"probe_length": float(from_si("probe_length", bench.length, units))}
     if bench.timing is not None:
         echo |= bench.timing.told
-    begin = float(np.nanmax(found.figures["late_level_from"]))
-    between = circuit(bench, begin, found.system)
+    between = circuit(bench, _late_begin(found), found.system)
     if between is not None:
         for name, known in (("probe_constant", between.constant),
                             ("series_resistance", between.series_resistance),
@@ -113,6 +116,11 @@ def probe_echo(found: Answered, units: Units) -> dict[str, Any]:
         chi_square = found.system.reduced_chi_square
         echo["line"]["reduced_chi_square"] = chi_square if np.isfinite(chi_square) else None
     return echo
+
+
+def _late_begin(found: Answered) -> float:
+    """Two-way time, s, from which the last of the late levels was read."""
+    return float(np.nanmax(found.figures["late_level_from"]))
 
 
 def _line(system: System) -> dict[str, Any]:
@@ -142,7 +150,14 @@ def advice_of(bench: Bench, found: Answered) -> list[Advice]:
                                own=f"{bench.length:.4g}"))  # fmt: skip
     if bench.calibration.short is None and bench.probe.series_resistance is None:
         said.append(advise("series-resistance-assumed"))
-    if np.isnan(found.columns["bulk_conductivity"]).all():
+    if found.system is not None and found.system.misses:
+        said.append(advise("calibration-misfit", times=f"{found.system.missed_by:.3g}"))
+    begin = bench.begin
+    if begin is not None and found.strange.any():
+        said.append(advise("unlike-calibration", count=int(found.strange.sum()),
+                           time=f"{begin.time * SCALES['ns']:.4g}", level=f"{begin.level:+.3f}",
+                           way=WAYS[begin.upwards]))  # fmt: skip
+    if circuit(bench, _late_begin(found), found.system) is None:
         said.append(advise("probe-constant-missing"))
     return said
 

@@ -4,6 +4,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.flags import Flags
 from models.reflection.tdr.bench import Bench
@@ -33,6 +34,8 @@ class Answered:
     bench: Bench
     system: Identified | None
     """The line behind the probe, where it was worked out."""
+    strange: NDArray[np.bool_]
+    """Waveforms that do not begin as the calibration traces do."""
 
 
 def refuse_many(count: int, settings: WaveformSettings, place: str) -> None:
@@ -69,17 +72,18 @@ def measured(
 
     columns: dict[str, Array] = {}
     figures: dict[str, Array] = {}
-    flags = np.zeros(count, dtype=np.uint64)
+    flags, strange = np.zeros(count, dtype=np.uint64), np.zeros(count, dtype=np.bool_)
     details: dict[int, Mapping[str, object]] = {}
     for group in groups:
         found = _group(group, settings, bench, asked)
         rows = np.asarray(group.places, dtype=np.intp)
-        flags[rows] = found.flags
+        flags[rows], strange[rows] = found.flags, found.strange
         for total, part in ((columns, found.columns), (figures, found.figures)):
             for name, values in part.items():
                 total.setdefault(name, np.full(count, np.nan))[rows] = values
-        details |= dict(zip(group.places, found.details, strict=False))
-    return Answered(columns, figures, flags, details, bench, kept[-1] if kept else None)
+        told = zip(group.places, found.details, strict=False)
+        details |= {place: detail for place, detail in told if detail}
+    return Answered(columns, figures, flags, details, bench, kept[-1] if kept else None, strange)
 
 
 def _group(group: Group, settings: WaveformSettings, bench: Bench, known: Known) -> Measured:

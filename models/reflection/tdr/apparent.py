@@ -15,6 +15,8 @@ TANGENT_WEIGHT = 0.6
 """Of the tangents in the refractive index: in simulated soils their error is the smaller one."""
 METHOD_SHARE = 0.4
 """Of the half-difference between the two ways, for its standard uncertainty."""
+LOW_EXCUSED = 0.3
+"""How far below 1 a permittivity may lie, however uncertain it is."""
 FLOOR = 0.003
 """Relative standard uncertainty of a refractive index, however well both ways agree. The head
 rings, and calibration in air and water does not show how it rings in the soil."""
@@ -91,7 +93,8 @@ def apparent_permittivity(found: Arrivals, timing: Timing) -> ApparentPermittivi
     value = np.square(index)
     total = 2 * index * np.hypot(own, shared)
     # Air reads 1 give or take its uncertainty: what that explains is not refused.
-    refused = PHYSICAL.excludes(value + np.where(value < PHYSICAL.low, 3.0 * total, 0.0))
+    excused = np.minimum(3.0 * total, LOW_EXCUSED)
+    refused = PHYSICAL.excludes(value + np.where(value < PHYSICAL.low, excused, 0.0))
     lost = np.where(refused, np.nan, 0.0)
     return ApparentPermittivity(
         value=value + lost,

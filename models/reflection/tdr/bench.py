@@ -5,14 +5,9 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from models.errors import Complaint, ParameterError
+from models.reflection.tdr.agreement import Begin, begin_of, refuse_lengths, refuse_levels
 from models.reflection.tdr.calibration import USUAL_OFFSET, calibrate, rise_of
-from models.reflection.tdr.late_level import (
-    Circuit,
-    Known,
-    late_level,
-    level_after,
-    resistance,
-)
+from models.reflection.tdr.late_level import Known, late_level
 from models.reflection.tdr.probe import RISE_OVER_SPREAD, Cable, Head, Rods, System
 from models.reflection.tdr.record import Traces
 from models.reflection.tdr.smoothing import noise_of
@@ -26,15 +21,6 @@ USUAL_HEAD_IMPEDANCE, USUAL_ROD_IMPEDANCE = 100.0, 180.0
 """ohm, where a search begins that nobody said better."""
 USUAL_RESISTANCE, USUAL_SKIN, USUAL_SPEED = 0.05, 1e-4, 2e8
 """ohm/m, ohm s^0.5/m and m/s of thin coaxial cable, there and back."""
-SERIES_SHARE_U = 0.5
-"""Relative standard uncertainty of a series resistance that was not measured with a short."""
-SHORT_U = 0.1
-"""Relative standard uncertainty of one that was: at late times current still sinks into the
-conductors, and not in the same way before a short as before a soil."""
-UNKNOWN_SERIES = Known(0.3, 0.3)
-"""ohm, of a cable nobody says anything of: some metres, and its contacts."""
-OPEN_U = 2e-3
-"""Of the level of an open line, where no trace in air says it."""
 DESCRIBED_U = 0.005
 """Relative standard uncertainty of the numbers of a description."""
 SHARPEST = 0.6
@@ -94,6 +80,8 @@ class Bench:
     calibration: Calibration
     timing: Timing | None
     """None: each trace must show by itself where the rods begin."""
+    begin: Begin | None = None
+    """How traces of this line begin, where calibration shows it."""
 
     @property
     def length(self) -> float:
@@ -107,16 +95,18 @@ def prepare(probe: Description, calibration: Calibration) -> Bench:
     """Find what calibration traces tell about times.
 
     Raises ParameterError when neither they nor the description say how times become permittivity,
-    or when a calibration trace shows no end reflection.
+    or when a calibration trace shows no end reflection or contradicts the others.
     """
     if probe.length is None:
         raise ParameterError("probe", [_lacking("probe_length")])
     offset = probe.offset
     if offset is None and probe.head is not None:
         offset = 2.0 * probe.head.delay
-    air, water = calibration.air, calibration.water
+    air, water, short = calibration.air, calibration.water, calibration.short
+    refuse_levels(None if air is None else air.settled, None if short is None else short.settled)
+    timing: Timing | None = None
     if air is not None and water is not None:
-        timing: Timing | None = calibrate(
+        found = calibrate(
             air.trace,
             water.trace,
             length=probe.length,
@@ -124,60 +114,15 @@ def prepare(probe: Description, calibration: Calibration) -> Bench:
             temperature_u=calibration.water_temperature_u,
             offset=offset,
         )
+        refuse_lengths(found, probe.length)
+        timing = found
     elif offset is not None:
         timing = plain_timing(probe.length, probe.length_u, offset, probe.offset_u)
-    else:
-        timing = None
-    return Bench(probe, calibration, timing)
+    begin = begin_of(*(None if one is None else one.trace for one in (air, water, short)))
+    return Bench(probe, calibration, timing, begin)
 
 
-def circuit(bench: Bench, from_time: float, known: Identified | None) -> Circuit | None:
-    """What stands between a late level, read from a two-way time on, and the conductivity.
-
-    None where nothing says the probe constant.
-    """
-    probe, calibration = bench.probe, bench.calibration
-    constant = probe.constant
-    if constant is None and probe.impedance is not None:
-        relative = probe.length_u / bench.length
-        value = Rods(bench.length, probe.impedance).constant
-        constant = Known(value, value * relative)
-    if constant is None and known is not None:
-        constant = _identified_constant(known)
-    if constant is None:
-        return None
-    open_level = Known(1.0, OPEN_U)
-    if calibration.air is not None:
-        open_level = Known(*level_after(calibration.air.settled, from_time))
-    return Circuit(
-        constant, _series(bench, from_time, open_level), open_level, probe.instrument_impedance
-    )
-
-
-def _series(bench: Bench, from_time: float, open_level: Known) -> Known:
-    """Series resistance: stated, from a short at the same late time, or usual for the cable."""
-    probe, short = bench.probe, bench.calibration.short
-    if probe.series_resistance is not None:
-        return probe.series_resistance
-    if short is not None:
-        level, level_u = level_after(short.settled, from_time)
-        value = resistance(level, open_level.value, probe.instrument_impedance)
-        noise = 0.5 * probe.instrument_impedance * level_u
-        return Known(value, float(np.hypot(noise, SHORT_U * value)))
-    if probe.cable_length is None:
-        return UNKNOWN_SERIES
-    cable = _cable(probe, 0.0)
-    return Known(cable.resistance, SERIES_SHARE_U * cable.resistance)
-
-
-def _identified_constant(known: Identified) -> Known:
-    value = known.system.rods.constant
-    spread = known.covariance[-2:, -2:]
-    relative = float(np.sqrt(max(spread[0, 0] + spread[1, 1] - 2 * spread[0, 1], 0.0)))
-    return Known(value, value * relative)
-
-
-def _cable(probe: Description, delay: float) -> Cable:
+def cable_of(probe: Description, delay: float) -> Cable:
     """The described cable, with what is usual where it says nothing of its resistance."""
     length = probe.cable_length if probe.cable_length is not None else delay * USUAL_SPEED
     cable = replace(probe.cable, delay=delay)
@@ -199,7 +144,7 @@ def guess(bench: Bench, arrival: float, rise: float) -> System:
     return System(
         Rods(bench.length, probe.impedance or USUAL_ROD_IMPEDANCE),
         head,
-        _cable(probe, 0.5 * arrival),
+        cable_of(probe, 0.5 * arrival),
         probe.instrument_impedance,
         (probe.rise_time or 0.9 * rise) / RISE_OVER_SPREAD,
     )

@@ -35,6 +35,8 @@ SUSPECT_LENGTH = 0.05
 def water_index(temperature: float, temperature_u: float = 0.0) -> tuple[float, float]:
     """Refractive index of the water of a calibration, and its standard uncertainty.
 
+    That is of temperature and formula.
+
     temperature: Cel.
     """
 
@@ -43,7 +45,8 @@ def water_index(temperature: float, temperature_u: float = 0.0) -> tuple[float, 
         return float(np.sqrt(to_apparent(real, loss)))
 
     here = index(temperature)
-    return here, abs(index(temperature + temperature_u) - here)
+    of_formula = WATER_MODELS[DEFAULT_WATER].static_uncertainty / (2.0 * here)
+    return here, float(np.hypot(index(temperature + temperature_u) - here, of_formula))
 
 
 def calibrate(

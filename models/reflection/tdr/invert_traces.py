@@ -1,14 +1,19 @@
 """Traces by inversion of the whole line, one after another, in the form of a measurement."""
 
 from collections.abc import Mapping
+from typing import NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.errors import Complaint, ParameterError
 from models.flags import BIT
+from models.reflection.tdr.agreement import unlike
+from models.reflection.tdr.apparent import LOW_EXCUSED
 from models.reflection.tdr.bench import DESCRIBED_U, Bench, Record, experiment, guess, identified
 from models.reflection.tdr.calibration import rise_of
 from models.reflection.tdr.measure import Known, Measured, conductivity
+from models.reflection.tdr.whole.experiment import Experiment
 from models.reflection.tdr.whole.identification import Identified, described
 from models.reflection.tdr.whole.inversion import Inversion, invert, invert_layers
 from models.reflection.tdr.whole.medium import Medium
@@ -36,23 +41,21 @@ def by_whole_trace(
     Raises ParameterError when neither calibration traces nor the description tell the system.
     """
     flags = np.zeros(record.trace.count, dtype=np.uint64)
-    system = known() or _described(record, bench)
-    rough, levels = conductivity(record, bench, lambda: system, flags)
+    begins = unlike(record.trace, bench.begin)
+    strange = begins[0]
+    system = known() or _described(record, bench, np.flatnonzero(~strange))
+    rough, levels = conductivity(record, bench, lambda: system, flags, begins)
+    asked = Asked(terms, sections, inserted)
     rows: list[dict[str, float]] = []
     details: list[Mapping[str, object]] = []
     for row in range(record.trace.count):
-        trace = experiment(record, row, system.system.spread)
+        if flags[row] & BIT["no-end-reflection"]:
+            rows.append(dict.fromkeys(COLUMNS, np.nan))
+            details.append({})
+            continue
         start = float(np.nan_to_num(rough["bulk_conductivity"][row], nan=0.02))
-        if inserted is not None and inserted < bench.length:
-            share = 1.0 - inserted / bench.length
-            found = invert_layers(
-                trace, system, conductivity=start / (1.0 - share), share=share, fixed=True,
-                first=AIR,
-            )  # fmt: skip
-        elif sections == 2:
-            found = invert_layers(trace, system, conductivity=start, share=0.5, fixed=False)
-        else:
-            found = invert(trace, system, conductivity=start, terms=terms)
+        trace = experiment(record, row, system.system.spread)
+        found = _inverted(trace, system, start, bench.length, asked)
         rows.append(_row(found, frequency))
         details.append(_detail(found, frequency, bench.length))
         if found.too_simple or not np.isfinite(found.reduced_chi_square):
@@ -60,20 +63,53 @@ def by_whole_trace(
     columns = {name: np.array([row[name] for row in rows]) for name in rows[0]}
     chi_square = columns.pop("reduced_chi_square")
     value, spread = columns["apparent_permittivity"], columns["apparent_permittivity_u"]
-    lost = ~(spread <= UNSEEN * value)
+    lost = ~(spread <= UNSEEN * value) | (value < LEAST)
+    lost |= (flags & BIT["no-end-reflection"]) > 0
     flags[lost] |= BIT["no-end-reflection"]
     columns = {name: np.where(lost, np.nan, cells) for name, cells in columns.items()}
-    return Measured(columns, {"reduced_chi_square": chi_square, **levels}, flags, tuple(details))
+    return Measured(
+        columns, {"reduced_chi_square": chi_square, **levels}, flags, tuple(details), strange
+    )
 
 
+class Asked(NamedTuple):
+    """How the rods are divided into media, as ``by_whole_trace`` has it."""
+
+    terms: int | None
+    sections: int
+    inserted: float | None
+
+
+def _inverted(
+    trace: Experiment, system: Identified, start: float, length: float, asked: Asked
+) -> Inversion:
+    """One trace. start: S/m, where the conductivity is looked for first. length: of the rods, m."""
+    if asked.inserted is not None and asked.inserted < length:
+        share = 1.0 - asked.inserted / length
+        return invert_layers(
+            trace, system, conductivity=start / (1.0 - share), share=share, fixed=True, first=AIR
+        )
+    if asked.sections == 2:
+        return invert_layers(trace, system, conductivity=start, share=0.5, fixed=False)
+    return invert(trace, system, conductivity=start, terms=asked.terms)
+
+
+COLUMNS = ("apparent_permittivity", "apparent_permittivity_u", "apparent_permittivity_u_shared",
+           "real_permittivity", "real_permittivity_u", "imaginary_permittivity",
+           "imaginary_permittivity_u", "frequency", "bulk_conductivity", "bulk_conductivity_u",
+           "bulk_conductivity_u_shared", "reduced_chi_square")  # fmt: skip
+USUAL_BEGIN = (1e-8, 2e-10)
+"""s, of the first reflection and its rise, where no trace shows one."""
+LEAST = 1.0 - LOW_EXCUSED
+"""Apparent permittivity below which there is none, however uncertain."""
 UNSEEN = 0.5
 """Relative standard uncertainty of Ka from which the trace does not show the probe's end at all."""
 
 
-def _described(record: Record, bench: Bench) -> Identified:
+def _described(record: Record, bench: Bench, rows: NDArray[np.intp]) -> Identified:
     """The system as it is described, its delays from the first rise of the traces.
 
-    Raises ParameterError that names what the description lacks.
+    rows: of traces that begin as such. Raises ParameterError that names what the description lacks.
     """
     probe = bench.probe
     lacking = [
@@ -85,7 +121,7 @@ def _described(record: Record, bench: Bench) -> Identified:
     ]  # fmt: skip
     if lacking:
         raise ParameterError("probe", lacking)
-    arrival, rise = rise_of((record.trace,))
+    arrival, rise = rise_of((record.trace.rows(rows),)) if rows.size else USUAL_BEGIN
     return described(guess(bench, arrival, rise), DESCRIBED_U)
 
 

@@ -4,20 +4,28 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.flags import BIT, Flags
+from models.reflection.tdr.agreement import unlike
 from models.reflection.tdr.apparent import apparent_permittivity
-from models.reflection.tdr.bench import Bench, Record, circuit
-from models.reflection.tdr.late_level import LateLevel, bulk_conductivity, late_level
+from models.reflection.tdr.bench import Bench, Record
+from models.reflection.tdr.circuit import circuit, early_level_u
+from models.reflection.tdr.late_level import DRIFT, LateLevel, bulk_conductivity, late_level
 from models.reflection.tdr.markers import first_rise, rod_start
 from models.reflection.tdr.record import Traces
 from models.reflection.tdr.smoothing import following_widths, smooth
 from models.reflection.tdr.travel_time import Timing, find, plain_timing
+from models.reflection.tdr.unsettled import Ends, unsettled
 from models.reflection.tdr.whole.identification import Identified
 from models.relation import Array
 
 CONDUCTIVE_GATE = 2.0
 """S/m: no soil conducts more."""
+SHORTED = -0.95
+"""Late level below which 1.3 ohm or less end the line: no soil, but a short."""
+TOGETHER = 1e-9
+"""s, to which the first reflection is told where the age of a level depends on it."""
 UNSEEN_OFFSET_U = 0.25
 """Of a rise: standard uncertainty of the beginning of the rods where the trace itself shows it."""
 
@@ -32,7 +40,9 @@ class Measured:
     """Times, levels and quality figures: what the numbers were read from."""
     flags: Flags
     details: tuple[Mapping[str, object], ...] = field(default=())
-    """Of a whole-trace inversion, trace by trace: parameters and covariance."""
+    """Of a whole-trace inversion, trace by trace: parameters and covariance; empty: none."""
+    strange: NDArray[np.bool_] = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
+    """Traces that do not begin as those of the calibration do."""
 
 
 Known = Callable[[], Identified | None]
@@ -52,8 +62,14 @@ def by_travel_time(record: Record, bench: Bench, known: Known) -> Measured:
         )
     flags = np.zeros(record.trace.count, dtype=np.uint64)
     flags[np.isnan(columns["apparent_permittivity"])] |= BIT["no-end-reflection"]
-    more, level = conductivity(record, bench, known, flags)
-    return Measured(columns | more, figures | level, flags)
+    ends = Ends(figures["end_by_steepest_slope"], columns["travel_time"],
+                np.sqrt(columns["apparent_permittivity"]))  # fmt: skip
+    begins = unlike(record.trace, bench.begin)
+    more, level = conductivity(record, bench, known, flags, begins, ends)
+    lost = (flags & BIT["no-end-reflection"]) > 0
+    for name in columns:
+        columns[name] = np.where(lost, np.nan, columns[name])
+    return Measured(columns | more, figures | level, flags, strange=begins[0])
 
 
 def _shown_by(trace: Traces, bench: Bench) -> Timing:
@@ -96,25 +112,44 @@ def _by_times(trace: Traces, timing: Timing) -> tuple[dict[str, Array], dict[str
 
 
 def conductivity(
-    record: Record, bench: Bench, known: Known, flags: Flags
-) -> tuple[dict[str, Array], dict[str, Array]]:
-    """Bulk conductivity and the late levels it was read from; flags are set in place."""
+    record: Record, bench: Bench, known: Known, flags: Flags,
+    begins: tuple[NDArray[np.bool_], Array], ends: Ends | None = None,
+) -> tuple[dict[str, Array], dict[str, Array]]:  # fmt: skip
+    """Bulk conductivity and the late levels it was read from; flags are set in place.
+
+    begins: as ``unlike`` tells them. ends: where the trace itself tells the level, what
+    is still to come of its reflections.
+    """
     level = late_level(record.settled)
+    strange, arrivals = begins
+    if bench.begin is not None:
+        arrivals = np.full(arrivals.size, bench.begin.time)
+    arrivals = np.nan_to_num(np.round(arrivals / TOGETHER) * TOGETHER)
     value, total, shared = (np.full(level.value.size, np.nan) for _ in range(3))
-    for begin in np.unique(level.from_time):
-        rows = np.flatnonzero(level.from_time == begin)
-        between = circuit(bench, float(begin), None)
-        if between is None:
-            between = circuit(bench, float(begin), known())
+    coming = np.zeros(level.value.size)
+    shorted = level.value < SHORTED
+    for begin, arrival in np.unique(np.column_stack([level.from_time, arrivals]), axis=0).tolist():
+        rows = np.flatnonzero((level.from_time == begin) & (arrivals == arrival))
+        early = arrival if record.late is None else None
+        between = circuit(bench, begin, None, early) or circuit(bench, begin, known(), early)
         if between is None:
             continue
         found = bulk_conductivity(level.value[rows], level.standard_uncertainty[rows], between)
-        value[rows], total[rows] = found.value, found.standard_uncertainty
-        shared[rows] = found.shared
-    impossible = value > CONDUCTIVE_GATE
+        shorted[rows] |= np.isnan(found.value)
+        if early is not None:
+            if ends is not None:
+                coming[rows] = unsettled(record.trace.rows(rows), ends.rows(rows), found.value,
+                                         between, bench.length)  # fmt: skip
+            more = np.hypot(early_level_u(begin, arrival), coming[rows])
+            level_u = np.hypot(level.standard_uncertainty[rows], more)
+            found = bulk_conductivity(level.value[rows], level_u, between)
+        value[rows], total[rows], shared[rows] = (
+            found.value, found.standard_uncertainty, found.shared)  # fmt: skip
+    impossible = (value > CONDUCTIVE_GATE) | (shorted & np.isfinite(level.value))
     flags[impossible] |= BIT["out-of-gate:bulk_conductivity"]
-    flags[~level.settled] |= BIT["record-too-short"]
-    lost = np.where(impossible, np.nan, 0.0)
+    flags[~level.settled | (coming > DRIFT)] |= BIT["record-too-short"]
+    flags[strange | shorted] |= BIT["no-end-reflection"]
+    lost = np.where(impossible | strange, np.nan, 0.0)
     columns = {
         "bulk_conductivity": value + lost,
         "bulk_conductivity_u": total + lost,

@@ -3,7 +3,8 @@
 import numpy as np
 import pytest
 
-from models.reflection.tdr.bench import Calibration, Description, Record, circuit, prepare
+from models.reflection.tdr.bench import Calibration, Description, Record, prepare
+from models.reflection.tdr.circuit import circuit
 from models.reflection.tdr.late_level import (
     Circuit,
     Known,

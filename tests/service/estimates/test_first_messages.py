@@ -123,7 +123,6 @@ def test_a_body_of_another_kind_is_told_what_it_is(server, kind, body, words):
     ("path", "words"),
     [
         ("/v1/estimate", "did you mean /v1/estimates?"),
-        ("/v1/estimates/", "did you mean /v1/estimates?"),
         ("/estimates", "did you mean /v1/estimates?"),
         ("/nopath", "/docs and /openapi.json list them all"),
     ],
@@ -133,3 +132,9 @@ def test_an_unknown_address_is_told_the_nearest(server, path, words):
     assert answer.status_code == 404
     assert f"no operation has the address {path}" in answer.json()["detail"]
     assert words in answer.json()["detail"]
+
+
+def test_a_slash_too_many_is_told(server):
+    answer = server.client.get("/v1/estimates/")
+    assert answer.status_code == 404
+    assert "no trailing slash: ask for /v1/estimates" in answer.json()["detail"]

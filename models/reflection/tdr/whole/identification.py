@@ -25,6 +25,8 @@ EXPECTED_U = {
     "rods_impedance": 0.2, "rods_length": 0.02,
 }  # fmt: skip
 """Standard uncertainty of what a description says, relative (delay: in units of 0.1 ns)."""
+MISSED = 5.0
+"""Times their noise, by which calibration traces may be missed without a remark."""
 PURE = 5e-4
 """S/m, of the water of a calibration, within a factor of e^2."""
 PURE_U = 2.0
@@ -39,6 +41,16 @@ class Identified:
     covariance: Array
     """Of ``values``, in the order of SYSTEM."""
     reduced_chi_square: float
+
+    @property
+    def missed_by(self) -> float:
+        """Times their noise, by which the calibration traces are missed."""
+        return float(np.sqrt(self.reduced_chi_square))
+
+    @property
+    def misses(self) -> bool:
+        """Whether that is more than what an instrument adds that is no ideal line."""
+        return self.missed_by > MISSED
 
 
 def described(system: System, relative_u: float = 0.0) -> Identified:
