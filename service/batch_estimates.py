@@ -65,6 +65,7 @@ class TableEstimates:
         wanted: Sequence[str] | None = None,
     ) -> None:
         """drawn_values: the limit on draws times readings times models, where there is one.
+
         wanted: the columns that are asked for; None: all.
 
         grounds: makes what the rows rest on, from the columns that are read, for a table whose
