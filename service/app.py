@@ -10,12 +10,14 @@ from types import FrameType
 from fastapi import FastAPI
 from starlette.types import ASGIApp
 
+from models.uncertainty.draws import POINTS
 from service import __version__
 from service.access import LimitRate, RequireKey, keys_of
 from service.answers.together import Together
 from service.batch.workers import spare_what_is_loaded, yield_to_requests
 from service.errors import add_error_handlers
 from service.formats.arrow import load_ahead
+from service.formats.arrow.loading import load_beside
 from service.limits import LimitBody
 from service.metrics import COMMITS, count
 from service.observe import Observe, write_access_log
@@ -59,6 +61,7 @@ WARMING: tuple[Callable[[FastAPI], object], ...] = (
     lambda _: yield_to_requests(),
     lambda _: spare_what_is_loaded(),
     lambda _: load_ahead(),
+    lambda _: load_beside(POINTS),
 )
 """Called before the first request, so that no request waits for them."""
 

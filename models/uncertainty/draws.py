@@ -21,6 +21,8 @@ Interval = Literal["symmetric", "shortest"]
 """The same probability left on both sides, or the shortest of all (JCGM 101, 7.7)."""
 KEPT = 2**18
 """Numbers in a matrix up to which it is kept for the next block."""
+POINTS = "scipy.stats.qmc"
+"""What makes quasi-random points: all of scipy's statistics, loaded when they are needed."""
 HALF_STEP = 2.0**-31
 """Half the spacing of the points: none lies on 0, whose normal deviate is not finite."""
 
@@ -57,8 +59,7 @@ def _made(draws: Draws, inputs: int, batch: int) -> Array:
     if draws.kind == "pseudo-random":
         normal = generator.standard_normal((inputs, draws.count))
     else:
-        # Loaded when first needed: it brings all of scipy's statistics, 0.3 s at every start.
-        sobol = importlib.import_module("scipy.stats.qmc").Sobol(inputs, rng=generator)
+        sobol = importlib.import_module(POINTS).Sobol(inputs, rng=generator)
         points = sobol.random_base2(draws.count.bit_length() - 1)
         normal = ndtri(np.ascontiguousarray(points.T) + HALF_STEP)
     normal.flags.writeable = False

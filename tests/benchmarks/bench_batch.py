@@ -94,6 +94,7 @@ def main():
         table(few, 30)
         server, port = served(folder)
         try:
+            time.sleep(3.0)  # what a server loads beside its start is loaded by then
             posted(port, few, QUERY)
             before = peak(server)
             headers, _ = posted(port, sent, f"{QUERY}&columns={BANDS}")

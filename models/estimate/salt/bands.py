@@ -179,7 +179,7 @@ def _curved(
 
 def _sharpened(plain: Spread, rows: NDArray[np.intp], some: Chain, asked: Asked) -> None:
     """Ends along the gradient of the whole chain, where the curves found any."""
-    sharp = band(some, some.distributions(), probability=asked.probability)
+    sharp = band(some, some.distributions(), probability=asked.probability, sharp=True)
     for found, better in ((plain.lower, sharp.lower), (plain.upper, sharp.upper)):
         found[rows] = np.where(np.isinf(found[rows]), found[rows], better)
     plain.method[rows] = sharp.method

@@ -32,9 +32,9 @@ LOPSIDED = 0.08
 """how much longer one arm is than the mean of both, from which it is;"""
 UNEVEN = 0.005
 """how far that mean is from what the gradient promises: a curvature not seen at the centre."""
-ENTANGLED = 0.05
+ENTANGLED = 0.1
 """Terms of products of inputs, along one slanting line and by the number of inputs, likewise;"""
-OPPOSED = 0.1
+OPPOSED = 0.14
 """curvatures across the gradient, root of the sum of squares, in slopes, likewise."""
 LOST = 0.05
 """Curvature term or second step, in half-widths, from which only draws will do,"""
@@ -78,6 +78,7 @@ def band(
     correlation: ArrayLike | None = None,
     probability: float = 0.95,
     draws: Draws | None = None,
+    sharp: bool = False,
 ) -> Band:
     """Coverage interval of ``measurand(**inputs)``, to about half a per cent of its half-width.
 
@@ -85,6 +86,7 @@ def band(
         be among the inputs. For rows that need draws it is called as ``simulate`` calls it.
     correlation: of the inputs' normal scores, in the order of ``inputs``.
     draws: for rows that need them; 16 384 quasi-random ones.
+    sharp: look at both ends again in every row, whether it seems to bend or not.
     Raises ParameterError when the correlation matrix is none.
 
     With k inputs: 2 k + 5 evaluations; for rows that bend 6 k + 10 and one per pair of inputs more.
@@ -99,7 +101,7 @@ def band(
         some = {name: given.take(rows) for name, given in inputs.items()}
         space = StandardSpace(measurand, some, factor, rows.stop - start)
         with np.errstate(all="ignore"):
-            found = _found(space, probability, z)
+            found = _found(space, probability, z, sharp=sharp)
         needy = np.flatnonzero(found.method == Method.DRAWS)
         if needy.size:
             drawn = simulate(
@@ -120,14 +122,14 @@ def band(
     )
 
 
-def _found(space: StandardSpace, probability: float, z: float) -> Band:
+def _found(space: StandardSpace, probability: float, z: float, *, sharp: bool) -> Band:
     """By the cheapest way that the number of variables allows."""
     if not space.variables:
         value = space({})
         return _settled(value, value, value, np.full(value.shape, Method.EXACT, dtype=np.int_))
     if len(space.variables) == 1:
         return _one_input(space, probability)
-    return _along_gradient(space, z)
+    return _along_gradient(space, z, sharp=sharp)
 
 
 def _one_input(space: StandardSpace, probability: float) -> Band:
@@ -141,7 +143,7 @@ def _one_input(space: StandardSpace, probability: float) -> Band:
     return _settled(space({}), ends.lower, ends.upper, method)
 
 
-def _along_gradient(space: StandardSpace, z: float) -> Band:
+def _along_gradient(space: StandardSpace, z: float, *, sharp: bool) -> Band:
     """One step for all rows; those that bend are looked at again."""
     value = space({})
     slopes, bends = space.differences({}, value)
@@ -154,7 +156,7 @@ def _along_gradient(space: StandardSpace, z: float) -> Band:
     fine = np.maximum(z * length, np.maximum(np.abs(total), np.abs(entangled)))
     fine = fine <= FINE * np.abs(value)
     lost = ~((np.abs(curvature) <= LOST * half) & (half > 0.0))
-    bent = np.abs(curvature) > CURVED * half
+    bent = (np.abs(curvature) > CURVED * half) | sharp
     bent |= np.abs(middle) > LOPSIDED * half
     bent |= np.abs(half - z * length) > UNEVEN * half
     bent |= np.abs(entangled) > ENTANGLED * half

@@ -3,10 +3,11 @@
 pyarrow is large, so it is loaded with the first such table, or beside the start of a server.
 """
 
-import threading
 from collections.abc import Callable
 from importlib import import_module
 from typing import Any
+
+from service.formats.arrow.loading import load_beside
 
 _DECODE, _ENCODE = "service.formats.arrow.decode", "service.formats.arrow.encode"
 
@@ -22,12 +23,7 @@ def later(module: str, name: str) -> Callable[..., Any]:
 
 def load_ahead() -> None:
     """Load it now, beside everything else, so that no request waits for it."""
-
-    def load() -> None:
-        import_module(_DECODE)
-        import_module(_ENCODE)
-
-    threading.Thread(target=load, name="load pyarrow", daemon=True).start()
+    load_beside(_DECODE, _ENCODE)
 
 
 ArrowDecoder = later(_DECODE, "ArrowDecoder")
