@@ -102,6 +102,8 @@ def spread_of(
     hard = rows[np.isnan(lower[rows])]
     if not hard.size:
         return plain
+    lower[hard] = (stepped.value + shift - reach)[hard]  # should hardly any draw have an answer
+    upper[hard] = (stepped.value + shift + reach)[hard]
     few = Draws(max(FEWEST, int(np.ceil(OUTSIDE / (1.0 - asked.probability)))))
     drawn = _simulated(chain().sided(effects).rows(hard), few, asked.probability)
     found = _put(plain, hard, stepped.value, drawn)
