@@ -103,8 +103,9 @@ def serve(port, given):
     uvicorn.run(surrounded(api, settings), port=port, log_level="warning", access_log=False)
 
 
-def reading_of(number, _):
-    text = f'{{"readings":[{{"time":"{stamp(next(clock))}","depth":{number / 1000},'
+def reading_of(_number, _):
+    """Of the probe that is installed there, as loggers send it."""
+    text = f'{{"readings":[{{"time":"{stamp(next(clock))}","probe":"p1",'
     text += '"apparent_permittivity":17.2,"temperature":14.1}]}'
     return post("/v1/stations/s0/readings", text.encode())
 

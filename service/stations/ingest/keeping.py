@@ -10,7 +10,7 @@ import anyio.to_thread
 from service.errors import NotFound
 from service.stations.documents import Documents, Shelf
 from service.stations.ingest.arrival import SHOWN, Arrival, Rejected
-from service.stations.ingest.placing import Misplaced, read_twice
+from service.stations.ingest.placing import Misplaced, beside_a_probe, read_twice
 from service.stations.ingest.remarking import (
     Suspicions,
     advice_on_gone,
@@ -126,7 +126,7 @@ async def keep(
     else:
         outcomes = await asyncio.gather(*(_kept(writer, shelf, batch) for _, batch in parts))
     known = documents.station(station)
-    if known is not None and any(place.startswith("@") for place in arrival.rows.places):
+    if known is not None and beside_a_probe(arrival.rows, known):
         found = await anyio.to_thread.run_sync(read_twice, shelf.store, arrival.rows, known)
         tally.read_twice += found
     for (start, batch), outcome in zip(parts, outcomes, strict=True):

@@ -95,6 +95,12 @@ class Misplaced:
             self._tell(text, rows, found)
 
 
+def beside_a_probe(rows: Rows, station: Station) -> bool:
+    """Whether any row names a depth at which a probe is or was installed."""
+    depths = {place for place in rows.places if place.startswith("@")}
+    return any(station.installed(Channel(0, station.name, place, {})) for place in depths)
+
+
 def read_twice(store: Store, rows: Rows, station: Station) -> list[tuple[str, int]]:
     """Rows that name a depth while the probe there has a reading of its own. Blocks.
 
