@@ -170,6 +170,8 @@ class Rules:
     def converters(self) -> dict[str, Callable[[Any], Any]]:
         """For each column in another unit, what brings its values to the unit of the API."""
         found: dict[str, Callable[[Any], Any]] = {}
+        if not self.units:
+            return found
         for name in VALUES:
             about, is_width = quantity_of(name)
             code = self.units.get(about)

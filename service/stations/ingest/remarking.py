@@ -28,7 +28,12 @@ class Suspicions:
     def note(self, rows: Rows) -> None:
         """Look at some readings, in the unit of the API."""
         for name, (low, high) in POSSIBLE.items():
-            cells: Sequence[Any] = rows.values.get(name, ())
+            if name not in rows.values:
+                continue
+            cells: Sequence[Any] = rows.values[name]
+            known = [cell for cell in cells if cell is not None]
+            if not known or (low <= min(known) and max(known) <= high):
+                continue
             odd = [
                 (row, cell)
                 for row, cell in enumerate(cells)
