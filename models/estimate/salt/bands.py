@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from models.estimate.equation import OWN
-from models.estimate.salt.chain import BEYOND_ALL, Chain
+from models.estimate.salt.chain import BEYOND_ALL, OWN_OF_SALT, Chain
 from models.estimate.salt.stepped import Stepped
 from models.estimate.sources import Sources
 from models.estimate.water_content import WaterContent
@@ -23,10 +23,11 @@ from models.relation import Array
 from models.uncertainty.coverage import coverage_factor
 from models.uncertainty.draws import Draws, interval_of, moments_of
 from models.uncertainty.evaluation import blocks_of, scores_of, values_of
-from models.uncertainty.quantiles.additive import Point, ends
+from models.uncertainty.quantiles.additive import ends
 from models.uncertainty.quantiles.curves import Steps
 from models.uncertainty.quantiles.intermediate import Intermediate
 from models.uncertainty.quantiles.reliability import Method, band
+from models.uncertainty.quantiles.sums import Point
 
 FEWEST, OUTSIDE = 512, 20
 """Draws for rows that nothing else settles, and how many of them the interval leaves out."""
@@ -145,38 +146,47 @@ def _curved(
     content: WaterContent,
     asked: Asked,
 ) -> None:
-    """Put the ends of the curves into their rows; NaN where those will not do."""
+    """Put the ends of the curves into their rows; NaN where those will not do.
+
+    Where it is most of the rows, all are worked out: that takes less than to pick them.
+    """
     count = plain.lower.size
+    picked = slice(None) if 2 * rows.size > count else rows
 
     def some(values: Any) -> Any:
-        whole = np.asarray(values)
-        return whole[rows] if whole.shape == (count,) else np.broadcast_to(whole, rows.shape)
+        return np.broadcast_to(values, (count,))[picked]
 
     def stepping(steps: Steps) -> Steps:
         return Steps(some(steps.up), some(steps.down), some(steps.size))
 
-    def measurand(point: Point) -> Array:
-        whole = Point(_whole(point.intermediate), {n: _whole(s) for n, s in point.scores.items()})
-        return stepped.measurand(whole)[rows]
-
-    def _whole(values: Array) -> Array:
+    def whole(values: Array) -> Array:
+        if isinstance(picked, slice):
+            return values
         every = np.zeros(count)
-        every[rows] = values
+        every[picked] = values
         return every
 
-    below, above = content.scales
-    effects = {**through.effects.per_reading, **through.effects.shared}
-    moved = Intermediate(
-        stepping(stepped.through),
-        content.standard_uncertainty[rows],
-        {name: some(effect) for name, effect in effects.items() if name != OWN},
-        {name: some(bend) for name, bend in through.bends.items()},
-        below[rows],
-        above[rows],
-    )
-    direct = {name: stepping(steps) for name, steps in stepped.direct.items()}
-    found = ends(measurand, stepped.value[rows], direct, moved, probability=asked.probability)
-    plain.lower[rows], plain.upper[rows] = found.lower, found.upper
+    def measurand(point: Point) -> Array:
+        scores = {name: whole(score) for name, score in point.scores.items()}
+        return stepped.measurand(Point(whole(point.intermediate), scores))[picked]
+
+    moved = None
+    if stepped.by_water_content:
+        effects = {**through.effects.per_reading, **through.effects.shared}
+        moved = Intermediate(
+            stepping(stepped.through),
+            content.standard_uncertainty[picked],
+            {name: some(effect) for name, effect in effects.items() if name != OWN},
+            {name: some(bend) for name, bend in through.bends.items()},
+            *(some(scale) for scale in content.scales),
+        )
+    direct = {n: stepping(steps) for n, steps in stepped.direct.items() if n != OWN_OF_SALT}
+    found = ends(
+        measurand, stepped.value[picked], direct, moved,
+        straight=stepped.own[picked], probability=asked.probability,
+    )  # fmt: skip
+    wanted = rows if isinstance(picked, slice) else slice(None)
+    plain.lower[rows], plain.upper[rows] = found.lower[wanted], found.upper[wanted]
 
 
 def _sharpened(plain: Spread, rows: NDArray[np.intp], some: Chain, asked: Asked) -> None:

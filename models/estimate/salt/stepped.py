@@ -11,8 +11,8 @@ from models.estimate.salt.chain import OWN_OF_SALT
 from models.estimate.salt.pore_water import PoreWater, logarithm
 from models.estimate.sources import Sources
 from models.relation import Array
-from models.uncertainty.quantiles.additive import Point
 from models.uncertainty.quantiles.curves import Steps
+from models.uncertainty.quantiles.sums import Point
 
 SHORT = 0.2
 """Steps of rows in which a whole standard uncertainty leads out of the domain."""
@@ -31,6 +31,7 @@ class Stepped:
     own: Array
     """Standard uncertainty that is the pore-water model's own."""
     measurand: Callable[[Point], Array]
+    """The conductivity's logarithm where sources are off, but for the model's own."""
 
     @classmethod
     def of(cls, pore: PoreWater, value: Array, own: Array) -> "Stepped":
@@ -51,7 +52,7 @@ class Stepped:
             through = _steps(lambda size: at({}, size * reach), here)
 
         def measurand(point: Point) -> Array:
-            return at(point.scores, point.intermediate) + own * point.scores[OWN_OF_SALT]
+            return at(point.scores, point.intermediate)
 
         return cls(here, direct, through, own, measurand)
 
@@ -79,11 +80,16 @@ class Stepped:
             moved = self.measurand(point) - self.value + here
             moved = moved + logarithm(1.0 + point.intermediate / theta)
             for source in drying:
-                moved = moved + diluted(source, point.scores[source])
+                moved = moved + diluted(source, point.scores.get(source, 0.0))
             return moved
 
         direct = {name: along(name) for name in dict.fromkeys((*self.direct, *drying))}
         return Stepped(here, direct, through, self.own, measurand)
+
+    @property
+    def by_water_content(self) -> bool:
+        """Whether the water content moves it at all."""
+        return self.through is not NONE
 
     def effects(self, through: Sources, reach: Array) -> Sources:
         """First order, signs kept, of each source in all; ``through``: on the water content."""

@@ -59,13 +59,13 @@ class Curve:
         r = -ln cosh(y) / y, which 2 r (0.307 r^2 - 1) / (1 - r^2) does to 3 % of y.
         """
         half, middle = 0.5 * (steps.up - steps.down), 0.5 * (steps.up + steps.down)
-        bends = np.abs(middle) < ONE_WAY * np.abs(half)
-        ratio = np.divide(middle, half, out=np.zeros_like(half), where=bends)
-        square = ratio * ratio
-        y = 2.0 * ratio * (0.307 * square - 1.0) / (1.0 - square)
-        bends &= np.abs(y) > STRAIGHT
-        bend = np.divide(y, half, out=np.zeros_like(half), where=bends)
-        scale = half * np.divide(np.tanh(y), y, out=np.ones_like(half), where=bends)
+        with np.errstate(all="ignore"):
+            ratio = middle / half
+            square = ratio * ratio
+            y = 2.0 * ratio * (0.307 * square - 1.0) / (1.0 - square)
+            bends = (np.abs(ratio) < ONE_WAY) & (np.abs(y) > STRAIGHT)
+            bend = np.where(bends, y / half, 0.0)
+            scale = half * np.where(bends, np.tanh(y) / y, 1.0)
         return cls(bend, scale / steps.size)
 
     def wedge(self, z: Array) -> Array:
@@ -76,8 +76,8 @@ class Curve:
 
     def at(self, z: Array, wedge: Array) -> Array:
         """The curve at z, whose ``wedge`` that is."""
-        line = self.scale * z
-        return np.divide(np.log(wedge), self.bend, out=line, where=self.bend != 0.0)
+        with np.errstate(all="ignore"):
+            return np.where(self.bend != 0.0, np.log(wedge) / self.bend, self.scale * z)
 
     @property
     def reach(self) -> Array:

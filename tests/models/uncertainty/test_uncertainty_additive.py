@@ -52,8 +52,9 @@ def test_a_product_of_factors_is_lognormal():
         return 0.6 * sigma * scores.get("a", zero) + 0.8 * sigma * scores.get("b", zero)
 
     value = np.zeros(2)
-    found = ends(lambda p: function(p.scores), value, stepped(function, "ab", value),
-                 alone(value), probability=0.95)  # fmt: skip
+    found = ends(
+        lambda p: function(p.scores), value, stepped(function, "ab", value), probability=0.95
+    )
     expected = lognorm(s=sigma)
     assert_allclose(np.exp(found.lower), expected.ppf(0.025), rtol=1e-12)
     assert_allclose(np.exp(found.upper), expected.ppf(0.975), rtol=1e-12)
@@ -73,7 +74,7 @@ def test_a_ratio_has_the_interval_of_fieller(spread, within):
 
     value = np.zeros(1)
     found = ends(lambda p: function(p.scores), value, stepped(function, "ab", value),
-                 alone(value), probability=0.95)  # fmt: skip
+                 probability=0.95)  # fmt: skip
     closed = ratio_interval(1.0, 0.1, 1.0, spread)
     half = float(np.log(closed.upper / closed.lower) / 2)
     assert found.settled.all()
@@ -91,7 +92,7 @@ def test_a_denominator_that_may_be_zero_leaves_no_upper_end():
 
     value = np.zeros(1)
     found = ends(lambda p: function(p.scores), value, stepped(function, "b", value),
-                 alone(value), probability=0.95)  # fmt: skip
+                 probability=0.95)  # fmt: skip
     assert np.isposinf(found.upper).all()
     assert np.isfinite(found.lower).all()
 
@@ -105,9 +106,41 @@ def test_a_numerator_that_may_be_zero_leaves_no_lower_end():
 
     value = np.zeros(1)
     found = ends(lambda p: function(p.scores), value, stepped(function, "b", value),
-                 alone(value), probability=0.95)  # fmt: skip
+                 probability=0.95)  # fmt: skip
     assert np.isneginf(found.lower).all()
     assert_allclose(found.upper, np.log(1.0 + 0.6 * Z), rtol=0.02)
+
+
+def test_an_intermediate_that_moves_nothing_changes_nothing():
+    """The two ways to a sum of curves are one where nothing goes through the intermediate."""
+
+    def function(scores):
+        return np.log((1.0 + 0.1 * scores.get("a", 0.0)) / (1.0 + 0.2 * scores.get("b", 0.0)))
+
+    value = np.zeros(3)
+    steps = stepped(function, "ab", value)
+    with_none = ends(lambda p: function(p.scores), value, steps, straight=0.1, probability=0.9)
+    beside = ends(
+        lambda p: function(p.scores), value, steps, alone(value), straight=0.1, probability=0.9
+    )
+    assert_allclose(with_none.lower, beside.lower, rtol=1e-13)
+    assert_allclose(with_none.upper, beside.upper, rtol=1e-13)
+
+
+def test_what_adds_straight_counts_like_an_input_with_a_straight_curve():
+    """A factor of its own of the logarithm, beside a denominator that bends."""
+
+    def function(scores):
+        return 0.15 * scores.get("own", 0.0) - np.log(1.0 + 0.2 * scores.get("b", 0.0))
+
+    value = np.zeros(2)
+    every = stepped(function, ("own", "b"), value)
+    one_of_many = ends(lambda p: function(p.scores), value, every, probability=0.95)
+    apart = ends(
+        lambda p: function(p.scores), value, {"b": every["b"]}, straight=0.15, probability=0.95
+    )
+    assert_allclose(apart.lower, one_of_many.lower, rtol=1e-12)
+    assert_allclose(apart.upper, one_of_many.upper, rtol=1e-12)
 
 
 def test_what_works_on_both_ways_is_counted_once():
@@ -131,7 +164,7 @@ def test_what_works_on_both_ways_is_counted_once():
         "b": Steps(outer(0.30, 0, 1.0) - value, outer(0.30, 0, -1.0) - value),
     }
     found = ends(
-        lambda p: outer(0.30 + p.intermediate, p.scores["a"], p.scores["b"]),
+        lambda p: outer(0.30 + p.intermediate, p.scores.get("a", 0.0), p.scores.get("b", 0.0)),
         value, direct, through, probability=0.95,
     )  # fmt: skip
     drawn = outer(inner(draws[:, 0], draws[:, 2]), draws[:, 0], draws[:, 1])
@@ -147,14 +180,17 @@ def test_a_curve_that_turns_back_is_not_settled():
     assert np.isnan(found.lower).all()
 
 
-def test_a_row_does_not_depend_on_its_neighbours():
+@pytest.mark.parametrize("through", [alone, lambda _: None])
+def test_a_row_does_not_depend_on_its_neighbours(through):
     """Nor does its last digit: nine inputs are more than numpy adds up one by one."""
     rng = np.random.default_rng(3)
     width = rng.uniform(0.0, 0.3, 50)
     names = "abcdefghi"
 
     def function(scores, width):
-        return -sum(np.log(1.0 - width / place * scores[n]) for place, n in enumerate(names, 1))
+        return -sum(
+            np.log(1.0 - width / place * scores.get(n, 0.0)) for place, n in enumerate(names, 1)
+        )
 
     def of(rows):
         some = width[rows]
@@ -163,7 +199,7 @@ def test_a_row_does_not_depend_on_its_neighbours():
             n: Steps(-np.log(1.0 - some / place), -np.log(1.0 + some / place))
             for place, n in enumerate(names, 1)
         }
-        return ends(lambda p: function(p.scores, some), value, direct, alone(value),
+        return ends(lambda p: function(p.scores, some), value, direct, through(value),
                     probability=0.95)  # fmt: skip
 
     together, order = of(np.arange(50)), rng.permutation(50)
