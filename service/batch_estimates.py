@@ -7,7 +7,7 @@ import numpy as np
 
 from models.advisories import Advice
 from models.conversion import from_si
-from models.estimate import Basis, Estimates, Remarks, columns_of, estimate, without_extract
+from models.estimate import Basis, Estimates, Remarks, columns_of, estimate, narrowed
 from models.estimate.beside.ensemble import COLUMNS, EveryModel
 from models.flags import BIT
 from models.quantity import band_names
@@ -23,9 +23,9 @@ from service.schemas.echo_beside import ensemble_echo
 from service.schemas.estimates import ALL, EstimatesSettings, model_name
 from service.schemas.query import basis_of
 
-EXTRACT = "saturation_extract_conductivity"
-CONDUCTIVITIES = ("bulk_conductivity_25", "pore_water_conductivity",
-                  EXTRACT)  # fmt: skip
+CONDUCTIVITIES = (
+    "bulk_conductivity_25", "pore_water_conductivity", "saturation_extract_conductivity",
+)  # fmt: skip
 APPENDED = frozenset({
     "conduction_correction",
     "model_spread",
@@ -78,7 +78,7 @@ class TableEstimates:
         self._worked: Basis | EveryModel | None = None
         self.remarks = Remarks()
         self._make = grounds
-        self._extract = wanted is None or any(name.startswith(EXTRACT) for name in wanted)
+        self._wanted = wanted
         self._naming: tuple[str, ...] = ()
         self._grounds: Grounds | None = None
         self._begun = False
@@ -110,8 +110,8 @@ class TableEstimates:
             self._naming, self._grounds = named, self._make(self.columns)
         else:
             self.basis = self._worked = basis_of(self.settings, self.columns)
-            if isinstance(self.basis, Basis) and not self._extract:
-                self._worked = without_extract(self.basis)
+            if isinstance(self.basis, Basis) and self._wanted is not None:
+                self._worked = narrowed(self.basis, self._wanted)
 
     def _by_request(self, block: Block) -> Answer:
         assert self._worked is not None  # noqa: S101 - settled at the first block

@@ -1,6 +1,6 @@
 """Estimates: readings in, values with uncertainty out; the only place where the two meet."""
 
-from models.estimate.basis import Basis, Query, prepare, without_extract
+from models.estimate.basis import Basis, Query, narrowed, prepare
 from models.estimate.beside.explanation import explain
 from models.estimate.choice import choose
 from models.estimate.pipeline import Estimates, columns_of, estimate
@@ -17,6 +17,6 @@ __all__ = [
     "columns_of",
     "estimate",
     "explain",
+    "narrowed",
     "prepare",
-    "without_extract",
 ]

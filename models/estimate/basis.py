@@ -1,13 +1,13 @@
 """All that an estimate rests on besides its readings, settled once for a whole request."""
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Collection, Iterator, Mapping
 from dataclasses import dataclass, field, replace
 from typing import Any
 
 from models.advisories import Advice, advise
 from models.estimate.binding import SUPPLIED, bind
 from models.estimate.permittivity import kinds_in
-from models.estimate.salt.salinity import Salinity, SalinityQuery, settle
+from models.estimate.salt.salinity import BULK_25, EXTRACT, Salinity, SalinityQuery, settle
 from models.mixing import MIXING_MODELS
 from models.mixing.family import MixingModel
 from models.quantity import NOISE
@@ -89,12 +89,23 @@ class Basis:
         return self.corrects_loss and ("imaginary_permittivity" in columns or by_conductivity)
 
 
-def without_extract(basis: Basis) -> Basis:
-    """The same where nobody asks for the saturation extract: half of the work on the salt."""
+def narrowed(basis: Basis, columns: Collection[str]) -> Basis:
+    """The same where only these columns are asked for: the rest of the salt is not worked out."""
     salinity = basis.salinity
-    if salinity is None or salinity.paste is None:
+    if salinity is None:
         return basis
-    return replace(basis, salinity=replace(salinity, paste=None))
+
+    def asked(quantity: str) -> bool:
+        return any(name.startswith(quantity) for name in columns)
+
+    return replace(
+        basis,
+        salinity=replace(
+            salinity,
+            paste=salinity.paste if asked(EXTRACT) else None,
+            tells_bulk=salinity.tells_bulk and asked(BULK_25),
+        ),
+    )
 
 
 def prepare(query: Query) -> Basis:

@@ -1,6 +1,6 @@
 """The way of a reading: permittivity, water content, flags; in blocks that fit the cache."""
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -11,6 +11,7 @@ from models.estimate.gates import flag_inputs, flag_pore_water, flag_results
 from models.estimate.permittivity import Permittivity, permittivity_of
 from models.estimate.salt.conductivities import conductivities_of
 from models.estimate.salt.pore_water import PoreWater
+from models.estimate.salt.salinity import BULK_25, EXTRACT, PORE
 from models.estimate.surroundings import Surroundings, frost, surroundings_of, water_inputs
 from models.estimate.water_content import WaterContent, water_content_of
 from models.flags import BIT, Flags, withheld, without_pore_water
@@ -20,7 +21,7 @@ from models.relation import Array
 from models.uncertainty.first_order import Input
 
 BLOCK = 16_384
-"""Rows computed at a time: the working columns stay in the processor's cache. Twice as many where
+"""Rows computed at a time, about: the working columns stay in the processor's cache. Twice as many where
 there is no salt, whose curves are many columns more."""
 
 
@@ -41,14 +42,19 @@ def estimate(readings: Readings, basis: Basis) -> Estimates:
     names = columns_of(basis)
     columns = {name: np.empty(readings.count) for name in names}
     flags = np.empty(readings.count, dtype=np.uint64)
-    step = BLOCK if basis.salinity is not None else 2 * BLOCK
-    for start in range(0, readings.count, step):
-        stop = min(start + step, readings.count)
+    about = BLOCK if basis.salinity is not None else 2 * BLOCK
+    for start, stop in _blocks(readings.count, about):
         part = _estimate_block(readings.rows(start, stop), basis)
         flags[start:stop] = part.flags
         for name in names:
             columns[name][start:stop] = part.columns[name]
     return Estimates(columns, flags)
+
+
+def _blocks(count: int, about: int) -> Iterator[tuple[int, int]]:
+    """Blocks of about so many rows, all of one length, so that no short one is left at the end."""
+    step = -(-count // max(1, round(count / about))) or 1
+    return ((start, min(start + step, count)) for start in range(0, count, step))
 
 
 def columns_of(basis: Basis) -> tuple[str, ...]:
@@ -57,9 +63,11 @@ def columns_of(basis: Basis) -> tuple[str, ...]:
     if basis.tells_correction:
         names.append("conduction_correction")
     if basis.salinity is not None:
-        names += [*band_names("bulk_conductivity_25"), *band_names("pore_water_conductivity")]
+        if basis.salinity.tells_bulk:
+            names += band_names(BULK_25)
+        names += band_names(PORE)
         if basis.salinity.paste is not None and basis.salinity.density is not None:
-            names += band_names("saturation_extract_conductivity")
+            names += band_names(EXTRACT)
     return tuple(names)
 
 
@@ -117,7 +125,7 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
         answer = conductivities_of(pore, found, worked.water, basis)
         salt = answer.columns
         flag_pore_water(pore, answer, content, basis, flags)
-        bulk = {n: v for n, v in salt.items() if n.startswith("bulk_conductivity_25")}
+        bulk = {n: v for n, v in salt.items() if n.startswith(BULK_25)}
         columns |= salt | _without(bulk, (flags & BIT["unreadable-row"]) != 0)
         rest = {n: v for n, v in salt.items() if n not in bulk}
         columns |= _without(rest, without_pore_water(flags))

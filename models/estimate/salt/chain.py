@@ -46,7 +46,7 @@ class Chain:
     pore: PoreWater
     equation: Equation
     mixing: Mapping[str, Moving]
-    """What goes into the mixing model."""
+    """What goes into the mixing model; empty: the answer does not rest on the water content."""
     paste: Mapping[str, Moving]
     """What the extract follows from; empty: the answer is that of the pore water."""
     columns: Mapping[str, Any]
@@ -66,6 +66,7 @@ class Chain:
         content: WaterContent,
         own: Array,
         *,
+        paste: Mapping[str, Moving],
         most: float = np.inf,
     ) -> Self:
         """The chain of a block.
@@ -73,19 +74,15 @@ class Chain:
         found, water: what the water content came from. own: standard uncertainty of the pore-water
         model itself, of the logarithm.
         """
-        basis = content.equation.basis
-        mixing = {g.name: _of_mixing(g, found, water, basis) for g in content.equation.inputs}
+        basis, mixing = content.equation.basis, {}
+        if paste or np.isfinite(most) or "water_content" in pore.salinity.takes:
+            mixing = {g.name: _of_mixing(g, found, water, basis) for g in content.equation.inputs}
         below, above = content.scales
         columns: dict[str, Any] = {
             "own below": below, "own above": above, f"{OWN_OF_SALT} own": own,
         }  # fmt: skip
-        chain = cls(pore, content.equation, mixing, {}, columns, most)
+        chain = cls(pore, content.equation, mixing, paste, columns, most)
         return replace(chain, columns=columns | chain._of_quantities())
-
-    def of_extract(self, paste: Mapping[str, Moving]) -> Self:
-        """The same to the conductivity of the saturation extract."""
-        chain = replace(self, paste=paste)
-        return replace(chain, columns={**self.columns, **chain._of_quantities()})
 
     def sided(self, effects: Sources) -> Self:
         """The same for draws: without an answer they are beyond one end or the other."""
@@ -98,7 +95,7 @@ class Chain:
     def sources(self) -> tuple[str, ...]:
         """Everything uncertain, in a fixed order."""
         every = dict.fromkeys(s for _, each in self._quantities() for s in each.by)
-        return (*every, OWN, OWN_OF_SALT)
+        return (*every, *([OWN] if self.mixing else []), OWN_OF_SALT)
 
     def rows(self, index: NDArray[np.intp]) -> Self:
         """The same for some of the rows."""
@@ -116,22 +113,29 @@ class Chain:
     def __call__(self, **columns: Array) -> Array:
         """Logarithm of the conductivity at 25 Cel, in S/m; NaN where there is none above zero."""
         columns = {**self.columns, **columns}
-        at = {n: each.among(columns, f"mixing {n}") for n, each in self.mixing.items()}
-        z = columns[OWN]
-        error = z * np.where(z < 0, columns["own below"], columns["own above"])
-        theta = self.equation(**at) + error
-        impossible = theta > self.most
-        theta = np.where(theta > 0.0, theta, np.nan)
         at = {n: each.among(columns, f"salt {n}") for n, each in self.pore.moving.items()}
-        answer = self.pore.at_25(water_content=theta, **at)
+        theta = self._water_content(columns)
+        if theta is None:
+            answer = self.pore.at_25(**at)
+        else:
+            above = np.where(theta > 0.0, theta, np.nan)
+            answer = self.pore.at_25(water_content=above, **at)
         if self.paste:
             at = {n: _positive(each, columns, f"paste {n}") for n, each in self.paste.items()}
-            answer = to_extract(answer, water_content=theta, **at)
+            answer = to_extract(answer, water_content=above, **at)
         found = logarithm(answer) + columns[f"{OWN_OF_SALT} own"] * columns[OWN_OF_SALT]
         if self.leading:
             towards = sum(columns[f"leading {n}"] * columns[n] for n in self.leading)
             found = np.where(np.isnan(found), np.copysign(BEYOND_ALL, towards), found)
-        return np.where(impossible, np.nan, found)
+        return found if theta is None else np.where(theta > self.most, np.nan, found)
+
+    def _water_content(self, columns: Mapping[str, Array]) -> Array | None:
+        """With every error in it; None where the answer does not rest on it."""
+        if not self.mixing:
+            return None
+        at = {n: each.among(columns, f"mixing {n}") for n, each in self.mixing.items()}
+        z = columns[OWN]
+        return self.equation(**at) + z * np.where(z < 0, columns["own below"], columns["own above"])
 
     def _quantities(self) -> list[tuple[str, Moving]]:
         kinds = {"mixing": self.mixing, "salt": self.pore.moving, "paste": self.paste}

@@ -16,9 +16,11 @@ from models.estimate.permittivity import Permittivity
 from models.estimate.salt.bands import Asked, Spread, Through, spread_of
 from models.estimate.salt.chain import Chain
 from models.estimate.salt.pore_water import PoreWater
+from models.estimate.salt.salinity import BULK_25, EXTRACT, PORE
 from models.estimate.salt.stepped import Stepped
 from models.estimate.sources import bends_of_water_content, of_water_content
 from models.estimate.water_content import most_water
+from models.quantity import band_names
 from models.relation import Array
 from models.salinity.saturation_extract import to_extract
 from models.uncertainty.coverage import shortest_interval
@@ -28,7 +30,6 @@ Columns = dict[str, Array]
 BRINE = 25.0
 """S/m at 25 Cel of water saturated with sodium chloride, common practice, from memory: an upper end
 beyond it says no more than that there is none."""
-PORE, EXTRACT = "pore_water_conductivity", "saturation_extract_conductivity"
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,13 +57,12 @@ def conductivities_of(
     asked = Asked(basis.query.probability, basis.query.draws, bare)
     most = np.inf if asked.draws is None else most_water(basis)
 
-    def chain(paste: Mapping[str, Moving] | None = None) -> Chain:
-        whole = Chain.of(pore, found, water, content, own, most=most)
-        return whole.of_extract(paste) if paste else whole
+    def chain(paste: Mapping[str, Moving]) -> Chain:
+        return Chain.of(pore, found, water, content, own, paste=paste, most=most)
 
     stepped = Stepped.of(pore, value, own)
-    spread = spread_of(stepped, through, content, chain, asked)
-    columns = _bulk_at_25(pore, asked.probability)
+    spread = spread_of(stepped, through, content, lambda: chain({}), asked)
+    columns = _bulk_at_25(pore, asked.probability) if pore.salinity.tells_bulk else {}
     columns |= _factor(PORE, value, spread)
     paste = _paste(pore)
     if not paste:
@@ -98,11 +98,8 @@ def _bulk_at_25(pore: PoreWater, probability: float) -> Columns:
     shared = value * pore.salinity.compensation.relative_uncertainty(warmth)
     total = np.sqrt(spread + np.square(shared))
     ends = shortest_interval(value, total, total, low=0.0, high=np.inf, probability=probability)
-    return {
-        "bulk_conductivity_25": value, "bulk_conductivity_25_u": total,
-        "bulk_conductivity_25_u_shared": shared, "bulk_conductivity_25_lower": ends.lower,
-        "bulk_conductivity_25_upper": ends.upper,
-    }  # fmt: skip
+    columns = (value, total, shared, ends.lower, ends.upper)
+    return dict(zip(band_names(BULK_25), columns, strict=True))
 
 
 @np.errstate(all="ignore")

@@ -88,11 +88,17 @@ class PoreWater:
 
     def moves(self, source: str) -> bool:
         """Whether the source is uncertain in any row."""
-        return any(np.any(each.by.get(source, 0.0)) for each in self.moving.values())
+        return any(source in each.by and np.any(each.by[source]) for each in self.moving.values())
 
     def factor(self, temperature: Array) -> Array:
         """From soil temperature to 25 Cel."""
+        if temperature is self.inputs["temperature"]:
+            return self._factor_here
         return self.salinity.compensation.factor(temperature)
+
+    @cached_property
+    def _factor_here(self) -> Array:
+        return self.salinity.compensation.factor(self.inputs["temperature"])
 
     def at_25(self, **moved: Any) -> Array:
         """Conductivity of the pore water at 25 Cel, S/m, with some inputs or parameters moved."""
@@ -105,7 +111,9 @@ class PoreWater:
         if "water_loss" in takes:
             water, water_loss = kaatze_1989.parts(at["frequency"], at["temperature"])
             parameters |= {"water_permittivity": water, "water_loss": water_loss}
-        to_25 = self.factor(at["temperature"]) * at.get("compensation", 1.0)
+        to_25 = self.factor(at["temperature"])
+        if "compensation" in at:
+            to_25 = to_25 * at["compensation"]
         bulk = bulk_of_loss(at["loss"], **parameters) if self.by_loss else at["bulk_conductivity"]
         model = self.salinity.model
         if model.at == "25 Cel":
@@ -114,7 +122,11 @@ class PoreWater:
 
     def logarithm(self, water_content: Array, scores: Mapping[str, Any]) -> Array:
         """Of the conductivity, where sources are so many standard uncertainties off; NaN: none."""
-        moved = {name: each.at(scores) for name, each in self.moving.items()}
+        moved = {
+            name: each.at(scores)
+            for name, each in self.moving.items()
+            if not scores.keys().isdisjoint(each.by)
+        }
         return logarithm(self.at_25(water_content=water_content, **moved))
 
     def gates(self) -> Mapping[str, Any]:

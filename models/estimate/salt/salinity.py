@@ -16,6 +16,8 @@ from models.salinity.texture_defaults import Estimate, estimates
 from models.soil.description import Soil
 
 SECTION = "pore_water_model"
+BULK_25, PORE = "bulk_conductivity_25", "pore_water_conductivity"
+EXTRACT = "saturation_extract_conductivity"
 FALLBACKS = (DEFAULT_PORE_WATER_MODEL, "hilhorst-2000")
 """In this order, where none is named: the first whose inputs are there."""
 
@@ -47,6 +49,8 @@ class Salinity:
     fitted: bool
     """Whether the site's own coefficients were given."""
     advice: tuple[Advice, ...]
+    tells_bulk: bool = True
+    """Whether the bulk conductivity at 25 Cel is asked for."""
 
     @property
     def takes(self) -> frozenset[str]:

@@ -1,4 +1,4 @@
-"""A sum of curves of inputs, some of which also move an intermediate that has a curve of its own."""
+"""A sum of curves of inputs, some of which also move an intermediate with a curve of its own."""
 
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass
