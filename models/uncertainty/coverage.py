@@ -9,7 +9,7 @@ may end exactly at an end of the range, and far from both ends is value -+ k u.
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 from scipy.special import ndtr, ndtri
 
 from models.relation import Array, column
@@ -54,18 +54,16 @@ def shortest_interval(
     shortest interval of the unrestricted one is (value - h below, value + h above); where an end
     of the range cuts it off, the interval starts there and the other end takes up the rest.
     """
-    low, high = (
-        np.broadcast_to(column(low), value.shape),
-        np.broadcast_to(column(high), value.shape),
-    )
+    low, high = column(low), column(high)
     h = coverage_factor(probability)
     lower, upper = value - h * scale_below, value + h * scale_above
     peak = value.copy()
     near = np.flatnonzero((value - FAR * scale_below < low) | (value + FAR * scale_above > high))
     if near.size:
-        peak[near] = np.clip(value[near], low[near], high[near])
+        bottom, top = _of_rows(low, near), _of_rows(high, near)
+        peak[near] = np.clip(value[near], bottom, top)
         lower[near], upper[near] = _restricted(
-            value[near], scale_below[near], scale_above[near], low[near], high[near], probability
+            value[near], scale_below[near], scale_above[near], bottom, top, probability
         )
     return Interval(lower, upper, peak)
 
@@ -83,19 +81,24 @@ def _restricted(
         (mass_high, high, value + FAR * above > high),
     ):
         rows = np.flatnonzero(near)
-        mass[rows] = _mass(end[rows], value[rows], below[rows], above[rows])
+        mass[rows] = _mass(_of_rows(end, rows), value[rows], below[rows], above[rows])
     kept = probability * (mass_high - mass_low)
     h = ndtri(0.5 * (1.0 + kept))
     lower, upper = value - h * below, value + h * above
     cut = np.flatnonzero(lower < low)
     also = np.flatnonzero((upper > high) & (lower >= low))
-    lower[cut], upper[also] = low[cut], high[also]
+    lower[cut], upper[also] = _of_rows(low, cut), _of_rows(high, also)
     rest = _point(mass_low[cut] + kept[cut], value[cut], below[cut], above[cut])
-    upper[cut] = np.minimum(rest, high[cut])
+    upper[cut] = np.minimum(rest, _of_rows(high, cut))
     lower[also] = _point(mass_high[also] - kept[also], value[also], below[also], above[also])
     lower = np.minimum(np.maximum(lower, low), held)  # to the last digit
     upper = np.maximum(np.minimum(upper, high), held)
     return np.where(point, held, lower), np.where(point, held, upper)
+
+
+def _of_rows(ends: Array, rows: NDArray[np.intp]) -> Array:
+    """One end for all rows, or each row's own."""
+    return ends[rows] if ends.ndim else ends
 
 
 def _mass(point: Array, value: Array, below: Array, above: Array) -> Array:

@@ -13,6 +13,7 @@ from models.mixing.physical import crim
 from models.readings import read
 from models.soil.description import describe
 from models.water import kaatze_1989
+from service.memory import keep_working_memory
 from tests.benchmarks.interleaved import medians, quiet, report
 
 ROWS, BLOCK = 1_000_000, 16_384
@@ -33,6 +34,7 @@ def values_alone(permittivity, temperature, out):
 
 
 def main():
+    keep_working_memory()  # as every process of the service does
     rng = np.random.default_rng(3)
     permittivity, temperature = rng.uniform(6.0, 30.0, ROWS), rng.uniform(2.0, 35.0, ROWS)
     columns = {"apparent_permittivity": permittivity, "temperature": temperature}

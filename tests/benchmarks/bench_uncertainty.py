@@ -10,6 +10,7 @@ from models.uncertainty.draws import Draws
 from models.uncertainty.first_order import Input, propagate
 from models.uncertainty.monte_carlo import simulate
 from models.uncertainty.quantiles.reliability import Method, band
+from service.memory import keep_working_memory
 from tests.benchmarks.interleaved import medians, quiet, report
 
 ROWS, BLOCK = 1_000_000, 16_384
@@ -65,6 +66,7 @@ def known(at, rows):
 
 
 def main():
+    keep_working_memory()  # as every process of the service does
     rng = np.random.default_rng(3)
     at = {"ka": rng.uniform(6, 30, ROWS), "t": rng.uniform(2, 35, ROWS), "phi": 0.45, "solid": 4.7}
     out, given, part, few = np.empty(ROWS), known(at, ROWS), known(at, SOME), known(at, FEW)
