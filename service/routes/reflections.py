@@ -84,5 +84,7 @@ async def answered(
 def _answer(document: dict[str, Any]) -> dict[str, Any]:
     body: ReflectionsBody = body_of(document, REFLECTIONS)
     if body.kind == "tip":
-        return tip_answer(body, estimate_permittivity(tip_question(body)))
-    return line_answer(body, estimate_line(line_question(body)))
+        of_tip, said = tip_question(body)
+        return tip_answer(body, estimate_permittivity(of_tip), said)
+    of_line, said = line_question(body)
+    return line_answer(body, estimate_line(of_line), said)

@@ -36,4 +36,5 @@ async def post_scattering(request: Request) -> Response:
 
 def _answer(document: dict[str, Any]) -> dict[str, Any]:
     body: ScatteringBody = body_of(document, SCATTERING)
-    return two_port_answer(body, estimate_constants(two_port_question(body)))
+    query, said = two_port_question(body)
+    return two_port_answer(body, estimate_constants(query), said)

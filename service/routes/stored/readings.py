@@ -35,7 +35,9 @@ AT_ONCE = 200
 SMALL = 32_768
 """Bytes of a JSON body up to which it is read without a thread."""
 
-router = APIRouter(prefix="/v1/stations/{name}", tags=["stations"])
+PATH = "/v1/stations/{name}/readings"
+
+router = APIRouter(tags=["stations"])
 
 _SENT: dict[str, Any] = {
     "requestBody": {
@@ -69,7 +71,7 @@ _SENT: dict[str, Any] = {
 
 
 @router.post(
-    "/readings", summary="Keep readings of a logger", openapi_extra=_SENT, response_class=Response
+    PATH, summary="Keep readings of a logger", openapi_extra=_SENT, response_class=Response
 )
 async def post_readings(request: Request, name: Name) -> Response:
     """What is acknowledged is durable, and resending is harmless.
@@ -105,7 +107,7 @@ async def post_readings(request: Request, name: Name) -> Response:
 
 
 @router.get(
-    "/readings",
+    PATH,
     summary="Readings as they are kept",
     openapi_extra=described(RANGE),
     response_class=Response,
