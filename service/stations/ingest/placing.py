@@ -30,8 +30,11 @@ class Misplaced:
         """Look at some rows of a station."""
         for place, where in _by_place(rows.places):
             installed = station.installed(Channel(0, station.name, place, {}))
-            times = [rows.times[row] for row in where]
-            if not any(i.start <= min(times) and max(times) < i.end for i in installed):
+            times = (
+                [rows.times[row] for row in where] if len(where) < len(rows.times) else rows.times
+            )
+            first, last = min(times), max(times)
+            if not any(i.start <= first and last < i.end for i in installed):
                 outside = [row for row, moment in zip(where, times, strict=True)
                            if not any(i.start <= moment < i.end for i in installed)]  # fmt: skip
                 if outside:
@@ -97,7 +100,7 @@ class Misplaced:
 
 def beside_a_probe(rows: Rows, station: Station) -> bool:
     """Whether any row names a depth at which a probe is or was installed."""
-    depths = {place for place in rows.places if place.startswith("@")}
+    depths = {place for place in set(rows.places) if place.startswith("@")}
     return any(station.installed(Channel(0, station.name, place, {})) for place in depths)
 
 

@@ -105,15 +105,12 @@ class TableReader:
         else:
             named = probes.fill_null("").str.strip_chars()
             named = named.replace("", self._probe) if self._probe else named
-        faults = {
-            name: fault
-            for name in named.unique().to_list()
-            if name and (fault := self.rules.probe_fault(name))
-        }
+        names: list[str] = named.unique().to_list()
+        faults = {n: fault for n in names if n and (fault := self.rules.probe_fault(n))}
         if faults:
             unknown = named.is_in(list(faults)).to_numpy()
             checks.refuse(unknown, "probe", lambda row: faults[named[row]])
-        places: list[str] = named.to_list()
+        places = names * count if len(names) == 1 else named.to_list()
         bare = (named == "").to_numpy()
         if not bare.any():
             return places
