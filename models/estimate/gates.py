@@ -7,8 +7,9 @@ from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
 from models.estimate.permittivity import Permittivity
-from models.estimate.salt.conductivities import EXTRACT, PORE, Conductivities
+from models.estimate.salt.conductivities import Conductivities
 from models.estimate.salt.pore_water import PoreWater
+from models.estimate.salt.salinity import EXTRACT, PORE
 from models.estimate.surroundings import Surroundings
 from models.estimate.water_content import CONSISTENT, WaterContent
 from models.flags import BIT, Flags, without_pore_water

@@ -21,8 +21,8 @@ from models.relation import Array
 from models.uncertainty.first_order import Input
 
 BLOCK = 16_384
-"""Rows computed at a time, about: the working columns stay in the processor's cache. Twice as many where
-there is no salt, whose curves are many columns more."""
+"""Rows computed at a time, about: the working columns stay in the processor's cache. Twice as many
+where there is no salt, whose curves are many columns more."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -13,7 +13,6 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from models.conductivity.loss import conduction_loss
-from models.mixing.joint import to_complex_permittivity
 from models.mixing.phases import FREQUENCY as FREQUENCIES
 from models.mixing.phases import (
     LIQUID,
@@ -22,7 +21,7 @@ from models.mixing.phases import (
     Numbers,
 )
 from models.mixing.physical.complex_refractive import COMPLEX_REFRACTIVE as MIXING
-from models.numerics.inverse import increasing_inverse
+from models.numerics.inverse import ROUNDING
 from models.relation import Array, Parameter, Range, column, ranges
 from models.salinity.family import (
     DRIEST,
@@ -35,8 +34,8 @@ from models.salinity.family import (
 )
 from models.salinity.inputs import FREQUENCY, POROSITY, WATER_CONTENT
 
-WIDER = 1e-6
-"""Rounding must not push the root out of its own bracket."""
+STEPS = 50
+"""Of Newton's; four to seven are taken."""
 
 
 @np.errstate(all="ignore")
@@ -88,18 +87,33 @@ def to_pore_water(
     per_conductivity = conduction_loss(1.0, frequency)
     loss = column(bulk_conductivity) * per_conductivity + _loss(0.0, frequency, **soil)
     theta, real = above_zero(water_content), above_zero(water_permittivity)
-    solid = np.sqrt(np.asarray(solid_permittivity, np.complex128))
-    rest = solid * (1 - column(porosity)) + column(porosity) - theta
-    most = loss / (2 * theta * (rest.real + theta * np.sqrt(real))) * (1 + WIDER)
+    index, attenuation = _without_water(theta, porosity, solid_permittivity)
+    in_water = _attenuation(loss, theta, real, index, attenuation)
+    doubled = 2 * in_water * np.sqrt(real + in_water**2)
+    return (doubled - column(water_loss)) / per_conductivity
 
-    def lost(attenuation: Array) -> Array:
-        """2 n k of the soil, from the attenuation r of its water."""
-        index = rest.real + theta * np.sqrt(real + attenuation**2)
-        return 2 * index * (theta * attenuation - rest.imag)
 
-    attenuation = increasing_inverse(lost, loss, 0.0, most)
-    in_water = 2 * attenuation * np.sqrt(real + attenuation**2)
-    return (in_water - column(water_loss)) / per_conductivity
+def _attenuation(loss: Array, theta: Array, real: Array, a: Array, b: Array) -> Array:
+    """r of the water where the soil loses so much; NaN where it loses more with r = 0.
+
+    The loss rises with r and bends upward, so that Newton's steps from above come down to the
+    root and never beyond it. A row stops for good once a step changes nothing, so that its answer
+    does not depend on its company.
+    """
+    least = 2 * (a + theta * np.sqrt(real)) * b
+    r = np.maximum(loss - least, 0.0) / (2 * theta * (a + theta * np.sqrt(real)))
+    r = np.where(loss - least >= -ROUNDING * np.abs(loss), r, np.nan)
+    moving = np.isfinite(r)
+    for _ in range(STEPS):
+        p, height = np.sqrt(real + r * r), theta * r + b
+        over = 2 * (a + theta * p) * height - loss
+        slope = 2 * theta * (r / p * height + a + theta * p)
+        nearer = np.maximum(r - over / slope, 0.0)
+        moving = moving & (r - nearer > ROUNDING * r)
+        if not moving.any():
+            break
+        r = np.where(moving, nearer, r)
+    return r
 
 
 def _loss(
@@ -113,11 +127,20 @@ def _loss(
     solid_permittivity: Numbers,
 ) -> Array:
     """All of the soil's eps'', elementwise."""
-    return -to_complex_permittivity(
-        above_zero(water_content), column(pore_water_conductivity), column(frequency),
-        water_permittivity=column(water_permittivity) - 1j * column(water_loss),
-        porosity=column(porosity), solid_permittivity=np.asarray(solid_permittivity),
-    ).imag  # fmt: skip
+    theta, real = above_zero(water_content), column(water_permittivity)
+    loss = column(water_loss) + conduction_loss(pore_water_conductivity, frequency)
+    p = np.sqrt((np.hypot(real, loss) + real) / 2)
+    a, b = _without_water(theta, porosity, solid_permittivity)
+    return np.asarray(2 * (a + theta * p) * (b + theta * loss / (2 * p)))
+
+
+def _without_water(
+    theta: Array, porosity: ArrayLike, solid_permittivity: Numbers
+) -> tuple[Array, Array]:
+    """a and b of the soil whose water is left out: solid and air."""
+    solid = np.sqrt(np.asarray(solid_permittivity, np.complex128))
+    phi = column(porosity)
+    return column(solid.real * (1 - phi) + phi - theta), column(-solid.imag * (1 - phi))
 
 
 def gates(bulk_conductivity: ArrayLike, /, *, water_content: ArrayLike, **_others: Any) -> Marks:

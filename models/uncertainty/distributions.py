@@ -7,7 +7,7 @@ Shapes and standard uncertainties: JCGM 100, 4.3, and JCGM 101, 6.4.
 
 from abc import ABC, abstractmethod
 from collections.abc import Iterable
-from dataclasses import dataclass, fields, replace
+from dataclasses import dataclass, fields
 from typing import Any, Self
 
 import numpy as np
@@ -59,10 +59,13 @@ class Distribution(ABC):
 
     def take(self, index: Any) -> Self:
         """Some of the rows; ``np.s_[:, None]`` sets them up against draws along the last axis."""
-        columns = {field.name: getattr(self, field.name) for field in fields(self)}
-        some = {name: column(c)[index] for name, c in columns.items() if np.size(c) != 1}
-        same = {name: np.reshape(c, ())[()] for name, c in columns.items() if np.size(c) == 1}
-        return replace(self, **some, **same)
+        taken = object.__new__(type(self))  # what holds for all rows holds for some
+        for field in fields(self):
+            values = getattr(self, field.name)
+            single = np.size(values) == 1
+            some = np.reshape(values, ())[()] if single else column(values)[index]
+            object.__setattr__(taken, field.name, some)
+        return taken
 
     def _refuse_unless(self, holds: Any, name: str, meaning: str = "finite and >= 0") -> None:
         if not np.all(holds):

@@ -124,10 +124,16 @@ class Chain:
             at = {n: _positive(each, columns, f"paste {n}") for n, each in self.paste.items()}
             answer = to_extract(answer, water_content=above, **at)
         found = logarithm(answer) + columns[f"{OWN_OF_SALT} own"] * columns[OWN_OF_SALT]
-        if self.leading:
-            towards = sum(columns[f"leading {n}"] * columns[n] for n in self.leading)
-            found = np.where(np.isnan(found), np.copysign(BEYOND_ALL, towards), found)
+        if self.leading and np.isnan(found).any():
+            found = self._beyond(found, columns)
         return found if theta is None else np.where(theta > self.most, np.nan, found)
+
+    def _beyond(self, found: Array, columns: Mapping[str, Array]) -> Array:
+        """Below or above all others where there is no answer; shape (n, draws)."""
+        count = found.shape[0] if found.ndim > 1 else 1
+        each = [np.broadcast_to(columns[f"leading {n}"], (count, 1)) for n in self.leading]
+        towards = np.concatenate(each, axis=1) @ np.stack([columns[n] for n in self.leading])
+        return np.where(np.isnan(found), np.copysign(BEYOND_ALL, towards), found)
 
     def _water_content(self, columns: Mapping[str, Array]) -> Array | None:
         """With every error in it; None where the answer does not rest on it."""

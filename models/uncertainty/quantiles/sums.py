@@ -4,7 +4,7 @@ On such a sum inverse first-order reliability and its curvature term are closed 
 operations a row.
 """
 
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
 from typing import Self
 
@@ -69,7 +69,7 @@ class Sum:
     def of(cls, value: Array, direct: Mapping[str, Steps], straight: Array) -> Self:
         """The sum that has these steps, around its value."""
         steps = stacked(direct, value)
-        sound = one_way(steps, noise_of(steps)).all(axis=0)
+        sound = np.logical_and.reduce(one_way(steps, noise_of(steps)), axis=0)
         return cls(value, tuple(direct), Curve.through(steps), straight, sound)
 
     def end(self, z: float) -> End:
@@ -97,15 +97,16 @@ class Sum:
 
     def left_out(self, measurand: Measurand) -> tuple[Array, Array]:
         """Probability beyond the ends of curves that run off downwards, and upwards."""
-        every = zip(self.names, self.curves.bend, self.curves.scale, strict=True)
         notable = NOTABLE * (added(np.abs(self.curves.scale)) + self.straight)
         none = np.zeros_like(self.value)
+        points = (one_off(name, none) for name in self.names)
+        each = map(Curve, self.curves.bend, self.curves.scale)
+        return beyond(zip(each, points, strict=True), notable, measurand)
 
-        def points() -> Iterator[tuple[Curve, Callable[[Array], Point]]]:
-            for name, bend, scale in every:
-                yield Curve(bend, scale), lambda score, name=name: Point(none, {name: score})
 
-        return beyond(points(), notable, measurand)
+def one_off(name: str, effect: Array) -> Callable[[Array], Point]:
+    """The way from the score of one input, which moves the intermediate by so much, to a point."""
+    return lambda score: Point(effect * score, {name: score})
 
 
 @np.errstate(all="ignore")
@@ -129,7 +130,7 @@ def noise_of(steps: Steps) -> Array:
 
 
 def beyond(
-    curves: Iterator[tuple[Curve, Callable[[Array], Point]]], notable: Array, measurand: Measurand
+    curves: Iterable[tuple[Curve, Callable[[Array], Point]]], notable: Array, measurand: Measurand
 ) -> tuple[Array, Array]:
     """Probability beyond the ends of curves that run off downwards, and upwards.
 

@@ -1,6 +1,6 @@
 """A sum of curves of inputs, some of which also move an intermediate with a curve of its own."""
 
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Self
 
@@ -20,6 +20,7 @@ from models.uncertainty.quantiles.sums import (
     beyond,
     inverse,
     noise_of,
+    one_off,
     stacked,
 )
 
@@ -68,17 +69,9 @@ class SumThrough:
         reach = self._reach()
         over = Curve(self.over.bend, self.over.scale * reach)
         size = added(np.abs(self.curves.scale)) + self.straight + np.abs(over.scale)
-
-        def points() -> Iterator[tuple[Curve, Callable[[Array], Point]]]:
-            every = zip(self.names, self.curves.bend, self.curves.scale, self.effects, strict=True)
-            for name, bend, scale, effect in every:
-                yield (
-                    Curve(bend, scale),
-                    lambda score, name=name, effect=effect: Point(effect * score, {name: score}),
-                )
-            yield over, lambda score: Point(score * reach, {})
-
-        return beyond(points(), NOTABLE * size, measurand)
+        points = (*map(one_off, self.names, self.effects), lambda score: Point(score * reach, {}))
+        each = (*map(Curve, self.curves.bend, self.curves.scale), over)
+        return beyond(zip(each, points, strict=True), NOTABLE * size, measurand)
 
     def _reach(self) -> Array:
         """Of the intermediate, on the side on which its curve ends."""
