@@ -108,16 +108,24 @@ def _tails(values: Array, number: int, spare: int) -> tuple[Array, Array]:
     return low, np.sort(rest[:, number - 2 * spare : number - spare], axis=1)
 
 
+def count_of(values: Array) -> Counts:
+    """How many of each row, shape (n, m), are numbers."""
+    if np.isfinite(values.sum(axis=1)).all():  # takes half as long as to look at each
+        return np.full(values.shape[0], values.shape[1], dtype=np.intp)
+    return np.asarray(np.isfinite(values).sum(axis=1), dtype=np.intp)
+
+
 def moments_of(values: Array, count: Counts) -> tuple[Array, Array]:
     """Mean and standard deviation of each row, shape (n, m), over what are numbers."""
-    known = np.isfinite(values)
-    all_known = bool((count == values.shape[1]).all())
     number = np.maximum(column(count), 1.0)
-    filled = values if all_known else np.where(known, values, 0.0)
-    mean = filled.sum(axis=1) / number
-    away = values - mean[:, None]
-    away = away if all_known else np.where(known, away, 0.0)
-    variance = np.square(away).sum(axis=1) / np.maximum(number - 1.0, 1.0)
+    if (count == values.shape[1]).all():
+        mean = values.sum(axis=1) / number
+        away = values - mean[:, None]
+    else:
+        known = np.isfinite(values)
+        mean = np.where(known, values, 0.0).sum(axis=1) / number
+        away = np.where(known, values - mean[:, None], 0.0)
+    variance = np.square(away, out=away).sum(axis=1) / np.maximum(number - 1.0, 1.0)
     return np.where(count > 0, mean, np.nan), np.where(count > 1, np.sqrt(variance), np.nan)
 
 

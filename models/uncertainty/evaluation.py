@@ -65,5 +65,7 @@ def values_of(
 def _numbers(*chunks: Array) -> Array:
     """All draws of one output, NaN for what is no number."""
     values = chunks[0] if len(chunks) == 1 else np.concatenate(chunks, axis=1)
+    if np.isfinite(values.sum()):  # takes half as long as to look at each
+        return values
     known = np.isfinite(values)
     return values if known.all() else np.where(known, values, np.nan)

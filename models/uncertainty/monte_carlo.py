@@ -19,6 +19,7 @@ from models.uncertainty.draws import (
     Counts,
     Draws,
     Interval,
+    count_of,
     interval_of,
     moments_of,
     numerical_tolerance,
@@ -169,7 +170,7 @@ class _Run:
         if len(self._figures) < 2:
             return np.zeros(self.going.size, dtype=bool)
         values = np.concatenate(self._batches, axis=1)
-        u = moments_of(values, np.isfinite(values).sum(axis=1))[1]
+        u = moments_of(values, count_of(values))[1]
         spread = column(np.std(self._figures, axis=0, ddof=1)) / np.sqrt(len(self._figures))
         return (2.0 * spread.max(axis=0) < numerical_tolerance(u, digits)) | ~(u > 0)
 
@@ -190,7 +191,7 @@ class _Run:
 
 
 def _summary(values: Array, probability: float, interval: Interval) -> Simulated:
-    count = np.isfinite(values).sum(axis=1)
+    count = count_of(values)
     value, u = moments_of(values, count)
     lower, upper = interval_of(values, count, probability=probability, kind=interval)
     made = np.full(count.shape, values.shape[1], dtype=np.intp)
