@@ -15,8 +15,8 @@ from models.readings import Readings, read
 from service.answers.effort import refuse_effort
 from service.errors import Unprocessable
 from service.faults import Fault
-from service.formats.json_estimates import encode, encode_members, laid_out, tabulate
-from service.formats.json_readings import JsonReadings, decode
+from service.formats.json.estimates import encode, encode_members, laid_out, tabulate
+from service.formats.json.readings import JsonReadings, decode
 from service.formats.raw_records import TakenIn, take_in
 from service.negotiate import VARY
 from service.schemas.echo import echo_of, headers_of, units_of_answer

@@ -8,7 +8,7 @@ import orjson
 
 from service.answers.prepared import Prepared, prepared
 from service.answers.together import Rows
-from service.formats.json_readings import NUMBER_TYPES, NUMBERS, TEXT_TYPES, TEXTS
+from service.formats.json.readings import NUMBER_TYPES, NUMBERS, TEXT_TYPES, TEXTS
 
 FEW = 64
 """Readings up to which a request is a small one."""

@@ -8,8 +8,8 @@ import orjson
 
 from models.advisories import Advice
 from models.estimate import Basis, columns_of
-from service.formats.json_estimates import PASSED
-from service.formats.json_readings import TEXTS
+from service.formats.json.estimates import PASSED
+from service.formats.json.readings import TEXTS
 from service.schemas.echo import echo_of, units_of_answer
 from service.schemas.estimates import EstimatesSettings
 from service.schemas.query import basis_of, settings_of

@@ -18,8 +18,8 @@ from models.estimate import Estimates, Remarks, estimate
 from models.readings import read
 from models.relation import Array
 from service.answers.prepared import Prepared
-from service.formats.json_estimates import laid_out, rows_of, with_rest
-from service.formats.json_readings import JsonReadings
+from service.formats.json.estimates import laid_out, rows_of, with_rest
+from service.formats.json.readings import JsonReadings
 
 MOST_ROWS = 512
 """Readings that are worked out at a time, so that others have their turn."""

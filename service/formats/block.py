@@ -191,7 +191,7 @@ def _whole(header: Header) -> str:
     return (
         f"{count} cell{'s' if count != 1 else ''}, as many as the header has"
         if (header.form == "csv")
-        else "a JSON object"
+        else "a JSON object with each key once"
     )
 
 

@@ -21,7 +21,7 @@ from service.formats.cells import json_text, numbers_as_text
 from service.formats.errors import FormatError, HeaderError, shown
 from service.formats.flag_text import flags_as_json
 from service.formats.header import FLAGS, folded, recognised
-from service.formats.json_lines import (
+from service.formats.json.lines import (
     Row,
     first_rows,
     keys_of,

@@ -21,7 +21,7 @@ from service.page.chart_lines import Look, draw_band, draw_flagged, draw_line, l
 from service.page.chart_rows import Drawn, Line, Panel, drawn, lines_by_depth
 from service.page.svg import MEDIA_TYPE, Drawing
 from service.page.time_axis import Tick, date, time_ticks
-from service.series_edges import FIRST, LAST
+from service.stations.series_edges import FIRST, LAST
 
 __all__ = ["MEDIA_TYPE", "Change", "Line", "Panel", "lines_by_depth", "time_chart"]
 

@@ -10,7 +10,7 @@ import polars as pl
 
 from models.series import Bounds, resample, series
 from service.page.chart import Line, Panel, time_chart
-from service.series_edges import bin_edges
+from service.stations.series_edges import bin_edges
 from tests.benchmarks.interleaved import medians, quiet, report
 
 ROWS, STEP, START = 105_120, 300.0, 1_767_225_600.0

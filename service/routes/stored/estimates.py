@@ -10,11 +10,11 @@ from service.page.chart import MEDIA_TYPE as SVG
 from service.routes.etag import tagged
 from service.routes.stored.documents import Name
 from service.routes.stored.paging import answered
-from service.series_edges import EVERY
 from service.stations.ask.asked import asked_of
 from service.stations.ask.charting import chart_of
 from service.stations.ask.questions import estimates_page, profile_page, scene_of
 from service.stations.ask.resampled import resampled_page
+from service.stations.series_edges import EVERY
 
 router = APIRouter(prefix="/v1/stations/{name}", tags=["stations"])
 

@@ -15,8 +15,8 @@ from service.errors import Malformed, Unprocessable
 from service.faults import Fault, hint, nearest, shown
 from service.schemas.batch_query import PLACES, document_of
 from service.schemas.estimates import ESTIMATED
-from service.series_edges import zone_of
 from service.stations.ingest.arrival import converter
+from service.stations.series_edges import zone_of
 from service.stations.times import SECOND, TimeError, microseconds
 from service.store.interface import place_at
 

@@ -12,13 +12,13 @@ from service.faults import Fault, hint
 from service.page.chart import Change, Line, Panel, lines_by_depth, time_chart
 from service.page.chart_lanes import shortened
 from service.schemas.estimates import ESTIMATED
-from service.series_edges import zone_of
 from service.stations.ask.asked import Asked, now
 from service.stations.ask.estimating import Estimated, estimated
 from service.stations.ask.joining import series_of
 from service.stations.ask.questions import Scene, readings_between
 from service.stations.ask.resampled import GAP_STEPS, MOST_READINGS
 from service.stations.ask.stored import Stored
+from service.stations.series_edges import zone_of
 from service.stations.times import SECOND
 from service.store.interface import Span
 

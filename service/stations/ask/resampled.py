@@ -11,13 +11,13 @@ from models.flags import Flags
 from models.relation import Array
 from models.series import COVERAGE_RULE, MEAN_RULES, Bins, resample, series, usual_step
 from service.schemas.estimates import ESTIMATED
-from service.series_edges import EVERY, bin_edges, zone_of
 from service.stations.ask.answers import frame_of, numbers, slugs
 from service.stations.ask.asked import Asked, cursor_of
 from service.stations.ask.estimating import Estimated, estimated
 from service.stations.ask.joining import probe_names, series_of
 from service.stations.ask.questions import Page, Scene, readings_between, rest_of
 from service.stations.ask.stored import Stored
+from service.stations.series_edges import EVERY, bin_edges, zone_of
 from service.stations.times import SECOND, rfc3339, text_of
 
 _NUMBER, _START = "#series", "#start"

@@ -14,8 +14,8 @@ from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from service.errors import Unprocessable
 from service.faults import Fault, shown
-from service.series_edges import FIRST, LAST
 from service.stations.ingest.arrival import Broken, Rules, converter, likely
+from service.stations.series_edges import FIRST, LAST
 from service.stations.times import SECOND, rfc3339
 from service.store.interface import VALUES
 

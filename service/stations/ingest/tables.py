@@ -18,8 +18,8 @@ from service.store.interface import RAW, VALUES, place_at
 
 _NOT_TAKEN_APART = (
     "the row does not have the cells of the table",
-    "expected a JSON object on the line, without NaN or Infinity: send null where there is no "
-    "number",
+    "expected a JSON object on the line, each key once, without NaN or Infinity: send null where "
+    "there is no number",
 )
 """By whether the table is NDJSON."""
 

@@ -88,7 +88,7 @@ def test_rows_of_typed_columns_have_no_lines(server):
 def test_ndjson_is_told_of_objects_and_keys(server):
     lines = b'{"apparent_permittivity":17}\nnot json\n'
     assert told(server, lines, MEDIA_TYPES["ndjson"], "?strict=true") == (
-        "line 2 (row 2): expected a JSON object, found 'not json'"
+        "line 2 (row 2): expected a JSON object with each key once, found 'not json'"
     )
     detail = told(server, b'{"permittivity":17}\n', MEDIA_TYPES["ndjson"])
     assert "expected a key apparent_permittivity" in detail

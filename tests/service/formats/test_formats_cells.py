@@ -19,7 +19,7 @@ from service.formats.cells import (
     numbers_in,
 )
 from service.formats.flag_text import flags_as_csv, flags_as_json
-from service.formats.json_lines import numbers_of, rows_of
+from service.formats.json.lines import numbers_of, rows_of
 
 NUMBER = re.compile(r"[+-]?([0-9]+\.?[0-9]*|\.[0-9]+)([eE][+-]?[0-9]+)?")
 
@@ -154,8 +154,23 @@ def test_a_long_flat_line_is_no_deep_one():
     assert not broken.any()
 
 
-def test_of_two_equal_keys_the_last_counts():
-    assert rows_of([b'{"a":1,"a":2}'])[0] == [{"a": 2}]
+@pytest.mark.parametrize("line", [
+    b'{"a":1,"a":2}', b'{"a" : 1, "a" : 1}', b'{"a":1,"b":{"c":1,"c":2}}', b'{"a":1,"\\u0061":2}',
+])  # fmt: skip
+def test_an_object_that_says_a_key_twice_is_none(line):
+    """RFC 8259, 4: names should be unique; else what is read is the reader's own affair."""
+    rows, broken = rows_of([b'{"a":3}', line])
+    assert rows == [{"a": 3}, {}]
+    assert broken.tolist() == [False, True]
+
+
+@pytest.mark.parametrize("line", [
+    b'{"a":"\\":","b":1}', b'{"a" : 1, "b" : {"a" : 2}}', b'{"a":[{"b":1},{"b":2}]}',
+])  # fmt: skip
+def test_what_only_looks_like_a_key_twice_stays(line):
+    rows, broken = rows_of([line, b'{"a":1}'])
+    assert rows == [json.loads(line), {"a": 1}]
+    assert not broken.any()
 
 
 def test_flags_are_spelt_in_order():

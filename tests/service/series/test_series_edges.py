@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from models.errors import ParameterError
-from service.series_edges import EVERY, bin_edges, zone_of
+from service.stations.series_edges import EVERY, bin_edges, zone_of
 
 HOUR = 3600.0
 

@@ -14,7 +14,7 @@ from models.estimate import Estimates
 from models.flags import Flags
 from models.relation import Array
 from service.formats.flag_text import combinations
-from service.formats.json_readings import JsonReadings
+from service.formats.json.readings import JsonReadings
 
 PASSED = ("time", "depth")
 """What of a reading an estimate repeats, so that it can be told whose it is."""

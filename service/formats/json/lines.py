@@ -15,6 +15,7 @@ import orjson
 
 from models.relation import Array
 from service.formats.cells import MISSING, Marks
+from service.formats.json.keys_twice import lines_with_keys_twice
 
 Row = Mapping[str, Any]
 NOTHING: Row = {}
@@ -33,19 +34,24 @@ def rows_of(lines: Sequence[bytes]) -> tuple[list[Row], Marks]:
     """The objects on some lines, and which lines hold none; their row is empty.
 
     NaN and Infinity are not JSON (RFC 8259, section 6), so a line with one holds no object. A
-    number too large for a double is JSON and stays, as it was written. Of two equal keys the
-    last one counts.
+    number too large for a double is JSON and stays, as it was written. An object that says a key
+    twice is none, for which value is meant cannot be known.
     """
     try:
         found = list(map(orjson.loads, lines))
     except orjson.JSONDecodeError:
         found = [_parsed(line) for line in lines]
     if set(map(type, found)) <= {dict} and not _may_be_deep(b"".join(lines), len(lines)):
-        return found, np.zeros(len(found), dtype=np.bool_)
-    rows = [
-        row if isinstance(row, dict) and not (_may_be_deep(line, 1) and _is_deep(row)) else NOTHING
-        for line, row in zip(lines, found, strict=True)
-    ]
+        rows = found
+    else:
+        rows = [
+            row
+            if isinstance(row, dict) and not (_may_be_deep(line, 1) and _is_deep(row))
+            else NOTHING
+            for line, row in zip(lines, found, strict=True)
+        ]
+    for place in lines_with_keys_twice(lines, rows):
+        rows[place] = NOTHING
     return rows, np.array([row is NOTHING for row in rows], dtype=np.bool_)
 
 

@@ -1,0 +1,1 @@
+"""JSON documents and lines: what they hold, and what is answered."""
