@@ -6,7 +6,7 @@ from numpy.testing import assert_allclose
 
 from models.conductivity import TEMPERATURE_COMPENSATIONS
 from models.conductivity.loss import conduction_loss
-from models.estimate import Query, SalinityQuery, estimate, prepare
+from models.estimate import Query, SalinityQuery, estimate, narrowed, prepare
 from models.flags import slugs_of
 from models.mixing.apparent import to_apparent
 from models.mixing.joint import to_complex_permittivity
@@ -275,3 +275,20 @@ def test_errors_that_water_and_salt_share_are_added_before_they_are_squared():
     assert found["pore_water_conductivity_u"] / found["pore_water_conductivity"] == pytest.approx(
         2.0 * relative, rel=0.01
     )
+
+
+@pytest.mark.parametrize("asked", [
+    ("water_content",), ("pore_water_conductivity_lower", "water_content"),
+    ("saturation_extract_conductivity", "bulk_conductivity_25_u"),
+])  # fmt: skip
+def test_what_is_not_asked_for_changes_nothing_of_the_rest(asked):
+    basis = basis_for("rhoades-1989", 1e9, apparent_permittivity_u=0.3, temperature_u=0.5)
+    rng = np.random.default_rng(5)
+    readings = read(
+        {"apparent_permittivity": rng.uniform(4, 40, 200), "temperature": rng.uniform(2, 35, 200),
+         "bulk_conductivity": rng.uniform(0.05, 3, 200)}, {}, {},
+    )  # fmt: skip
+    whole, part = estimate(readings, basis), estimate(readings, narrowed(basis, asked))
+    assert part.columns.keys() >= set(asked)
+    for name, values in part.columns.items():
+        np.testing.assert_array_equal(values, whole.columns[name], err_msg=name)
