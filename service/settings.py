@@ -76,7 +76,7 @@ class Settings(BaseSettings):
         default=MIB, ge=1024, description="longest line of a CSV or NDJSON body"
     )
     block_bytes: int = Field(
-        default=768 * 1024, ge=1024, description="part of a body that is computed at once"
+        default=MIB, ge=1024, description="part of a body that is computed at once"
     )
     body_stall_seconds: float = Field(
         default=30.0, gt=0, description="longest pause while a body arrives; then 408"

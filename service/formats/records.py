@@ -15,8 +15,8 @@ from numpy.typing import NDArray
 
 from service.formats.errors import MAGIC, FormatError, RecordTooLong, looks_like
 
-BLOCK_BYTES = 768 << 10
-"""Some fifteen thousand rows of a logger: one block of the estimates."""
+BLOCK_BYTES = 1 << 20
+"""Some twenty thousand rows of a logger: one block of the estimates."""
 LINE_BYTES = 1 << 20
 FIRST_BYTES = 64 << 10
 """The records that begin in so many bytes decide what is read of a table, whatever the block."""
