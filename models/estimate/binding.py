@@ -4,6 +4,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import Any, Protocol
 
+import numpy as np
+
 from models.errors import Complaint, ParameterError
 from models.relation import Parameter, Relation
 from models.soil.description import Soil
@@ -13,6 +15,8 @@ SUPPLIED = frozenset({
     "temperature",
 })  # fmt: skip
 """Parameters worked out for each reading."""
+SPELT = 1e-8
+"""Relative difference that spelling a number in an answer may make."""
 MENDS: Mapping[str, str] = {
     "porosity": "soil.porosity, soil.bulk_density or soil.texture",
     "bulk_density": "soil.bulk_density, soil.porosity or soil.texture",
@@ -105,20 +109,44 @@ def _settle(
 ) -> bool:
     """Settle one parameter; whether it is settled, or need not be."""
     name = parameter.name
+    otherwise = _otherwise(parameter, soil, estimates)
     if name in given:
-        bound.take(name, given[name], given.get(f"{name}_u", 0.0), "given")
-    elif name in soil.values:
-        bound.take(name, soil.values[name], soil.uncertainties[name], soil.origins[name])
-    elif _supplied(parameter) or parameter.optional:
-        return True
-    elif name in estimates:
-        found = estimates[name]
-        bound.take(name, found.value, found.standard_uncertainty, found.origin)
-    elif parameter.default is not None:
-        bound.take(name, parameter.default, parameter.default_u, "default of the model")
+        told = (given[name], given.get(f"{name}_u", 0.0), "given")
+        bound.take(name, *(otherwise if otherwise and _same(told, otherwise) else told))
+    elif otherwise is not None:
+        bound.take(name, *otherwise)
     else:
-        return False
+        return _supplied(parameter) or parameter.optional
     return True
+
+
+Known = tuple[Any, float, str]
+"""Value, standard uncertainty and origin."""
+
+
+def _otherwise(
+    parameter: Parameter, soil: Soil, estimates: Mapping[str, Estimated]
+) -> Known | None:
+    """What holds where the caller says nothing of it."""
+    name = parameter.name
+    if name in soil.values:
+        return soil.values[name], soil.uncertainties[name], soil.origins[name]
+    if _supplied(parameter) or parameter.optional:
+        return None
+    if name in estimates:
+        found = estimates[name]
+        return found.value, found.standard_uncertainty, found.origin
+    if parameter.default is not None:
+        return parameter.default, parameter.default_u, "default of the model"
+    return None
+
+
+def _same(told: Known, otherwise: Known) -> bool:
+    """Whether a caller says no more than what holds anyway, as when an answer is sent back."""
+    (value, u, _), (other, other_u, _) = told, otherwise
+    if isinstance(value, str) or isinstance(other, str):
+        return bool(value == other)
+    return bool(np.isclose(value, other, SPELT, 0.0) and np.isclose(u, other_u, SPELT, 0.0))
 
 
 def _missing(relation: Relation, parameter: Parameter, section: str) -> Complaint:

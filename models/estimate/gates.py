@@ -43,6 +43,8 @@ def flag_inputs(
         _set(flags, lacking & ~_spoiled(flags), "no-permittivity")
     if found.uncorrected is not None:
         _set(flags, np.isnan(found.value) & ~lacking, "too-lossy")
+    if basis.model.conducting and found.loss is not None:
+        _set(flags, found.loss > 2.0 * found.value, "too-lossy")
     if "loss" in basis.takes:
         lossless = np.ones(flags.shape, bool) if found.loss is None else np.isnan(found.loss)
         _set(flags, lossless & ~lacking, "loss-missing")
@@ -78,6 +80,9 @@ def flag_results(
         _set(flags, curved, "band-from-curvature")
     if content.correction is not None:
         _set(flags, content.correction > CORRECTED, "lossy")
+    if content.untaken is not None:
+        less = (content.untaken > CORRECTED) & ((flags & BIT["too-lossy"]) == 0)
+        _set(flags, less, "conduction-not-corrected")
     if content.leans_for_clay is not None:
         _set(flags, np.broadcast_to(content.leans_for_clay, flags.shape), "low-frequency")
     _flag_ranges(computed, found, around, basis, flags)
@@ -199,7 +204,6 @@ _SPOILING = np.bitwise_or.reduce(
             "unreadable",
             "out-of-gate",
             "unreadable-row",
-            "outside-water-range",
             "loss-missing",
             "no-end-reflection",
         }

@@ -42,7 +42,9 @@ class WaterContent:
     """The part of the standard uncertainty that all readings of this soil and probe share."""
     interval: Interval
     correction: Array | None
-    """By how much correcting for loss lowered the value."""
+    """By how much correcting for loss lowered the value;"""
+    untaken: Array | None
+    """by how much it would have, where the model holds the conduction of its own soils."""
     ceiling: float
     """Porosity, or 1 where it is not known."""
     ceiling_u: float
@@ -98,8 +100,10 @@ def water_content_of(
         correction = equation(**moved) - computed
         own = np.sqrt(np.square(own) + np.square(UNEXPLAINED_CORRECTION * correction))
     unseen = _unseen_conduction(readings, basis, found, equation, computed)
-    if unseen is not None:
-        lean = unseen if lean is None else np.sqrt(np.square(lean) + np.square(unseen))
+    untaken = _untaken_conduction(basis, found, equation, computed)
+    for known in (unseen, None if untaken is None else UNEXPLAINED_CORRECTION * untaken):
+        if known is not None and basis.query.standard_error is None:
+            lean = known if lean is None else np.sqrt(np.square(lean) + np.square(known))
     shared = first.shared + np.square(own)
     variance = first.per_reading + shared
     plain = Spread.of(variance, lean)
@@ -122,6 +126,7 @@ def water_content_of(
         shared=spread.standard_uncertainty * np.sqrt(np.clip(common, 0.0, 1.0)),
         interval=interval,
         correction=correction,
+        untaken=untaken,
         ceiling=ceiling,
         ceiling_u=ceiling_u,
         leans_for_clay=_leans_for_clay(basis, around.known_frequency),
@@ -142,9 +147,25 @@ def _unseen_conduction(
     The correction at the lowest frequency of TDR; None where there is no such row.
     """
     bulk = _uncorrected(readings, basis, found)
-    if bulk is None or basis.query.standard_error is not None or not np.any(bulk > 0.0):
+    if bulk is None or not np.any(bulk > 0.0):
         return None
-    loss = conduction_loss(np.nan_to_num(bulk), TDR_LOWEST)
+    return _lowered(conduction_loss(np.nan_to_num(bulk), TDR_LOWEST), found, equation, computed)
+
+
+def _untaken_conduction(
+    basis: Basis, found: Permittivity, equation: Equation, computed: Array
+) -> Array | None:
+    """How much wetter a row reads for all of its loss, where the model makes no correction.
+
+    The soils it was made from conducted as well: how much of it the model holds is not known.
+    """
+    if not basis.model.conducting or found.loss is None:
+        return None
+    return _lowered(np.nan_to_num(found.loss), found, equation, computed)
+
+
+def _lowered(loss: Array, found: Permittivity, equation: Equation, computed: Array) -> Array:
+    """By how much less water there would be without that loss."""
     slowest = np.maximum(np.nan_to_num(to_real(found.value, loss)), 1.0)
     off = computed - equation(**equation.at | {"permittivity": slowest})
     return np.maximum(np.nan_to_num(off), 0.0)

@@ -86,11 +86,12 @@ def spread_of(
     total, shared = (np.asarray(each) for each in effects.uncertainties())
     shift, calm = _shift(stepped, through, content, total, asked)
     reach = coverage_factor(asked.probability) * total
-    lower, upper = stepped.value + shift - reach, stepped.value + shift + reach
+    lower = np.minimum(stepped.value + shift - reach, stepped.value)
+    upper = np.maximum(stepped.value + shift + reach, stepped.value)
     method = np.zeros(lower.shape, dtype=np.uint8)
     known = np.isfinite(stepped.value) & np.isfinite(content.standard_uncertainty)
     rows = np.flatnonzero(known & ~calm)
-    plain = Spread(lower, upper, total, shared, method)
+    plain, first = Spread(lower, upper, total, shared, method), (lower.copy(), upper.copy())
     if asked.draws is not None:
         rows = np.flatnonzero(known)
         drawn = _simulated(chain().sided(effects).rows(rows), asked.draws, asked.probability)
@@ -103,8 +104,7 @@ def spread_of(
     hard = rows[np.isnan(lower[rows])]
     if not hard.size:
         return plain
-    lower[hard] = (stepped.value + shift - reach)[hard]  # should hardly any draw have an answer
-    upper[hard] = (stepped.value + shift + reach)[hard]
+    lower[hard], upper[hard] = first[0][hard], first[1][hard]  # should hardly any draw answer
     few = Draws(max(FEWEST, int(np.ceil(OUTSIDE / (1.0 - asked.probability)))))
     drawn = _simulated(chain().sided(effects).rows(hard), few, asked.probability)
     found = _put(plain, hard, stepped.value, drawn)

@@ -23,7 +23,7 @@ from models.estimate.water_content import most_water
 from models.quantity import band_names
 from models.relation import Array
 from models.salinity.saturation_extract import to_extract
-from models.uncertainty.coverage import shortest_interval
+from models.uncertainty.coverage import coverage_factor, shortest_interval
 from models.uncertainty.first_order import Input
 
 Columns = dict[str, Array]
@@ -63,7 +63,7 @@ def conductivities_of(
     stepped = Stepped.of(pore, value, own)
     spread = spread_of(stepped, through, content, lambda: chain({}), asked)
     columns = _bulk_at_25(pore, asked.probability) if pore.salinity.tells_bulk else {}
-    columns |= _factor(PORE, value, spread)
+    columns |= _factor(PORE, value, spread, asked)
     paste = _paste(pore)
     if not paste:
         return Conductivities(columns, spread, None)
@@ -71,7 +71,7 @@ def conductivities_of(
     extract = to_extract(value, water_content=content.computed, **known)
     stepped = stepped.of_extract(pore, extract, paste)
     of_extract = spread_of(stepped, through, content, lambda: chain(paste), asked)
-    columns |= _factor(EXTRACT, extract, of_extract)
+    columns |= _factor(EXTRACT, extract, of_extract, asked)
     return Conductivities(columns, spread, of_extract)
 
 
@@ -103,11 +103,28 @@ def _bulk_at_25(pore: PoreWater, probability: float) -> Columns:
 
 
 @np.errstate(all="ignore")
-def _factor(name: str, value: Array, spread: Spread) -> Columns:
+def _factor(name: str, value: Array, spread: Spread, asked: Asked) -> Columns:
     """Value, standard uncertainty and ends; the second is the value's share times the value."""
     known, upper = np.where(value > 0, value, np.nan), np.exp(spread.upper)
     upper = np.where(upper > np.maximum(BRINE, known), np.nan, upper)
+    fitting = (
+        np.ones_like(known) if asked.draws is not None else _fitting(known, upper, spread, asked)
+    )
+    u = known * fitting
     return {
-        name: known, f"{name}_u": known * spread.total, f"{name}_u_shared": known * spread.shared,
+        name: known, f"{name}_u": u * spread.total, f"{name}_u_shared": u * spread.shared,
         f"{name}_lower": np.exp(spread.lower), f"{name}_upper": upper,
     }  # fmt: skip
+
+
+def _fitting(known: Array, upper: Array, spread: Spread, asked: Asked) -> Array:
+    """What makes the uncertainty of first order that of the interval; NaN where that has no end.
+
+    Near a conductivity that has no answer first order is steep beyond all measure. Half of the
+    interval, or the part of it that has an end, is what k standard uncertainties are.
+    """
+    below, above = np.log(known) - spread.lower, np.log(upper / known)
+    below = np.where(np.isinf(below), np.nan, below)
+    half = np.where(np.isnan(above), below, np.where(np.isnan(below), above, 0.5 * (below + above)))
+    told = coverage_factor(asked.probability) * spread.total
+    return np.where(told > 0, half / told, 1.0)

@@ -25,7 +25,7 @@ from models.uncertainty.quantiles.intermediate import Intermediate
 from models.uncertainty.quantiles.sums import Measurand, Sum
 from models.uncertainty.quantiles.through import SumThrough
 
-APART = 0.3
+APART = 0.2
 """In half-widths, of measurand and sum of curves at an end: beyond, the row is not settled."""
 
 
@@ -78,5 +78,5 @@ def ends(
     half = np.minimum(0.5 * (upper - lower), np.maximum(value - lower, upper - value))
     half = np.where(np.isinf(half), np.minimum(value - lower, upper - value), half)
     off = np.maximum(np.abs(off_below), np.abs(off_above))
-    settled = sums.sound & (off <= within * half) & (lower <= upper)
+    settled = sums.sound & (off <= within * half) & (lower <= value) & (value <= upper)
     return Ends(np.where(settled, lower, np.nan), np.where(settled, upper, np.nan), settled)

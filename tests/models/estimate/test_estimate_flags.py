@@ -277,3 +277,35 @@ def test_every_flag_can_be_carried_and_every_advisory_filled_in():
     for advisory in ADVISORIES.values():
         filled = advisory.text.format(**dict.fromkeys(advisory.places, "x"))
         assert "{" not in filled.replace('{"x": "x"}', "")
+
+
+def test_a_model_that_holds_conduction_says_that_it_corrects_for_none():
+    """At 70 MHz 0.1 S/m are a loss of 26, which leaves an eps' of 7 of a Ka of 17.2."""
+    loam, probe = describe("loam", {}, {}), {"frequency": 70e6}
+    calm, little = told("mironov-2009", soil=loam, probe=probe, apparent_permittivity=17.2,
+                        temperature=20.0, bulk_conductivity=0.0)  # fmt: skip
+    told_so, found = told("mironov-2009", soil=loam, probe=probe, apparent_permittivity=17.2,
+                          temperature=20.0, bulk_conductivity=1.0)  # fmt: skip
+    assert "conduction-not-corrected" in told_so - calm
+    assert found["water_content"] == little["water_content"]
+    assert found["water_content_lower"] < little["water_content_lower"] - 0.005
+
+
+@pytest.mark.parametrize("key", ["mironov-2009", "crim", "topp-1980"])
+def test_no_permittivity_is_left_below_half_of_the_loss(key):
+    """Ka = (|eps| + eps') / 2 is never below eps'' / 2: here eps'' is 103 at 4 dS/m."""
+    flags, found = told(
+        key, soil=describe("loam", {}, {}), probe={"frequency": 70e6},
+        apparent_permittivity=17.2, temperature=20.0, bulk_conductivity=4.0,
+    )  # fmt: skip
+    assert "too-lossy" in flags
+    assert np.isnan(found["water_content"])
+
+
+def test_a_temperature_outside_the_water_model_explains_no_missing_number():
+    soil = describe("loam", {"bulk_density": 2300.0}, {"bulk_density": 100.0})
+    for warmth in (40.0, 45.0):
+        flags, found = told("peplinski-1995", soil=soil, probe={"frequency": 7e8},
+                            apparent_permittivity=3.9, temperature=warmth)  # fmt: skip
+        assert np.isnan(found["water_content"])
+        assert "no-solution" in flags
