@@ -6,31 +6,15 @@ about: ``missing:temperature``.
 """
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
-from models.flagging import Bits, Flags, any_of
+from models.flagging import Bits, Flag, Flags, any_of
 from models.quantity import READING
 from models.registry import Registry
 
 __all__ = ["BIT", "FLAGS", "SLUGS", "Flag", "Flags", "slugs_of", "withheld", "without_pore_water"]
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Flag:
-    """One thing that can be said about a row."""
-
-    key: str
-    condition: str
-    text: str
-    reason: str
-    keeps_number: bool
-    """False: the row has no number because of it."""
-    keeps_pore_water: bool = True
-    """False: the row has no conductivity of pore water or extract because of it."""
-    names_quantity: bool = False
 
 
 FLAGS: Registry[Flag] = Registry(
@@ -54,7 +38,7 @@ FLAGS: Registry[Flag] = Registry(
          "model does not.",
          keeps_number=True, names_quantity=True),
     Flag(key="unreadable-row", condition="A CSV row has more or fewer cells than the header, or an "
-         "NDJSON line is not a JSON object.",
+         "NDJSON line is not a JSON object, or one that says a key twice.",
          text="The row cannot be taken apart into cells.",
          reason="Which cell belongs to which column would be a guess.", keeps_number=False),
     Flag(key="no-permittivity", condition="The row holds none of apparent_permittivity, "
@@ -90,6 +74,14 @@ FLAGS: Registry[Flag] = Registry(
          text="Conduction made the soil look wetter than it is; the correction is in the answer "
          "and half of it in the band.",
          reason="Ka = eps'/2 (1 + sqrt(1 + tan^2 delta)): loss raises Ka above eps'.",
+         keeps_number=True),
+    Flag(key="conduction-not-corrected", condition="The model holds the conduction of the soils it "
+         "was made from and takes no other; correcting for the loss of this reading would lower "
+         "the water content by more than 0.01 m3/m3.",
+         text="Nothing was corrected for the conduction of this reading; half of what it may come "
+         "to is in the lower end of the band.",
+         reason="How much of the loss such a model already holds is not known: of a soil that "
+         "conducts more than its own did it reads too much water.",
          keeps_number=True),
     Flag(key="loss-missing", condition="The model needs the loss of the soil, and the row holds "
          "neither imaginary_permittivity nor bulk_conductivity with a frequency.",
@@ -212,6 +204,11 @@ FLAGS: Registry[Flag] = Registry(
          text="There is nothing on record by which to estimate this reading.",
          reason="Installations say which soil a probe was in, and when; the advisories of the "
          "answer say what is lacking.", keeps_number=False),
+    Flag(key="raw-record-flagged", condition="The sweep or spectrum of the row carries flags of "
+         "its own where it was read.",
+         text="The raw record is doubtful: advisories, or remarks of raw_records, name its flags.",
+         reason="What is amiss with a sweep shows no more in the permittivity taken from it.",
+         keeps_number=True),
 )  # fmt: skip
 
 _NAMING = tuple(key for key, flag in FLAGS.items() if flag.names_quantity)
