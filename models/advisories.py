@@ -43,6 +43,10 @@ ADVISORIES: Registry[Advisory] = Registry(
              "soils may differ by more than the band."),
     Advisory(key="model-chosen", condition="No mixing model was named.",
              text="{model} was chosen: {why}"),
+    Advisory(key="all-without-salt",
+             condition="All mixing models were asked, of readings or with words that concern salt.",
+             text="All models side by side give the water content alone: name one mixing model for "
+             "the conductivities of bulk, pore water and extract."),
     Advisory(key="texture-defaults", condition="The texture class filled in soil properties.",
              text="{names} came from the texture class {texture}: a default, never a field "
              "value; a measured one narrows the band."),
@@ -107,9 +111,40 @@ ADVISORIES: Registry[Advisory] = Registry(
     Advisory(key="unlike-calibration", condition="The first reflection of a waveform is elsewhere "
              "than that of its calibration, of the other sign, after another level, or none.",
              text="{count} waveforms do not begin as their calibration does, whose first "
-             "reflection {way} at {time} ns of two-way time from a level of {level}, and have "
-             "no numbers: another cable or velocity factor, an axis in one-way time, reflections "
-             "upside down or on another scale, or no trace of this probe."),
+             "reflection {way} at {time} ns of two-way time from a level of {level} (the first of "
+             "them: {theirs}), and have no numbers: another cable or velocity factor, another unit "
+             "of the axis, one-way time, reflections upside down or on another scale, or no trace "
+             "of this probe."),
+    Advisory(key="no-steps", condition="A waveform that no calibration shows how to begin is level "
+             "over less than 35 % of its points or over all, or begins within its first "
+             "reflection.",
+             text="{count} waveforms hold no steps between levels that stand out from noise, or "
+             "begin amid their first reflection, and have no numbers: start the window before "
+             "the cable ends, and send what a step reflects, neither its slope nor a swept sine."),
+    Advisory(key="level-suspected", condition="The trace in air ends far from +1, or the level "
+             "before the first reflection is not that of the cable on its instrument.",
+             text="Levels are not those of reflection coefficients: {found}. Volts or counts "
+             "belong into level, with level_matched and level_open; another cable into "
+             "probe.cable.impedance. Conductivities follow these levels."),
+    Advisory(key="axis-unit-suspected", condition="A waveform on an axis in m rises more slowly "
+             "than steps do and shows no end of the rods, and shows one if its axis is in ns.",
+             text="Read on an axis in ns, {count} waveforms without a number show the end of the "
+             'rods: were they sent in ns? Then name it: "axis_unit": "ns".'),
+    Advisory(key="waveform-clipped", condition="Many points of a waveform lie exactly at its "
+             "highest or lowest level.",
+             text="{count} waveforms lie exactly at their highest or lowest level over many "
+             "points: cut off at the end of the instrument's range? Times and levels read from "
+             "them are off by more than their bands say."),
+    Advisory(key="long-record-contradicted", condition="The conductivities that a waveform and its "
+             "long record tell are five standard uncertainties and 25 % apart.",
+             text="The long records of {count} waveforms tell another conductivity than the "
+             "waveforms themselves: of another medium, or on another scale? That of the long "
+             "record was used."),
+    Advisory(key="probe-constant-contradicted", condition="The probe constant as stated, or by the "
+             "impedance of the rods, is not within 10 % of what traces in air and in water tell.",
+             text="The probe was described with a probe constant of {stated} 1/m; the traces in "
+             "air and in water tell {shown} 1/m, rods of {impedance} Ohm. {used}: check "
+             "probe_impedance, rods or probe_constant."),
     Advisory(key="calibration-misfit", condition="The line that explains the calibration traces "
              "best leaves a reduced chi-square above 25.",
              text="No line explains the traces in air, in water and shorted together: the best "
@@ -132,6 +167,15 @@ ADVISORIES: Registry[Advisory] = Registry(
              "ports is not 1, and its two sides are alike.",
              text="Check sample_length before calling the sample magnetic: with {length} m the "
              "permeability would be 1, {own} m was given."),
+    Advisory(key="renormalised", condition="A Touchstone file refers to another impedance than the "
+             "empty line, or before a tip than the other files.",
+             text="Touchstone files that refer to {others} Ohm (R or [Reference]), {count} in all, "
+             "were brought to {impedance} Ohm: that of the empty line (line.impedance), or before "
+             "a tip that of the first file. Where a file is wrong about it, change R in it."),
+    Advisory(key="phase-unit-suspected", condition="A sweep or spectrum of eight points or more "
+             "came as magnitude and degrees, and no phase leaves -pi to pi.",
+             text="No phase leaves -3.1416 to 3.1416 ({largest} at most): were these "
+             "radians? Then send degrees (radians times 57.29578), or real and imaginary parts."),
     Advisory(key="aperture-not-told", condition="A tip was calibrated with three standards.",
              text="Three standards cannot tell the aperture: the {model} model was taken at its "
              "word{share}. A fourth standard, such as methanol or ethanol at a known temperature, "

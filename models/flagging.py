@@ -1,12 +1,28 @@
-"""What can be said of a row as bits: a column of uint64, one bit a slug."""
+"""What can be said of a row: a flag, and its slug as one bit of a column of uint64."""
 
 from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass
 from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import NDArray
 
 Flags = NDArray[np.uint64]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Flag:
+    """One thing that can be said about a row."""
+
+    key: str
+    condition: str
+    text: str
+    reason: str
+    keeps_number: bool
+    """False: the row has no number because of it."""
+    keeps_pore_water: bool = True
+    """False: the row has no conductivity of pore water or extract because of it."""
+    names_quantity: bool = False
 
 
 class Bits:

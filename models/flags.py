@@ -96,6 +96,10 @@ FLAGS: Registry[Flag] = Registry(
     Flag(key="no-solution", condition="The model has no water content for this permittivity.",
          text="The equation has no answer here.",
          reason="The permittivity is outside the domain of the equation.", keeps_number=False),
+    Flag(key="no-model-in-range", condition="All models were asked, and none whose declared range "
+         "and soil hold this reading answers it.",
+         text="No model that holds here answers: each is shown by itself, and none has weight.",
+         reason="Each model's own flags say what it lacks or where it ends.", keeps_number=False),
     Flag(key="drier-than-dry", condition="The equation alone gives less than zero, by no more "
          "than the band explains.",
          text="Cannot be told from dry: the most probable value is 0.",
@@ -204,10 +208,9 @@ FLAGS: Registry[Flag] = Registry(
          text="There is nothing on record by which to estimate this reading.",
          reason="Installations say which soil a probe was in, and when; the advisories of the "
          "answer say what is lacking.", keeps_number=False),
-    Flag(key="raw-record-flagged", condition="The sweep or spectrum of the row carries flags of "
-         "its own where it was read.",
+    Flag(key="raw-record-flagged", condition="The row's sweep or spectrum has flags of its own.",
          text="The raw record is doubtful: advisories, or remarks of raw_records, name its flags.",
-         reason="What is amiss with a sweep shows no more in the permittivity taken from it.",
+         reason="What is amiss with a sweep shows no more in what is taken from it.",
          keeps_number=True),
 )  # fmt: skip
 

@@ -9,6 +9,8 @@ from models.flags import Flags
 from models.reflection.sweep_flags import MARGIN, Finding, raised, withheld
 from models.relation import Array, ComplexArray
 
+LARGEST = 1e6
+"""|eps| of a short, and of nothing else: 10 S/m have a fifth of it at 1 MHz."""
 BELOW_VACUUM = 0.1
 """By how much eps' may be below 1 before it counts as impossible, beside its uncertainty."""
 
@@ -57,7 +59,7 @@ def coverage_factor(probability: float, degrees_of_freedom: Array) -> Array:
 
 def flag_loss(permittivity: ComplexArray, band: Band, flags: Flags) -> None:
     """Mark, in place, where there is no number and where the loss is below zero."""
-    raised(flags, ~np.isfinite(permittivity), "no-root")
+    raised(flags, ~(np.abs(permittivity) <= LARGEST), "no-root")
     floor = MARGIN * np.maximum(band.loss, 1e-4 * np.abs(permittivity))
     raised(flags, -permittivity.imag < -floor, "negative-loss")
     short = 1.0 - permittivity.real

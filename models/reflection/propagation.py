@@ -30,3 +30,8 @@ def attenuation_length(
 def through_air(frequency: Array, length: float) -> ComplexArray:
     """exp(gamma0 l): what takes a length of air line out of a reflection's one way, elementwise."""
     return np.exp(2j * np.pi * frequency * length / speed_of_light)
+
+
+def turn_through_air(frequency: Array, length: float) -> float:
+    """Degrees by which a length of air line turns the phase at the highest frequency."""
+    return float(360.0 * np.max(frequency) * length / speed_of_light)

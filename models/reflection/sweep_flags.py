@@ -71,7 +71,8 @@ SWEEP_FLAGS: Registry[Flag] = Registry(
          "not hold; uncertainties are widened by the misfit.",
          reason="A bad short, another liquid, a wrong temperature, a bubble, a moved cable.",
          keeps_number=True),
-    Flag(key="no-root", condition="No permittivity gives this reflection.",
+    Flag(key="no-root", condition="No permittivity gives this reflection, or only "
+         "one above a million.",
          text="The equation has no answer here.",
          reason="The reflection is outside the domain of the model, or two standards are one.",
          keeps_number=False),
@@ -134,9 +135,9 @@ SWEEP_FLAGS: Registry[Flag] = Registry(
          text="No soil has a permeability so far below 1: check the length of the sample.",
          reason="A length that is too long halves both constants alike; what is left of the "
          "permittivity is no measurement.", keeps_number=False),
-    Flag(key="not-shorted", condition="The cell that is called shorted reflects like a "
-         "capacitance, by more than three standard uncertainties and 0.05, where even one full of "
-         "water is shorter than a sixth of a wavelength.",
+    Flag(key="not-shorted", condition="The cell that is called shorted reflects like an "
+         "open end or a capacitance, by more than three standard uncertainties and 0.05, where "
+         "even one full of water is shorter than a sixth of a wavelength.",
          text="The shorted cell reads like an open one: check which end was on.",
          reason="A short behind a short stretch of anything is an inductance.",
          keeps_number=True),

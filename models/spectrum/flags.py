@@ -66,6 +66,11 @@ SPECTRUM_FLAGS: Registry[Flag] = Registry(
          "leans on the upper end of the band.", keeps_number=True),
 )  # fmt: skip
 
+OF_CURVE = frozenset({
+    "conjugated", "loss-below-zero", "electrode-polarisation", "residuals-above-noise",
+    "residuals-not-random",
+})  # fmt: skip
+"""Flags that bear on the fitted curve; the others are about its terms, or stand in its band."""
 RUNS = 4.0
 """Standard deviations of a correlation of neighbours beyond which residuals are no noise."""
 ALIKE = 2.0

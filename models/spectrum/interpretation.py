@@ -6,6 +6,7 @@ from typing import Any
 
 import numpy as np
 
+from models.relation import Array
 from models.spectrum import flags
 from models.spectrum.choice import Choice, choose, disagreement, left_open, noise_of
 from models.spectrum.circuits.circuit import Circuit, circuit_of
@@ -115,9 +116,12 @@ def whole_parameters(choice: Choice, probability: float) -> tuple[Banded, ...]:
     return tuple(found)
 
 
-def whole_curve(choice: Choice, probability: float) -> Curve:
-    """The fitted curve, with what parameters and the choice of the form leave open."""
-    of_fit = curve(choice.fit, probability)
+def whole_curve(choice: Choice, probability: float, frequency: Array | None = None) -> Curve:
+    """The fitted curve, with what parameters and the choice of the form leave open.
+
+    frequency: shape (n,), Hz; None: those of the spectrum.
+    """
+    of_fit = curve(choice.fit, probability, frequency)
     real, loss = left_open(choice, of_fit.frequency)
     return Curve(
         of_fit.frequency, of_fit.real, np.sqrt(np.square(of_fit.real_u) + real),

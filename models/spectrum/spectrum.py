@@ -10,7 +10,7 @@ from models.relation import Array, ComplexArray
 LEAST_POINTS = 3
 LEAST_LOSS = 0.01
 """Share of |eps| below which a relative noise does not follow a part down."""
-SMALLEST, LARGEST = 0.1, 1e9
+SMALLEST, LARGEST = 0.8, 1e9
 """Of a permittivity; below vacuum calibration is off, above no cell measures anything."""
 SLOWEST, FASTEST, NEVER_BELOW = 1.0, 1e13, 1e5
 """Hz; a sweep that ends below the last is in MHz or GHz."""

@@ -22,11 +22,18 @@ from models.reflection.sweep_flags import SWEEP_FLAGS
 from models.relation import Array
 from service.errors import Unprocessable
 from service.faults import Fault, hint, pointer, shown
+from service.schemas.lengths import in_metres
 from service.spectra.reading import columns_of_spectra
+from service.sweeps.bodies import LENGTHS as OF_SWEEPS
 from service.sweeps.reading import columns_of_reflections, columns_of_scattering
+from service.waveforms.bodies import LENGTHS as OF_TRACES
 from service.waveforms.reading import columns_of_waveforms
 
 Place = tuple[int | str, ...]
+LENGTHS: Mapping[str, frozenset[str]] = MappingProxyType({
+    "waveform": OF_TRACES, "reflection": OF_SWEEPS, "scattering": OF_SWEEPS,
+})  # fmt: skip
+"""Lengths, by kind of raw record, that ``units`` may name beside the quantities."""
 PERMITTIVITY = ("apparent_permittivity", "real_permittivity", "travel_time")
 """What a reading with a raw record does not carry beside it."""
 SETTINGS = "raw_records"
@@ -50,35 +57,23 @@ Reader = Callable[[Mapping[int, Any], int, Mapping[int, Place], Any, Units], Raw
 request for this kind, and the caller's units. Raises ModelError or Unprocessable."""
 
 
-def _of_waveforms(
-    records: Mapping[int, Any], count: int, where: Mapping[int, Place], settings: Any, units: Units
-) -> RawColumns:
-    return RawColumns(*columns_of_waveforms(records, count, where, settings, units))
+def _reader(read: Callable[..., tuple[Any, ...]]) -> Reader:
+    """A kind's own reader, its answer as one thing."""
 
+    def columns(
+        records: Mapping[int, Any], count: int, where: Mapping[int, Place], settings: Any,
+        units: Units,
+    ) -> RawColumns:  # fmt: skip
+        return RawColumns(*read(records, count, where, settings, units))
 
-def _of_reflections(
-    records: Mapping[int, Any], count: int, where: Mapping[int, Place], settings: Any, units: Units
-) -> RawColumns:
-    return RawColumns(*columns_of_reflections(records, count, where, settings, units))
-
-
-def _of_scattering(
-    records: Mapping[int, Any], count: int, where: Mapping[int, Place], settings: Any, units: Units
-) -> RawColumns:
-    return RawColumns(*columns_of_scattering(records, count, where, settings, units))
-
-
-def _of_spectra(
-    records: Mapping[int, Any], count: int, where: Mapping[int, Place], settings: Any, units: Units
-) -> RawColumns:
-    return RawColumns(*columns_of_spectra(records, count, where, settings, units))
+    return columns
 
 
 RAW_RECORDS: Mapping[str, Reader] = MappingProxyType({
-    "waveform": _of_waveforms,
-    "reflection": _of_reflections,
-    "scattering": _of_scattering,
-    "spectrum": _of_spectra,
+    "waveform": _reader(columns_of_waveforms),
+    "reflection": _reader(columns_of_reflections),
+    "scattering": _reader(columns_of_scattering),
+    "spectrum": _reader(columns_of_spectra),
 })  # fmt: skip
 """Every kind of raw record a reading may carry, by its key."""
 
@@ -94,7 +89,7 @@ class TakenIn:
     shared: Mapping[str, Array] = field(default_factory=dict)
     """As of RawColumns."""
     advice: tuple[Advice, ...] = ()
-    """Flags of the records themselves, each with the readings it is about."""
+    """What was said of the records, and their own flags, each with the readings it is about."""
 
     def with_shared(self, readings: Readings) -> Readings:
         """The readings, with what those of one probe share."""
@@ -127,6 +122,7 @@ def take_in(document: dict[str, Any]) -> TakenIn:
 
     Raises ModelError or Unprocessable with the place of what cannot be used.
     """
+    _put_in_metres(document)
     settings = document.pop(SETTINGS, {})
     readings = document.get("readings")
     if not isinstance(settings, dict):
@@ -159,8 +155,20 @@ def take_in(document: dict[str, Any]) -> TakenIn:
     return TakenIn(flags, tuple(told), {SETTINGS: echo} if echo else {}, shared, tuple(advice))
 
 
+def _put_in_metres(document: dict[str, Any]) -> None:
+    """Lengths of raw records in m, in place, where the request's ``units`` names them."""
+    parts = {name: document[name] for name in (SETTINGS, "readings", "units") if name in document}
+    if not isinstance(parts.get(SETTINGS), dict) or not parts[SETTINGS]:
+        return
+    names = frozenset[str]().union(*(LENGTHS.get(kind, ()) for kind in parts[SETTINGS]))
+    document |= in_metres(parts, names)
+
+
 def _advice_of(echo: Mapping[str, Any], where: Mapping[int, Place]) -> Iterator[Advice]:
-    """What the remarks on raw records say of their sweeps, flag by flag."""
+    """What was said when raw records were read, and what their sweeps are flagged by."""
+    for said in echo.get("advisories", ()):
+        if said["code"] not in SWEEP_FLAGS:
+            yield Advice(said["code"], said["text"])
     by_flag: dict[str, list[int]] = {}
     for remark in echo.get("remarks", ()):
         for flag in remark["flags"]:

@@ -37,7 +37,10 @@ def request_schema() -> dict[str, Any]:
     schema = SETTINGS.json_schema(ref_template="#/components/schemas/{model}")
     schema.pop("$defs", None)
     schema["properties"] = {**schema["properties"], "readings": reading_schema()}
-    told = "what the raw records of a kind have in common, as their own path takes it beside them"
+    told = (
+        "what the raw records of a kind have in common, as their own path takes it beside them; "
+        "`units` names the units of their lengths too, as sample_length"
+    )
     schema["properties"]["raw_records"] = {
         "type": "object",
         "description": told,

@@ -23,6 +23,7 @@ from models.spectrum.weights import NOISES
 from service.spectra.bodies import SpectraBody
 from service.spectra.circuits import materials_echo, two_units_echo
 from service.spectra.soil_answer import soil_echo
+from service.sweeps.phases import suspicion
 
 SHOWN_RUNGS = 12
 """Branches of one term that are listed one by one; longer ladders are lists of their elements."""
@@ -53,7 +54,7 @@ def answer_of(found: Interpretation, body: SpectraBody, cell: float) -> dict[str
         answer["circuit"]["materials"] = materials_echo(constants, body.geometry, body.units)
     if body.views:
         answer["views"] = {view: _view(fit, view, cell) for view in dict.fromkeys(body.views)}
-    advisories = _said_once(found.findings)
+    advisories = _said_once(found.findings) + doubted_phases(body)
     if found.soil is not None:
         answer["soil"] = soil_echo(found.soil, body.units)
         for code in ("indirect-measurement", "numbers-not-verdicts", "generic-equation"):
@@ -74,6 +75,15 @@ def _said_once(findings: Sequence[Finding]) -> list[dict[str, str]]:
     for finding in findings:
         by_flag.setdefault(finding.flag, []).append(finding.text)
     return [{"code": flag, "text": f"{'; '.join(texts)}."} for flag, texts in by_flag.items()]
+
+
+def doubted_phases(body: SpectraBody) -> list[dict[str, str]]:
+    """An advisory where the phases of a spectrum may be radians."""
+    sent = body.spectrum
+    given = [] if sent is None else [
+        one for key in VIEWS if (one := getattr(sent, key)) is not None
+    ]  # fmt: skip
+    return [{"code": said.code, "text": said.text} for said in suspicion(given)]
 
 
 TOLD = ("frequency", "real_permittivity", "imaginary_permittivity", "static_permittivity",

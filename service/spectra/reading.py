@@ -7,15 +7,16 @@ import numpy as np
 
 from models.conversion import Units
 from models.errors import ParameterError
-from models.flags import Flags
+from models.flags import BIT, Flags
 from models.relation import Array
 from models.spectrum import Interpretation, interpret
-from models.spectrum.choice import left_open
-from models.spectrum.description import curve
 from models.spectrum.doubts import CONDUCTION
+from models.spectrum.flags import OF_CURVE
+from models.spectrum.interpretation import whole_curve
 from models.units import UNITS
 from service.errors import Unprocessable
 from service.faults import Fault, pointer
+from service.spectra.answer import doubted_phases
 from service.spectra.bodies import SpectraBody
 from service.spectra.question import body_of, question_of, sent_spectrum
 
@@ -23,6 +24,8 @@ Place = tuple[int | str, ...]
 AT = "at_frequency"
 USUAL = 1e9
 """Hz, at which a spectrum is read unless the request says where, or the nearest it reaches."""
+PROBABILITY = 0.95
+"""Of a band whose ends are not taken."""
 MOST = 50
 """Raw spectra in one request."""
 SHARED: Place = ("raw_records", "spectrum")
@@ -60,16 +63,21 @@ def columns_of_spectra(
     at = _frequency(shared.get(AT), units)
     columns = {name: np.full(count, np.nan) for name in TAKEN}
     remarks = []
+    flags = np.zeros(count, dtype=np.uint64)
+    said: dict[str, dict[str, str]] = {}
     for row, record in records.items():
         document = {"spectrum": record, **{n: shared[n] for n in KEPT if n in shared}}
         if "frequency" in units:
             document["units"] = {"frequency": units["frequency"]}
-        found = _interpreted(document, where[row])
+        found, doubted = _interpreted(document, where[row])
+        said |= {one["text"]: one for one in doubted}
         for name, value in _values(found, at).items():
             columns[name][row] = value
         told = list(dict.fromkeys(finding.flag for finding in found.findings))
         remarks.append({"row": row, "form": found.choice.fit.form.title, "flags": told})
-    return columns, np.zeros(count, dtype=np.uint64), {**shared, "remarks": remarks}
+        if OF_CURVE & set(told):
+            flags[row] |= BIT["raw-record-flagged"]
+    return columns, flags, {**shared, "remarks": remarks, "advisories": list(said.values())}
 
 
 def _frequency(at: Any, units: Units) -> float | None:
@@ -80,14 +88,20 @@ def _frequency(at: Any, units: Units) -> float | None:
     return float(UNITS.get(units.get("frequency", "Hz"), UNITS["Hz"]).to_si(at))
 
 
-def _interpreted(document: Mapping[str, Any], place: Place) -> Interpretation:
-    """The fit of one record; where it is refused, the places are those of the readings."""
+def _interpreted(
+    document: Mapping[str, Any], place: Place
+) -> tuple[Interpretation, list[dict[str, str]]]:
+    """The fit of one record, and advisories about how it was sent.
+
+    Where it is refused, the places are those of the readings.
+    """
     try:
         body: SpectraBody = body_of(document)
         cell = body.cell.capacitance if body.cell else None
         if body.spectrum is None:
             raise _refusal("spectrum is missing", place)
-        return interpret(sent_spectrum(body.spectrum, body.units, cell), question_of(body))
+        spectrum = sent_spectrum(body.spectrum, body.units, cell)
+        return interpret(spectrum, question_of(body)), doubted_phases(body)
     except Unprocessable as error:
         faults = [Fault(f.detail, _moved(f.pointer, place)) for f in error.errors]
         raise Unprocessable(error.detail, faults) from None
@@ -110,14 +124,13 @@ def _values(found: Interpretation, at: float | None) -> dict[str, float]:
     if not low <= read_at <= high:
         ends = f"{low:g} to {high:g} Hz"
         raise _refusal(f"the spectrum spans {ends}, found {read_at:g} Hz", (*SHARED, AT))
-    here = np.array([read_at])
-    band, (real, loss) = curve(fit, 0.95, here), left_open(found.choice, here)
+    band = whole_curve(found.choice, PROBABILITY, np.array([read_at]))
     told = {
         "frequency": read_at,
         "real_permittivity": float(band.real[0]),
-        "real_permittivity_u": float(np.hypot(band.real_u[0], np.sqrt(real[0]))),
+        "real_permittivity_u": float(band.real_u[0]),
         "imaginary_permittivity": max(float(band.loss[0]), 0.0),
-        "imaginary_permittivity_u": float(np.hypot(band.loss_u[0], np.sqrt(loss[0]))),
+        "imaginary_permittivity_u": float(band.loss_u[0]),
     }
     sigma = next((one for one in found.parameters if one.name == "bulk_conductivity"), None)
     if sigma is not None and CONDUCTION not in {finding.flag for finding in found.findings}:

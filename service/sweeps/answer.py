@@ -20,8 +20,13 @@ from service.sweeps.bodies import Common, ReflectionsBody, ScatteringBody
 CONVENTION = "exp(+j w t), eps = eps' - j eps''"
 
 
-def tip_answer(body: ReflectionsBody, found: TipEstimate) -> dict[str, Any]:
-    """Permittivity spectra, the aperture, and how the standards agree."""
+def tip_answer(
+    body: ReflectionsBody, found: TipEstimate, said: Sequence[Advice] = ()
+) -> dict[str, Any]:
+    """Permittivity spectra, the aperture, and how the standards agree.
+
+    said: what there is to say of how the request was sent.
+    """
     calibration, misfit = found.calibration, found.misfit
     one, other, apart = closest(calibration)
     aperture: dict[str, Any] = {"model": calibration.aperture.model}
@@ -32,8 +37,8 @@ def tip_answer(body: ReflectionsBody, found: TipEstimate) -> dict[str, Any]:
                      "capacitance": geometry.capacitance,
                      "sensing_depth": sensing_depth(geometry)}  # fmt: skip
     if calibration.aperture.model == "fitted":
-        widths = np.sqrt(np.diag(calibration.covariance))
-        for name, value, width in zip("hg", calibration.aperture.fitted, widths, strict=True):
+        fitted = zip("hg", calibration.aperture.fitted, calibration.fitted_u, strict=True)
+        for name, value, width in fitted:
             aperture |= {name: value, f"{name}_u": float(width)}
     source = "stated" if misfit.stated else "residuals" if misfit.value == misfit.value else None
     return {
@@ -44,11 +49,11 @@ def tip_answer(body: ReflectionsBody, found: TipEstimate) -> dict[str, Any]:
         or [{"name": s.name} for s in calibration.standards],
         "closest_standards": {"names": [one, other], "difference": _number(apart)},
         "noise": _noise(misfit.noise, source or ("repeats" if misfit.known else None)),
-        **_rest(body, found.estimate, _of_three(found)),
+        **_rest(body, found.estimate, (*said, *tip_advice(found))),
     }
 
 
-def _of_three(found: TipEstimate) -> Sequence[Advice]:
+def tip_advice(found: TipEstimate) -> tuple[Advice, ...]:
     """What three standards leave open, and whether the uncertainty holds it."""
     if len(found.calibration.standards) > 3:
         return ()
@@ -56,23 +61,34 @@ def _of_three(found: TipEstimate) -> Sequence[Advice]:
     return (advise("aperture-not-told", model=found.calibration.aperture.model, share=share),)
 
 
-def line_answer(body: ReflectionsBody, found: LineEstimate) -> dict[str, Any]:
-    """The permittivity spectrum of a filled line or a cell."""
+def line_answer(
+    body: ReflectionsBody, found: LineEstimate, said: Sequence[Advice] = ()
+) -> dict[str, Any]:
+    """The permittivity spectrum of a filled line or a cell; said: as of ``tip_answer``."""
     stated = "stated or scatter" if found.noise_known else None
     return {
         "kind": body.kind,
         **_spectra(body, found.estimate),
         "noise": _noise(found.noise, stated),
-        **_rest(body, found.estimate),
+        **_rest(body, found.estimate, said),
     }
 
 
-def two_port_answer(body: ScatteringBody, found: TwoPortEstimate) -> dict[str, Any]:
-    """The spectrum of permittivity and, where it is not 1, permeability."""
-    said = []
-    if found.length_if_not_magnetic is not None:
-        length, own = found.length_if_not_magnetic, body.line.sample_length
-        said.append(advise("sample-length-suspected", length=f"{length:.4g}", own=f"{own:.4g}"))
+def two_port_advice(found: TwoPortEstimate, own: float) -> tuple[Advice, ...]:
+    """Whether another length would explain a permeability; own: that of the sample, m."""
+    length = found.length_if_not_magnetic
+    if length is None:
+        return ()
+    return (advise("sample-length-suspected", length=f"{length:.4g}", own=f"{own:.4g}"),)
+
+
+def two_port_answer(
+    body: ScatteringBody, found: TwoPortEstimate, said: Sequence[Advice] = ()
+) -> dict[str, Any]:
+    """The spectrum of permittivity and, where it is not 1, permeability.
+
+    said: as of ``tip_answer``.
+    """
     source = "stated" if body.reflection_u or body.sample.reflection_u else "symmetry"
     return {
         "method": found.method,
@@ -81,7 +97,7 @@ def two_port_answer(body: ScatteringBody, found: TwoPortEstimate) -> dict[str, A
                      "air_before_u": _number(found.position_u)},
         "whole_wavelengths": found.turns,
         "noise": _noise(found.noise, source if found.noise_known else None),
-        **_rest(body, found.estimate, said),
+        **_rest(body, found.estimate, (*said, *two_port_advice(found, body.line.sample_length))),
     }  # fmt: skip
 
 

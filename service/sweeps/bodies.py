@@ -2,15 +2,14 @@
 
 from typing import Annotated, Any, Literal
 
-from pydantic import BeforeValidator, Field, TypeAdapter, WithJsonSchema
+from pydantic import BeforeValidator, Field, TypeAdapter
 
-from models.reflection.tip.aperture import MODELS
 from models.reflection.tip.media import MEDIA
 from service.faults import shown
 from service.schemas.words import Body, Number, described
+from service.sweeps.apparatus import ApertureBody, HolderBody, LineBody, NotNegative, Positive
 
 Numbers = list[Number]
-NotNegative = Annotated[Number, Field(ge=0)]
 
 
 def _number_or_list(given: Any) -> Any:
@@ -21,8 +20,6 @@ def _number_or_list(given: Any) -> Any:
 
 
 Uncertainty = Annotated[NotNegative | list[NotNegative], BeforeValidator(_number_or_list)]
-Positive = Annotated[Number, Field(gt=0)]
-ApertureKey = Annotated[str, WithJsonSchema({"type": "string", "enum": list(MODELS)})]
 Kind = Literal["tip", "filled-line", "cell"]
 Method = Literal["least-squares", "non-iterative", "baker-jarvis-1990", "nicolson-ross-weir"]
 LENGTHS = frozenset({
@@ -113,41 +110,6 @@ class SampleBody(OnePortSweep):
     air_gap_u: NotNegative | None = Field(None, description="its standard uncertainty [m]")
 
 
-class ApertureBody(Body):
-    """The aperture of a tip. Radii bring C0, sensing depth and the effect of an air gap."""
-
-    model: ApertureKey | None = Field(
-        None,
-        description="left out: fitted where four or more standards are given, else aperture-field "
-        "with radii, else capacitive; what another model would say is then in the uncertainty. "
-        + "; ".join(f"{k}: {v}" for k, v in MODELS.items()),
-    )
-    inner_radius: Positive | None = Field(None, description="of the inner conductor [m]")
-    outer_radius: Positive | None = Field(None, description="inside of the outer conductor [m]")
-    fill_permittivity: Positive = Field(2.1, description="of the dielectric between them")
-
-
-class GapBody(Body):
-    """Diameters of a sample that does not touch the conductors of its coaxial line [m]."""
-
-    inner_conductor: Positive
-    sample_inner: Positive
-    sample_outer: Positive
-    outer_conductor: Positive
-
-
-class LineBody(Body):
-    """A filled line or a cell."""
-
-    sample_length: Positive | None = Field(None, description="[m]; a cell needs it")
-    sample_length_u: NotNegative | None = Field(None, description="[m]")
-    air_length: NotNegative = Field(0.0, description="between reference plane and sample [m]")
-    air_length_u: NotNegative | None = Field(None, description="[m]")
-    gap_width: Positive | None = Field(None, description="between the conductors [m]")
-    air_gaps: GapBody | None = Field(None, description="their effect is taken out")
-    guess: Positive | None = Field(None, description="real permittivity at the lowest frequency")
-
-
 class Common(Body):
     """What both kinds of sweep share."""
 
@@ -203,25 +165,6 @@ class TwoPortSweep(Body):
         None, description="standard uncertainty of each part of each S-parameter"
     )
     grain_size: Positive | None = Field(None, description="of the largest grain [m]")
-
-
-class HolderBody(Body):
-    """The sample in its holder, an air line."""
-
-    sample_length: Positive = Field(description="[m]")
-    sample_length_u: NotNegative | None = Field(None, description="[m]")
-    holder_length: Positive | None = Field(
-        None,
-        description="between the reference planes [m]; left out: they are at the sample's faces",
-    )
-    holder_length_u: NotNegative | None = Field(None, description="[m]")
-    air_before: NotNegative | None = Field(
-        None,
-        description="air line before the sample [m]; left out, the position is found from the "
-        "two reflections",
-    )
-    gap_width: Positive | None = Field(None, description="between the conductors [m]")
-    guess: Positive | None = Field(None, description="real permittivity at the lowest frequency")
 
 
 class ScatteringBody(Common):

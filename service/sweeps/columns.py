@@ -15,6 +15,7 @@ from service.formats.errors import FormatError
 from service.formats.networks import touchstone
 from service.formats.networks.options import HERTZ
 from service.sweeps.bodies import ComplexColumn, Numbers, OnePortSweep
+from service.sweeps.references import References
 from service.sweeps.values import Place, complex_of, refuse, refuse_large
 
 MOST_POINTS = 10_001
@@ -48,10 +49,10 @@ class Sweep:
 
 
 class Axes:
-    """One axis for all sweeps of a request, taken from the first that brings one."""
+    """What all sweeps of a request share: one axis, of the first that brings one; one impedance."""
 
-    def __init__(self, given: Numbers | None, units: Units) -> None:
-        self.units = units
+    def __init__(self, given: Numbers | None, units: Units, references: References) -> None:
+        self.units, self.references = units, references
         self._known: Axis | None = None
         self._common: Axis | None = None
         if given is not None:
@@ -115,8 +116,9 @@ def one_port(body: OnePortSweep, axes: Axes, common: float | Numbers | None, pla
         found = "both" if body.reflection is not None else "neither"
         raise refuse(f"expected reflection or touchstone, found {found}", place)
     axis: Axis | None
+    growth: Array | float = 1.0
     if body.touchstone is not None:
-        axis, sweeps = _files(body, (*place, "touchstone"))
+        axis, sweeps, growth = _files(body, axes.references, (*place, "touchstone"))
     else:
         own = body.frequency
         here = (*place, "frequency")
@@ -131,6 +133,7 @@ def one_port(body: OnePortSweep, axes: Axes, common: float | Numbers | None, pla
     own_u = common if body.reflection_u is None else body.reflection_u
     at = ("reflection_u",) if body.reflection_u is None else (*place, "reflection_u")
     stated = spread_of(own_u, hertz.size, at)
+    stated = None if stated is None else stated * growth
     return Sweep(repeated(np.stack(sweeps)), stated, len(sweeps))
 
 
@@ -148,7 +151,10 @@ def spread_of(given: float | Numbers | None, count: int, place: Place) -> Array 
     return np.broadcast_to(values, (count,)).astype(np.float64)
 
 
-def _files(body: OnePortSweep, place: Place) -> tuple[Axis, list[ComplexArray]]:
+def _files(
+    body: OnePortSweep, references: References, place: Place
+) -> tuple[Axis, list[ComplexArray], Array]:
+    """The axis of a sweep and its repeats, and by how much the noise of one grew in reading."""
     if body.frequency is not None:
         detail = "a Touchstone file brings its frequencies: leave frequency out"
         raise refuse(detail, (*place[:-1], "frequency"))
@@ -161,7 +167,9 @@ def _files(body: OnePortSweep, place: Place) -> tuple[Axis, list[ComplexArray]]:
             raise refuse("repeated sweeps have the same frequencies", place)
     for one in networks:
         refuse_large(one.parameters, place)
-    return first, [one.parameters[:, 0, 0] for one in networks]
+    brought = [references.brought(one) for one in networks]
+    growth = np.mean([grown for _, grown in brought], axis=0)
+    return first, [parameters[:, 0, 0] for parameters, _ in brought], growth
 
 
 def checked_axis(held: touchstone.Network, place: Place) -> Array:
@@ -187,17 +195,9 @@ def checked_axis(held: touchstone.Network, place: Place) -> Array:
 def network(text: str, ports: int, place: Place) -> touchstone.Network:
     """A Touchstone file. Raises Unprocessable with the line of what is wrong."""
     try:
-        held = touchstone.read(text, ports)
+        return touchstone.read(text, ports)
     except FormatError as error:
         raise refuse(str(error), place) from None
-    if len(set(held.references)) > 1:
-        told = " ".join(f"{one:g}" for one in held.references)
-        detail = (
-            f"expected one [Reference] for both ports, found {told} ohm: a sample lies in one "
-            "line; renormalise the file to the impedance of that line"
-        )
-        raise refuse(detail, place)
-    return held
 
 
 def _columns(

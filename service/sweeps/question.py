@@ -6,6 +6,7 @@ from typing import Any
 import numpy as np
 from pydantic import TypeAdapter, ValidationError
 
+from models.advisories import Advice
 from models.conversion import refuse_units
 from models.reflection.line.cell import ENDS
 from models.reflection.line.estimate import IDEAL, LineQuery, Read
@@ -15,6 +16,8 @@ from service.faults import problems_of
 from service.schemas.lengths import in_metres, too_long
 from service.sweeps.bodies import LENGTHS, ReflectionsBody, SampleBody, StandardBody
 from service.sweeps.columns import Axes, Sweep, one_port
+from service.sweeps.phases import columns_of, refuse_ahead, suspicion
+from service.sweeps.references import References
 from service.sweeps.values import Place, refuse
 
 LONGEST_LENGTH = 1.0
@@ -39,8 +42,11 @@ def samples_of(body: ReflectionsBody) -> list[SampleBody]:
     return body.sample if isinstance(body.sample, list) else [body.sample]
 
 
-def line_question(body: ReflectionsBody) -> LineQuery:
-    """What is asked of a filled line or a cell. Raises ModelError with each complaint's place."""
+def line_question(body: ReflectionsBody) -> tuple[LineQuery, tuple[Advice, ...]]:
+    """What is asked of a filled line or a cell, and what is to be said of how it was sent.
+
+    Raises ModelError with the place of each complaint.
+    """
     axes, bodies = start(body)
     if isinstance(body.sample, list):
         raise refuse("a line or a cell takes one sample at a time", ("sample",))
@@ -59,7 +65,11 @@ def line_question(body: ReflectionsBody) -> LineQuery:
         raise refuse(f"{missing} is missing: give short, open and load, or none", ("standards",))
     line = body.line
     gaps = line.air_gaps
-    return LineQuery(
+    sent = columns_of(sample, sample.short, sample.open)
+    if body.kind == "filled-line" and not (standards or line.air_length):
+        for one in sent:
+            refuse_ahead(one, ("sample", "reflection"))
+    query = LineQuery(
         frequency=axes.hertz,
         reads=reads,
         standards=standards,
@@ -73,6 +83,7 @@ def line_question(body: ReflectionsBody) -> LineQuery:
         gap_width=line.gap_width,
         largest_relative_uncertainty=body.largest_relative_uncertainty,
     )
+    return query, (*axes.references.advice, *suspicion(sent))
 
 
 def start(body: ReflectionsBody) -> tuple[Axes, list[SampleBody]]:
@@ -81,7 +92,8 @@ def start(body: ReflectionsBody) -> tuple[Axes, list[SampleBody]]:
     bodies = samples_of(body)
     if not 1 <= len(bodies) <= MOST_SAMPLES:
         raise refuse(f"expected 1 to {MOST_SAMPLES} samples, found {len(bodies)}", ("sample",))
-    return Axes(body.frequency, body.units), bodies
+    references = References(None if body.kind == "tip" else body.line.impedance)
+    return Axes(body.frequency, body.units, references), bodies
 
 
 def refuse_twice(standards: list[StandardBody], *, tip: bool) -> None:

@@ -2,11 +2,11 @@
 
 from collections.abc import Callable, Mapping, Sequence
 from types import MappingProxyType
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 
-from models.advisories import advise
+from models.advisories import Advice, advise
 from models.conversion import Units
 from models.errors import ParameterError
 from models.flags import BIT, Flags
@@ -20,6 +20,7 @@ from models.relation import Array
 from models.units import UNITS
 from service.errors import Unprocessable
 from service.faults import Fault, pointer
+from service.sweeps.answer import tip_advice, two_port_advice
 from service.sweeps.bodies import REFLECTIONS, SCATTERING
 from service.sweeps.question import body_of, line_question
 from service.sweeps.tip import tip_question
@@ -41,9 +42,18 @@ Answer = tuple[Mapping[str, Array], Flags, Mapping[str, Any], Mapping[str, Array
 Records = Mapping[int, Any]
 Where = Mapping[int, Place]
 Document = Mapping[str, Any]
-Ask = Callable[[Document], SweepEstimate]
-Held = tuple[int, SweepEstimate, int]
-"""Row of a reading, the estimate it is part of, and its place among the samples of that."""
+
+
+class Told(NamedTuple):
+    """An estimate, and what is to be said of it."""
+
+    estimate: SweepEstimate
+    said: tuple[Advice, ...]
+
+
+Ask = Callable[[Document], Told]
+Held = tuple[int, Told, int]
+"""Row of a reading, what it is part of, and its place among the samples of that."""
 
 
 def columns_of_reflections(
@@ -77,16 +87,21 @@ def columns_of_scattering(
     return _columns(_one_by_one(_of_two_ports, records, where, shared, place), count, at, place)
 
 
-def _of_tip(document: Document) -> SweepEstimate:
-    return estimate_permittivity(tip_question(body_of(document, REFLECTIONS))).estimate
+def _of_tip(document: Document) -> Told:
+    query, said = tip_question(body_of(document, REFLECTIONS))
+    found = estimate_permittivity(query)
+    return Told(found.estimate, (*said, *tip_advice(found)))
 
 
-def _of_line(document: Document) -> SweepEstimate:
-    return estimate_line(line_question(body_of(document, REFLECTIONS))).estimate
+def _of_line(document: Document) -> Told:
+    query, said = line_question(body_of(document, REFLECTIONS))
+    return Told(estimate_line(query).estimate, said)
 
 
-def _of_two_ports(document: Document) -> SweepEstimate:
-    return estimate_constants(two_port_question(body_of(document, SCATTERING))).estimate
+def _of_two_ports(document: Document) -> Told:
+    query, said = two_port_question(body_of(document, SCATTERING))
+    found = estimate_constants(query)
+    return Told(found.estimate, (*said, *two_port_advice(found, query.length)))
 
 
 def _one_by_one(
@@ -124,7 +139,7 @@ def _settings(
     return hertz, {**shared, "units": known}
 
 
-def _asked(ask: Ask, document: Document, place: Place, samples: Sequence[Place]) -> SweepEstimate:
+def _asked(ask: Ask, document: Document, place: Place, samples: Sequence[Place]) -> Told:
     """The answer; where it is refused, the places are those of the readings and raw_records."""
     try:
         return ask(document)
@@ -132,7 +147,8 @@ def _asked(ask: Ask, document: Document, place: Place, samples: Sequence[Place])
         faults = [Fault(f.detail, _moved(f.pointer, place, samples)) for f in error.errors]
         raise Unprocessable(error.detail, faults) from None
     except ParameterError as error:
-        faults = [Fault(c.detail, pointer((*place, *c.place))) for c in error.complaints]
+        faults = [Fault(c.detail, _moved(pointer(c.place), place, samples))
+                  for c in error.complaints]  # fmt: skip
         raise Unprocessable(error, faults) from None
 
 
@@ -151,7 +167,7 @@ def _columns(held: Sequence[Held], count: int, at: float, place: Place) -> Answe
     shared = np.full(count, np.nan)
     flags = np.zeros(count, dtype=np.uint64)
     remarks: list[dict[str, Any]] = []
-    for row, found, n in held:
+    for row, (found, _), n in held:
         if not found.frequency[0] <= at <= found.frequency[-1]:
             ends = f"{found.frequency[0]:g} to {found.frequency[-1]:g}"
             raise refuse(f"the sweeps span {ends} Hz, found {at:g} Hz", (*place, AT))
@@ -163,14 +179,21 @@ def _columns(held: Sequence[Held], count: int, at: float, place: Place) -> Answe
         shared[row] = float(np.interp(at, found.frequency, found.band.real_shared[n]))
         if told:
             remarks.append({"row": row, "flags": told})
-    said = []
-    if any(found.conjugated for _, found, _ in held):
-        said.append({"code": "conjugated", "text": SWEEP_FLAGS["conjugated"].text})
-    if not all(found.noise_known for _, found, _ in held):
-        advice = advise("no-uncertainty-stated", names="reflection", example="reflection_u")
-        said.append({"code": advice.code, "text": advice.text})
-    echo = {AT: at, "remarks": remarks, "advisories": said}
+        if SWEEP_FLAGS.keys() & set(told):
+            flags[row] |= BIT["raw-record-flagged"]
+    echo = {AT: at, "remarks": remarks, "advisories": _advisories(held)}
     return columns, flags, echo, {"real_permittivity": shared}
+
+
+def _advisories(held: Sequence[Held]) -> list[dict[str, str]]:
+    """What is to be said of all sweeps, each sentence once."""
+    said = dict.fromkeys(advice for _, told, _ in held for advice in told.said)
+    if not all(told.estimate.noise_known for _, told, _ in held):
+        advice = advise("no-uncertainty-stated", names="reflection", example="reflection_u")
+        said[advice] = None
+    if any(told.estimate.conjugated for _, told, _ in held):
+        said[Advice("conjugated", SWEEP_FLAGS["conjugated"].text)] = None
+    return [{"code": advice.code, "text": advice.text} for advice in said]
 
 
 def _reading(found: SweepEstimate, place: int, at: float) -> tuple[dict[str, float], list[str]]:

@@ -2,6 +2,7 @@
 
 import numpy as np
 
+from models.advisories import Advice
 from models.reflection.line.estimate import IDEAL
 from models.reflection.tip.aperture import MODELS, Geometry, Model
 from models.reflection.tip.calibration import Standard
@@ -12,6 +13,7 @@ from service.faults import hint
 from service.sweeps.bodies import ReflectionsBody, SampleBody, StandardBody
 from service.sweeps.columns import Axes, Sweep, one_port
 from service.sweeps.media import known_of
+from service.sweeps.phases import columns_of, suspicion
 from service.sweeps.question import LONGEST_LENGTH, metres, refuse_ends, refuse_twice, start
 from service.sweeps.values import Place, refuse
 
@@ -19,8 +21,11 @@ LONGEST_RADIUS = 0.05
 """m, beyond which a radius was written in another unit."""
 
 
-def tip_question(body: ReflectionsBody) -> TipQuery:
-    """What is asked of a tip. Raises ModelError with the place of each complaint."""
+def tip_question(body: ReflectionsBody) -> tuple[TipQuery, tuple[Advice, ...]]:
+    """What is asked of a tip, and what is to be said of how it was sent.
+
+    Raises ModelError with the place of each complaint.
+    """
     axes, bodies = start(body)
     refuse_twice(body.standards, tip=True)
     if len(body.standards) < 3:
@@ -41,7 +46,7 @@ def tip_question(body: ReflectionsBody) -> TipQuery:
         _tip_standard(standard, sweep, axes, geometry, n)
         for n, (standard, sweep) in enumerate(zip(body.standards, sweeps, strict=True))
     )
-    return TipQuery(
+    query = TipQuery(
         frequency=axes.hertz,
         standards=standards,
         standard_spread=_spreads(sweeps),
@@ -50,6 +55,7 @@ def tip_question(body: ReflectionsBody) -> TipQuery:
         geometry=geometry,
         largest_relative_uncertainty=body.largest_relative_uncertainty,
     )
+    return query, (*axes.references.advice, *suspicion(columns_of(*bodies)))
 
 
 def _spreads(sweeps: list[Sweep]) -> Array | None:

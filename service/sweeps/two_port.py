@@ -2,12 +2,17 @@
 
 from collections.abc import Mapping
 
+import numpy as np
+
+from models.advisories import Advice
 from models.conversion import refuse_units
 from models.reflection.two_port.estimate import Parameters, TwoPortQuery
-from models.relation import ComplexArray
+from models.relation import Array, ComplexArray
 from service.schemas.lengths import too_long
 from service.sweeps.bodies import ScatteringBody, TwoPortSweep
 from service.sweeps.columns import Axes, Axis, checked_axis, network, spread_of
+from service.sweeps.phases import refuse_fast, suspicion
+from service.sweeps.references import References
 from service.sweeps.values import Place, complex_of, refuse, refuse_large
 
 LONGEST: Mapping[str, float] = {"sample_length": 1.0, "holder_length": 5.0, "air_before": 5.0}
@@ -17,11 +22,14 @@ PARTNERS = {"s12": "s21", "s22": "s11"}
 """What stands in for an S-parameter that was not measured: samples are symmetric."""
 
 
-def two_port_question(body: ScatteringBody) -> TwoPortQuery:
-    """What is asked. Raises ModelError with the place of each complaint."""
+def two_port_question(body: ScatteringBody) -> tuple[TwoPortQuery, tuple[Advice, ...]]:
+    """What is asked, and what is to be said of how it was sent.
+
+    Raises ModelError with the place of each complaint.
+    """
     refuse_units(body.units)
-    axes = Axes(body.frequency, body.units)
-    parameters = _parameters(body.sample, axes)
+    axes = Axes(body.frequency, body.units, References(body.line.impedance))
+    parameters, growth = _parameters(body.sample, axes)
     if not parameters[1].any():
         detail = (
             "every s21 is 0: nothing passed through the sample; expected a sweep with both ports "
@@ -34,12 +42,14 @@ def two_port_question(body: ScatteringBody) -> TwoPortQuery:
     given = body.reflection_u if own is None else own
     line = body.line
     _refuse_lengths(body)
-    return TwoPortQuery(
+    said = (*axes.references.advice, *_phases(body, axes))
+    spread = spread_of(given, size, at)
+    query = TwoPortQuery(
         frequency=axes.hertz,
         parameters=parameters,
         both_ways=body.sample.touchstone is not None
         or not (body.sample.s12 is None or body.sample.s22 is None),
-        spread=spread_of(given, size, at),
+        spread=None if spread is None else spread * growth,
         length=line.sample_length,
         length_u=line.sample_length_u or 0.0,
         holder=line.holder_length,
@@ -51,9 +61,21 @@ def two_port_question(body: ScatteringBody) -> TwoPortQuery:
         gap_width=line.gap_width,
         largest_relative_uncertainty=body.largest_relative_uncertainty,
     )
+    return query, said
 
 
-def _parameters(body: TwoPortSweep, axes: Axes) -> Parameters:
+def _phases(body: ScatteringBody, axes: Axes) -> tuple[Advice, ...]:
+    """An advisory where phases may be radians. Raises Unprocessable where they must be."""
+    through = body.sample.s21
+    if through is not None:
+        length = body.line.holder_length or body.line.sample_length
+        refuse_fast(through, axes.hertz, length, ("sample", "s21"))
+    sent = [getattr(body.sample, name) for name in NAMES]
+    return suspicion([one for one in sent if one is not None])
+
+
+def _parameters(body: TwoPortSweep, axes: Axes) -> tuple[Parameters, Array]:
+    """S-parameters, and by how much their noise grew in reading, shape (f,)."""
     sent = [name for name in NAMES if getattr(body, name) is not None]
     if body.touchstone is not None:
         extra = [*sent, *(["frequency"] if body.frequency is not None else [])]
@@ -64,16 +86,17 @@ def _parameters(body: TwoPortSweep, axes: Axes) -> Parameters:
     for name in ("s11", "s21"):
         if name not in sent:
             raise refuse(f"{name} is missing: give s11 and s21, or touchstone", ("sample", name))
-    return _from_columns(body, axes)
+    columns = _from_columns(body, axes)
+    return columns, np.ones(axes.hertz.size)
 
 
-def _from_file(text: str, axes: Axes) -> Parameters:
+def _from_file(text: str, axes: Axes) -> tuple[Parameters, Array]:
     place: Place = ("sample", "touchstone")
     held = network(text, 2, place)
     axes.settle(Axis(checked_axis(held, place), place), ("sample",))
-    s = held.parameters
-    refuse_large(s, place)
-    return s[:, 0, 0], s[:, 1, 0], s[:, 0, 1], s[:, 1, 1]
+    refuse_large(held.parameters, place)
+    s, growth = axes.references.brought(held)
+    return (s[:, 0, 0], s[:, 1, 0], s[:, 0, 1], s[:, 1, 1]), growth
 
 
 def _from_columns(body: TwoPortSweep, axes: Axes) -> Parameters:

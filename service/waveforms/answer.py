@@ -1,6 +1,6 @@
 """What an answer to POST /v1/waveforms tells: rows, what they were read from, the probe as used."""
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from types import MappingProxyType
 from typing import Any
 
@@ -12,8 +12,9 @@ from models.flags import slugs_of
 from models.quantity import QUANTITIES
 from models.reflection.tdr.bench import Bench
 from models.reflection.tdr.calibration import SUSPECT_LENGTH
-from models.reflection.tdr.circuit import circuit
-from models.reflection.tdr.probe import System
+from models.reflection.tdr.circuit import circuit, contradicting_constant, stated_constant
+from models.reflection.tdr.doubts.levels import doubts
+from models.reflection.tdr.probe import Rods, System
 from models.relation import Array
 from models.uncertainty.coverage import coverage_factor
 from service.waveforms.bodies import WaveformBody
@@ -35,6 +36,12 @@ FLOORS: Mapping[str, float] = MappingProxyType(
 WAYS: Mapping[bool | None, str] = MappingProxyType({True: "goes upwards", False: "goes downwards",
                                                   None: "lies"})  # fmt: skip
 """Of a first reflection."""
+USED: Mapping[bool, str] = MappingProxyType({
+    True: "A whole trace is read with the line that these traces tell",
+    False: "The one as described was used, and what lies between both is in the band of the "
+           "conductivity",
+})  # fmt: skip
+"""Of two probe constants that contradict each other, for a whole trace or not."""
 SCALES: Mapping[str, float] = MappingProxyType({"ns": 1e9, "1": 1.0})
 
 
@@ -150,16 +157,46 @@ def advice_of(bench: Bench, found: Answered) -> list[Advice]:
                                own=f"{bench.length:.4g}"))  # fmt: skip
     if bench.calibration.short is None and bench.probe.series_resistance is None:
         said.append(advise("series-resistance-assumed"))
-    if found.system is not None and found.system.misses:
+    leans = found.whole or stated_constant(bench) is None
+    if found.system is not None and found.system.misses and leans:
         said.append(advise("calibration-misfit", times=f"{found.system.missed_by:.3g}"))
-    begin = bench.begin
-    if begin is not None and found.strange.any():
-        said.append(advise("unlike-calibration", count=int(found.strange.sum()),
-                           time=f"{begin.time * SCALES['ns']:.4g}", level=f"{begin.level:+.3f}",
-                           way=WAYS[begin.upwards]))  # fmt: skip
+    said += _of_begins(bench, found)
     if circuit(bench, _late_begin(found), found.system) is None:
         said.append(advise("probe-constant-missing"))
+    said += _of_constants(bench, found)
     return said
+
+
+def _of_constants(bench: Bench, found: Answered) -> Iterator[Advice]:
+    """Whether the probe constant is another one than traces in air and in water tell."""
+    shown, stated = contradicting_constant(bench, found.system), stated_constant(bench)
+    if shown is None or stated is None:
+        return
+    impedance = Rods.of_constant(shown.value, bench.length).impedance
+    yield advise("probe-constant-contradicted", stated=f"{stated.value:.4g}",
+                 shown=f"{shown.value:.4g}", impedance=f"{impedance:.4g}",
+                 used=USED[found.whole])  # fmt: skip
+
+
+def _of_begins(bench: Bench, found: Answered) -> Iterator[Advice]:
+    """What the beginnings of the waveforms tell: of their line, scale and axis."""
+    begin, begins = bench.begin, found.begins
+    strange = np.flatnonzero(begins.strange)
+    if begin is not None and strange.size:
+        first = float(begins.time[strange[0]])
+        theirs = f"at {_in_ns(first)} ns" if np.isfinite(first) else "nowhere"
+        yield advise("unlike-calibration", count=strange.size, time=_in_ns(begin.time),
+                     level=f"{begin.level:+.3f}", way=WAYS[begin.upwards],
+                     theirs=theirs)  # fmt: skip
+    if doubted := list(doubts(bench, begins)):
+        yield advise("level-suspected", found="; ".join(doubted))
+    for code, which in found.doubted.items():
+        if which.any():
+            yield advise(code, count=int(which.sum()))
+
+
+def _in_ns(time: float) -> str:
+    return f"{time * SCALES['ns']:.4g}"
 
 
 def units_of(

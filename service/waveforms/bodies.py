@@ -197,7 +197,8 @@ class WaveformsBody(WaveformSettings):
     coverage_probability: Annotated[Number, Field(ge=0.5, le=0.999)] = 0.95
     units: dict[str, str] = Field(
         default_factory=dict,
-        description="UCUM codes by quantity, where they differ from the API's own unit.",
+        description="UCUM codes by quantity, where they differ from the API's own unit; lengths "
+        "by their name, as probe_offset. The axis of a trace has its axis_unit.",
         examples=[{"bulk_conductivity": "mS/m"}],
     )
 

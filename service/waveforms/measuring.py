@@ -6,8 +6,11 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from models.flags import Flags
-from models.reflection.tdr.bench import Bench
+from models.flags import BIT, Flags
+from models.reflection.tdr.agreement import Begins
+from models.reflection.tdr.bench import Bench, Record
+from models.reflection.tdr.doubts.axis import in_nanoseconds
+from models.reflection.tdr.doubts.clipping import clipped
 from models.reflection.tdr.invert_traces import FREQUENCY, by_whole_trace, system_behind
 from models.reflection.tdr.measure import Known, Measured, by_travel_time
 from models.reflection.tdr.whole.identification import Identified
@@ -18,6 +21,10 @@ from service.waveforms.bodies import MOST_INVERTED, MOST_WAVEFORMS, WaveformSett
 from service.waveforms.question import Group
 
 WHOLE = "whole-trace"
+DOUBTS = ("no-steps", "axis-unit-suspected", "waveform-clipped", "long-record-contradicted")
+"""Advisories about single waveforms."""
+MOST_DOUBTED = 20
+"""Of the waveforms of one group without an end, so many are looked at on another axis."""
 OF_WHOLE = ("frequency", "relaxations", "inserted_length")
 """Settings that mean something for a whole trace only."""
 
@@ -34,8 +41,12 @@ class Answered:
     bench: Bench
     system: Identified | None
     """The line behind the probe, where it was worked out."""
-    strange: NDArray[np.bool_]
-    """Waveforms that do not begin as the calibration traces do."""
+    begins: Begins
+    """How the waveforms begin."""
+    doubted: Mapping[str, NDArray[np.bool_]]
+    """By the advisory that says why: which waveforms."""
+    whole: bool
+    """Whether whole traces were inverted."""
 
 
 def refuse_many(count: int, settings: WaveformSettings, place: str) -> None:
@@ -72,18 +83,49 @@ def measured(
 
     columns: dict[str, Array] = {}
     figures: dict[str, Array] = {}
-    flags, strange = np.zeros(count, dtype=np.uint64), np.zeros(count, dtype=np.bool_)
+    flags = np.zeros(count, dtype=np.uint64)
+    doubted = {code: np.zeros(count, dtype=np.bool_) for code in DOUBTS}
+    begins = Begins(*(np.full(count, np.nan) for _ in range(2)),
+                    *(np.zeros(count, dtype=np.bool_) for _ in range(2)))  # fmt: skip
     details: dict[int, Mapping[str, object]] = {}
     for group in groups:
         found = _group(group, settings, bench, asked)
         rows = np.asarray(group.places, dtype=np.intp)
-        flags[rows], strange[rows] = found.flags, found.strange
+        flags[rows] = found.flags
+        for name in Begins.__slots__:
+            getattr(begins, name)[rows] = getattr(found.begins, name)
+        for code, which in _doubts(group, found, bench).items():
+            doubted[code][rows[which]] = True
         for total, part in ((columns, found.columns), (figures, found.figures)):
             for name, values in part.items():
                 total.setdefault(name, np.full(count, np.nan))[rows] = values
         told = zip(group.places, found.details, strict=False)
         details |= {place: detail for place, detail in told if detail}
-    return Answered(columns, figures, flags, details, bench, kept[-1] if kept else None, strange)
+    return Answered(columns, figures, flags, details, bench, kept[-1] if kept else None,
+                    begins, doubted, settings.method == WHOLE)  # fmt: skip
+
+
+def _doubts(group: Group, found: Measured, bench: Bench) -> Mapping[str, NDArray[np.intp]]:
+    """Rows of a group by the advisory that they give rise to."""
+    stepless = found.begins.stepless & (bench.begin is None)
+    contradicted = found.contradicted
+    return {
+        "no-steps": np.flatnonzero(stepless),
+        "axis-unit-suspected": _in_nanoseconds(group, found, bench),
+        "waveform-clipped": np.flatnonzero(clipped(group.record.trace)),
+        "long-record-contradicted": np.flatnonzero(False if contradicted is None else contradicted),
+    }
+
+
+def _in_nanoseconds(group: Group, found: Measured, bench: Bench) -> NDArray[np.intp]:
+    """Rows of a group that show rods if their axis in m is one in ns; of the first without any."""
+    calibrated = bench.calibration.air is not None and bench.calibration.water is not None
+    nowhere = (found.flags & BIT["no-end-reflection"]) != 0
+    lost = np.flatnonzero(nowhere & ~found.begins.stepless)[:MOST_DOUBTED]
+    if calibrated or not group.in_metres or not lost.size:
+        return lost[:0]
+    lacking = Record(group.record.trace.rows(lost))
+    return lost[in_nanoseconds(lacking, bench)]
 
 
 def _group(group: Group, settings: WaveformSettings, bench: Bench, known: Known) -> Measured:

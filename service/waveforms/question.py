@@ -11,6 +11,7 @@ from scipy.constants import speed_of_light
 from models.conversion import Units, to_si, unit_of
 from models.errors import Complaint, ParameterError
 from models.reflection.tdr.bench import Bench, Calibration, Description, Record, prepare
+from models.reflection.tdr.doubts.axis import as_nanoseconds
 from models.reflection.tdr.late_level import Known
 from models.reflection.tdr.probe import (
     Cable,
@@ -22,6 +23,7 @@ from models.reflection.tdr.record import Traces
 from service.errors import Unprocessable
 from service.faults import pointer, problems_of
 from service.waveforms.bodies import (
+    CalibrationBody,
     WaveformBody,
     WaveformProbeBody,
     WaveformSettings,
@@ -29,6 +31,8 @@ from service.waveforms.bodies import (
 from service.waveforms.likely import refuse_unlikely
 from service.waveforms.traces import Place, record_of
 
+METRE = "m"
+IN_NANOSECONDS = '; in ns the traces show the rods: send "axis_unit": "ns"'
 Settings = TypeVar("Settings", bound=WaveformSettings)
 
 
@@ -51,6 +55,8 @@ class Group:
 
     places: Sequence[int]
     record: Record
+    in_metres: bool
+    """Whether their axis came in m."""
 
 
 def groups_of(bodies: Mapping[int, WaveformBody], where: Mapping[int, Place]) -> list[Group]:
@@ -62,11 +68,12 @@ def groups_of(bodies: Mapping[int, WaveformBody], where: Mapping[int, Place]) ->
     sorted_out: dict[tuple[Any, ...], list[tuple[int, Record]]] = {}
     for place, body in bodies.items():
         record = record_of(body, where[place])
-        key = (_axis(record.trace), None if record.late is None else _axis(record.late))
+        late = None if record.late is None else _axis(record.late)
+        key = (_axis(record.trace), late, body.axis_unit == METRE)
         sorted_out.setdefault(key, []).append((place, record))
     return [
-        Group([place for place, _ in members], _stacked([record for _, record in members]))
-        for members in sorted_out.values()
+        Group([place for place, _ in members], _stacked([record for _, record in members]), key[-1])
+        for key, members in sorted_out.items()
     ]
 
 
@@ -106,7 +113,29 @@ def bench_of(settings: WaveformSettings, units: Units, place: Place = ()) -> Ben
         water_temperature=warmth.get("temperature", np.nan),
         water_temperature_u=warmth.get("temperature_u", 0.0),
     )  # fmt: skip
-    return prepare(description_of(settings.probe, units), found)
+    described = description_of(settings.probe, units)
+    try:
+        return prepare(described, found)
+    except ParameterError as error:
+        complaints = list(error.complaints)
+        if _in_nanoseconds(described, found, calibration):
+            complaints = [replace(c, detail=c.detail + IN_NANOSECONDS) for c in complaints]
+        placed = [replace(c, place=(*map(str, place), *c.place)) for c in complaints]
+        raise ParameterError("calibration", placed) from None
+
+
+def _in_nanoseconds(probe: Description, found: Calibration, sent: CalibrationBody) -> bool:
+    """Whether calibration traces that came on axes in m show the rods if these are in ns."""
+    bodies = [one for one in (sent.air, sent.water, sent.short) if one is not None]
+    if any(body.axis_unit != METRE for body in bodies):
+        return False
+    air, water, short = (None if one is None else as_nanoseconds(one)
+                         for one in (found.air, found.water, found.short))  # fmt: skip
+    try:
+        prepare(probe, replace(found, air=air, water=water, short=short))
+    except ParameterError:
+        return False
+    return True
 
 
 def _warmth(given: Mapping[str, float], units: Units, place: Place) -> dict[str, float]:

@@ -1,11 +1,13 @@
 """Waveforms as the raw records of readings: what an estimate takes from them."""
 
 from collections.abc import Mapping
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
 
 from models.conversion import Units
+from models.errors import ParameterError
 from models.flags import Flags
 from models.relation import Array
 from service.errors import Unprocessable
@@ -39,7 +41,11 @@ def columns_of_waveforms(
     groups = groups_of(bodies, where)
     bench = bench_of(asked, units, place)
     refuse_coarse(bodies, where, bench.length)
-    found = measured(groups, count, asked, bench)
+    try:
+        found = measured(groups, count, asked, bench)
+    except ParameterError as error:
+        placed = [replace(c, place=(*map(str, place), *c.place)) for c in error.complaints]
+        raise ParameterError("waveform", placed) from None
     columns = {name: found.columns[name] for name in TAKEN if name in found.columns}
     if np.isnan(columns["bulk_conductivity"]).all():
         columns = {name: values for name, values in columns.items() if "bulk" not in name}

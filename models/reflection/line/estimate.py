@@ -76,19 +76,21 @@ class LineEstimate:
 def estimate_line(query: LineQuery) -> LineEstimate:
     """Permittivity over frequency, with a finding where both ends of a cell contradict one.
 
-    Raises ParameterError where both ends were read alike.
+    Raises ParameterError where both ends were read alike, or a single open one like a shorted one.
     """
     practice.refuse_alike({end: query.reads[end].reflection for end in query.ends})
     reads = [*query.reads.values(), *query.standards.values()]
     everything = np.stack([read.reflection for read in reads])
     face, here = _first(query)
+    backwards = rises(everything)
+    practice.refuse_shorted(query, np.conj(face.reflection) if backwards else face.reflection)
     loss = loss_share(here.permittivity)
-    if rises(everything) or (loss < -LOSS and not falls(everything)):
+    if backwards or (loss < -LOSS and not falls(everything)):
         turned = replace(
             query, reads=_conjugated(query.reads), standards=_conjugated(query.standards)
         )
         other = _first(turned)
-        if loss_share(other[1].permittivity) > max(loss, -LOSS):
+        if loss_share(other[1].permittivity) > (-LOSS if backwards else max(loss, -LOSS)):
             return _estimated(turned, *other, conjugated=True)
     return _estimated(query, face, here, conjugated=False)
 

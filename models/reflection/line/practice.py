@@ -21,6 +21,8 @@ ENDLESS = 2.3
 SHORT = 0.01
 MAGNETIC = 0.05
 CAPACITIVE = 0.05
+SHORT_REAL = -0.9
+"""Real part of a reflection below which a low-frequency end is a short."""
 SAME = 1e-9
 """Difference of two reflections that is none."""
 
@@ -65,17 +67,42 @@ def short_finding(
 
     reflection: of the shorted cell at the face of the sample, shape (f,). length: m.
 
-    Its impedance tanh(x) / sqrt(eps) is that of an inductance, lossy or not, while |x| is small.
+    Its impedance tanh(x) / sqrt(eps) is that of a small inductance, lossy or not, while |x| is
+    small: neither the real part of its reflection is above 0 nor the imaginary one below.
     """
     sixth = frequency * length * np.sqrt(WATER) / speed_of_light < 1 / 6
-    capacitive = -reflection.imag[sixth]
-    worst = np.median(capacitive) if capacitive.size else np.nan
+    unlike = np.maximum(reflection.real, -reflection.imag)[sixth]
+    worst = np.median(unlike) if unlike.size else np.nan
     limit = max(CAPACITIVE, MARGIN * float(np.median(spread)))
-    about = "capacitive part of the reflection of the shorted cell, median of its low end"
+    about = "real or capacitive part of the shorted cell's reflection, median of its low end"
     found = at_most("not-shorted", about, worst, limit)
     if not found.holds:
         raised(flags[0], np.ones(flags.shape[1], dtype=bool), found.key)
     return found
+
+
+def refuse_shorted(query: Described, reflection: ComplexArray) -> None:
+    """Refuse a cell read open alone that reflects as a short does, inductive and near -1.
+
+    reflection: by what ended the cell, at the face of the sample, for exp(+j w t), shape (k, f).
+    Raises ParameterError with the numbers.
+
+    An open end behind a short stretch is a capacitance; what conducts enough to look like a short
+    would hold 1 S/m and more.
+    """
+    if query.ends != ("open",) or query.length is None:
+        return
+    low = query.frequency * query.length * np.sqrt(WATER) / speed_of_light < 1 / 6
+    if not low.any():
+        return
+    opened = reflection[0, low]
+    real, inductive = float(np.median(opened.real)), float(np.median(opened.imag))
+    if real < SHORT_REAL and inductive > CAPACITIVE:
+        detail = (
+            f"the open cell reflects {real:+.3f}{inductive:+.3f}j in the median of its low end: "
+            "expected a capacitive reflection towards +1; this is a shorted end, send it as short"
+        )
+        raise ParameterError("sample", [Complaint("open", detail, ("sample", "open"))])
 
 
 def refuse_alike(reads: Mapping[str, ComplexArray]) -> None:

@@ -7,15 +7,17 @@ from numpy.typing import NDArray
 
 from models.errors import Complaint, ParameterError
 from models.reflection.tdr.late_level import level_after
-from models.reflection.tdr.markers import Edge, first_rise
+from models.reflection.tdr.markers import FIRST_SHARE, Edge, first_rise
 from models.reflection.tdr.record import Traces
-from models.reflection.tdr.smoothing import following_widths, smooth
+from models.reflection.tdr.smoothing import Smoothed, following_widths, smooth
 from models.reflection.tdr.travel_time import Timing, width_in_points
 from models.relation import Array
 
-OPEN_LEAST, SHORT_MOST = 0.3, -0.3
-"""Late levels of an open and of a shorted line, which settle near +1 and -1: at the latter the
-cable has 27 ohm, as much as 60 m of a thin one have when a trace ends."""
+OPEN_LEAST, SHORT_MOST = 0.5, -0.3
+"""Late levels of an open and of a shorted line, which settle near +1 and -1: those of 100 m of thin
+cable are 0.56 and -0.31 when a trace ends."""
+SETTLED_LEAST = 0.7
+"""The first of them at the end of a long record."""
 LENGTHS = (0.5, 2.0)
 """Shares of the rods' own length between which air and water may put their effective one."""
 APART, APART_SHARE = 2e-9, 0.02
@@ -26,6 +28,12 @@ LEVELS_APART = 0.15
 """How far the level before the first reflection may be from that of the calibration."""
 HIGHEST_BEFORE = 0.6
 """The same level, of any line: a cable of 200 ohm on an instrument of 50."""
+IN_VOLTS = "these are volts: then send level, with level_matched and level_open"
+LEVEL_LEAST = 0.35
+"""Share of a trace that is level, at least: simulated traces that stop after the end reflection are
+by 0.42 and more, what swings or wanders by 0.1 to 0.45."""
+SLOPING = 3.0
+"""Times its noise, from which a slope is one."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,20 +53,26 @@ def late_end(settled: Traces) -> float:
     return level_after(settled, settled.end)[0]
 
 
-def refuse_levels(air: Traces | None, short: Traces | None) -> None:
-    """Raise ParameterError where an open line does not end near +1 or a short near -1."""
+def refuse_levels(air: Traces | None, short: Traces | None, *, long: bool = False) -> None:
+    """Raise ParameterError where an open line does not end near +1 or a short near -1.
+
+    long: whether the air is a long record.
+    """
+    least = SETTLED_LEAST if long else OPEN_LEAST
     complaints = []
     for name, settled in (("air", air), ("short", short)):
         if settled is None:
             continue
         level = late_end(settled)
         found = f"the {name} trace ends at a level of {level:+.3g}: "
-        if name == "air" and level < OPEN_LEAST:
+        scaled = f", or {IN_VOLTS}" if SHORT_MOST < level < least else ""
+        if name == "air" and level < least:
             detail = found + "rods in air are an open line, which ends near +1"
             detail += "; this is a short" if level < SHORT_MOST else "; something conducts here"
+            detail += scaled
         elif name == "short" and level > SHORT_MOST:
             what = "an open end" if level > OPEN_LEAST else "no short"
-            detail = found + f"this is {what}; shorted rods end near -1"
+            detail = found + f"this is {what}; shorted rods end near -1{scaled}"
         else:
             continue
         complaints.append(Complaint(name, detail, ("calibration", name)))
@@ -105,23 +119,49 @@ def first_edge(given: Traces) -> Edge:
     return first_rise(given, smooth(given, width_in_points(width, given)))
 
 
-def unlike(given: Traces, begin: Begin | None) -> tuple[NDArray[np.bool_], Array]:
-    """Which traces show no first reflection, or not that of their calibration; and where it is, s.
+@dataclass(frozen=True, slots=True, eq=False)
+class Begins:
+    """How traces begin, shape (traces,)."""
+
+    time: Array
+    """s, of the first reflection; NaN where there is none."""
+    level: Array
+    """Before it."""
+    strange: NDArray[np.bool_]
+    """None of this line, or no traces at all."""
+    stepless: NDArray[np.bool_]
+    """No steps between levels: what swings, climbs, wanders, rests, or begins amid a reflection."""
+
+
+def begins_of(given: Traces, begin: Begin | None) -> Begins:
+    """How traces begin, and which show no first reflection, or not that of their calibration.
 
     Other cables, axes in one-way time or with another velocity factor, traces upside down, and
     what is no trace: all of them begin otherwise.
     """
     widths = following_widths(given)
     time, level, signal = (np.full(given.count, np.nan) for _ in range(3))
+    stepless = np.zeros(given.count, dtype=np.bool_)
     for width in np.unique(widths):
         rows = np.flatnonzero(widths == width)
         part = given if rows.size == given.count else given.rows(rows)
-        found = first_rise(part, smooth(part, width_in_points(float(width) * given.step, given)))
+        smoothed = smooth(part, width_in_points(float(width) * given.step, given))
+        found = first_rise(part, smoothed)
         time[rows], level[rows], signal[rows] = found.steepest, found.level, found.signal
-    strange = np.isnan(time) | (np.abs(level) > HIGHEST_BEFORE)
+        early = found.steepest < part.start + 0.5 * smoothed.width
+        nowhere = np.isnan(found.steepest)
+        stepless[rows] = nowhere | early | (_level_share(smoothed) < LEVEL_LEAST)
+    strange = (np.abs(level) > HIGHEST_BEFORE) | stepless
     if begin is not None:
         apart = np.abs(time - begin.time) > max(APART, APART_SHARE * abs(begin.time))
         if begin.upwards is not None:
             strange |= (signal > 0) != begin.upwards
         strange |= apart | (np.abs(level - begin.level) > LEVELS_APART)
-    return strange, time
+    return Begins(time, level, strange, stepless)
+
+
+def _level_share(smoothed: Smoothed) -> Array:
+    """Share of each trace whose slope is that of no reflection."""
+    size = np.abs(smoothed.slope)
+    least = np.maximum(FIRST_SHARE * size.max(axis=-1), SLOPING * smoothed.slope_noise)
+    return np.asarray((size < least[:, None]).mean(axis=-1))

@@ -103,7 +103,8 @@ def prepare(probe: Description, calibration: Calibration) -> Bench:
     if offset is None and probe.head is not None:
         offset = 2.0 * probe.head.delay
     air, water, short = calibration.air, calibration.water, calibration.short
-    refuse_levels(None if air is None else air.settled, None if short is None else short.settled)
+    refuse_levels(None if air is None else air.settled, None if short is None else short.settled,
+                  long=air is not None and air.late is not None)  # fmt: skip
     timing: Timing | None = None
     if air is not None and water is not None:
         found = calibrate(
@@ -170,13 +171,16 @@ def experiment(record: Record, row: int, spread: float, end: float = OPEN) -> Ex
 def identified(bench: Bench) -> Identified:
     """The system from calibration traces.
 
-    Raises ParameterError when there are none in air and water.
+    Raises ParameterError when there are none in air and water, or no first reflection is in them.
     """
     air, water, short = bench.calibration.air, bench.calibration.water, bench.calibration.short
     if air is None or water is None:
         raise ParameterError("calibration", [_lacking("air", "calibration"),
                                              _lacking("water", "calibration")])  # fmt: skip
     arrival, rise = rise_of((air.trace, water.trace))
+    if np.isnan(arrival):
+        detail = "neither the air nor the water trace shows a first reflection above its noise"
+        raise ParameterError("calibration", [Complaint("air", detail, ("calibration", "air"))])
     system = guess(bench, arrival, rise)
     return identify(
         system,

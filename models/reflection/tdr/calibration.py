@@ -87,10 +87,13 @@ def calibrate(
 
 
 def rise_of(given: Sequence[Traces]) -> tuple[float, float]:
-    """Two-way time of the first rise, s, the earliest of several traces; and how long it takes."""
+    """Two-way time of the first rise, s, the earliest of several traces; and how long it takes.
+
+    Of those that show one; NaN where none does.
+    """
     width = min(float(np.min(following_widths(part))) * part.step for part in given)
     starts = [first_rise(part, smooth(part, width_in_points(width, part))) for part in given]
-    first = min(starts, key=lambda start: float(np.mean(start.steepest)))
+    first = min(starts, key=lambda start: float(np.nan_to_num(np.mean(start.steepest), nan=np.inf)))
     return float(np.mean(first.steepest)), float(np.mean(first.rise))
 
 

@@ -26,6 +26,9 @@ UNKNOWN_SERIES = Known(0.3, 0.3)
 """ohm, of a cable nobody says anything of: some metres, and its contacts."""
 OPEN_U = 2e-3
 """Of the level of an open line, where no trace in air says it."""
+CONSTANTS_APART, CERTAIN = 0.1, 3.0
+"""Share of a probe constant, and standard uncertainties, by which a stated one may differ from that
+of the calibration traces."""
 EARLY_LEVEL_U = 5e-3
 """Of a level read before EARLY: simulated lines in air are so far from the level that they settle
 at, after their reflections have died away."""
@@ -40,15 +43,15 @@ def circuit(
     a long record. None where nothing says the probe constant.
     """
     probe, calibration = bench.probe, bench.calibration
-    constant = probe.constant
-    if constant is None and probe.impedance is not None:
-        relative = probe.length_u / bench.length
-        value = Rods(bench.length, probe.impedance).constant
-        constant = Known(value, value * relative)
+    constant = stated_constant(bench)
     if constant is None and known is not None:
         constant = _identified_constant(known)
     if constant is None:
         return None
+    shown = contradicting_constant(bench, known)
+    if shown is not None:
+        apart = abs(constant.value - shown.value)
+        constant = Known(constant.value, float(np.hypot(constant.standard_uncertainty, apart)))
     open_level = Known(1.0, OPEN_U)
     if calibration.air is not None:
         level, level_u = level_after(calibration.air.settled, from_time)
@@ -56,6 +59,30 @@ def circuit(
         open_level = Known(level, float(np.hypot(level_u, early)))
     series = _series(bench, from_time, open_level, arrival)
     return Circuit(constant, series, open_level, probe.instrument_impedance)
+
+
+def stated_constant(bench: Bench) -> Known | None:
+    """The probe constant as described, or by the impedance of the rods; None: neither."""
+    probe = bench.probe
+    if probe.constant is not None or probe.impedance is None:
+        return probe.constant
+    value = Rods(bench.length, probe.impedance).constant
+    return Known(value, value * probe.length_u / bench.length)
+
+
+def contradicting_constant(bench: Bench, known: Identified | None) -> Known | None:
+    """The probe constant that traces in air and in water tell, where it is not the stated one.
+
+    None: nothing is stated, or known, or both agree. What lies between them is then not known.
+    """
+    stated = stated_constant(bench)
+    air, water = bench.calibration.air, bench.calibration.water
+    if stated is None or known is None or air is None or water is None:
+        return None
+    shown = _identified_constant(known)
+    u = float(np.hypot(stated.standard_uncertainty, shown.standard_uncertainty))
+    agree = abs(stated.value - shown.value) <= max(CONSTANTS_APART * shown.value, CERTAIN * u)
+    return None if agree else shown
 
 
 def early_level_u(from_time: float, arrival: float) -> float:

@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 
 from models.errors import Complaint, ParameterError
 from models.flags import BIT
-from models.reflection.tdr.agreement import unlike
+from models.reflection.tdr.agreement import begins_of
 from models.reflection.tdr.apparent import LOW_EXCUSED
 from models.reflection.tdr.bench import DESCRIBED_U, Bench, Record, experiment, guess, identified
 from models.reflection.tdr.calibration import rise_of
@@ -41,9 +41,8 @@ def by_whole_trace(
     Raises ParameterError when neither calibration traces nor the description tell the system.
     """
     flags = np.zeros(record.trace.count, dtype=np.uint64)
-    begins = unlike(record.trace, bench.begin)
-    strange = begins[0]
-    system = known() or _described(record, bench, np.flatnonzero(~strange))
+    begins = begins_of(record.trace, bench.begin)
+    system = known() or _described(record, bench, np.flatnonzero(~begins.strange))
     rough, levels = conductivity(record, bench, lambda: system, flags, begins)
     asked = Asked(terms, sections, inserted)
     rows: list[dict[str, float]] = []
@@ -67,9 +66,8 @@ def by_whole_trace(
     lost |= (flags & BIT["no-end-reflection"]) > 0
     flags[lost] |= BIT["no-end-reflection"]
     columns = {name: np.where(lost, np.nan, cells) for name, cells in columns.items()}
-    return Measured(
-        columns, {"reduced_chi_square": chi_square, **levels}, flags, tuple(details), strange
-    )
+    figures = {"reduced_chi_square": chi_square, **levels}
+    return Measured(columns, figures, flags, begins, tuple(details))
 
 
 class Asked(NamedTuple):

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from models.reflection.tdr.record import Traces
-from models.reflection.tdr.smoothing import noise_of
+from models.reflection.tdr.smoothing import noise_of, still_u
 from models.relation import Array
 
 TAILS = (1.0, 0.5, 0.25, 0.1)
@@ -33,7 +33,7 @@ def late_level(given: Traces) -> LateLevel:
 
     Where none has, the shortest one is taken, and the drift over it counts as uncertainty.
     """
-    noise = noise_of(given)
+    noise, still = noise_of(given), still_u(given)
     value, u, begin = (np.full(given.count, np.nan) for _ in range(3))
     done, settled = np.zeros(given.count, dtype=np.bool_), np.zeros(given.count, dtype=np.bool_)
     for share in TAILS:
@@ -48,7 +48,8 @@ def late_level(given: Traces) -> LateLevel:
         done |= here
         settled |= here & quiet
         value[here] = tail.mean(axis=-1)[here]
-        u[here] = np.hypot(mean_u, np.where(drift <= by_noise, 0.0, 0.5 * drift))[here]
+        drifting = np.where(drift <= by_noise, 0.0, 0.5 * drift)
+        u[here] = np.hypot(np.hypot(mean_u, still), drifting)[here]
         begin[here] = given.end - given.step * (length - 1)
     return LateLevel(value, u, begin, settled)
 
@@ -59,7 +60,8 @@ def level_after(given: Traces, time: float) -> tuple[float, float]:
     first = min(max(first, 0), given.points - max(given.points // 10, 4))
     tail = given.rho[:, first:]
     noise = float(np.sqrt(np.mean(np.square(noise_of(given)))))
-    return float(tail.mean()), noise / float(np.sqrt(tail.size))
+    still = float(np.sqrt(np.mean(np.square(still_u(given)))))
+    return float(tail.mean()), float(np.hypot(noise / np.sqrt(tail.size), still))
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,20 +1,20 @@
 """Many traces by travel time: permittivity from their ends, conductivity from late levels."""
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from models.flags import BIT, Flags
-from models.reflection.tdr.agreement import unlike
+from models.reflection.tdr.agreement import Begins, begins_of
 from models.reflection.tdr.apparent import apparent_permittivity
 from models.reflection.tdr.bench import Bench, Record
 from models.reflection.tdr.circuit import circuit, early_level_u
 from models.reflection.tdr.late_level import DRIFT, LateLevel, bulk_conductivity, late_level
 from models.reflection.tdr.markers import first_rise, rod_start
 from models.reflection.tdr.record import Traces
-from models.reflection.tdr.smoothing import following_widths, smooth
+from models.reflection.tdr.smoothing import following_widths, smooth, step_u
 from models.reflection.tdr.travel_time import Timing, find, plain_timing
 from models.reflection.tdr.unsettled import Ends, unsettled
 from models.reflection.tdr.whole.identification import Identified
@@ -24,6 +24,8 @@ CONDUCTIVE_GATE = 2.0
 """S/m: no soil conducts more."""
 SHORTED = -0.95
 """Late level below which 1.3 ohm or less end the line: no soil, but a short."""
+CONTRADICTS, CLEARLY = 5.0, 0.25
+"""Standard uncertainties, and share of the larger, by which two conductivities contradict."""
 TOGETHER = 1e-9
 """s, to which the first reflection is told where the age of a level depends on it."""
 UNSEEN_OFFSET_U = 0.25
@@ -39,37 +41,59 @@ class Measured:
     figures: Mapping[str, Array]
     """Times, levels and quality figures: what the numbers were read from."""
     flags: Flags
+    begins: Begins
+    """How the traces begin."""
     details: tuple[Mapping[str, object], ...] = field(default=())
     """Of a whole-trace inversion, trace by trace: parameters and covariance; empty: none."""
-    strange: NDArray[np.bool_] = field(default_factory=lambda: np.zeros(0, dtype=np.bool_))
-    """Traces that do not begin as those of the calibration do."""
+    contradicted: NDArray[np.bool_] | None = None
+    """Traces whose long record tells another conductivity; None: not looked at."""
 
 
 Known = Callable[[], Identified | None]
-"""Gives the system behind the probe, if calibration traces tell it; asked only where needed."""
+"""Gives the system behind the probe, if calibration traces tell it."""
 
 
-def by_travel_time(record: Record, bench: Bench, known: Known) -> Measured:
-    """Apparent permittivity, effective frequency and bulk conductivity of many traces at once."""
-    if bench.timing is not None:
-        columns, figures = _by_times(record.trace, bench.timing)
-    else:
-        rows = [record.trace.rows(np.array([row])) for row in range(record.trace.count)]
-        told = [_by_times(row, _shown_by(row, bench)) for row in rows]
-        columns, figures = (
-            {name: np.concatenate([part[k][name] for part in told]) for name in told[0][k]}
-            for k in (0, 1)
-        )
+def by_travel_time(record: Record, bench: Bench, known: Known | None) -> Measured:
+    """Apparent permittivity, effective frequency and bulk conductivity of many traces at once.
+
+    known: None: the probe constant is taken as described.
+    """
+    columns, figures = times_of(record.trace, bench)
     flags = np.zeros(record.trace.count, dtype=np.uint64)
     flags[np.isnan(columns["apparent_permittivity"])] |= BIT["no-end-reflection"]
     ends = Ends(figures["end_by_steepest_slope"], columns["travel_time"],
                 np.sqrt(columns["apparent_permittivity"]))  # fmt: skip
-    begins = unlike(record.trace, bench.begin)
+    begins = begins_of(record.trace, bench.begin)
     more, level = conductivity(record, bench, known, flags, begins, ends)
     lost = (flags & BIT["no-end-reflection"]) > 0
     for name in columns:
         columns[name] = np.where(lost, np.nan, columns[name])
-    return Measured(columns | more, figures | level, flags, strange=begins[0])
+    unlike = None
+    if record.late is not None:
+        alone, _ = conductivity(Record(record.trace), bench, known, flags.copy(), begins, ends)
+        unlike = _apart(more, alone)
+    return Measured(columns | more, figures | level, flags, begins, contradicted=unlike)
+
+
+def _apart(one: Mapping[str, Array], other: Mapping[str, Array]) -> NDArray[np.bool_]:
+    """Where two conductivities of a trace are certainly and clearly not the same."""
+    values, widths = ([part[f"bulk_conductivity{end}"] for part in (one, other)]
+                      for end in ("", "_u"))  # fmt: skip
+    apart = np.abs(values[0] - values[1])
+    return (apart > CONTRADICTS * np.hypot(*widths)) & (apart > CLEARLY * np.fmax(*values))
+
+
+def times_of(trace: Traces, bench: Bench) -> tuple[dict[str, Array], dict[str, Array]]:
+    """Columns that follow from times, and figures: what these were read from."""
+    if bench.timing is not None:
+        return _by_times(trace, bench.timing)
+    rows = [trace.rows(np.array([row])) for row in range(trace.count)]
+    told = [_by_times(row, _shown_by(row, bench)) for row in rows]
+    columns, figures = (
+        {name: np.concatenate([part[k][name] for part in told]) for name in told[0][k]}
+        for k in (0, 1)
+    )
+    return columns, figures
 
 
 def _shown_by(trace: Traces, bench: Bench) -> Timing:
@@ -112,16 +136,16 @@ def _by_times(trace: Traces, timing: Timing) -> tuple[dict[str, Array], dict[str
 
 
 def conductivity(
-    record: Record, bench: Bench, known: Known, flags: Flags,
-    begins: tuple[NDArray[np.bool_], Array], ends: Ends | None = None,
+    record: Record, bench: Bench, known: Known | None, flags: Flags, begins: Begins,
+    ends: Ends | None = None,
 ) -> tuple[dict[str, Array], dict[str, Array]]:  # fmt: skip
     """Bulk conductivity and the late levels it was read from; flags are set in place.
 
-    begins: as ``unlike`` tells them. ends: where the trace itself tells the level, what
+    begins: of the traces. ends: where the trace itself tells the level, what
     is still to come of its reflections.
     """
-    level = late_level(record.settled)
-    strange, arrivals = begins
+    level, system = _settled_level(record), known() if known is not None else None
+    strange, arrivals = begins.strange, begins.time
     if bench.begin is not None:
         arrivals = np.full(arrivals.size, bench.begin.time)
     arrivals = np.nan_to_num(np.round(arrivals / TOGETHER) * TOGETHER)
@@ -131,7 +155,7 @@ def conductivity(
     for begin, arrival in np.unique(np.column_stack([level.from_time, arrivals]), axis=0).tolist():
         rows = np.flatnonzero((level.from_time == begin) & (arrivals == arrival))
         early = arrival if record.late is None else None
-        between = circuit(bench, begin, None, early) or circuit(bench, begin, known(), early)
+        between = circuit(bench, begin, system, early)
         if between is None:
             continue
         found = bulk_conductivity(level.value[rows], level.standard_uncertainty[rows], between)
@@ -156,6 +180,15 @@ def conductivity(
         "bulk_conductivity_u_shared": shared + lost,
     }
     return columns, _of_level(level)
+
+
+def _settled_level(record: Record) -> LateLevel:
+    """Late levels; a long record that shows no step is written in those of its trace."""
+    level = late_level(record.settled)
+    if record.late is None:
+        return level
+    unseen = np.where(step_u(record.late) > 0.0, 0.0, step_u(record.trace))
+    return replace(level, standard_uncertainty=np.hypot(level.standard_uncertainty, unseen))
 
 
 def _of_level(level: LateLevel) -> dict[str, Array]:

@@ -51,6 +51,11 @@ class Rods:
         """Conductivity over conductance, 1/m: eps0 c Z / L."""
         return self.impedance / (WAVE_IMPEDANCE * self.length)
 
+    @classmethod
+    def of_constant(cls, constant: float, length: float) -> "Rods":
+        """Rods of a length, m, with such a constant, 1/m."""
+        return cls(length, constant * WAVE_IMPEDANCE * length)
+
 
 @dataclass(frozen=True, slots=True)
 class System:

@@ -18,6 +18,8 @@ WIDEST_SHARE = 1 / 24
 """Of a trace, for the widest window that is tried."""
 LEAST = 1e-6
 """Noise of a point that no record is below: they are rounded to five or six decimals."""
+ROUNDING = 1e-9
+"""Difference of two points that arithmetic makes."""
 NORMAL = 0.67448975
 """Median of the absolute value of a standard normal number."""
 
@@ -89,7 +91,10 @@ def following_widths(given: Traces) -> NDArray[np.intp]:
 
 
 def noise_of(given: Traces) -> Array:
-    """Standard uncertainty of one point: as stated, else from what a narrow parabola leaves."""
+    """Standard uncertainty of one point: as stated, else from what a narrow parabola leaves.
+
+    It is no less than that of the steps in which a trace was written down.
+    """
     stated = given.stated_noise
     if not np.isnan(stated).any():
         return stated
@@ -97,7 +102,23 @@ def noise_of(given: Traces) -> Array:
     level, _, _, _, left = kernels(2 * half + 1)
     rest = np.abs(given.rho - correlate1d(given.rho, level, axis=-1, mode="nearest"))
     found = np.median(rest[:, half:-half], axis=-1) / (NORMAL * left)
-    return np.where(np.isnan(stated), np.maximum(found, LEAST), stated)
+    return np.where(np.isnan(stated), np.maximum(np.maximum(found, LEAST), step_u(given)), stated)
+
+
+def step_u(given: Traces) -> Array:
+    """Standard uncertainty of a point from the steps in which a trace was written down.
+
+    Of the smallest difference between neighbouring points that is none of rounding; 0: none differ.
+    """
+    apart = np.abs(np.diff(given.rho, axis=-1))
+    least = np.where(apart > ROUNDING, apart, np.inf).min(axis=-1)
+    return np.where(np.isfinite(least), least, 0.0) / np.sqrt(12.0)
+
+
+def still_u(given: Traces) -> Array:
+    """What means over many points keep of the steps: all where noise does not cross them."""
+    steps = step_u(given)
+    return np.where(noise_of(given) <= (1.0 + ROUNDING) * steps, steps, 0.0)
 
 
 def smooth(given: Traces, width: int) -> Smoothed:

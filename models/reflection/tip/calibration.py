@@ -52,6 +52,11 @@ class Calibration:
     """Of the coefficients, shape (p, p), for the spread as it stands."""
 
     @property
+    def fitted_u(self) -> Array:
+        """Standard uncertainties of the coefficients, shape (p,)."""
+        return np.sqrt(np.diagonal(self.covariance))
+
+    @property
     def kinship(self) -> float:
         """How many frequencies err as one: 1 for noise, up to all of them for a wrong standard.
 

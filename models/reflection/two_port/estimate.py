@@ -159,7 +159,8 @@ def _estimated(query: TwoPortQuery, *, conjugated: bool) -> TwoPortEstimate:
     level = float(np.median(noise))
     other = None
     if not magnetic.holds and all(f.holds for f in whole if f.key != "permeability-below-one"):
-        other = length * float(np.nanmedian(both.permeability.real))
+        ratio = float(np.nanmedian(both.permeability.real))
+        other = length * ratio if ratio > 0 else None
     return TwoPortEstimate(estimate, method, planes, position_u, level, known, both.turns, other)
 
 

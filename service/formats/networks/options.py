@@ -10,6 +10,8 @@ from service.formats.errors import FormatError, shown
 
 HERTZ: Mapping[str, float] = {"HZ": 1.0, "KHZ": 1e3, "MHZ": 1e6, "GHZ": 1e9}
 FORMS = ("DB", "MA", "RI")
+LARGEST_IMPEDANCE = 1e6
+"""ohm"""
 PARAMETERS = ("S", "Y", "Z", "G", "H")
 
 
@@ -30,6 +32,7 @@ class Header:
     order: str = "21_12"
     matrix: str = "full"
     references: list[float] = field(default_factory=list)
+    references_line: int = 1
 
     @property
     def scale(self) -> float:
@@ -76,7 +79,7 @@ def _positive(word: str, number: int) -> float:
         value = float(word)
     except ValueError:
         value = -1.0
-    if not 0 < value < 1e6:
+    if not 0 < value < LARGEST_IMPEDANCE:
         raise FormatError("an impedance in ohm above 0 after R", shown(word), line=number)
     return value
 
@@ -127,6 +130,7 @@ def _matrix(header: Header, value: str, number: int) -> None:
 
 def _reference(header: Header, value: str, number: int) -> None:
     header.references += cells_of(value, number)
+    header.references_line = number
 
 
 def _nothing(header: Header, value: str, number: int) -> None:

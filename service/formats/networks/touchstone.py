@@ -8,7 +8,14 @@ import numpy as np
 
 from models.relation import Array, ComplexArray
 from service.formats.errors import FormatError
-from service.formats.networks.options import HERTZ, Header, cells_of, read_keyword, read_options
+from service.formats.networks.options import (
+    HERTZ,
+    LARGEST_IMPEDANCE,
+    Header,
+    cells_of,
+    read_keyword,
+    read_options,
+)
 
 LONGEST = 1_000_000
 """Numbers that a file may hold."""
@@ -23,10 +30,8 @@ class Network:
     """Shape (f,), Hz."""
     parameters: ComplexArray
     """Shape (f, n, n): parameters[:, 1, 0] is S21."""
-    impedance: float
-    """Reference of the first port, ohm."""
-    references: tuple[float, ...] = ()
-    """Of each port, where the file states them one by one."""
+    references: tuple[float, ...]
+    """Impedance that each port refers to, ohm."""
     unit: str = "GHZ"
     """Of frequency, as the option line has it."""
     option_line: int = 1
@@ -60,10 +65,22 @@ def read(text: str, ports: int) -> Network:
     rows = _rows(numbers, lines, width, header)
     frequency = rows[:, 0] * header.scale
     _refuse_order(frequency, lines, width, header)
-    impedance = header.references[0] if header.references else header.impedance
     matrices = _matrices(rows[:, 1:], ports, header)
-    references = tuple(header.references)
-    return Network(frequency, matrices, impedance, references, header.unit, header.option_line)
+    references = _references(header, ports)
+    return Network(frequency, matrices, references, header.unit, header.option_line)
+
+
+def _references(header: Header, ports: int) -> tuple[float, ...]:
+    """Of each port, ohm: [Reference], else R of the option line, else 50."""
+    told = header.references
+    if told and len(told) != ports:
+        raise FormatError(f"{ports} impedances after [Reference], one for each port",
+                          str(len(told)), line=header.references_line)  # fmt: skip
+    for one in told:
+        if not 0 < one < LARGEST_IMPEDANCE:
+            raise FormatError("impedances in ohm above 0 after [Reference]", f"{one:g}",
+                              line=header.references_line)  # fmt: skip
+    return tuple(told) or (header.impedance,) * ports
 
 
 def _numbers(text: str, header: Header) -> tuple[Array, Sequence[int]]:

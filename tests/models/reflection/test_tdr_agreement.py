@@ -79,7 +79,7 @@ STRANGE = {
 def test_what_is_no_trace_of_the_line_has_no_number_but_a_flag(name, method):
     found = method(STRANGE[name], BENCH, KNOWN)
     assert "no-end-reflection" in slugs_of(int(found.flags[0]))
-    assert found.strange[0]
+    assert found.begins.strange[0]
     assert np.isnan(found.columns["apparent_permittivity"][0])
     assert np.isnan(found.columns["bulk_conductivity"][0])
 
@@ -109,7 +109,7 @@ def test_a_trace_among_strange_ones_keeps_its_numbers():
     alone = by_travel_time(Record(LOAM.trace), BENCH, KNOWN)
     rho = np.concatenate([STRANGE["noise"].trace.rho, LOAM.trace.rho, -LOAM.trace.rho])
     together = by_travel_time(Record(traces(LOAM.trace.start, LOAM.trace.step, rho)), BENCH, KNOWN)
-    assert together.strange.tolist() == [True, False, True]
+    assert together.begins.strange.tolist() == [True, False, True]
     for name, values in alone.columns.items():
         assert together.columns[name][1] == pytest.approx(values[0], rel=1e-9), name
 

@@ -265,3 +265,41 @@ def test_a_flag_is_one_advisory_however_many_things_it_is_about(server):
     (told,) = [s["text"] for s in answer["advisories"] if s["code"] == "term-not-resolved"]
     assert "Term 1 (debye)" in told
     assert "Term 2 (cole-cole)" in told
+
+
+def test_phases_in_radians_are_asked_about(server):
+    radians = {"magnitude": np.abs(EPS).tolist(), "degrees": np.angle(EPS).tolist()}
+    codes = {}
+    for name, form in (("radians", radians), ("degrees", ANGLES)):
+        body = request(spectrum={"frequency": F.tolist(), "permittivity": form})
+        answer = post(server, body)
+        assert answer.status_code == 200, answer.text
+        codes[name] = {one["code"] for one in answer.json()["advisories"]}
+        reading = {"temperature": 20, "spectrum": body["spectrum"]}
+        settings = {"raw_records": {"spectrum": {"at_frequency": 5e8}}}
+        whole = {"mixing_model": "topp-1980", "readings": [reading], **settings}
+        raw = server.client.post("/v1/estimates", json=whole).json()
+        codes[f"{name} of a reading"] = {one["code"] for one in raw["advisories"]}
+    assert "phase-unit-suspected" in codes["radians"] & codes["radians of a reading"]
+    assert "phase-unit-suspected" not in codes["degrees"] | codes["degrees of a reading"]
+
+
+def test_a_spectrum_below_that_of_vacuum_is_refused(server):
+    answer = post(server, request(eps=np.full(F.size, 0.5 - 0.01j)))
+    assert answer.status_code == 422
+    assert "which is at least 1" in answer.text
+
+
+def test_a_row_made_of_a_spectrum_that_no_form_describes_is_flagged(server):
+    """Points in pairs, as of a smoothed spectrum: what the form leaves over is no noise."""
+    wave = 1 + 0.1 * np.sin(np.arange(F.size) / 3)
+    told = {}
+    for name, eps in (("right", EPS), ("wavy", EPS * wave)):
+        reading = {"temperature": 20, "spectrum": request(eps=eps)["spectrum"]}
+        settings = {"spectrum": {"at_frequency": 5e8, "model": COLE_COLE}}
+        body = {"mixing_model": "topp-1980", "readings": [reading], "raw_records": settings}
+        answer = server.client.post("/v1/estimates", json=body)
+        assert answer.status_code == 200, answer.text
+        told[name] = answer.json()["estimates"][0]["flags"]
+    assert "raw-record-flagged" in told["wavy"]
+    assert "raw-record-flagged" not in told["right"]

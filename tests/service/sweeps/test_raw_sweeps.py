@@ -203,7 +203,7 @@ def test_a_sweep_less_certain_than_asked_for_is_told_with_its_reason(server):
     body = request()
     body["raw_records"]["reflection"]["largest_relative_uncertainty"] = 1e-6
     answer = ask(server, body).json()
-    assert answer["estimates"][0]["flags"] == ["no-permittivity"]
+    assert answer["estimates"][0]["flags"] == ["no-permittivity", "raw-record-flagged"]
     assert "flagged too-uncertain where" in " ".join(of_records(answer))
 
 
@@ -217,3 +217,67 @@ def test_conjugated_sweeps_are_told_beside_the_estimate(server):
     assert "flagged conjugated where they were read, 2 in all" in " ".join(of_records(answer))
     every = ask(server, {**body, "mixing_model": "all"}).json()
     assert "flagged conjugated where they were read, 2 in all" in " ".join(of_records(every))
+
+
+def of_two_ports(**changes):
+    return request(**{
+        "raw_records": {"scattering": {"at_frequency": 1e9, "line": {"sample_length": 0.03}}},
+        "readings": [{"temperature": 22, "scattering": {"touchstone": two_port_text("loam_30mm")}}],
+        **changes,
+    })  # fmt: skip
+
+
+def codes(answer):
+    assert answer.status_code == 200, answer.text
+    return {one["code"] for one in answer.json()["advisories"]}
+
+
+def test_what_is_said_of_sweeps_is_said_beside_the_estimate(server):
+    body = request()
+    body["raw_records"]["reflection"]["standards"] = STANDARDS[:3]
+    assert "aperture-not-told" in codes(ask(server, body))
+    assert "aperture-not-told" not in codes(ask(server, request()))
+    wrong = {"scattering": {"at_frequency": 1e9, "line": {"sample_length": 0.02}}}
+    answer = ask(server, of_two_ports(raw_records=wrong))
+    assert "sample-length-suspected" in codes(answer)
+    assert "raw-record-flagged" in answer.json()["estimates"][0]["flags"]
+    right = ask(server, of_two_ports())
+    assert "sample-length-suspected" not in codes(right)
+    assert right.json()["estimates"][0]["flags"] == []
+
+
+def test_a_file_of_another_reference_is_told_beside_the_estimate(server):
+    body = of_two_ports()
+    sweep = body["readings"][0]["scattering"]
+    sweep["touchstone"] = sweep["touchstone"].replace("R 50", "R 75")
+    assert "renormalised" in codes(ask(server, body))
+
+
+def test_lengths_of_raw_records_come_in_the_units_of_the_request(server):
+    plain = ask(server, of_two_ports()).json()["estimates"][0]
+    units = {"sample_length": "mm", "grain_size": "mm", "frequency": "GHz"}
+    body = of_two_ports(units=units)
+    body["raw_records"]["scattering"] = {"at_frequency": 1.0, "line": {"sample_length": 30.0}}
+    body["readings"][0]["scattering"]["grain_size"] = 0.2
+    answer = ask(server, body)
+    assert answer.status_code == 200, answer.text
+    found = answer.json()["estimates"][0]["real_permittivity"]
+    assert found == pytest.approx(plain["real_permittivity"], rel=1e-9)
+    text, places = refused(ask(server, of_two_ports(units={"sample_lenght": "mm"})))
+    assert "did you mean sample_length?" in text
+    assert places == ["#/units/sample_lenght"]
+
+
+def test_an_open_cell_that_is_shorted_is_named_in_its_reading(server):
+    f = np.linspace(0.05e9, 2e9, 40)
+    way = np.tan(2 * np.pi * f * 0.01 * 3 / 299792458.0) / 3
+    read = (1j * way - 1) / (1j * way + 1)
+    sweep = {"reflection": {"real": read.real.tolist(), "imaginary": read.imag.tolist()}}
+    body = request(
+        raw_records={"reflection": {"kind": "cell", "at_frequency": 1e9, "frequency": f.tolist(),
+                                    "line": {"sample_length": 0.01}}},
+        readings=[{"temperature": 20, "reflection": {"open": sweep}}],
+    )  # fmt: skip
+    text, places = refused(ask(server, body))
+    assert "this is a shorted end" in text
+    assert places == ["#/readings/0/reflection/open"]

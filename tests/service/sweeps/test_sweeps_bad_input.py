@@ -124,8 +124,8 @@ THREE = [1e9, 2e9, 3e9]
           "line": {**LINE, "holder_length": 0.05, "air_before": 0.04}}, "leave 0.02 m of air",
          "#/line/air_before"),
         ({"sample": {"touchstone": "[Version] 2.0\n# GHz S RI\n[Number of Ports] 2\n"
-                     "[Reference] 50 75\n[Network Data]\n1 .1 0 .2 0 .2 0 .1 0\n[End]\n"},
-          "line": LINE}, "found 50 75 ohm", "#/sample/touchstone"),
+                     "[Reference] 50 0\n[Network Data]\n1 .1 0 .2 0 .2 0 .1 0\n[End]\n"},
+          "line": LINE}, "in ohm above 0 after [Reference], found 0", "#/sample/touchstone"),
         ({"sample": {"touchstone": FILE, "s11": ONE}, "line": LINE}, "leave it out",
          "#/sample/s11"),
         ({"sample": {"touchstone": "# GHz S RI R 50\n1 .5 0\n"}, "line": LINE},

@@ -32,7 +32,7 @@ def test_every_unit_and_format_is_read(unit, scale, form):
     found = read(one_port(unit, form, scale), 1)
     np.testing.assert_allclose(found.frequency, [1e9, 2e9, 3e9], rtol=1e-9)
     np.testing.assert_allclose(found.parameters[:, 0, 0], VALUES, rtol=1e-9)
-    assert found.impedance == 50.0
+    assert found.references == (50.0,)
 
 
 def test_an_empty_option_line_means_gigahertz_magnitude_and_degrees():
@@ -45,7 +45,7 @@ def test_comments_stand_anywhere_and_words_come_in_any_order_and_case():
     text = "! a\n\n# r 75 ri s mhz ! b\n! c\n100 .1 .2 ! d\n# GHz S DB R 50\n200 .3 .4\n"
     found = read(text, 1)
     np.testing.assert_allclose(found.frequency, [1e8, 2e8])
-    assert found.impedance == 75.0
+    assert found.references == (75.0,)
 
 
 @pytest.mark.parametrize("name", ["ptfe_20mm", "loam_30mm", "drysand_50mm"])

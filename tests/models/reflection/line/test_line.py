@@ -205,3 +205,36 @@ def test_a_short_that_is_an_open_end_is_flagged_at_every_point(eps):
     shorted, opened = (reads_of((end,), 1e-3, eps=eps)[end] for end in ("short", "open"))
     assert "not-shorted" not in flags_of({"short": shorted})
     assert flags_of({"short": opened})["not-shorted"] == 1
+
+
+@pytest.mark.parametrize(
+    ("turn", "eps"),
+    [(np.asarray, SOIL), (np.asarray, WET), (np.asarray, CLAY), (np.conj, SOIL), (np.conj, CLAY)],
+    ids=["moist", "wet", "clay", "moist-conjugated", "clay-conjugated"],
+)
+@pytest.mark.parametrize("length", [0.01, LENGTH])
+def test_a_short_that_is_called_open_is_refused(turn, eps, length):
+    read = turn(cell.reflection(eps, WIDE, length, "short")[0])
+    query = LineQuery(frequency=WIDE, reads={"open": Read(read)}, length=length)
+    with pytest.raises(ParameterError, match="this is a shorted end") as refused:
+        estimate_line(query)
+    assert [c.place for c in refused.value.complaints] == [("sample", "open")]
+
+
+@pytest.mark.parametrize("sigma", [0.0, 0.05, 0.5, 1.0])
+@pytest.mark.parametrize("static", [3.0, 15.0, 80.0])
+@pytest.mark.parametrize("length", [0.01, 0.03, 0.1])
+def test_an_open_cell_of_any_soil_is_taken_as_one(sigma, static, length):
+    eps = debye(WIDE, static, 2.5, 1e-11, sigma)
+    read = cell.reflection(eps, WIDE, length, "open")[0]
+    query = LineQuery(frequency=WIDE, reads={"open": Read(read)}, length=length)
+    assert np.isfinite(estimate_line(query).estimate.band.real).any()
+
+
+def test_a_lossless_open_cell_of_the_other_convention_is_conjugated():
+    """Its roots as sent have a loss of their own: the phase that rises decides."""
+    eps = np.full(WIDE.size, 2.5 + 0j)
+    read = np.conj(cell.reflection(eps, WIDE, 0.01, "open")[0])
+    found = estimate_line(LineQuery(frequency=WIDE, reads={"open": Read(read)}, length=0.01))
+    assert found.estimate.conjugated
+    np.testing.assert_allclose(found.estimate.permittivity[0], eps, rtol=1e-6)
