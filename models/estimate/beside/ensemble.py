@@ -11,7 +11,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from models.advisories import Advice
+from models.advisories import Advice, advise
 from models.errors import Complaint, ModelError, ParameterError
 from models.estimate.basis import Basis, Query, prepare
 from models.estimate.choice import suits_soil
@@ -25,13 +25,12 @@ from models.readings import Readings
 from models.relation import Array
 from models.uncertainty.coverage import shortest_interval
 
-OUTSIDE = (
-    BIT["outside-model-range"]
-    | BIT["inconsistent"]
-    | BIT["low-frequency"]
-    | BIT["outside-water-range"]
-)
-"""Any of these takes a model's weight away."""
+OUTSIDE = BIT["outside-model-range"] | BIT["inconsistent"] | BIT["outside-water-range"]
+"""Any of these takes a model's weight away;"""
+LEANING = BIT["low-frequency"]
+"""this one only where another model does without it: its band reaches down for what it means."""
+TWICE = {"power-law": "crim", "sihvola": "bruggeman"}
+"""Models that are another one, to the digit, at their defaults: one of both counts."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,7 +50,7 @@ class Ensemble:
     """Water content with its band, and ``model_spread``: standard deviation between the models
     that have weight."""
     flags: Flags
-    """What all members say of a reading; where none has weight, what any of them says."""
+    """What all members say of a reading, and that none has weight where that is so."""
 
 
 COLUMNS = (*band_names("water_content"), "model_spread")
@@ -65,6 +64,7 @@ SAID_ONCE = frozenset(
         "frequency-assumed",
         "temperature-assumed",
         "porosity-disagrees",
+        "no-uncertainty-stated",
     }
 )
 
@@ -87,12 +87,17 @@ class EveryModel:
                 known = fullest.get(said.code)
                 if said.code in SAID_ONCE and (known is None or len(known.text) < len(said.text)):
                     fullest[said.code] = said
+        if "bulk_conductivity" in self.query.columns or self.query.salinity.model is not None:
+            fullest["all-without-salt"] = advise("all-without-salt")
         return tuple(fullest.values())
 
     def estimate(self, readings: Readings) -> Ensemble:
         """Every model's estimates, and their combination."""
         found = {key: estimate(readings, basis) for key, basis in self.bases.items()}
-        weights = np.array([_weight(found[key], basis) for key, basis in self.bases.items()])
+        weights = np.array([self._weight(key, found[key]) for key in self.bases])
+        leaning = np.array([(each.flags & LEANING) != 0 for each in found.values()])
+        straight = np.where(leaning, 0.0, weights)
+        weights = np.where(added(straight) > 0, straight, weights)
         total = added(weights)
         shares = np.divide(weights, total, out=np.zeros_like(weights), where=total > 0)
         members = {
@@ -101,12 +106,20 @@ class EveryModel:
         }
         flags = np.array([estimates.flags for estimates in found.values()])
         heard = total > 0
-        said: Flags = np.bitwise_or.reduce(flags, axis=0)
         common: Flags = np.bitwise_and.reduce(flags, axis=0)
         most = max(most_water(basis) for basis in self.bases.values())
         columns = _combined(members, shares, most, self.query.probability)
-        common[~heard] = said[~heard]
+        common[~heard] |= BIT["no-model-in-range"]
         return Ensemble(members, columns, common)
+
+    def _weight(self, key: str, found: Estimates) -> Array:
+        """Inverse square of the model's own uncertainty where it holds; 0 elsewhere."""
+        basis, u = self.bases[key], found.columns["water_content_u"]
+        within = suits_soil(basis.model, basis.query.soil) and not basis.outside
+        within &= TWICE.get(key) not in self.bases
+        counts = within & np.isfinite(u) & (u > 0) & ((found.flags & OUTSIDE) == 0)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            return np.where(counts, 1.0 / np.square(u), 0.0)
 
 
 def prepare_all(query: Query) -> EveryModel:
@@ -125,15 +138,6 @@ def prepare_all(query: Query) -> EveryModel:
         detail = "no mixing model has what it needs: give soil.texture"
         raise ParameterError("soil", [Complaint("soil", detail, ("soil",))])
     return EveryModel(query, bases, silent)
-
-
-def _weight(found: Estimates, basis: Basis) -> Array:
-    """Inverse square of the model's own uncertainty where it holds; 0 elsewhere."""
-    u = found.columns["water_content_u"]
-    within = suits_soil(basis.model, basis.query.soil) and not basis.outside
-    counts = within & np.isfinite(u) & (u > 0) & ((found.flags & OUTSIDE) == 0)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        return np.where(counts, 1.0 / np.square(u), 0.0)
 
 
 def _combined(

@@ -125,15 +125,20 @@ class Chain:
             answer = to_extract(answer, water_content=above, **at)
         found = logarithm(answer) + columns[f"{OWN_OF_SALT} own"] * columns[OWN_OF_SALT]
         if self.leading and np.isnan(found).any():
-            found = self._beyond(found, columns)
+            found = self._beyond(found, answer, columns)
         return found if theta is None else np.where(theta > self.most, np.nan, found)
 
-    def _beyond(self, found: Array, columns: Mapping[str, Array]) -> Array:
-        """Below or above all others where there is no answer; shape (n, draws)."""
+    def _beyond(self, found: Array, answer: Array, columns: Mapping[str, Array]) -> Array:
+        """Below or above all others where there is no answer; shape (n, draws).
+
+        What is left after the surfaces is zero or less: below. Else the model has no number there,
+        and first order says towards which end.
+        """
         count = found.shape[0] if found.ndim > 1 else 1
         each = [np.broadcast_to(columns[f"leading {n}"], (count, 1)) for n in self.leading]
         towards = np.concatenate(each, axis=1) @ np.stack([columns[n] for n in self.leading])
-        return np.where(np.isnan(found), np.copysign(BEYOND_ALL, towards), found)
+        side = np.where(answer <= 0.0, -BEYOND_ALL, np.copysign(BEYOND_ALL, towards))
+        return np.where(np.isnan(found), side, found)
 
     def _water_content(self, columns: Mapping[str, Array]) -> Array | None:
         """With every error in it; None where the answer does not rest on it."""

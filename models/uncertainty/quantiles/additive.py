@@ -28,6 +28,9 @@ from models.uncertainty.quantiles.through import SumThrough
 APART = 0.2
 """In half-widths, of measurand and sum of curves at an end: beyond, the row is not settled."""
 
+TURNED = 0.2
+"""Likewise, of the curvature across the way: it is a second order, and no more."""
+
 
 @dataclass(frozen=True, slots=True)
 class Ends:
@@ -73,10 +76,21 @@ def ends(
     off_below, off_above = at_lower - below.value, at_upper - above.value
     lower = at_lower + below.curvature - off_below / z**2
     upper = at_upper + above.curvature - off_above / z**2
-    lower, off_below = np.where(low > tail, -np.inf, lower), np.where(low > tail, 0.0, off_below)
-    upper, off_above = np.where(high > tail, np.inf, upper), np.where(high > tail, 0.0, off_above)
+    unbounded = low > tail, high > tail
+    lower, upper = np.where(unbounded[0], -np.inf, lower), np.where(unbounded[1], np.inf, upper)
+    off = _larger(off_below, off_above, unbounded)
+    turned = _larger(below.curvature, above.curvature, unbounded)
     half = np.minimum(0.5 * (upper - lower), np.maximum(value - lower, upper - value))
     half = np.where(np.isinf(half), np.minimum(value - lower, upper - value), half)
-    off = np.maximum(np.abs(off_below), np.abs(off_above))
-    settled = sums.sound & (off <= within * half) & (lower <= value) & (value <= upper)
+    settled = sums.sound & (off <= within * half) & (turned <= TURNED * half)
+    settled &= (lower <= value) & (value <= upper)
     return Ends(np.where(settled, lower, np.nan), np.where(settled, upper, np.nan), settled)
+
+
+def _larger(below: Array, above: Array, unbounded: tuple[Array, Array]) -> Array:
+    """The larger size of both, of ends that there are."""
+    parts = (
+        np.where(none, 0.0, np.abs(each))
+        for each, none in zip((below, above), unbounded, strict=True)
+    )
+    return np.maximum(*parts)
