@@ -204,6 +204,7 @@ _SPOILING = np.bitwise_or.reduce(
             "unreadable",
             "out-of-gate",
             "unreadable-row",
+            "unusable-uncertainty",
             "loss-missing",
             "no-end-reflection",
         }

@@ -15,7 +15,10 @@ from models.uncertainty.first_order import Input
 BEYOND = 0.02
 """Relative standard uncertainty of a water model outside its range, where it goes on smoothly."""
 _TEMPERATURE_TOLD = (
-    BIT["missing:temperature"] | BIT["unreadable:temperature"] | BIT["out-of-gate:temperature"]
+    BIT["missing:temperature"]
+    | BIT["unreadable:temperature"]
+    | BIT["out-of-gate:temperature"]
+    | BIT["unusable-uncertainty"]
 )
 """Any of these says why a row has no temperature."""
 

@@ -94,7 +94,7 @@ def to_pore_water(
 
 
 def _attenuation(loss: Array, theta: Array, real: Array, a: Array, b: Array) -> Array:
-    """r of the water where the soil loses so much; NaN where it loses more with r = 0.
+    """R of the water where the soil loses so much; NaN where it loses more with r = 0.
 
     The loss rises with r and bends upward, so that Newton's steps from above come down to the
     root and never beyond it. A row stops for good once a step changes nothing, so that its answer
@@ -137,7 +137,7 @@ def _loss(
 def _without_water(
     theta: Array, porosity: ArrayLike, solid_permittivity: Numbers
 ) -> tuple[Array, Array]:
-    """a and b of the soil whose water is left out: solid and air."""
+    """A and b of the soil whose water is left out: solid and air."""
     solid = np.sqrt(np.asarray(solid_permittivity, np.complex128))
     phi = column(porosity)
     return column(solid.real * (1 - phi) + phi - theta), column(-solid.imag * (1 - phi))

@@ -5,7 +5,7 @@ Rhoades, Raats and Prather (1976) and of Archie (1942). An estimate is a default
 value; each has the standard uncertainty it deserves.
 """
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -133,6 +133,13 @@ CLASSES: Registry[ConductionOfClass] = Registry(
 )  # fmt: skip
 
 
+CLAY = "clay"
+"""Origin of what is estimated from the clay content."""
+OF_CLAY: Mapping[str, Callable[[float], Array]] = {
+    "surface_conductivity": surface_conductivity, "saturation_percentage": saturation_percentage,
+}  # fmt: skip
+
+
 def estimates(
     texture: str | None, clay: float | None, clay_u: float = 0.0
 ) -> Mapping[str, Estimate]:
@@ -150,11 +157,15 @@ def estimates(
             found[name] = Estimate(value, u, origin)
     if clay is None or np.isnan(clay):
         return found
-    for name, line, spread in (
-        ("surface_conductivity", surface_conductivity, float(surface_spread(clay))),
-        ("saturation_percentage", saturation_percentage, SATURATION_SPREAD),
-    ):
+    spreads = float(surface_spread(clay)), SATURATION_SPREAD
+    for (name, line), spread in zip(OF_CLAY.items(), spreads, strict=True):
         value = float(line(clay))
-        wet, dry = float(line(clay + clay_u)), float(line(clay - clay_u))
-        found[name] = Estimate(value, float(np.hypot(spread * value, (wet - dry) / 2)), "clay")
+        whole = float(np.hypot(spread * value, effect_of_clay(name, clay, clay_u)))
+        found[name] = Estimate(value, whole, CLAY)
     return found
+
+
+def effect_of_clay(name: str, clay: float, clay_u: float) -> float:
+    """What one standard uncertainty of the clay does to an estimate from it, signed, SI."""
+    line = OF_CLAY[name]
+    return float(line(clay + clay_u) - line(clay - clay_u)) / 2

@@ -81,10 +81,9 @@ def _paste(pore: PoreWater) -> dict[str, Moving]:
     if paste is None or density is None:
         return {}
     soil, origin = pore.soil, pore.soil.origins["bulk_density"]
+    name, spread = "saturation_percentage", paste.standard_uncertainty
     return {
-        "saturation_percentage": moving(
-            paste.value, saturation_percentage=paste.standard_uncertainty
-        ),
+        name: moving(paste.value, **sources_of(soil, name, spread, paste.origin)),
         "bulk_density": moving(density[0], **sources_of(soil, "bulk_density", density[1], origin)),
     }
 

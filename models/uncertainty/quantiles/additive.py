@@ -31,6 +31,9 @@ APART = 0.2
 TURNED = 0.2
 """Likewise, of the curvature across the way: it is a second order, and no more."""
 
+MOST_LEFT_OUT = .1
+"""Probability beyond the ends of curves, from which the other end feels it as well."""
+
 
 @dataclass(frozen=True, slots=True)
 class Ends:
@@ -83,11 +86,13 @@ def ends(
     half = np.minimum(0.5 * (upper - lower), np.maximum(value - lower, upper - value))
     half = np.where(np.isinf(half), np.minimum(value - lower, upper - value), half)
     settled = sums.sound & (off <= within * half) & (turned <= TURNED * half)
-    settled &= (lower <= value) & (value <= upper)
+    settled &= (lower <= value) & (value <= upper) & (np.maximum(low, high) <= MOST_LEFT_OUT)
     return Ends(np.where(settled, lower, np.nan), np.where(settled, upper, np.nan), settled)
 
 
-def _larger(below: Array, above: Array, unbounded: tuple[Array, Array]) -> Array:
+def _larger(
+    below: Array, above: Array, unbounded: tuple[NDArray[np.bool_], NDArray[np.bool_]]
+) -> Array:
     """The larger size of both, of ends that there are."""
     parts = (
         np.where(none, 0.0, np.abs(each))

@@ -69,8 +69,8 @@ def test_quantiles_are_those_of_draws(texture, key):
         half = 0.5 * np.log(theirs["_upper"] / theirs["_lower"])
         for end in ENDS:
             off = np.abs(np.log(ours[end] / theirs[end])) / half
-            # There the surfaces alone conduct more than the soil in one draw of three.
-            hard = (texture, key) == ("clay", "rhoades-1976")
+            # There the surfaces alone conduct more than the soil in up to one draw of three.
+            hard = texture == "clay" and key in {"rhoades-1976", "mualem-friedman-1991"}
             assert np.quantile(off, 0.9) < (0.25 if hard else 0.08)
 
 
@@ -246,6 +246,46 @@ def test_the_uncertainty_follows_the_band_where_the_answer_nearly_ends():
                "bulk_conductivity": np.full(201, 0.6), "bulk_conductivity_u": steps}  # fmt: skip
     found = estimate(read(columns, {}, {}), prepare(query)).columns
     u = found[f"{PORE}_u"]
-    assert (np.abs(np.diff(u)) < 0.02 * u[:-1]).all()
+    assert (np.abs(np.diff(u)) < 0.1 * u[:-1]).all()
     widest = np.log(found[f"{PORE}_upper"] / found[PORE])
     assert (u <= widest * found[PORE]).all()
+
+
+@pytest.mark.parametrize("texture", ["sand", "loamy-sand", "sandy-loam", "silt", "silty-clay-loam"])
+def test_fresh_soil_with_little_clay_has_the_ends_of_draws(texture):
+    """What clay does to the surfaces bends sharply there: no second order describes it."""
+    columns = {
+        "apparent_permittivity": np.repeat([14.0, 22.0], 6), "temperature": np.full(12, 18.0),
+        "bulk_conductivity": np.tile([0.03, 0.06, 0.1, 0.15, 0.3, 0.9], 2),
+    }  # fmt: skip
+    columns["bulk_conductivity_u"] = 0.05 * columns["bulk_conductivity"]
+    plain = basis_for("rhoades-1989", 1e9, error=None, apparent_permittivity_u=0.5).query
+    plain = replace(plain, soil=describe(texture, {}, {}), columns=frozenset(columns))
+    found = estimate(read(columns, {}, {}), prepare(plain)).columns
+    drawn = estimate(read(columns, {}, {}), drawing(prepare(plain), Draws(32_768))).columns
+    half = 0.5 * np.log(drawn[f"{PORE}_upper"] / drawn[f"{PORE}_lower"])
+    for end in ENDS:
+        off = np.abs(np.log(found[PORE + end] / drawn[PORE + end])) / half
+        assert (off < 0.2).all(), (end, off)
+
+
+def test_clay_is_one_error_in_the_surfaces_and_in_the_paste():
+    """All exact but clay: more of it takes from the pore water and adds to the paste."""
+
+    def of(clay, spread=0.0):
+        soil = describe(
+            None, {"clay": clay, "sand": 0.4, "bulk_density": 1400.0, "porosity": 0.47},
+            {"clay": spread},
+        )  # fmt: skip
+        query = basis_for("rhoades-1989", 1e9, error=0.0, own=0.0).query
+        columns = {"apparent_permittivity": np.array([15.0]), "temperature": np.array([25.0]),
+                   "bulk_conductivity": np.array([0.4])}  # fmt: skip
+        query = replace(query, soil=soil, columns=frozenset(columns))
+        return {n: v[0] for n, v in estimate(read(columns, {}, {}), prepare(query)).columns.items()}
+
+    found, more, less = of(0.2, 0.01), of(0.21), of(0.19)
+    assert more["water_content"] == less["water_content"]
+    by_clay = np.log(less[EXTRACT] / more[EXTRACT]) / 2
+    by_line = 0.20  # of the line itself, relative
+    whole = found[f"{EXTRACT}_u"] / found[EXTRACT]
+    assert whole == pytest.approx(np.hypot(by_clay, by_line), rel=0.02)
