@@ -33,6 +33,9 @@ FEWEST, OUTSIDE = 512, 20
 """Draws for rows that nothing else settles, and how many of them the interval leaves out."""
 CALM = 0.05
 """Shift of an end by curvature, in half-widths, up to which first order and that shift will do;"""
+STRIDE = 0.4
+"""Logarithm that one standard uncertainty of a source may move for that; a longer stride may meet
+a floor or a plateau, of which steps of one tell nothing."""
 BARE = 0.002
 """the same where neither model has an error of its own to cover it."""
 
@@ -121,8 +124,12 @@ def _shift(
     z = coverage_factor(asked.probability)
     steeper = np.divide(z * z - 1.0, np.square(total), out=np.zeros_like(total), where=total > 0)
     shift, size = np.zeros_like(total), np.zeros_like(total)
-    for steps in (*stepped.direct.values(), stepped.through):
-        moved = steps.bend * (1.0 + steeper * np.square(steps.slope))
+    strides = np.zeros_like(total)
+    for name, steps in (*stepped.direct.items(), ("", stepped.through)):
+        slope = steps.slope
+        if name != OWN_OF_SALT:
+            strides = np.maximum(strides, np.abs(slope))
+        moved = steps.bend * (1.0 + steeper * np.square(slope))
         shift += moved
         size += np.abs(moved)
     if through.bends:
@@ -135,7 +142,7 @@ def _shift(
         size += np.abs(moved)
     below, above = content.scales
     limit = (BARE if asked.bare else CALM) * z * total
-    return shift, (size <= limit) & (below == above)
+    return shift, (size <= limit) & (strides <= STRIDE) & (below == above)
 
 
 def _curved(
