@@ -18,6 +18,7 @@ from models.flags import BIT, Flags, withheld, without_pore_water
 from models.quantity import band_names
 from models.readings import Readings
 from models.relation import Array
+from models.uncertainty.coverage import coverage_factor
 from models.uncertainty.first_order import Input
 
 BLOCK = 16_384
@@ -109,10 +110,11 @@ def pore_water_of(worked: Worked, basis: Basis) -> PoreWater | None:
 def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
     worked = work_out(readings, basis)
     found, content, flags = worked.found, worked.content, worked.flags
+    held = _held(content, basis)
     columns: dict[str, Array] = {
         "water_content": content.interval.peak,
-        "water_content_u": content.standard_uncertainty,
-        "water_content_u_shared": content.shared,
+        "water_content_u": content.standard_uncertainty * held,
+        "water_content_u_shared": content.shared * held,
         "water_content_lower": content.interval.lower,
         "water_content_upper": content.interval.upper,
     }
@@ -130,6 +132,19 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
         rest = {n: v for n, v in salt.items() if n not in bulk}
         columns |= _without(rest, without_pore_water(flags))
     return Estimates(columns, flags)
+
+
+def _held(content: WaterContent, basis: Basis) -> Array | float:
+    """Of the standard uncertainty, what the range of what is possible leaves: 1 far from its ends.
+
+    A quantity between 0 and 1 is not uncertain by more than its interval is wide.
+    """
+    if basis.query.draws is not None:
+        return 1.0
+    ends, u = content.interval, content.standard_uncertainty
+    arm = np.maximum(ends.upper - ends.peak, ends.peak - ends.lower)
+    arm /= coverage_factor(basis.query.probability)
+    return np.minimum(np.divide(arm, u, out=np.ones_like(u), where=u > arm), 1.0)
 
 
 def _timed(readings: Readings, basis: Basis) -> Array | None:
