@@ -11,7 +11,7 @@ from models.estimate.salt.salinity import BULK_25, EXTRACT, Salinity, SalinityQu
 from models.mixing import MIXING_MODELS
 from models.mixing.family import MixingModel
 from models.quantity import NOISE
-from models.soil.description import Soil
+from models.soil.description import MINERAL_ORGANIC, Soil
 from models.uncertainty.draws import Draws
 from models.water import WATER_MODELS
 from models.water.family import WaterModel
@@ -131,10 +131,13 @@ def prepare(query: Query) -> Basis:
 
 
 def _outside(model: MixingModel, soil: Soil) -> tuple[str, ...]:
+    held = soil.values
+    if soil.texture is not None:
+        held = {"organic_matter": MINERAL_ORGANIC, **held}
     return tuple(
         name
         for name, known in model.validity.items()
-        if name in soil.values and bool(known.excludes(soil.values[name]))
+        if name in held and bool(known.excludes(held[name]))
     )
 
 

@@ -22,6 +22,7 @@ from models.estimate.surroundings import Surroundings
 from models.mixing.apparent import to_real
 from models.readings import Readings
 from models.relation import Array
+from models.soil.description import MINERAL_ORGANIC
 from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval
 from models.uncertainty.first_order import Input, propagate
 
@@ -178,7 +179,7 @@ def _setting(
     around: Surroundings,
     computed: Array,
 ) -> Setting:
-    soil = basis.query.soil.values
+    soil, texture = basis.query.soil.values, basis.query.soil.texture
     return Setting(
         permittivity=found.value,
         water_content=computed,
@@ -187,7 +188,7 @@ def _setting(
         temperature_u=around.temperature_u,
         conductivity=_uncorrected(readings, basis, found),
         clay=soil.get("clay"),
-        organic_matter=soil.get("organic_matter"),
+        organic_matter=soil.get("organic_matter", MINERAL_ORGANIC if texture else None),
     )
 
 

@@ -11,6 +11,7 @@ from models.soil.texture import TEXTURES, TextureClass, texture_key
 
 PARTICLE_DENSITY, PARTICLE_DENSITY_U = 2650.0, 50.0  # mineral soils, common practice
 ORGANIC_DENSITY = 1400.0  # of organic matter, common practice
+MINERAL_ORGANIC = 0.02  # kg/kg, of a soil whose texture class is a mineral one, common practice
 CLOSURE = 0.02  # how far sand + silt + clay may be from one
 
 

@@ -309,3 +309,16 @@ def test_a_temperature_outside_the_water_model_explains_no_missing_number():
                             apparent_permittivity=3.9, temperature=warmth)  # fmt: skip
         assert np.isnan(found["water_content"])
         assert "no-solution" in flags
+
+
+@pytest.mark.parametrize("key", ["kellner-lundin-2001", "schaap-1997", "roth-1992-organic"])
+def test_a_curve_of_peat_is_out_of_place_in_a_mineral_class(key):
+    """A texture class other than peat says as much as a small content of organic matter."""
+    loam, organic = describe("loam", {}, {}), describe("loam", {"organic_matter": 0.02}, {})
+    by_class, one = told(key, soil=loam, apparent_permittivity=18.0, temperature=15.0)
+    by_content, other = told(key, soil=organic, apparent_permittivity=18.0, temperature=15.0)
+    assert "outside-model-range" in by_class & by_content
+    assert one["water_content_u"] == pytest.approx(other["water_content_u"], rel=0.03)
+    assert "outside-model-range" not in told(
+        key, soil=describe("peat", {}, {}), apparent_permittivity=40.0, temperature=15.0
+    )[0]  # fmt: skip
