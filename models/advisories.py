@@ -96,10 +96,38 @@ ADVISORIES: Registry[Advisory] = Registry(
              "contradict by more than 0.05.",
              text="porosity {porosity} and 1 - bulk_density/particle_density = {derived} "
              "contradict; the porosity as given was used."),
+    Advisory(key="texture-disagrees", condition="A content of clay or sand is given that the named "
+             "texture class cannot have.",
+             text="{name} {value} is not that of the texture class {texture} (about {mean}): the "
+             "content as given was used, and what else the class fills in is that of {texture}."),
     Advisory(key="unit-suspected", condition="Values of one quantity are impossible as sent and "
              "would be possible in a unit often sent by mistake.",
              text="{count} values of {name} are impossible in {unit} and possible in {other}, "
              'such as {value}: name the unit, for example "units": {{"{name}": "{other}"}}.'),
+    Advisory(key="bulk-unit-doubted", condition="A bulk conductivity is possible and above 5 dS/m, "
+             "and its unit was not named.",
+             text="{count} values of {name} are above 5 dS/m, up to {value}, which few soils reach: "
+             'were they in {other}? Then name the unit: "units": {{"{name}": "{other}"}}.'),
+    Advisory(key="travel-time-impossible", condition="A travel time is shorter than that of light "
+             "along the rods, or longer than a permittivity of 200 makes it.",
+             text="{count} travel times such as {value} {unit} are impossible: along rods of "
+             "{length} m, there and back, {low} to {high} {unit} are possible. Check the unit, "
+             "probe_length, and that the time begins where the rods do."),
+    Advisory(key="uncertainty-not-used", condition="A column <quantity>_u holds text that is no "
+             "number, a number below zero, or one wider than all that is possible.",
+             text="{count} values of {name} cannot be used, such as {value}: expected a number of "
+             "at least 0, no wider than what is possible. There {about} was not used either."),
+    Advisory(key="uncertainty-alone", condition="An uncertainty came without its value.",
+             text="{name} came without {about}, so nothing was made of it."),
+    Advisory(key="name-not-known", condition="A column of a table is none of ours, and nearly one "
+             "or another word for one.",
+             text="column {name} was not read, and passed through; did you mean {meant}?"),
+    Advisory(key="unreadable-rows", condition="A row of a table cannot be taken apart.",
+             text="{count} rows cannot be taken apart, the first of them on line {line}: expected "
+             "{expected}, found {found}."),
+    Advisory(key="draws-not-made", condition="draws or seed came without a propagation by draws.",
+             text="{names} came without propagation monte-carlo: no draws were made, the band is "
+             "that of first order."),
     Advisory(key="frozen-readings", condition="A reading is at or below 0 Cel.",
              text="{count} readings were taken at or below 0 Cel: unfrozen water only."),
     Advisory(key="probe-not-calibrated", condition="A waveform came without traces of its probe in "

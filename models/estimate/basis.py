@@ -12,11 +12,14 @@ from models.mixing import MIXING_MODELS
 from models.mixing.family import MixingModel
 from models.quantity import NOISE
 from models.soil.description import MINERAL_ORGANIC, Soil
+from models.soil.texture import TEXTURES
 from models.uncertainty.draws import Draws
 from models.water import WATER_MODELS
 from models.water.family import WaterModel
 
 ASSUMED_TEMPERATURE_U = 7.0
+UNLIKELY = 4.0
+"""Standard uncertainties of a class from its mean: beyond, a content is that of another class."""
 ASSUMED_FREQUENCY = 1e9
 """Hz, of a probe that does not say: the upper end of what TDR sees."""
 
@@ -210,17 +213,19 @@ def _unstated(basis: Basis) -> list[str]:
     return came + exact
 
 
-def _contradiction(soil: Soil) -> list[Advice]:
-    given = {n for n, origin in soil.origins.items() if origin == "given"}
-    if not {"porosity", "bulk_density"} <= given:
-        return []
-    derived = 1.0 - soil.values["bulk_density"] / soil.values["particle_density"]
-    if abs(derived - soil.values["porosity"]) <= 0.05:
-        return []
-    return [
-        advise(
-            "porosity-disagrees",
-            porosity=f"{soil.values['porosity']:.3g}",
-            derived=f"{derived:.3g}",
-        )
-    ]
+def _contradiction(soil: Soil) -> Iterator[Advice]:
+    given = {n: soil.values[n] for n, origin in soil.origins.items() if origin == "given"}
+    if given.keys() >= {"porosity", "bulk_density"}:
+        derived = 1.0 - given["bulk_density"] / soil.values["particle_density"]
+        if abs(derived - given["porosity"]) > 0.05:
+            told = {"porosity": f"{given['porosity']:.3g}", "derived": f"{derived:.3g}"}
+            yield advise("porosity-disagrees", **told)
+    if soil.texture is None:
+        return
+    own = TEXTURES[soil.texture]
+    for name, mean, u in (("clay", own.clay, own.clay_u), ("sand", own.sand, own.sand_u)):
+        if name in given and mean is not None and abs(given[name] - mean) > UNLIKELY * u:
+            yield advise(
+                "texture-disagrees", name=name, value=f"{given[name]:.2g}", texture=soil.texture,
+                mean=f"{mean:.2g}",
+            )  # fmt: skip

@@ -27,6 +27,9 @@ from models.uncertainty.coverage import coverage_factor, shortest_interval
 from models.uncertainty.first_order import Input
 
 Columns = dict[str, Array]
+PUREST = 5.5e-6
+"""S/m at 25 Cel of water without any ions but its own, handbooks, from memory: less is no salt, and
+what a model leaves of it is rounding."""
 BRINE = 25.0
 """S/m at 25 Cel of water saturated with sodium chloride, common practice, from memory: an upper end
 beyond it says no more than that there is none."""
@@ -49,6 +52,7 @@ def conductivities_of(
     found, water: the permittivity and the water that the water content came from.
     """
     value, content = pore.at_25(), pore.content
+    value = np.where(value < PUREST, np.nan, value)
     own = pore.own_uncertainty(value)
     through = Through(
         of_water_content(found, water, content), bends_of_water_content(found, water, content)

@@ -322,3 +322,26 @@ def test_a_curve_of_peat_is_out_of_place_in_a_mineral_class(key):
     assert "outside-model-range" not in told(
         key, soil=describe("peat", {}, {}), apparent_permittivity=40.0, temperature=15.0
     )[0]  # fmt: skip
+
+
+def test_a_content_that_the_class_cannot_have_is_told():
+    """Sand has at most a tenth of clay in every triangle of texture; loam 7 to 27 % (USDA)."""
+
+    def said(texture, **given):
+        query = Query(model="crim", soil=describe(texture, given, {}), columns=frozenset())
+        return [each.text for each in prepare(query).advice if each.code == "texture-disagrees"]
+
+    assert "clay 0.6 is not that of the texture class sand" in said("sand", clay=0.6)[0]
+    assert said("loam", clay=0.7)
+    assert not said("loam", clay=0.27)
+    assert not said("clay", clay=0.55, sand=0.2)
+
+
+def test_less_than_pure_water_conducts_is_no_salt():
+    """5.5e-8 S/cm at 25 Cel: the self-ionisation of water, as handbooks have it."""
+    flags, found = told(
+        "crim", soil=describe("loam", {}, {}), apparent_permittivity=17.2, temperature=25.0,
+        bulk_conductivity=1e-6,
+    )  # fmt: skip
+    assert "no-pore-water" in flags
+    assert np.isnan(found["pore_water_conductivity"])
