@@ -6,11 +6,15 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from models.estimate.derived import sources_of
+from models.estimate.equation import OWN
 from models.estimate.moving import BULK, TEMPERATURE, WATER_MODEL, moving_permittivity
 from models.estimate.permittivity import Permittivity
 from models.estimate.water_content import WaterContent
 from models.relation import Array
 from models.uncertainty.first_order import Input
+
+CONDUCTION = "conduction_correction"
+"""What a correction for conduction leaves open; part of the error of the equation itself."""
 
 
 @dataclass(slots=True)
@@ -69,8 +73,15 @@ def of_water_content(
                 moved = effect * share
                 known = effects.shared.get(source)
                 effects.shared[source] = moved if known is None else known + moved
-    effects.shared["mixing_model"] = content.of_model
-    return effects
+    return effects.plus(_of_equation(content))
+
+
+def _of_equation(content: WaterContent) -> Sources:
+    """What the equation leaves open itself, and what conduction does beside it."""
+    parts = Sources(shared={OWN: content.of_model})
+    if content.of_conduction is not None:
+        parts.shared[CONDUCTION] = content.of_conduction
+    return parts
 
 
 def _of_water(effect: Array, given: Input) -> Sources:

@@ -6,29 +6,18 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from models.conductivity.loss import conduction_loss
 from models.estimate.basis import Basis
-from models.estimate.discrepancy import (
-    TDR_LOWEST,
-    Setting,
-    lean_down,
-    leans_for_clay,
-    model_uncertainty,
-)
 from models.estimate.equation import Equation
+from models.estimate.own.discrepancy import leans_for_clay
+from models.estimate.own.error import Reading, own_error
 from models.estimate.permittivity import Permittivity
 from models.estimate.spread import Spread, by_draws, by_quantiles
 from models.estimate.surroundings import Surroundings
-from models.mixing.apparent import to_real
 from models.readings import Readings
 from models.relation import Array
-from models.soil.description import MINERAL_ORGANIC
 from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval
 from models.uncertainty.first_order import Input, propagate
 
-UNEXPLAINED_CORRECTION = 0.5
-"""Share of a correction for loss that counts as its own standard uncertainty: in soils made by the
-complex refractive index, half of the correction to all of it is still missing after it."""
 CONSISTENT = 3.0
 """Standard uncertainties beyond the physical range at which reading and soil contradict."""
 
@@ -56,7 +45,9 @@ class WaterContent:
     bends: Mapping[str, Array]
     """and how far the middle over both signs is from the value."""
     of_model: Array
-    """Standard uncertainty that is the mixing model's own, what it leaves of loss included."""
+    """Standard uncertainty that is the mixing model's own,"""
+    of_conduction: Array | None
+    """and what correcting for conduction leaves open, or what was not corrected for."""
     equation: Equation
     own: Array
     """Standard uncertainty of the model's own error, both ways; ``lean`` adds to it downward."""
@@ -94,17 +85,8 @@ def water_content_of(
     computed = equation(**equation.at)
     first = propagate(equation, equation.inputs, computed)
     ceiling, ceiling_u = _ceiling(basis)
-    own, lean = _own_uncertainty(basis, _setting(readings, basis, found, around, computed), ceiling)
-    correction = None
-    if found.uncorrected is not None:
-        moved = equation.at | {"permittivity": found.uncorrected}
-        correction = equation(**moved) - computed
-        own = np.sqrt(np.square(own) + np.square(UNEXPLAINED_CORRECTION * correction))
-    unseen = _unseen_conduction(readings, basis, found, equation, computed)
-    untaken = _untaken_conduction(basis, found, equation, computed)
-    for known in (unseen, None if untaken is None else UNEXPLAINED_CORRECTION * untaken):
-        if known is not None and basis.query.standard_error is None:
-            lean = known if lean is None else np.sqrt(np.square(lean) + np.square(known))
+    error = own_error(Reading(readings, basis, found, around), equation, computed, ceiling)
+    own, lean = error.own, error.lean
     shared = first.shared + np.square(own)
     variance = first.per_reading + shared
     plain = Spread.of(variance, lean)
@@ -121,100 +103,31 @@ def water_content_of(
     common = np.divide(
         shared + moment - variance, moment, out=np.zeros_like(moment), where=moment > 0
     )
+    of_model, of_conduction = error.parted(moment - variance)
     return WaterContent(
         computed=computed,
         spread=spread,
         shared=spread.standard_uncertainty * np.sqrt(np.clip(common, 0.0, 1.0)),
         interval=interval,
-        correction=correction,
-        untaken=untaken,
+        correction=error.correction,
+        untaken=error.untaken,
         ceiling=ceiling,
         ceiling_u=ceiling_u,
         leans_for_clay=_leans_for_clay(basis, around.known_frequency),
         contributions=first.contributions,
         bends=first.bends,
-        of_model=np.sqrt(np.maximum(np.square(own) + moment - variance, 0.0)),
+        of_model=of_model,
+        of_conduction=of_conduction,
         equation=equation,
         own=own,
         lean=lean,
     )
 
 
-def _unseen_conduction(
-    readings: Readings, basis: Basis, found: Permittivity, equation: Equation, computed: Array
-) -> Array | None:
-    """How much too wet a row may read whose conductivity is known and whose frequency is not.
-
-    The correction at the lowest frequency of TDR; None where there is no such row.
-    """
-    bulk = _uncorrected(readings, basis, found)
-    if bulk is None or not np.any(bulk > 0.0):
-        return None
-    return _lowered(conduction_loss(np.nan_to_num(bulk), TDR_LOWEST), found, equation, computed)
-
-
-def _untaken_conduction(
-    basis: Basis, found: Permittivity, equation: Equation, computed: Array
-) -> Array | None:
-    """How much wetter a row reads for all of its loss, where the model makes no correction.
-
-    The soils it was made from conducted as well: how much of it the model holds is not known.
-    """
-    if not basis.model.conducting or found.loss is None:
-        return None
-    return _lowered(np.nan_to_num(found.loss), found, equation, computed)
-
-
-def _lowered(loss: Array, found: Permittivity, equation: Equation, computed: Array) -> Array:
-    """By how much less water there would be without that loss."""
-    slowest = np.maximum(np.nan_to_num(to_real(found.value, loss)), 1.0)
-    off = computed - equation(**equation.at | {"permittivity": slowest})
-    return np.maximum(np.nan_to_num(off), 0.0)
-
-
-def _setting(
-    readings: Readings,
-    basis: Basis,
-    found: Permittivity,
-    around: Surroundings,
-    computed: Array,
-) -> Setting:
-    soil, texture = basis.query.soil.values, basis.query.soil.texture
-    return Setting(
-        permittivity=found.value,
-        water_content=computed,
-        frequency=around.known_frequency,
-        temperature=around.temperature,
-        temperature_u=around.temperature_u,
-        conductivity=_uncorrected(readings, basis, found),
-        clay=soil.get("clay"),
-        organic_matter=soil.get("organic_matter", MINERAL_ORGANIC if texture else None),
-    )
-
-
-def _uncorrected(readings: Readings, basis: Basis, found: Permittivity) -> Array | None:
-    """Bulk conductivity of the rows in which nothing was done about it."""
-    bulk = readings.columns.get("bulk_conductivity")
-    if bulk is None or "loss" in basis.takes or basis.model.conducting:
-        return None
-    return bulk if found.loss is None else np.where(np.isnan(found.loss), bulk, 0.0)
-
-
 def _leans_for_clay(basis: Basis, frequency: Array) -> NDArray[np.bool_] | None:
     if basis.query.standard_error is not None:
         return None
     return leans_for_clay(basis.model, frequency, basis.query.soil.values.get("clay"))
-
-
-def _own_uncertainty(basis: Basis, at: Setting, pores: float) -> tuple[Array, Array | None]:
-    """The model's own: the caller's figure as it stands, or ours, which knows where it is."""
-    stated = basis.query.standard_error
-    if stated is not None:
-        return np.full(at.permittivity.shape, stated), None
-    lean = lean_down(basis.model, at, pores)
-    if lean is not None:
-        lean = np.broadcast_to(lean, at.permittivity.shape)
-    return model_uncertainty(basis.model, at), lean
 
 
 def most_water(basis: Basis) -> float:

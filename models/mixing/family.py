@@ -11,7 +11,7 @@ class Discrepancy:
     """What a model's own equation leaves unexplained, one standard deviation of water content.
 
     ``standard_uncertainty`` holds well inside the model's declared range; how it grows outside is
-    decided in ``models.estimate.discrepancy`` for all models alike.
+    decided in ``models.estimate.own.discrepancy`` for all models alike.
     """
 
     standard_uncertainty: float

@@ -17,6 +17,7 @@ from models.uncertainty.budget import NOBODY, Budget, budget_of
 
 MEND: Mapping[str, str] = {
     "mixing_model": "a calibration for this soil",
+    "conduction_correction": "a probe of higher frequency, or a stated one",
     "porosity": "a measured porosity or bulk density",
     "bulk_density": "a measured bulk density",
     "particle_density": "a measured density of the solids",

@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from models.estimate.equation import OWN
 from models.estimate.salt.chain import BEYOND_ALL, OWN_OF_SALT, Chain
 from models.estimate.salt.stepped import Stepped
-from models.estimate.sources import Sources
+from models.estimate.sources import CONDUCTION, Sources
 from models.estimate.water_content import WaterContent
 from models.relation import Array
 from models.uncertainty.coverage import coverage_factor
@@ -183,7 +183,7 @@ def _curved(
         moved = Intermediate(
             stepping(stepped.through),
             content.standard_uncertainty[picked],
-            {name: some(effect) for name, effect in effects.items() if name != OWN},
+            {n: some(effect) for n, effect in effects.items() if n not in {OWN, CONDUCTION}},
             {name: some(bend) for name, bend in through.bends.items()},
             *(some(scale) for scale in content.scales),
         )

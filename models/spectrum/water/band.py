@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from models.conductivity.corwin_lesch_2005 import CORWIN_LESCH_2005
-from models.estimate.discrepancy import Setting, model_uncertainty
+from models.estimate.own.discrepancy import Setting, model_uncertainty
 from models.mixing import MIXING_MODELS
 from models.relation import Array
 from models.salinity.complex_refractive import COMPLEX_REFRACTIVE

@@ -5,7 +5,7 @@ import pytest
 from scipy.constants import epsilon_0
 
 from models.estimate import Query, estimate, prepare
-from models.estimate.discrepancy import Setting, model_uncertainty
+from models.estimate.own.discrepancy import Setting, model_uncertainty
 from models.estimate.permittivity import permittivity_of
 from models.estimate.surroundings import surroundings_of, water_inputs
 from models.mixing import MIXING_MODELS
