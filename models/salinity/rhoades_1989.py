@@ -113,7 +113,8 @@ RHOADES_1989 = PoreWaterModel(
     title="Mobile water beside immobile water and surfaces",
     equation="sigma_b = (f_s + f_i)^2 sigma_w sigma_s / (f_s sigma_w + f_i sigma_s) + "
     "(theta - f_i) sigma_w, f_s = rho_b / rho_s, f_i = 0.639 theta + 0.011, "
-    "sigma_s = 0.023 clay% - 0.0209 dS/m",
+    "sigma_s = 0.023 clay% - 0.0209 dS/m, at least 0.01; above 35 % clay its mean with the line of "
+    "the saturated paste, 0.019 SP - 0.434, and no less than at 35 %",
     source=Citation(
         authors="Rhoades, J. D.; Manteghi, N. A.; Shouse, P. J.; Alves, W. J.",
         year=1989,
@@ -145,7 +146,7 @@ RHOADES_1989 = PoreWaterModel(
         ),
         Parameter(
             name="surface_conductivity",
-            meaning="sigma_s, of immobile water and solids along the surfaces, at 25 Cel, S/m; "
+            meaning="sigma_s, of immobile water and solids along the surfaces, at 25 Cel; "
             "estimated from clay unless given",
             range=Range(1e-6, SURFACE.high), optional=True,
         ),

@@ -31,7 +31,7 @@ APART = 0.2
 TURNED = 0.2
 """Likewise, of the curvature across the way: it is a second order, and no more."""
 
-MOST_LEFT_OUT = .1
+MOST_LEFT_OUT = 0.1
 """Probability beyond the ends of curves, from which the other end feels it as well."""
 
 
