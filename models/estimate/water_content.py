@@ -54,6 +54,11 @@ class WaterContent:
     lean: Array | None
 
     @property
+    def told(self) -> Array:
+        """What salt rests on: the value as it is answered, but below zero as it is computed."""
+        return np.where(self.computed > self.interval.peak, self.interval.peak, self.computed)
+
+    @property
     def scales(self) -> tuple[Array, Array]:
         """Standard uncertainty of the model's own error, downward and upward."""
         if self.lean is None:

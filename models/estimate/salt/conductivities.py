@@ -72,7 +72,7 @@ def conductivities_of(
     if not paste:
         return Conductivities(columns, spread, None)
     known = {name: each.value for name, each in paste.items()}
-    extract = to_extract(value, water_content=content.computed, **known)
+    extract = to_extract(value, water_content=pore.inputs["water_content"], **known)
     stepped = stepped.of_extract(pore, extract, paste)
     of_extract = spread_of(stepped, through, content, lambda: chain(paste), asked)
     columns |= _factor(EXTRACT, extract, of_extract, asked)

@@ -46,7 +46,7 @@ class PoreWater:
         self.inputs: dict[str, Any] = {
             "bulk_conductivity": readings.columns.get("bulk_conductivity", unknown),
             "temperature": np.broadcast_to(warmth, (readings.count,)),
-            "water_content": content.computed,
+            "water_content": content.told,
             "real_permittivity": real.value,
             "frequency": around.frequency,
         }

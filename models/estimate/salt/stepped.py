@@ -36,7 +36,7 @@ class Stepped:
     @classmethod
     def of(cls, pore: PoreWater, value: Array, own: Array) -> "Stepped":
         """Of the pore water; value: its conductivity, own: the model's own uncertainty."""
-        here, theta = logarithm(value), pore.content.computed
+        here, theta = logarithm(value), pore.inputs["water_content"]
         reach = pore.content.standard_uncertainty
 
         def at(scores: Mapping[str, Any], off: Array | float = 0.0) -> Array:
@@ -58,7 +58,7 @@ class Stepped:
 
     def of_extract(self, pore: PoreWater, extract: Array, paste: Mapping[str, Moving]) -> "Stepped":
         """Of the extract: the more water above one paste, the more salt in it."""
-        theta, reach = pore.content.computed, pore.content.standard_uncertainty
+        theta, reach = pore.inputs["water_content"], pore.content.standard_uncertainty
         here = logarithm(extract)
         drying = dict.fromkeys(source for each in paste.values() for source in each.by)
 
