@@ -19,28 +19,28 @@ __all__ = ["BIT", "FLAGS", "SLUGS", "Flag", "Flags", "slugs_of", "withheld", "wi
 
 FLAGS: Registry[Flag] = Registry(
     "flag",
-    Flag(key="unreadable", condition="A cell holds text that is neither a number nor a usual way "
-         "to write that there is none.",
-         text="The cell cannot be read as a number.",
-         reason="A guess at what was meant would look like a measurement.",
-         keeps_number=False, names_quantity=True),
-    Flag(key="missing", condition="The cell is empty, null, or one of NaN, NA, N/A, null, none, "
-         "INF, -INF, M, -, --, --- in any case.",
+    Flag(key="unreadable", condition="Text that is no number and no usual word for having none.",
+         text="The cell cannot be read as a number.", keeps_number=False, names_quantity=True,
+         reason="A guess at what was meant would look like a measurement."),
+    Flag(key="missing", condition="The cell is empty, null, or one of NaN, NA, N/A, #N/A, null, "
+         "none, INF, -INF, M, -, --, --- in any case.",
          text="The logger gave no value.",
-         reason="The row has no number where the chosen model needs the value, and keeps it "
-         "where the model does not.",
+         reason="The row has no number where the chosen model needs the value.",
          keeps_number=True, names_quantity=True),
-    Flag(key="out-of-gate", condition="The value is physically impossible: outside the gate of "
-         "the quantity, or an uncertainty below zero.",
+    Flag(key="out-of-gate", condition="Outside the gate of the quantity; of times, of the rods.",
          text="The value is physically impossible and was not used.",
          reason="Numeric sentinels such as -9999, a broken probe, or a unit that was not named. "
-         "The row has no number where the chosen model needs the value, and keeps it where the "
-         "model does not.",
+         "The row has no number where the chosen model needs the value.",
          keeps_number=True, names_quantity=True),
     Flag(key="unreadable-row", condition="A CSV row has more or fewer cells than the header, or an "
          "NDJSON line is not a JSON object, or one that says a key twice.",
          text="The row cannot be taken apart into cells.",
          reason="Which cell belongs to which column would be a guess.", keeps_number=False),
+    Flag(key="unusable-uncertainty", condition="A column <quantity>_u holds text that is no "
+         "number, a number below zero, or one wider than all that is possible.",
+         text="An uncertainty cannot be used, and so the value beside it was not.",
+         reason="Without it the value would pass for exact; an advisory names the column. The row "
+         "has no number where the chosen model needs the value.", keeps_number=True),
     Flag(key="no-permittivity", condition="The row holds none of apparent_permittivity, "
          "real_permittivity, travel_time.",
          text="There is nothing to convert.",
@@ -49,8 +49,8 @@ FLAGS: Registry[Flag] = Registry(
          "the row's temperature (at 0 Cel where none is given) by more than its own coverage "
          "interval.",
          text="The permittivity is higher than that of water.",
-         reason="No mixture of soil and water is above water itself: conduction, a fault, or a "
-         "reading that is not a permittivity.", keeps_number=False),
+         reason="No soil is above water: conduction, a fault, or no permittivity at all.",
+         keeps_number=False),
     Flag(key="outside-bounds", condition="The permittivity lies outside the Hashin-Shtrikman "
          "bounds of any water content between dry and saturated, for the stated porosity and "
          "solids with their uncertainties.",
@@ -196,8 +196,7 @@ FLAGS: Registry[Flag] = Registry(
          "its end, with what is to come in its uncertainty.",
          reason="Conductivity follows from the level after all reflections have died away: a "
          "record of more than three round trips.", keeps_number=True),
-    Flag(key="model-too-simple", condition="The fitted line leaves a reduced chi-square above "
-         "1.5.",
+    Flag(key="model-too-simple", condition="The fit leaves a reduced chi-square above 1.5.",
          text="The model does not explain the trace to its noise: the soil relaxes in more ways, "
          "is layered, or the probe is not as described. Uncertainties are widened by the misfit.",
          reason="A wrong model can fit well where it looks and be far off in permittivity.",
@@ -206,8 +205,8 @@ FLAGS: Registry[Flag] = Registry(
          "probe are on record, or what is on record does not suffice, or its raw record cannot be "
          "read.",
          text="There is nothing on record by which to estimate this reading.",
-         reason="Installations say which soil a probe was in, and when; the advisories of the "
-         "answer say what is lacking.", keeps_number=False),
+         reason="Installations say which soil a probe was in; advisories say what is lacking.",
+         keeps_number=False),
     Flag(key="raw-record-flagged", condition="The row's sweep or spectrum has flags of its own.",
          text="The raw record is doubtful: advisories, or remarks of raw_records, name its flags.",
          reason="What is amiss with a sweep shows no more in what is taken from it.",

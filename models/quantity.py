@@ -21,6 +21,8 @@ SUFFIXES: Mapping[str, str] = MappingProxyType({
 })  # fmt: skip
 
 TINY = 1e-30
+STANDARD_GRAVITY = 9.80665
+"""m/s2; kN/m3 over g/cm3."""
 BANDED = ("", *SUFFIXES)
 """Suffixes of an estimated quantity, in the order of the answer."""
 
@@ -45,6 +47,8 @@ class Quantity:
     """Units that people send by mistake, most likely first."""
     typical: float | None = None
     """A usual value in SI, to tell which of several units was meant; None: the first that fits."""
+    follows: str = ""
+    """A quantity in whose unit it is told, too, where a caller names no other for it."""
 
     @property
     def key(self) -> str:
@@ -69,16 +73,27 @@ class Quantity:
         unit = UNITS[self.unit]
         return Range(float(unit.to_si(self.gate.low)), float(unit.to_si(self.gate.high)))
 
-    def likely_unit(self, si_value: float, unit: str) -> str | None:
+    def aside(self, si_value: float) -> str:
+        """The end of a sentence about an impossible density that is possible as unit weight."""
+        density = si_value / UNITS["g/cm3"].scale / STANDARD_GRAVITY
+        if self.dimension != "density" or self.gate is None or self.gate.excludes(density):
+            return ""
+        return f": that looks like a unit weight in kN/m3; send it over 9.80665, {density:.4g}"
+
+    def likely_unit(self, si_value: float, unit: str, gate: Range | None = None) -> str | None:
         """The unit that would bring a value within the gate, where one is a usual mistake.
 
-        ``si_value`` was read as being in ``unit``.
+        ``si_value`` was read as being in ``unit``, and is outside. gate: in SI, where it is known
+        to be narrower than the quantity's own.
         """
+        possible = gate or self.gate_si
         written = float(UNITS[unit].from_si(si_value))
         meant = {
             code: float(UNITS[code].to_si(written)) for code in self.lookalikes if code != unit
         }
-        fits = [code for code, value in meant.items() if not self.gate_si.excludes(value)]
+        fits = [code for code, value in meant.items() if not possible.excludes(value)]
+        if not possible.excludes(si_value):
+            return None
         if not fits or self.typical is None:
             return next(iter(fits), None)
         usual = self.typical
@@ -89,7 +104,8 @@ _FRACTION = Range(0.0, 1.0)
 _CONDUCTIVITY = ("uS/cm", "mS/m", "S/m")
 
 QUANTITIES: Mapping[str, Quantity] = MappingProxyType({q.name: q for q in (
-    Quantity("time", "", "", "moment of the measurement, RFC 3339 with offset"),
+    Quantity("time", "", "", "moment of the measurement, RFC 3339 with offset; "
+             "estimates pass it on as it was sent"),
     Quantity("depth", "z", "m", "below the surface, positive down", Range(-1.0, 1000.0),
              ("cm", "mm")),
     Quantity("apparent_permittivity", "Ka", "1",
@@ -110,9 +126,11 @@ QUANTITIES: Mapping[str, Quantity] = MappingProxyType({q.name: q for q in (
              "of the soil as a whole, brought to 25 Cel", Range(0.0, 40.0), _CONDUCTIVITY),
     Quantity("water_content", "theta", "m3/m3", "volumetric, liquid water", _FRACTION, ("%",)),
     Quantity("conduction_correction", "", "m3/m3", "by how much correcting the apparent "
-             "permittivity for conduction lowered the water content", Range(-1.0, 1.0), ("%",)),
+             "permittivity for conduction lowered the water content", Range(-1.0, 1.0), ("%",),
+             follows="water_content"),
     Quantity("model_spread", "", "m3/m3", "standard deviation between mixing models whose ranges "
-             "hold the reading", Range(0.0, 1.0), ("%",)),
+             "hold the reading", Range(0.0, 1.0), ("%",),
+             follows="water_content"),
     Quantity("gravimetric_water_content", "w", "kg/kg", "of dry mass", Range(0.0, 20.0), ("%",)),
     Quantity("degree_of_saturation", "S_r", "1", "share of the pores filled with water",
              _FRACTION, ("%",)),

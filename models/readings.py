@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 
 from models.errors import ReadingError
 from models.flags import BIT, Flags
-from models.quantity import QUANTITIES
+from models.quantity import QUANTITIES, Quantity
 from models.relation import Array
 from models.units import UNITS
 
@@ -68,8 +68,8 @@ def read(
     for name, values in columns.items():
         about, is_width = quantity_of(name)
         if is_width and about in gated:
-            # A value whose uncertainty is impossible must not pass for exact.
-            lost = np.isnan(gated[name]) & ~np.isnan(values)
+            # A value whose uncertainty cannot be used must not pass for exact.
+            lost = np.isnan(gated[name]) & (~np.isnan(values) | unreadable.get(name, False))
             gated[about] = np.where(lost, np.nan, gated[about])
     for name, rows in (absent or {}).items():
         about, is_width = quantity_of(name)
@@ -91,17 +91,21 @@ def _gate(
     unit = UNITS[units.get(about, quantity.unit)]
     absent = np.isnan(values)
     if unreadable is not None:
-        flags[unreadable] |= BIT[f"unreadable:{about}"]
+        flags[unreadable] |= BIT["unusable-uncertainty" if is_width else f"unreadable:{about}"]
         absent &= ~unreadable
     if not is_width:
         flags[absent] |= BIT[f"missing:{about}"]
     si = unit.width_to_si(values) if is_width else unit.to_si(values)
-    gate = quantity.gate_si
-    if is_width:
-        impossible = (si < 0) | (si > gate.high - gate.low)
-    else:
-        impossible = (si < gate.low) | (si > gate.high)
+    impossible = impossible_in(quantity, si, is_width=is_width)
     if impossible.any():
-        flags[impossible] |= BIT[f"out-of-gate:{about}"]
+        flags[impossible] |= BIT["unusable-uncertainty" if is_width else f"out-of-gate:{about}"]
         si = np.where(impossible, np.nan, si)
     return si
+
+
+def impossible_in(quantity: Quantity, si: Array, *, is_width: bool) -> NDArray[np.bool_]:
+    """Which values are outside the gate of a quantity, or cannot be widths within it; SI."""
+    gate = quantity.gate_si
+    if is_width:
+        return (si < 0) | (si > gate.high - gate.low)
+    return (si < gate.low) | (si > gate.high)

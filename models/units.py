@@ -58,6 +58,10 @@ _UNITS = (
     Unit("uS/cm", "conductivity", 1e-4), Unit("uS/m", "conductivity", 1e-6),
     Unit("kg/m3", "density"), Unit("g/cm3", "density", 1e3), Unit("t/m3", "density", 1e3),
     Unit("m2/kg", "specific surface"), Unit("m2/g", "specific surface", 1e3),
+    Unit("m/s", "depth per time"), Unit("mm/d", "depth per time", 1e-3 / 86_400),
+    Unit("d", "duration", 86_400.0), Unit("h", "duration", 3600.0),
+    Unit("kg/m2", "mass per area"), Unit("t/har", "mass per area", 0.1),
+    Unit("1/(dS/m)", "per conductivity", 10.0), Unit("%/(dS/m)", "per conductivity", 0.1),
 )  # fmt: skip
 
 UNITS: Mapping[str, Unit] = MappingProxyType({unit.code: unit for unit in _UNITS})

@@ -8,7 +8,22 @@ them; a later edition of the first (2025) moves several.
 
 from dataclasses import dataclass
 
+from models.decisions.allen_1998 import SOURCE
+from models.decisions.leaching import SOURCE as AYERS_WESTCOT
 from models.registry import Registry
+from models.relation import Citation
+
+TABLE_22 = Citation(
+    authors=SOURCE.authors, year=SOURCE.year, title=SOURCE.title,
+    where="FAO Irrigation and Drainage Paper 56, Table 22",
+    note="from secondary copies, at 5 mm a day; the edition of 2025 has other numbers",
+)  # fmt: skip
+TABLE_4 = Citation(
+    authors=AYERS_WESTCOT.authors, year=AYERS_WESTCOT.year, title=AYERS_WESTCOT.title,
+    where="FAO Irrigation and Drainage Paper 29, revision 1, Table 4; eggplant and muskmelon: "
+    "Maas, E. V. (1990), Crop salt tolerance, ASCE Manual 71",
+    note="after Maas and Hoffman (1977), from secondary copies",
+)  # fmt: skip
 
 THRESHOLD_SPREAD, SLOPE_SPREAD = 0.17, 0.10
 """Relative standard uncertainty of threshold and slope: our choice, after the ranges that FAO-56

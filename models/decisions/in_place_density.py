@@ -75,6 +75,18 @@ def at_20_degrees(apparent_permittivity: ArrayLike, temperature: ArrayLike, kind
     return column(apparent_permittivity) * factor
 
 
+def brought_to_20_degrees(
+    apparent_permittivity: tuple[ArrayLike, ArrayLike], temperature: ArrayLike, kind: str
+) -> tuple[Array, Array]:
+    """The same of a value and its standard uncertainty, where there is a temperature."""
+    value, u = (column(part) for part in apparent_permittivity)
+    read = np.isnan(column(temperature))
+    return (
+        np.where(read, value, at_20_degrees(value, temperature, kind)),
+        np.where(read, u, at_20_degrees(u, temperature, kind)),
+    )
+
+
 def two_step(
     field_permittivity: Known,
     mould_permittivity: Known,
@@ -139,7 +151,8 @@ def one_step(
     values = (known[0] if isinstance(known, tuple) else known for known in parameters.values())
     rows = np.stack(np.broadcast_arrays(*(np.atleast_1d(column(v)) for v in values)), axis=-1)
     matrix = rows.reshape(-1, 2, 2)
-    scaled = matrix / np.linalg.norm(matrix, axis=2, keepdims=True)
+    length = np.linalg.norm(matrix, axis=2, keepdims=True)
+    scaled = matrix / np.where(length > 0, length, 1.0)
     return OneStep(found, np.linalg.cond(scaled), alike)
 
 
@@ -175,3 +188,13 @@ def _told(
 def _positive(values: Array, *, zero: bool = False) -> Array:
     """Values that are physical, NaN for the others."""
     return np.where((values >= 0) if zero else (values > 0), values, np.nan)
+
+
+def compaction_of(dry_density: Outcome, largest: Known, *, probability: float = 0.95) -> Outcome:
+    """Dry density over the largest one of a reference test, elementwise."""
+    given = {"dry": (dry_density.value, dry_density.standard_uncertainty), "largest": largest}
+    return outcome(_share, given, low=0.0, probability=probability)
+
+
+def _share(dry: Array, largest: Array) -> Array:
+    return dry / largest

@@ -5,12 +5,14 @@ method gives another answer: the time-integrated chart of ASCE Manual 71 gives 0
 gives 0.32 (tomato, water of 3 dS/m).
 """
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from models.decisions.outcome import Known, Outcome, outcome
+from models.decisions.outcome import Known, Outcome, carried, outcome
+from models.decisions.yield_response import conductivity_at
 from models.relation import Array, Citation, column
 
 SOURCE = Citation(
@@ -25,6 +27,11 @@ CONVENTIONAL, FREQUENT = "conventional", "high-frequency"
 METHODS = (CONVENTIONAL, FREQUENT)
 """Equation 9 with the extract the crop is to have; or, for drip and daily sprinkling,
 ECw / (2 max ECe) with the extract at which it yields nothing."""
+WHOLE_YIELD_FROM = 0.15
+"""S/m: with a more saline water the target is the extract of the whole yield, else of 90 %."""
+DIGITS = 12
+"""Of a conductivity in S/m that is compared: 1.5 dS/m is on the edge, not beyond it."""
+USUAL_YIELD = 0.9
 UPTAKE = (0.4, 0.3, 0.2, 0.1)
 """Share of the water taken up in each quarter of the root zone, from the top."""
 
@@ -48,6 +55,22 @@ def requirement(
     with np.errstate(invalid="ignore", divide="ignore"):
         share = water / room
     return np.where((room > 0) & (share < 1.0), share, np.nan)
+
+
+def target_yield(water_conductivity: ArrayLike, *, method: str = CONVENTIONAL) -> Array:
+    """Relative yield at the extract conductivity that the method aims at, elementwise."""
+    if method == FREQUENT:
+        return np.zeros_like(column(water_conductivity))
+    saline = np.round(column(water_conductivity), DIGITS) > WHOLE_YIELD_FROM
+    return np.where(saline, 1.0, USUAL_YIELD)
+
+
+def target_conductivity(
+    relative_yield: Known, threshold: Known, slope: Known
+) -> tuple[Array, Array]:
+    """Extract conductivity at a relative yield by the line, with its standard uncertainty, S/m."""
+    given = {"relative": relative_yield, "threshold": threshold, "slope": slope}
+    return carried(conductivity_at, given)
 
 
 def require_leaching(
@@ -79,11 +102,79 @@ def applied_water(
 ) -> Outcome:
     """Water to apply so that the crop has its own and the rest leaches (Eq. 7), elementwise, m."""
     given = {"used": evapotranspiration, "share": leaching_requirement}
+    return outcome(_applied, given, low=0.0, probability=probability)
 
-    def applied(used: Array, share: Array) -> Array:
-        return np.where(share < 1.0, used / np.where(share < 1.0, 1.0 - share, 1.0), np.nan)
+
+def water_for(
+    evapotranspiration: Known,
+    water_conductivity: Known,
+    extract_conductivity: Known,
+    *,
+    method: str = CONVENTIONAL,
+    probability: float = 0.95,
+) -> Outcome:
+    """The same from what the requirement rests on, so that its errors go through once, m."""
+    given = {
+        "used": evapotranspiration,
+        "water": water_conductivity,
+        "extract": extract_conductivity,
+    }
+
+    def applied(used: Array, water: Array, extract: Array) -> Array:
+        return _applied(used, requirement(water, extract, method=method))
 
     return outcome(applied, given, low=0.0, probability=probability)
+
+
+def _applied(used: Array, share: Array) -> Array:
+    return np.where(share < 1.0, used / np.where(share < 1.0, 1.0 - share, 1.0), np.nan)
+
+
+@dataclass(frozen=True, slots=True)
+class LongUse:
+    """What a root zone comes to after long use of a water, shape (n,)."""
+
+    soil_water: tuple[Outcome, ...]
+    """At the top of each quarter and at the bottom, S/m; the last is that of the drainage."""
+    extract: Outcome
+    """Mean of the saturation extract, S/m."""
+    factor: Outcome
+    """That over the conductivity of the water."""
+
+
+def after_long_use(
+    water_conductivity: Known,
+    extract_conductivity: Known,
+    leaching_fraction: Known,
+    *,
+    method: str = CONVENTIONAL,
+    probability: float = 0.95,
+) -> LongUse:
+    """Salt down the root zone with its bands, elementwise.
+
+    leaching_fraction: NaN where it is the requirement for ``extract_conductivity``.
+    """
+    given = {
+        "water": water_conductivity,
+        "extract": extract_conductivity,
+        "share": leaching_fraction,
+    }
+
+    def told(measurand: Callable[[Array, Array], Array]) -> Outcome:
+        def of_share(water: Array, extract: Array, share: Array) -> Array:
+            needed = requirement(water, extract, method=method)
+            return measurand(water, np.where(np.isnan(share), needed, share))
+
+        return outcome(of_share, given, low=0.0, probability=probability)
+
+    def node(place: int) -> Outcome:
+        return told(lambda water, share: root_zone_profile(water, share)[..., place])
+
+    return LongUse(
+        tuple(node(place) for place in range(len(UPTAKE) + 1)),
+        told(lambda water, share: water * concentration_factor(share)),
+        told(lambda _, share: concentration_factor(share)),
+    )
 
 
 def root_zone_profile(water_conductivity: ArrayLike, leaching_fraction: ArrayLike) -> Array:
@@ -93,8 +184,9 @@ def root_zone_profile(water_conductivity: ArrayLike, leaching_fraction: ArrayLik
     quarter.
     """
     water, share = column(water_conductivity), column(leaching_fraction)
-    left = 1.0 - np.concatenate([[0.0], np.cumsum(UPTAKE)]) * (1.0 - share[..., np.newaxis])
-    with np.errstate(divide="ignore"):
+    taken = np.round(np.concatenate([[0.0], np.cumsum(UPTAKE)]), DIGITS)  # ends with 1
+    left = 1.0 - taken * (1.0 - share[..., np.newaxis])
+    with np.errstate(divide="ignore", invalid="ignore"):
         return water[..., np.newaxis] / left
 
 

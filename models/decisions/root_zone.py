@@ -1,7 +1,7 @@
 """The root zone: water in it, what is missing to field capacity, and how sure that is."""
 
 from collections.abc import Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -34,8 +34,10 @@ class RootZone:
     """Share of the applied water that gets to the root zone, above 0."""
     leaching_requirement: ArrayLike = 0.0
     """Share of the water that is to pass below it, below 1."""
-    crop_evapotranspiration: float | None = None
-    """m/s, counted as exact; None: no days are told."""
+    crop_evapotranspiration: ArrayLike | None = None
+    """m/s, counted as exact; None: no time is told."""
+    application_limit: ArrayLike = np.inf
+    """m: the most that is applied at once."""
     probability: float = 0.95
 
 
@@ -51,6 +53,8 @@ class Depletion:
     """Missing to field capacity, between 0 and the total available water: the net refill depth."""
     gross_refill: Outcome
     """The same with losses and leaching."""
+    application: Outcome
+    """The gross refill, at most the limit."""
     stress_coefficient: Outcome
     exceedance: Array
     """Probability that the depletion is above the readily available water."""
@@ -59,8 +63,8 @@ class Depletion:
     above_field_capacity: NDArray[np.bool_]
     """The water content is above field capacity: water drains, nothing is missing."""
     below_wilting_point: NDArray[np.bool_]
-    days: Outcome | None
-    """Until the readily available water is used up, without rain; 0 where it is."""
+    time_left: Outcome | None
+    """s, until the readily available water is used up, without rain; 0 where it is."""
 
 
 def deplete(zone: RootZone) -> Depletion:
@@ -70,8 +74,9 @@ def deplete(zone: RootZone) -> Depletion:
     the available water, and the probability of exceedance knows it. The inputs themselves count as
     independent: a field capacity read by the same probe errs with the water content, which makes
     the true band of the depletion narrower than the one told.
-    Raises ParameterError when field capacity is not above the wilting point, the root depth is not
-    positive, a fraction or the efficiency is not one, or the leaching requirement is not below 1.
+    Raises ParameterError, with the row of each complaint, when field capacity is not above the
+    wilting point, the root depth or the limit is not positive, a fraction or the efficiency is not
+    one, or the leaching requirement is not below 1.
     """
     _check(zone)
     given = {
@@ -101,9 +106,8 @@ def deplete(zone: RootZone) -> Depletion:
     depleted, depleted_u = carried(missing, given)
     whole = outcome(total, given, low=0.0, probability=probability)
     factor = 1.0 / (column(zone.efficiency) * (1.0 - column(zone.leaching_requirement)))
-    # The total is uncertain as well: it ends the value, its upper end ends the band.
-    net = within(depleted, depleted_u, low=0.0, high=whole.upper, probability=probability)
-    net = replace(net, value=np.minimum(net.value, whole.value))
+    net = _at_most(depleted, depleted_u, whole, probability=probability)
+    gross = _times(net, factor)
     excess = exceedance(*carried(beyond, given))
     return Depletion(
         storage=outcome(
@@ -112,13 +116,14 @@ def deplete(zone: RootZone) -> Depletion:
         total_available_water=whole,
         readily_available_water=outcome(readily, given, low=0.0, probability=probability),
         depletion=net,
-        gross_refill=_times(net, factor),
+        gross_refill=gross,
+        application=_cut(gross, column(zone.application_limit)),
         stress_coefficient=outcome(stress, given, low=0.0, high=1.0, probability=probability),
         exceedance=excess,
         told_apart=(excess >= TOLD_APART) | (excess <= 1.0 - TOLD_APART),
         above_field_capacity=depleted < 0.0,
         below_wilting_point=depleted > whole.value,
-        days=_days(zone, carried(beyond, given)),
+        time_left=_time_left(zone, carried(beyond, given)),
     )  # fmt: skip
 
 
@@ -131,33 +136,61 @@ def _times(found: Outcome, factor: Array) -> Outcome:
     )
 
 
-def _days(zone: RootZone, beyond: tuple[Array, Array]) -> Outcome | None:
+def _at_most(value: Array, u: Array, whole: Outcome, *, probability: float) -> Outcome:
+    """From 0 to the whole, which is uncertain itself: each end is the lesser of both."""
+    free = within(value, u, low=0.0, probability=probability)
+    held = within(value, u, low=0.0, high=whole.value, probability=probability)
+    own, other = held.standard_uncertainty, whole.standard_uncertainty
+    return Outcome(
+        held.value,
+        np.where(value > whole.value, np.maximum(own, other), own),
+        np.minimum(free.lower, whole.lower),
+        np.minimum(free.upper, whole.upper),
+    )
+
+
+def _cut(found: Outcome, limit: Array) -> Outcome:
+    """At most an exact limit."""
+    sure = found.lower >= limit
+    return Outcome(
+        np.minimum(found.value, limit),
+        np.where(sure, 0.0, found.standard_uncertainty),
+        np.minimum(found.lower, limit),
+        np.minimum(found.upper, limit),
+    )
+
+
+def _time_left(zone: RootZone, beyond: tuple[Array, Array]) -> Outcome | None:
     if zone.crop_evapotranspiration is None:
         return None
-    a_day = zone.crop_evapotranspiration * fao.DAY
+    rate = column(zone.crop_evapotranspiration)
     value, u = beyond
-    return within(-value / a_day, u / a_day, low=0.0, probability=zone.probability)
+    return within(-value / rate, u / rate, low=0.0, probability=zone.probability)
 
 
 def _check(zone: RootZone) -> None:
-    fc, wp, zr, p = (
-        column(known[0] if isinstance(known, tuple) else known)
-        for known in (zone.field_capacity, zone.wilting_point, zone.root_depth,
-                      zone.depletion_fraction)
-    )  # fmt: skip
-    share, leach = column(zone.efficiency), column(zone.leaching_requirement)
-    drawn = zone.crop_evapotranspiration
+    """Raise with every row that cannot be; the place of a complaint is (row, name)."""
+    parts = (zone.field_capacity, zone.wilting_point, zone.root_depth, zone.depletion_fraction,
+             zone.efficiency, zone.leaching_requirement, zone.crop_evapotranspiration,
+             zone.application_limit)  # fmt: skip
+    values = (known[0] if isinstance(known, tuple) else known for known in parts)
+    fc, wp, zr, p, share, leach, drawn, limit = np.broadcast_arrays(
+        *(np.atleast_1d(column(np.nan if value is None else value)) for value in values)
+    )
     wrong = {
-        "field_capacity": (np.any(fc <= wp), "takes field_capacity above wilting_point"),
-        "root_depth": (np.any(zr <= 0), "takes root_depth above 0 m"),
-        "depletion_fraction": (np.any((p <= 0) | (p >= 1)),
-                               "takes depletion_fraction between 0 and 1"),
-        "efficiency": (np.any((share <= 0) | (share > 1)), "takes efficiency above 0, at most 1"),
-        "leaching_requirement": (np.any((leach < 0) | (leach >= 1)),
-                                 "takes leaching_requirement from 0 to below 1"),
-        "crop_evapotranspiration": (drawn is not None and not drawn > 0,
-                                    "takes crop_evapotranspiration above 0"),
+        "field_capacity": (fc <= wp, "takes field_capacity above wilting_point", fc),
+        "root_depth": (zr <= 0, "takes root_depth above 0 m", zr),
+        "depletion_fraction": ((p <= 0) | (p >= 1), "takes depletion_fraction between 0 and 1", p),
+        "efficiency": ((share <= 0) | (share > 1), "takes efficiency above 0, at most 1", share),
+        "leaching_requirement": ((leach < 0) | (leach >= 1),
+                                 "takes leaching_requirement from 0 to below 1", leach),
+        "crop_evapotranspiration": (drawn <= 0, "takes crop_evapotranspiration above 0", drawn),
+        "application_limit": (limit <= 0, "takes application_limit above 0", limit),
     }  # fmt: skip
-    complaints = [Complaint(name, detail) for name, (bad, detail) in wrong.items() if bad]
+    complaints = [
+        Complaint(name, f"{detail}, found {found[row]:g}", (str(row), name))
+        for name, (bad, detail, found) in wrong.items()
+        for row in np.flatnonzero(bad)
+    ]
     if complaints:
         raise ParameterError("root-zone", complaints)

@@ -63,3 +63,15 @@ def curved_yield(extract_conductivity: ArrayLike, half: ArrayLike, steepness: Ar
     c, c50 = column(extract_conductivity), column(half)
     with np.errstate(invalid="ignore"):
         return 1.0 / (1.0 + np.power(c / c50, np.exp(column(steepness) * c50)))
+
+
+def curved_response(
+    extract_conductivity: Known, *, threshold: Known, slope: Known, probability: float = 0.95
+) -> Outcome:
+    """Relative yield by the curve behind threshold and slope, with its band, elementwise."""
+    given = {"conductivity": extract_conductivity, "threshold": threshold, "slope": slope}
+
+    def curve(conductivity: Array, threshold: Array, slope: Array) -> Array:
+        return curved_yield(conductivity, *curve_parameters(threshold, slope))
+
+    return outcome(curve, given, low=0.0, high=1.0, probability=probability)

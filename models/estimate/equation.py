@@ -16,6 +16,7 @@ from models.estimate.permittivity import Permittivity
 from models.estimate.surroundings import Surroundings
 from models.mixing.physical.complex_refractive import relaxation_loss
 from models.relation import Array, column
+from models.uncertainty.coverage import two_piece
 from models.uncertainty.distributions import Distribution, Normal, Symmetric
 from models.uncertainty.exact import Exact
 from models.uncertainty.first_order import Input
@@ -31,25 +32,25 @@ CONDUCTION_ONLY = "conduction_only"
 
 @dataclass(frozen=True, slots=True)
 class Leaning(Symmetric):
-    """One scale below the mean, another above; width is the larger, for what must be finite."""
+    """A two-piece normal with its peak at the mean; width is the larger of its scales."""
 
     below: Any
     above: Any
 
     def from_normal(self, z: ArrayLike) -> Array:
-        """The mean and so many of the scale on that side."""
-        score = column(z)
-        return self.mean + score * np.where(score < 0, self.below, self.above)
+        """The mean, and how far the error is where a standard-normal variable is z."""
+        return self.mean + two_piece(z, self.below, self.above)
 
     def deviate(self, z: Array) -> Array:
         """In units of the width."""
-        scale = np.where(z < 0, self.below, self.above)
-        return z * np.divide(scale, self.width, out=np.zeros_like(z * scale), where=self.width > 0)
+        far = two_piece(z, self.below, self.above)
+        return np.divide(far, self.width, out=np.zeros_like(far), where=self.width > 0)
 
     @property
     def standard_uncertainty(self) -> Array:
-        """Root mean square of both scales."""
-        return np.sqrt(0.5 * (np.square(column(self.below)) + np.square(column(self.above))))
+        """Root of the second moment about the peak."""
+        down, up = column(self.below), column(self.above)
+        return np.sqrt(np.square(down) - down * up + np.square(up))
 
 
 @dataclass(frozen=True, slots=True)

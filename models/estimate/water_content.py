@@ -15,7 +15,7 @@ from models.estimate.spread import Spread, by_draws, by_quantiles
 from models.estimate.surroundings import Surroundings
 from models.readings import Readings
 from models.relation import Array
-from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval
+from models.uncertainty.coverage import Interval, coverage_factor, shortest_interval, two_piece
 from models.uncertainty.first_order import Input, propagate
 
 CONSISTENT = 3.0
@@ -64,6 +64,14 @@ class WaterContent:
         if self.lean is None:
             return self.own, self.own
         return np.sqrt(np.square(self.own) + np.square(self.lean)), self.own
+
+    def scales_at(self, probability: float) -> tuple[Array, Array]:
+        """The same, such that its interval has the ends of the two-piece normal that both make."""
+        if self.lean is None:
+            return self.scales
+        z = coverage_factor(probability)
+        below, above = (two_piece(end, *self.scales) / end for end in (-z, z))
+        return below, np.maximum(above, 0.0)
 
     @property
     def standard_uncertainty(self) -> Array:

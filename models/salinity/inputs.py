@@ -26,7 +26,7 @@ SURFACE = Range(0.0, 0.3)
 """S/m. The heaviest clays reach 0.14: 0.44 is a loam in dS/m."""
 SURFACE_CONDUCTIVITY = Parameter(
     name="surface_conductivity",
-    meaning="of the soil through the surfaces of its solids alone, at 25 Cel, S/m; estimated "
+    meaning="of the soil through the surfaces of its solids alone, at 25 Cel; estimated "
     "from clay where it is not given",
     range=SURFACE,
 )

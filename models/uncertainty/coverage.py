@@ -96,6 +96,22 @@ def _restricted(
     return np.where(point, held, lower), np.where(point, held, upper)
 
 
+@np.errstate(all="ignore")
+def two_piece(z: ArrayLike, below: ArrayLike, above: ArrayLike) -> Array:
+    """Where such a quantity with its peak at 0 is as likely exceeded as z by a standard normal one.
+
+    z, below, above: elementwise; scales >= 0. The density has no step at the peak, so that the
+    wider side holds the more of the probability.
+    """
+    score, down, up = column(z), column(below), column(above)
+    share = np.where(down + up > 0, down / (down + up), 0.5)
+    under = ndtr(score) < share
+    low = ndtri(ndtr(score) / (2.0 * share)) * down
+    high = -ndtri(ndtr(-score) / (2.0 * (1.0 - share))) * up
+    found = np.where(under, low, np.where(up > 0, high, 0.0))
+    return np.where(down == up, score * up, found)
+
+
 def _of_rows(ends: Array, rows: NDArray[np.intp]) -> Array:
     """One end for all rows, or each row's own."""
     return ends[rows] if ends.ndim else ends

@@ -185,7 +185,7 @@ def _curved(
             content.standard_uncertainty[picked],
             {n: some(effect) for n, effect in effects.items() if n not in {OWN, CONDUCTION}},
             {name: some(bend) for name, bend in through.bends.items()},
-            *(some(scale) for scale in content.scales),
+            *map(some, content.scales_at(asked.probability)),
         )
     direct = {n: stepping(steps) for n, steps in stepped.direct.items() if n != OWN_OF_SALT}
     found = ends(

@@ -30,6 +30,7 @@ from models.estimate.sources import Sources
 from models.estimate.water_content import WaterContent
 from models.relation import Array, column
 from models.salinity.saturation_extract import to_extract
+from models.uncertainty.coverage import two_piece
 from models.uncertainty.distributions import Distribution, Normal
 from models.uncertainty.exact import Exact
 from models.uncertainty.first_order import Input
@@ -51,6 +52,8 @@ class Chain:
     """What the extract follows from; empty: the answer is that of the pore water."""
     columns: Mapping[str, Any]
     """Every column by name, scalar or shape (n,)."""
+    leans: bool
+    """Whether the error of the mixing model has two scales."""
     most: float
     """Most water there can be, m3/m3; more is impossible."""
     leading: tuple[str, ...] = ()
@@ -81,7 +84,8 @@ class Chain:
         columns: dict[str, Any] = {
             "own below": below, "own above": above, f"{OWN_OF_SALT} own": own,
         }  # fmt: skip
-        chain = cls(pore, content.equation, mixing, paste, columns, most)
+        leans = content.lean is not None
+        chain = cls(pore, content.equation, mixing, paste, columns, leans, most)
         return replace(chain, columns=columns | chain._of_quantities())
 
     def sided(self, effects: Sources) -> Self:
@@ -145,8 +149,9 @@ class Chain:
         if not self.mixing:
             return None
         at = {n: each.among(columns, f"mixing {n}") for n, each in self.mixing.items()}
-        z = columns[OWN]
-        return self.equation(**at) + z * np.where(z < 0, columns["own below"], columns["own above"])
+        scales = columns["own below"], columns["own above"]
+        error = two_piece(columns[OWN], *scales) if self.leans else columns[OWN] * scales[1]
+        return self.equation(**at) + error
 
     def _quantities(self) -> list[tuple[str, Moving]]:
         kinds = {"mixing": self.mixing, "salt": self.pore.moving, "paste": self.paste}

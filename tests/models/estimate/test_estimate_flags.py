@@ -349,8 +349,8 @@ def test_less_than_pure_water_conducts_is_no_salt():
 
 def test_salt_goes_with_the_water_that_is_told():
     """ECe = ECp theta / (SP rho_b), with the water content beside it: the pores hold no more."""
-    soil = describe("loam", {"porosity": 0.40, "bulk_density": 1590.0, "saturation_percentage": 0.4},
-                    {"porosity": 0.01})  # fmt: skip
+    values = {"porosity": 0.40, "bulk_density": 1590.0, "saturation_percentage": 0.4}
+    soil = describe("loam", values, {"porosity": 0.01})
     flags, found = told("crim", soil=soil, apparent_permittivity=28.0, apparent_permittivity_u=2.0,
                         temperature=25.0, bulk_conductivity=1.0)  # fmt: skip
     assert "wetter-than-pores" in flags

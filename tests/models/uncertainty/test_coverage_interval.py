@@ -5,9 +5,10 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 from numpy.testing import assert_allclose
+from scipy.integrate import quad
 from scipy.stats import norm, truncnorm
 
-from models.uncertainty.coverage import coverage_factor, shortest_interval
+from models.uncertainty.coverage import coverage_factor, shortest_interval, two_piece
 
 
 def interval(value, below, above=None, low=0.0, high=0.46, probability=0.95):
@@ -74,3 +75,23 @@ def test_covers_the_truth_near_dry_and_near_saturated_too(truth):
     draws = truth + 0.02 * np.random.default_rng(3).standard_normal(100_000)
     found = interval(draws, 0.02)
     assert 0.94 < np.mean((found.lower <= truth) & (truth <= found.upper)) < 0.98
+
+
+@pytest.mark.parametrize(("below", "above"), [
+    (0.1, 0.1), (0.3, 0.1), (0.02, 0.4), (0.0, 0.2), (0.2, 0.0),
+])  # fmt: skip
+def test_a_two_piece_normal_has_the_distribution_of_its_density(below, above):
+    """Its density is that of two halves of equal height, integrated by scipy."""
+    z = np.linspace(-3.0, 3.0, 13)
+    at = two_piece(z, below, above)
+    whole = np.sqrt(np.pi / 2.0) * (below + above)
+
+    def density(x):
+        scale = below if x < 0 else above
+        return np.exp(-0.5 * (x / scale) ** 2) / whole if scale > 0 else 0.0
+
+    for end, score in zip(at, z, strict=True):
+        down = quad(density, -12.0 * below, min(end, 0.0))[0] if below > 0 else 0.0
+        up = quad(density, 0.0, end)[0] if end > 0 else 0.0
+        assert down + up == pytest.approx(norm.cdf(score), abs=1e-9)
+    assert (np.diff(at) >= 0).all()
