@@ -16,6 +16,7 @@ from models.errors import Complaint, ModelError, ParameterError
 from models.estimate.basis import Basis, Query, prepare
 from models.estimate.choice import suits_soil
 from models.estimate.pipeline import Estimates, estimate
+from models.estimate.salt.salinity import SalinityQuery
 from models.estimate.water_content import most_water
 from models.flags import BIT, Flags
 from models.mixing import MIXING_MODELS
@@ -129,9 +130,10 @@ def prepare_all(query: Query) -> EveryModel:
     """
     bases: dict[str, Basis] = {}
     silent: dict[str, str] = {}
+    of_water = replace(query, given={}, salinity=SalinityQuery())
     for key in MIXING_MODELS:
         try:
-            bases[key] = replace(prepare(replace(query, model=key, given={})), salinity=None)
+            bases[key] = replace(prepare(replace(of_water, model=key)), salinity=None)
         except ModelError as error:
             silent[key] = str(error)
     if not bases:

@@ -287,3 +287,51 @@ def test_a_flag_about_a_quantity_is_found_under_its_whole_name(server):
     assert answer.status_code == 200
     assert answer.json()["name"] == "missing"
     assert server.client.get("/v1/mixing-models/crim:temperature").status_code == 404
+
+
+def weights(answer):
+    return {key: rows[0]["weight"] for key, rows in answer["models"].items()}
+
+
+def test_all_models_answer_in_clay_at_low_frequency(server):
+    """Where each of them leans, leaning takes no weight away: its band reaches down for it."""
+    answer = answered(
+        server, mixing_model="all", soil={"texture": "clay"}, probe={"frequency": 70e6},
+        readings=[{"apparent_permittivity": 25, "temperature": 20}],
+    )  # fmt: skip
+    (row,) = answer["estimates"]
+    within = [key for key, weight in weights(answer).items() if weight > 0]
+    told = [answer["models"][key][0]["water_content"] for key in within]
+    assert min(told) <= row["water_content"] <= max(told)
+    assert row["flags"] == ["low-frequency"]
+
+
+def test_where_no_model_holds_a_flag_says_so(server):
+    answer = answered(
+        server, mixing_model="all", soil={"texture": "loam"}, probe={"frequency": 1e9},
+        readings=[{"apparent_permittivity": 80, "temperature": 14}],
+    )  # fmt: skip
+    (row,) = answer["estimates"]
+    assert row["water_content"] is None
+    assert "no-model-in-range" in row["flags"]
+    assert not any(weights(answer).values())
+
+
+def test_one_of_two_models_that_are_one_counts(server):
+    """The power law at 1/2 is CRIM, and nu = 2 is Bruggeman: Sihvola (1999), from memory."""
+    found = answered(server, mixing_model="all")
+    for one, other in (("crim", "power-law"), ("bruggeman", "sihvola")):
+        same = [found["models"][key][0]["water_content"] for key in (one, other)]
+        assert same[0] == pytest.approx(same[1], rel=1e-6)
+        assert weights(found)[one] > 0
+        assert weights(found)[other] == 0
+
+
+@pytest.mark.parametrize("salty", [
+    {"pore_water_model": "hilhorst-2000"},
+    {"readings": [{"apparent_permittivity": 17.2, "temperature": 14.1, "bulk_conductivity": 0.6}]},
+], ids=["named", "measured"])  # fmt: skip
+def test_all_models_tell_water_alone_and_say_so(server, salty):
+    answer = answered(server, mixing_model="all", **salty)
+    assert "pore_water_conductivity" not in answer["estimates"][0]
+    assert "all-without-salt" in {said["code"] for said in answer["advisories"]}
