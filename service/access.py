@@ -16,7 +16,10 @@ from service.store.keys import Key, KeyFile, Reach
 GUARDED = "/v1/"
 """What lies elsewhere says nothing about anyone's soil: health, documentation, problem types."""
 
-READS: frozenset[str] = frozenset({"/v1/reflections", "/v1/scattering", "/v1/estimates"})
+READS: frozenset[str] = frozenset({
+    "/v1/estimates", "/v1/waveforms", "/v1/reflections", "/v1/scattering", "/v1/spectra",
+    "/v1/calibrations", "/v1/root-zone", "/v1/leaching", "/v1/soil-state", "/v1/in-place-density",
+})  # fmt: skip
 """Paths whose POST computes and keeps nothing."""
 
 STATIONS, CHANGES = "/v1/stations/", "/v1/changes"

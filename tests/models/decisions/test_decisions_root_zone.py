@@ -91,8 +91,8 @@ def test_uncertainty_of_the_available_water():
 def test_days_until_the_readily_available_water_is_used():
     """64 mm - 40 mm at 6 mm a day."""
     found = deplete(zone(water_content=0.27, crop_evapotranspiration=6 * MM_A_DAY))
-    assert_allclose(found.days.value, 4.0)
-    assert deplete(zone()).days is None
+    assert_allclose(found.time_left.value / 86_400, 4.0)
+    assert deplete(zone()).time_left is None
 
 
 def test_the_probability_of_exceedance_knows_that_field_capacity_is_in_both():
@@ -132,6 +132,29 @@ def test_the_band_of_the_depletion_holds_the_truth(theta):
                          field_capacity=(rng.normal(0.32, u_fc, n), u_fc)))  # fmt: skip
     inside = (found.depletion.lower <= truth + 1e-12) & (truth - 1e-12 <= found.depletion.upper)
     assert 0.94 < inside.mean() <= 1.0
+
+
+@pytest.mark.parametrize("theta", [0.06, 0.12, 0.15, 0.25, 0.33])
+def test_the_band_of_the_depletion_holds_the_truth_where_limits_are_wide(theta):
+    """Depletion is at most the available water, and that is uncertain as well."""
+    rng = np.random.default_rng(10)
+    n, u = 40_000, 0.02
+    truth = np.clip(min(0.32 - theta, 0.20) * 0.8, 0.0, None)
+    found = deplete(zone(water_content=(rng.normal(theta, u, n), u),
+                         field_capacity=(rng.normal(0.32, u, n), u),
+                         wilting_point=(rng.normal(0.12, u, n), u))).depletion  # fmt: skip
+    inside = (found.lower <= truth + 1e-12) & (truth - 1e-12 <= found.upper)
+    assert 0.94 < inside.mean() <= 1.0
+    assert np.all((found.lower <= found.value) & (found.value <= found.upper))
+    assert np.all(found.standard_uncertainty > 0.0) or theta > 0.3
+
+
+def test_what_is_applied_ends_at_the_limit_of_the_system():
+    found = deplete(zone(water_content=(np.array([0.12, 0.28]), 0.01), application_limit=0.04))
+    assert_allclose(found.application.value, [0.04, 0.032])
+    assert_allclose(found.application.upper, [0.04, 0.04])
+    assert found.application.standard_uncertainty[0] == 0.0
+    assert_allclose(found.gross_refill.value, [0.16, 0.032])
 
 
 def test_no_water_content_gives_no_number():

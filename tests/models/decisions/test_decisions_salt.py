@@ -151,6 +151,12 @@ def test_salt_down_the_root_zone():
     assert_allclose(profile, [1.0, 1.5, 2.5, 4.2, 6.7], atol=0.06)
 
 
+def test_without_leaching_salt_at_the_bottom_has_no_end():
+    profile = leaching.root_zone_profile(np.array([1.0, 0.0]), 0.0)
+    assert np.isinf(profile[0, -1])
+    assert np.isnan(profile[1, -1])
+
+
 def test_the_concentration_factor():
     printed = table("fao_29_table_3")
     found = leaching.concentration_factor(printed["leaching_fraction"].values)

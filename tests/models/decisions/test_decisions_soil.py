@@ -108,6 +108,12 @@ def test_the_condition_number_does_not_depend_on_the_unit_of_conductivity():
     assert worse.condition_number[0] > 5 * one.condition_number[0]
 
 
+def test_equations_of_nothing_are_alike():
+    found = one_step(FIELD, 0.2, a=1.0, b=8.5, c=0.0, d=0.0)
+    assert found.too_alike[0]
+    assert np.isinf(found.condition_number[0])
+
+
 def test_what_no_soil_can_show_has_no_number():
     found = two_step(np.array([FIELD, FIELD]), np.array([300.0, MOULD]), 1995.0, a=1.0, b=8.5)
     assert np.isnan(found.dry_density.value).tolist() == [True, False]

@@ -161,3 +161,12 @@ def test_any_other_host_needs_one(host, tmp_path, keys):
     keys.revoke("logger")
     with pytest.raises(SettingsError, match="gleyline key add"):
         keys_of(settings)
+
+
+def test_a_key_that_reads_may_have_anything_worked_out(server):
+    """What keeps nothing changes nothing: only readings of a station are written by POST."""
+    paths = server.client.get("/openapi.json").json()["paths"]
+    posted = {path for path, methods in paths.items() if "post" in methods}
+    kept = {path for path in posted if path.startswith("/v1/stations/")}
+    assert kept
+    assert {path for path in posted if scope_needed("POST", path) == "write"} == kept

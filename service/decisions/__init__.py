@@ -1,0 +1,1 @@
+"""Decisions over HTTP: bodies checked, defaults settled, answers laid out."""

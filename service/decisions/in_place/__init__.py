@@ -1,0 +1,1 @@
+"""POST /v1/in-place-density: what it takes, what is asked, what is told."""

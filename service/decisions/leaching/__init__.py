@@ -1,0 +1,1 @@
+"""POST /v1/leaching: what it takes, what is asked, what is told."""
