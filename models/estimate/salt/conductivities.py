@@ -27,6 +27,7 @@ from models.uncertainty.coverage import coverage_factor, shortest_interval
 from models.uncertainty.first_order import Input
 
 Columns = dict[str, Array]
+TENFOLD = float(np.log(10.0))
 PUREST = 5.5e-6
 """S/m at 25 Cel of water without any ions but its own, handbooks, from memory: less is no salt, and
 what a model leaves of it is rounding."""
@@ -121,13 +122,13 @@ def _factor(name: str, value: Array, spread: Spread, asked: Asked) -> Columns:
 
 
 def _fitting(known: Array, upper: Array, spread: Spread, asked: Asked) -> Array:
-    """What makes the uncertainty of first order that of the interval; NaN where that has no end.
+    """What makes the uncertainty of first order that of the interval.
 
     Near a conductivity that has no answer first order is steep beyond all measure. Half of the
-    interval, or the part of it that has an end, is what k standard uncertainties are.
+    interval is k standard uncertainties; where it reaches further than ten times the value, or a
+    tenth of it, or has no end, it counts as so far.
     """
-    below, above = np.log(known) - spread.lower, np.log(upper / known)
-    below = np.where(np.isinf(below), np.nan, below)
-    half = np.where(np.isnan(above), below, np.where(np.isnan(below), above, 0.5 * (below + above)))
+    below = np.minimum(np.log(known) - spread.lower, TENFOLD)
+    above = np.fmin(np.log(upper / known), TENFOLD)
     told = coverage_factor(asked.probability) * spread.total
-    return np.where(told > 0, half / told, 1.0)
+    return np.where(told > 0, 0.5 * (below + above) / told, 1.0)

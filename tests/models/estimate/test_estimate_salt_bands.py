@@ -235,6 +235,7 @@ def test_a_band_holds_its_value_however_poor_the_reading(mixing, key):
         assert told.any()
         assert (lower[told] <= value[told]).all()
         assert not (upper[told] < value[told]).any()
+        assert np.isfinite(found[f"{name}_u"][told]).all()
 
 
 def test_the_uncertainty_follows_the_band_where_the_answer_nearly_ends():
