@@ -32,6 +32,8 @@ from service.routes import (
     spectra,
     waveforms,
 )
+from service.routes.calibrations import router as calibrations
+from service.routes.decisions import routers as decisions
 from service.routes.direct import Direct
 from service.routes.stored import documents, overview, readings
 from service.routes.stored import estimates as stored_estimates
@@ -52,6 +54,8 @@ TAGS = [
     {"name": "stations", "description": "What is installed where; readings kept; what they say."},
     {"name": "estimates", "description": "Readings to water content."},
     {"name": "records", "description": "Raw records to permittivity, and to what it tells."},
+    {"name": "calibrations", "description": "A soil's own mixing model from measured pairs."},
+    {"name": "decisions", "description": "What is done with an estimate: numbers, no verdicts."},
     {"name": "catalogues", "description": "Models, textures, flags and words, with their sources."},
     {"name": "service", "description": "Health, versions, limits, problems."},
 ]
@@ -96,7 +100,7 @@ def create_api(settings: Settings) -> Api:
     main = (estimates.router, spectra.router, waveforms.router, reflections.router,
             scattering.router, health.router, problems.router, pages.router)  # fmt: skip
     kept = (readings.router, stored_estimates.router, overview.router, *documents.routers)
-    for router in (*main, *kept, *catalogues.routers):
+    for router in (*main, calibrations, *decisions, *kept, *catalogues.routers):
         api.include_router(router)
     add_error_handlers(api)
     return api

@@ -5,53 +5,29 @@ from dataclasses import replace
 
 import numpy as np
 
-from models.advisories import Advice
+from models.advisories import Advice, advise
 from models.conversion import from_si
 from models.estimate import Basis, Estimates, Remarks, columns_of, estimate, narrowed
 from models.estimate.beside.ensemble import COLUMNS, EveryModel
 from models.flags import BIT
 from models.quantity import band_names
 from models.readings import Readings
-from service.answers.by_name import MOST_TOLD, Grounds, naming
+from service.answers.advice import (
+    advice_on_columns,
+    advice_on_settings,
+    in_a_header,
+    remarks_of,
+)
+from service.answers.by_name import Grounds, naming
+from service.answers.columns import CONDUCTIVITIES
 from service.answers.effort import refuse_effort
-from service.errors import Unprocessable
-from service.faults import Fault, nearest, shown
-from service.formats.block import Answer, Block
-from service.formats.header import check_permittivity
+from service.formats.block import Answer, Block, row_in_words
+from service.formats.header import check_keys, folded
 from service.schemas.echo import echo_of, headers_of, headers_of_several, units_of_answer
 from service.schemas.echo_beside import ensemble_echo
 from service.schemas.estimates import ALL, EstimatesSettings, model_name
 from service.schemas.query import basis_of
-
-CONDUCTIVITIES = (
-    "bulk_conductivity_25", "pore_water_conductivity", "saturation_extract_conductivity",
-)  # fmt: skip
-APPENDED = frozenset({
-    "conduction_correction",
-    "model_spread",
-    *band_names("water_content"),
-    *(name for quantity in CONDUCTIVITIES for name in band_names(quantity)),
-})  # fmt: skip
-"""Every column an answer may append, so that no table already has one of the name."""
-
-
-def wanted_columns(text: str | None) -> tuple[str, ...] | None:
-    """Names of the columns to append; None: all of them.
-
-    Raises Unprocessable for a name that no answer has.
-    """
-    if text is None:
-        return None
-    names = tuple(name.strip() for name in text.split(",") if name.strip())
-    faults = []
-    for name in names:
-        if name not in APPENDED:
-            meant = nearest(name, APPENDED)
-            hint = f"; did you mean {meant}?" if meant else ""
-            faults.append(Fault(f"no answer has a column {shown(name)}{hint}", "?columns"))
-    if faults:
-        raise Unprocessable("columns names what no answer has", faults)
-    return names
+from service.schemas.wording import QUERY
 
 
 class TableEstimates:
@@ -82,6 +58,8 @@ class TableEstimates:
         self._naming: tuple[str, ...] = ()
         self._grounds: Grounds | None = None
         self._begun = False
+        self._named: tuple[Advice, ...] = ()
+        self._unread, self._first_unread = 0, dict[str, object]()
 
     def __call__(self, block: Block) -> Answer:
         """The estimates of a block, in the caller's units.
@@ -96,15 +74,30 @@ class TableEstimates:
             self._begin(block)
         units = self.settings.units
         answer = self._by_name(block) if self._grounds else self._by_request(block)
-        self.remarks.note(block.values, units, answer.flags, answer.columns)
+        self._note(block, answer)
         columns = {name: from_si(name, v, units) for name, v in answer.columns.items()}
         return replace(answer, columns=columns)
+
+    def _note(self, block: Block, answer: Answer) -> None:
+        """Rows that cannot be taken apart are said to be that alone; values are remarked on."""
+        answer.flags[block.broken] = BIT["unreadable-row"]
+        self.remarks.note(block.values, self.settings.units, answer.flags, answer.columns,
+                          block.unreadable)  # fmt: skip
+        if not block.broken.any():
+            return
+        self._unread += int(np.count_nonzero(block.broken))
+        if not self._first_unread:
+            row = int(block.broken.argmax())
+            expected, found = row_in_words(block, row)
+            self._first_unread = {
+                "line": int(block.lines[row]), "expected": expected, "found": found,
+            }  # fmt: skip
 
     def _begin(self, block: Block) -> None:
         self._begun, self.columns = True, tuple(block.values)
         if block.header.form == "ndjson":  # others have told it by their header
-            kind = "key" if block.header.names else "JSON object with a key"
-            check_permittivity(block.header.names, self.columns, int(block.lines[0]), kind)
+            first = str(block.records[0]) if len(block) else ""
+            check_keys(block.header.names, self.columns, int(block.lines[0]), first)
         named = naming(block.header.names) if self._make else ()
         if self._make and named:
             self._naming, self._grounds = named, self._make(self.columns)
@@ -112,6 +105,9 @@ class TableEstimates:
             self.basis = self._worked = basis_of(self.settings, self.columns)
             if isinstance(self.basis, Basis) and self._wanted is not None:
                 self._worked = narrowed(self.basis, self._wanted)
+        self.remarks = remarks_of(self.basis)
+        passing = [name for name in block.header.names if folded(name) not in self._naming]
+        self._named = advice_on_columns(passing, self.columns)
 
     def _by_request(self, block: Block) -> Answer:
         assert self._worked is not None  # noqa: S101 - settled at the first block
@@ -158,7 +154,16 @@ class TableEstimates:
         bases = [self.basis] if self.basis is not None else []
         bases += [ground.basis for ground in self._grounds.used] if self._grounds else []
         said = (one for basis in bases for one in basis.advice)
-        return tuple(dict.fromkeys((*said, *self.remarks.advice(self.settings.units))))
+        return tuple(dict.fromkeys((*said, *self.seen)))
+
+    @property
+    def seen(self) -> tuple[Advice, ...]:
+        """What the names, rows and values of this very table give rise to."""
+        rows = []
+        if self._unread:
+            rows.append(advise("unreadable-rows", count=self._unread, **self._first_unread))
+        named = (*self._named, *advice_on_settings(self.settings), *rows)
+        return (*named, *self.remarks.advice(self.settings.units))
 
     @property
     def troubles(self) -> tuple[str, ...]:
@@ -169,6 +174,7 @@ class TableEstimates:
         """What a table cannot say in its cells: model, units, advisories, every constant."""
         basis, units = self.basis, self.settings.units
         told = {"Columns-Read": ", ".join((*self._naming, *self.columns))}
+        told |= in_a_header("Remarks", [QUERY.text(one.text) for one in self.seen])
         if self._grounds is not None:
             answered = units_of_answer(self._answered, units)
             used = [
@@ -176,10 +182,10 @@ class TableEstimates:
                 for one in self._grounds.used
             ]
             told |= headers_of_several(used, (one.code for one in self.advice), answered)
-            return told | _troubles_told(self.troubles)
+            return told | in_a_header("Not-Estimated", self.troubles)
         if basis is None:
             return {}
-        remarks = self.remarks.advice(units)
+        remarks = self.seen
         if isinstance(basis, EveryModel):
             echo, names = ensemble_echo(basis, self.settings, remarks), COLUMNS
         else:
@@ -192,13 +198,3 @@ def _estimated(readings: Readings, basis: Basis | EveryModel) -> Estimates:
         together = basis.estimate(readings)
         return Estimates(together.columns, together.flags)
     return estimate(readings, basis)
-
-
-def _troubles_told(troubles: Sequence[str]) -> dict[str, str]:
-    """Why rows were not estimated, as far as a header can say it."""
-    if not troubles:
-        return {}
-    told = [text[:200] for text in troubles[:MOST_TOLD]]
-    if len(troubles) > MOST_TOLD:
-        told.append(f"and {len(troubles) - MOST_TOLD} more")
-    return {"Not-Estimated": "; ".join(told).encode("ascii", "backslashreplace").decode()}

@@ -220,13 +220,15 @@ def _methods(request: Request, told: str) -> list[str]:
 
 def _no_address(request: Request) -> str:
     """That there is no such address, and the nearest that there is."""
-    path = request.url.path
-    if len(path) > 1 and path.endswith("/"):
-        return f"addresses have no trailing slash: ask for {shortened(path.rstrip('/'))}"
+    path, bare = request.url.path, request.url.path.rstrip("/")
     known = [template for template in request.app.openapi()["paths"] if "{" not in template]
-    ends = [template for template in known if template.endswith(path.rstrip("/"))]
-    meant = ends[0] if len(ends) == 1 and len(path) > 1 else nearest(path, known)
+    below = [template for template in known if bare and template.startswith(f"{bare}/")]
+    if bare and path != bare and (bare in known or not below):
+        return f"addresses have no trailing slash: ask for {shortened(bare)}"
+    ends = [template for template in known if template.endswith(bare)]
+    meant = ends[0] if len(ends) == 1 and bare else nearest(bare or path, known)
     hint = f"; did you mean {meant}?" if meant else "; /docs and /openapi.json list them all"
+    hint = f", but {', '.join(below[:3])} and others below it{hint}" if below[1:] else hint
     return f"no operation has the address {shortened(path)}{hint}"
 
 
@@ -234,11 +236,7 @@ def add_error_handlers(api: FastAPI) -> None:
     """Let routes raise what the layers below raise."""
 
     async def handle(request: Request, error: Exception) -> Response:
-        if (
-            isinstance(error, HTTPException)
-            and type(error) is HTTPException
-            and (error.status_code == NotFound.status)
-        ):
+        if type(error) is HTTPException and error.status_code == NotFound.status:
             error = NotFound(_no_address(request))
         if isinstance(error, HTTPException) and error.status_code == MethodNotAllowed.status:
             told = (error.headers or {}).get("Allow", "")

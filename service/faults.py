@@ -72,9 +72,12 @@ def shortened(text: str) -> str:
 
 def nearest(name: str, known: Iterable[str]) -> str | None:
     """The known name that was most likely meant."""
-    close = difflib.get_close_matches(name[:LONGEST], list(known), n=4, cutoff=0.6)
-    alike = [other for other in close if other.endswith("_u") == name.endswith("_u")]
-    return next(iter(alike or close), None)
+    names, written = list(known), name[:LONGEST]
+    close = difflib.get_close_matches(written, names, n=4, cutoff=0.6)
+    alike = [other for other in close if other.endswith("_u") == written.endswith("_u")]
+    begins = written.casefold()
+    begun = [other for other in names if len(begins) > 3 and other.startswith(begins)]
+    return next(iter(alike or close or begun), None)
 
 
 def hint(name: str, known: Iterable[str]) -> str:

@@ -25,8 +25,6 @@ from service.schemas.query import basis_of, refuse_unknown_names, settings_of
 from service.stations.documents import Documents
 from service.stations.named import KINDS, with_stored
 
-MOST_TOLD = 5
-"""Names that could not be used of which an answer tells."""
 Named = tuple[str, str]
 """The soil and the probe of a row; empty: that of the request."""
 

@@ -1,17 +1,24 @@
 """The answer to a JSON document of readings: as JSON, or as a table of the estimates alone."""
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from typing import Any
 
 import numpy as np
 from fastapi.responses import Response
 
-from models.estimate import Basis, Estimates, Remarks, estimate, explain
+from models.advisories import Advice
+from models.estimate import Basis, Estimates, estimate, explain
 from models.estimate.beside.budget import budget
 from models.estimate.beside.ensemble import Ensemble, EveryModel
 from models.estimate.beside.validation import validate
 from models.readings import Readings, read
+from service.answers.advice import (
+    advice_on_columns,
+    advice_on_settings,
+    in_a_header,
+    remarks_of,
+)
 from service.answers.effort import refuse_effort
 from service.errors import Unprocessable
 from service.faults import Fault
@@ -48,11 +55,10 @@ def answer_document(document: dict[str, Any], answered: str, limits: Settings) -
     if isinstance(basis, EveryModel):
         return _of_every_model(basis, readings, sent, settings, answered, raw)
     result = estimate(readings, basis)
-    remarks = _remarks(sent, settings, result)
-    said = (*remarks.advice(settings.units), *raw.advice)
+    said = (*_advice(sent, settings, basis, result), *raw.advice)
     echo = {**echo_of(basis, settings, said), **raw.echo}
     if answered != JSON:
-        return _table(result, sent, settings, answered, echo)
+        return _table(result, sent, settings, answered, echo, said)
     answer = laid_out(result, sent, settings.units)
     rest = {"units": _units(answer.names, settings), **echo, **_beside(settings, readings, basis)}
     body = encode(answer, sent.shape, rest)
@@ -83,11 +89,10 @@ def _of_every_model(
     _refuse_beside(settings)
     found = basis.estimate(readings)
     result = Estimates(found.columns, found.flags)
-    remarks = _remarks(sent, settings, result)
-    said = (*remarks.advice(settings.units), *raw.advice)
+    said = (*_advice(sent, settings, basis, result), *raw.advice)
     echo = {**ensemble_echo(basis, settings, said), **raw.echo}
     if answered != JSON:
-        return _table(result, sent, settings, answered, echo)
+        return _table(result, sent, settings, answered, echo, said)
     answer = laid_out(result, sent, settings.units)
     rest = {"units": _units(answer.names, settings), **echo}
     body = encode(answer, sent.shape, rest)
@@ -126,10 +131,14 @@ def _counted(result: Estimates) -> dict[str, str]:
     return {"Row-Count": str(len(result.flags)), "Flagged-Count": str(flagged)}
 
 
-def _remarks(sent: JsonReadings, settings: EstimatesSettings, result: Estimates) -> Remarks:
-    remarks = Remarks()
+def _advice(
+    sent: JsonReadings, settings: EstimatesSettings, basis: Basis | EveryModel, result: Estimates
+) -> tuple[Advice, ...]:
+    """What names and values of the request give rise to."""
+    remarks = remarks_of(basis)
     remarks.note(sent.numbers, settings.units, result.flags, result.columns)
-    return remarks
+    named = (*advice_on_columns((), sent.numbers), *advice_on_settings(settings))
+    return (*named, *remarks.advice(settings.units))
 
 
 def _units(names: tuple[str, ...], settings: EstimatesSettings) -> dict[str, str]:
@@ -142,6 +151,7 @@ def _table(
     settings: EstimatesSettings,
     answered: str,
     echo: Mapping[str, Any],
+    said: Sequence[Advice],
 ) -> Response:
     """The estimates as a table; what a table cannot say stands in headers."""
     if settings.budget or settings.validate_first_order or settings.explain:
@@ -151,6 +161,7 @@ def _table(
     headers = {
         **VARY,
         **headers_of(echo, units_of_answer(answer.names, settings.units)),
+        **in_a_header("Remarks", [one.text for one in said]),
         "Row-Count": str(sent.count),
         "Flagged-Count": str(int((result.flags != 0).sum())),
     }

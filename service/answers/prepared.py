@@ -8,6 +8,7 @@ import orjson
 
 from models.advisories import Advice
 from models.estimate import Basis, columns_of
+from service.answers.advice import advice_on_columns
 from service.formats.json.estimates import PASSED
 from service.formats.json.readings import TEXTS
 from service.schemas.echo import echo_of, units_of_answer
@@ -31,13 +32,15 @@ class Prepared:
     texts: tuple[str, ...]
     names: tuple[str, ...]
     """Columns of the answer, without the flags."""
+    said: tuple[Advice, ...]
+    """Advisories that the names of its columns give rise to."""
     rest: bytes
     """What stands behind the estimates, as JSON without its opening brace, of readings that give
     rise to no advisory of their own."""
 
     def rest_with(self, remarks: Iterable[Advice]) -> bytes:
         """The same, of readings that give rise to these advisories."""
-        return _rest(self.settings, self.basis, self.names, remarks)
+        return _rest(self.settings, self.basis, self.names, (*self.said, *remarks))
 
 
 def prepared(said: bytes, columns: tuple[str, ...]) -> Prepared | None:
@@ -61,7 +64,9 @@ def _prepared(said: bytes, columns: tuple[str, ...]) -> Prepared | None:
         return None
     passed = [name for kind in (texts, numbers) for name in PASSED if name in kind]
     names = (*passed, *columns_of(basis))
-    return Prepared(settings, basis, numbers, texts, names, _rest(settings, basis, names, ()))
+    named = advice_on_columns((), numbers)
+    rest = _rest(settings, basis, names, named)
+    return Prepared(settings, basis, numbers, texts, names, named, rest)
 
 
 _kept = lru_cache(KEPT)(_prepared)

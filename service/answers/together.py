@@ -14,9 +14,10 @@ import numpy as np
 from fastapi.responses import Response
 
 from models.advisories import Advice
-from models.estimate import Estimates, Remarks, estimate
+from models.estimate import Estimates, estimate
 from models.readings import read
 from models.relation import Array
+from service.answers.advice import remarks_of
 from service.answers.prepared import Prepared
 from service.formats.json.estimates import laid_out, rows_of, with_rest
 from service.formats.json.readings import JsonReadings
@@ -127,7 +128,7 @@ def _remarks(
     said: Prepared, numbers: Mapping[str, Array], result: Estimates, part: slice
 ) -> tuple[Advice, ...]:
     """The advisories that some of the rows give rise to."""
-    remarks = Remarks()
+    remarks = remarks_of(said.basis)
     remarks.note(
         {name: values[part] for name, values in numbers.items()},
         said.settings.units,

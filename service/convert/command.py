@@ -2,16 +2,18 @@
 
 import os
 import sys
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterator
 from concurrent.futures import ThreadPoolExecutor
+from itertools import chain
 from pathlib import Path
 from typing import Any, NoReturn
 
 import click
 
-from service.batch_estimates import wanted_columns
-from service.convert.job import Job, Outcome, Refused, Wish, run, stored_in
-from service.convert.plan import Ledger, into_folder, plan
+from service.answers.columns import wanted_columns
+from service.convert.job import Job, Outcome, Refused, Wish, run, stored_in, told
+from service.convert.ledger import Ledger
+from service.convert.plan import EXPECTED, Plan, into_folder, plan
 from service.convert.processes import run_all
 from service.convert.progress import Progress
 from service.errors import Problem
@@ -22,6 +24,8 @@ from service.settings import SettingsError
 from service.stations.named import names_something, with_stored
 from service.store.errors import StoreError
 
+MOST_SKIPPED = 20
+"""Files that were passed over that are named one by one."""
 BAD_INPUT = 2
 """Exit code for what the caller can mend."""
 
@@ -55,6 +59,8 @@ def one_option_per_word(command: Callable[..., None]) -> Callable[..., None]:
               help="how many files are worked on at a time; as many as there are processors where "
               "left out")  # fmt: skip
 @click.option("--again", is_flag=True, help="answer files that were finished before, too")
+@click.option("--overwrite", is_flag=True, help="write over files that are there and are no "
+              "answers of an earlier command to this folder")  # fmt: skip
 @click.option("--columns", metavar="NAMES", help=meaning("columns"))
 @click.option("--parameter", "extra", multiple=True, metavar="NAME=VALUE",
               help="a parameter of the mixing model's own; may be given several times")  # fmt: skip
@@ -69,6 +75,7 @@ def convert(  # noqa: PLR0913, PLR0917 - click passes every option by name
     read: str | None,
     processes: int | None,
     again: bool,  # noqa: FBT001
+    overwrite: bool,  # noqa: FBT001
     columns: str | None,
     extra: tuple[str, ...],
     strict: bool,  # noqa: FBT001
@@ -79,7 +86,8 @@ def convert(  # noqa: PLR0913, PLR0917 - click passes every option by name
 
     Of folders, every table below is answered under the same name in the folder named with -o.
     Files that were finished there before, in the same way, are left alone, so that a command that
-    was interrupted goes on where it was.
+    was interrupted goes on where it was. Names may end in .csv, .ndjson, .arrows (or .arrow),
+    .parquet, and .csv.gz or .ndjson.gz. No table is written over, and no other file unasked.
 
     Every option takes what the query of POST /v1/estimates takes; each also has a _u, such as
     --bulk-density-u, for its standard uncertainty.
@@ -91,16 +99,16 @@ def convert(  # noqa: PLR0913, PLR0917 - click passes every option by name
         settings_of(document)
         folder = None if data is None else str(data)
         wish = Wish(document, strict, wanted_columns(columns), folder)
-        jobs = plan(files, output, read, written)
-    except Problem as problem:
-        faults = "".join(f"\n  {fault.pointer}: {fault.detail}" for fault in problem.errors)
-        _fail(f"{problem.detail}{faults}")
-    except (Refused, SettingsError, StoreError) as refusal:
-        _fail(str(refusal))
+        made = plan(files, output, read, written)
+    except (Problem, Refused, SettingsError, StoreError) as refusal:
+        _fail(told(refusal))
     if into_folder(files):
-        _several(jobs, wish, Path(str(output)), processes, again=again)
-    else:
-        _told(_alone(jobs[0], wish), named=False)
+        _several(made, wish, Path(str(output)), processes, again=again, overwrite=overwrite)
+        return
+    (job,) = made.jobs
+    if job.target is not None and job.target.exists() and not overwrite:
+        _fail(_there(job))
+    _told(_alone(job, wish), named=False)
 
 
 def _described(document: dict[str, Any], data: Path | None) -> dict[str, Any]:
@@ -110,17 +118,32 @@ def _described(document: dict[str, Any], data: Path | None) -> dict[str, Any]:
     return with_stored(document, stored_in(None if data is None else str(data)))
 
 
-def _several(jobs: Sequence[Job], wish: Wish, folder: Path, processes: int | None, *, again: bool
-             ) -> None:  # fmt: skip
+def _several(made: Plan, wish: Wish, folder: Path, processes: int | None, *, again: bool,
+             overwrite: bool) -> None:  # fmt: skip
+    for reason in made.skipped[:MOST_SKIPPED]:
+        click.echo(f"skipped {reason}", err=True)
+    if made.skipped[MOST_SKIPPED:]:
+        click.echo(f"skipped {len(made.skipped) - MOST_SKIPPED} more files like these", err=True)
+    if not made.jobs:
+        _fail(f"found no table to convert: expected {EXPECTED}")
     folder.mkdir(parents=True, exist_ok=True)
     ledger = Ledger(folder, wish)
-    due = [job for job in jobs if again or not ledger.finished(job)]
-    if len(due) < len(jobs):
-        click.echo(f"{len(jobs) - len(due)} of {len(jobs)} files were finished before", err=True)
-    progress = Progress(sum(job.size for job in due))
-    count = min(processes or os.cpu_count() or 1, max(len(due), 1))
-    endings = run_all(due, wish, count, progress) if due else iter(())
-    _told(_noted(endings, ledger, progress), named=True)
+    due = [job for job in made.jobs if again or not ledger.finished(job)]
+    if len(due) < len(made.jobs):
+        done = len(made.jobs) - len(due)
+        click.echo(f"{done} of {len(made.jobs)} files were finished before", err=True)
+    free = [job for job in due if overwrite or ledger.holds(job)]
+    taken = [job for job in due if not (overwrite or ledger.holds(job))]
+    ledger.begin(free)
+    progress = Progress(sum(job.size for job in free))
+    count = min(processes or os.cpu_count() or 1, max(len(free), 1))
+    endings = run_all(free, wish, count, progress) if free else iter(())
+    refused: Endings = ((job, Refused(_there(job))) for job in taken)
+    _told(chain(refused, _noted(endings, ledger, progress)), named=True)
+
+
+def _there(job: Job) -> str:
+    return f"{job.target} is there: name another place with -o, or write over it with --overwrite"
 
 
 def _noted(endings: Endings, ledger: Ledger, progress: Progress) -> Endings:

@@ -1,23 +1,28 @@
 """One file on its way to its answer: what has to be known for it, in whatever process."""
 
+import gzip
 import hashlib
 import json
 import sys
+import zlib
 from collections.abc import Callable, Iterator, Mapping
 from concurrent.futures import Executor
 from contextlib import contextmanager, suppress
 from dataclasses import asdict, dataclass
 from pathlib import Path
-from typing import IO, Any
+from typing import IO, Any, cast
 
 from models.errors import ModelError
 from service.answers.by_name import Grounds
+from service.answers.columns import APPENDED
 from service.batch import Conversion, Counts, convert_file
-from service.batch_estimates import APPENDED, TableEstimates
-from service.errors import Problem
+from service.batch_estimates import TableEstimates
+from service.errors import Problem, Unprocessable, as_problem
 from service.formats import FORMATS
 from service.formats.errors import FormatError, SpoolFull
+from service.schemas.problem import MOST_FAULTS
 from service.schemas.query import settings_of
+from service.schemas.wording import COMMAND, worded
 from service.settings import SettingsError, read_settings
 from service.stations.documents import Documents, Shelf
 from service.store.errors import StoreError
@@ -55,6 +60,8 @@ class Job:
     read: str
     written: str
     """Formats by their short names."""
+    compressed: bool = False
+    """Whether the source is compressed by gzip."""
 
     @property
     def size(self) -> int:
@@ -94,14 +101,13 @@ def run(
             columns=wish.columns,
             beside=beside,
         )
-        with _opened(job.source) as source, _complete_or_absent(job.target) as target:
-            counts = convert_file(source, target, conversion, progress)
-    except Problem as problem:
-        faults = "".join(f"\n  {fault.pointer}: {fault.detail}" for fault in problem.errors)
-        raise Refused(f"{problem.detail}{faults}") from None
-    except (FormatError, ModelError, SpoolFull, SettingsError, StoreError) as error:
-        raise Refused(str(error)) from None
-    advice = [f"{said.code}: {said.text}" for said in estimates.advice]
+        with _opened(job) as (source, read), _complete_or_absent(job.target) as target:
+            counts = convert_file(source, target, conversion, lambda count: progress(read(count)))
+    except (Problem, FormatError, ModelError, SpoolFull, SettingsError, StoreError) as error:
+        raise Refused(told(error)) from None
+    except (gzip.BadGzipFile, EOFError, zlib.error) as error:
+        raise Refused(f"cannot be unpacked as gzip: {error}") from None
+    advice = [f"{said.code}: {COMMAND.text(said.text)}" for said in estimates.advice]
     return Outcome(counts, (*advice, *(f"not-estimated: {text}" for text in estimates.troubles)))
 
 
@@ -121,13 +127,42 @@ def _grounds(wish: Wish, columns: tuple[str, ...]) -> Grounds:
     return Grounds(wish.document, stored_in(wish.data), columns)
 
 
+def told(error: Exception) -> str:
+    """What is wrong, in the words of the command."""
+    if isinstance(error, FormatError):
+        return COMMAND.text(str(error))
+    problem = as_problem(error) if isinstance(error, ModelError) else error
+    if not isinstance(problem, Unprocessable):
+        return str(getattr(problem, "detail", problem))
+    said = worded(problem, COMMAND)
+    faults = [f"{fault.pointer}: {fault.detail}" for fault in said.errors[:MOST_FAULTS]]
+    return "\n  ".join(faults) or str(said.detail)
+
+
 @contextmanager
-def _opened(path: Path | None) -> Iterator[IO[bytes]]:
-    if path is None:
-        yield sys.stdin.buffer
+def _opened(job: Job) -> Iterator[tuple[IO[bytes], Callable[[int], int]]]:
+    """The table, and how many bytes of its file so many bytes of it are."""
+    if job.source is None:
+        yield sys.stdin.buffer, lambda count: count
         return
-    with path.open("rb") as file:
-        yield file
+    with job.source.open("rb") as file:
+        if not job.compressed:
+            yield file, lambda count: count
+            return
+        with gzip.GzipFile(fileobj=file) as unpacked:
+            yield cast("IO[bytes]", unpacked), _steps(file)
+
+
+def _steps(file: IO[bytes]) -> Callable[[int], int]:
+    """How far a file was read since the last call."""
+    before = 0
+
+    def step(_: int) -> int:
+        nonlocal before
+        before, last = file.tell(), before
+        return before - last
+
+    return step
 
 
 @contextmanager

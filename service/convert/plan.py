@@ -1,47 +1,52 @@
-"""Which files are converted to which, and which of them were finished before."""
+"""Which files are converted to which, and which are passed over."""
 
-import json
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
 from pathlib import Path
 from types import MappingProxyType
-from typing import Any
 
-from service.convert.job import Job, Refused, Wish
+from service.convert.job import Job, Refused
 from service.formats import FORMATS
 
 STREAM = "-"
 """Standard input or output."""
-LEDGER = ".gleyline-convert.json"
-"""The file of a folder of answers that says of what they are answers."""
+COMPRESSED = ".gz"
+"""Behind the ending of a table of text: compressed by gzip."""
 
-SUFFIXES: Mapping[str, str] = MappingProxyType({f.suffix: key for key, f in FORMATS.items()})
+SUFFIXES: Mapping[str, str] = MappingProxyType(
+    {f.suffix: key for key, f in FORMATS.items()} | {".arrow": "arrow"}
+)
+TEXT = ("csv", "ndjson")
+EXPECTED = (
+    f"a name that ends in {', '.join(SUFFIXES)}, "
+    f"{' or '.join(FORMATS[key].suffix + COMPRESSED for key in TEXT)}"
+)
 
 
-def plan(
-    sources: Sequence[str], output: str | None, read: str | None, written: str | None
-) -> list[Job]:
-    """The jobs of a command, in order.
+@dataclass(frozen=True, slots=True)
+class Plan:
+    """The jobs of a command, in order."""
+
+    jobs: list[Job] = field(default_factory=list)
+    skipped: list[str] = field(default_factory=list)
+    """Files of a folder that are no jobs, each with the reason."""
+
+
+def plan(sources: Sequence[str], output: str | None, read: str | None, written: str | None) -> Plan:
+    """What a command is to do.
 
     sources: files, folders or "-". output: a file, a folder (for several files), "-" or None.
     read, written: formats, where names of files should not decide.
     Raises Refused.
     """
     if not into_folder(sources):
-        return [_single(sources[0], output, read, written)]
-    if output in {None, STREAM} or Path(str(output)).is_file():
-        raise Refused("several files need a folder for their answers: name it with -o")
-    folder = Path(str(output))
-    jobs = [
-        Job(path, folder / _renamed(name, written), _form(path, read), written or _form(path, read))
-        for path, name in _files(sources, folder, read)
-    ]
-    taken: dict[Path, Path | None] = {}
-    for job in jobs:
-        target = job.target or folder
-        if target in taken:
-            raise Refused(f"{taken[target]} and {job.source} would both become {target}")
-        taken[target] = job.source
-    return jobs
+        made = Plan([_single(sources[0], output, read, written)])
+    else:
+        if output in {None, STREAM} or Path(str(output)).is_file():
+            raise Refused("several files need a folder for their answers: name it with -o")
+        made = _of_several(sources, Path(str(output)), read, written)
+    _refuse_collisions(made.jobs)
+    return made
 
 
 def into_folder(sources: Sequence[str]) -> bool:
@@ -49,40 +54,37 @@ def into_folder(sources: Sequence[str]) -> bool:
     return len(sources) > 1 or (sources[0] != STREAM and Path(sources[0]).is_dir())
 
 
-class Ledger:
-    """What a folder of answers holds answers to."""
+def _of_several(
+    sources: Sequence[str], folder: Path, read: str | None, written: str | None
+) -> Plan:
+    """The tables in folders and beside them; answers of before, within a folder, are none."""
+    made = Plan()
+    for source in sources:
+        path = Path(source)
+        if source == STREAM:
+            raise Refused("standard input cannot be one of several files")
+        if not path.is_dir():
+            made.jobs.append(_job(path, Path(path.name), folder, read, written))
+            continue
+        if path.resolve() == folder.resolve():
+            raise Refused(f"{path} cannot hold tables and their answers: name another folder "
+                          "with -o")  # fmt: skip
+        own = folder.resolve() if path.resolve() in folder.resolve().parents else None
+        for inner in sorted(path.rglob("*")):
+            name = inner.relative_to(path)
+            answer = own is not None and own in inner.resolve().parents
+            if not inner.is_file() or answer or name.name.startswith("."):
+                continue
+            if _form(inner) or (read and inner.suffix):
+                made.jobs.append(_job(inner, name, folder, read, written))
+            else:
+                made.skipped.append(f"{inner}: expected {EXPECTED}")
+    return made
 
-    def __init__(self, folder: Path, wish: Wish) -> None:
-        self._path, self._wish = folder / LEDGER, wish.digest()
-        self._known: dict[str, Any] = {}
-        if self._path.is_file():
-            try:
-                self._known = dict(json.loads(self._path.read_text("utf-8")))
-            except ValueError:
-                self._known = {}
 
-    def finished(self, job: Job) -> bool:
-        """Whether this file was answered as it is now, in the same way."""
-        if job.target is None or not job.target.is_file():
-            return False
-        return bool(self._known.get(str(job.target)) == self._entry(job))
-
-    def note(self, job: Job) -> None:
-        """Remember that a file is finished."""
-        self._known[str(job.target)] = self._entry(job)
-        beside = self._path.with_name(f"{LEDGER}.part")
-        beside.write_text(json.dumps(self._known, indent=1), "utf-8")
-        beside.replace(self._path)
-
-    def _entry(self, job: Job) -> dict[str, Any]:
-        assert job.source is not None  # noqa: S101 - folders are never standard input
-        state = job.source.stat()
-        return {
-            "source": str(job.source.resolve()),
-            "bytes": state.st_size,
-            "modified": state.st_mtime_ns,
-            "wish": f"{self._wish} {job.read} {job.written}",
-        }
+def _job(path: Path, name: Path, folder: Path, read: str | None, written: str | None) -> Job:
+    form = _form_of(path, read)
+    return Job(path, folder / _renamed(name, written), form, written or form, _is_compressed(path))
 
 
 def _single(source: str, output: str | None, read: str | None, written: str | None) -> Job:
@@ -90,33 +92,61 @@ def _single(source: str, output: str | None, read: str | None, written: str | No
     target = None if output in {None, STREAM} else Path(str(output))
     if target is not None and target.is_dir():
         target = target / _renamed(Path("stdin.csv" if path is None else path.name), written)
-    form = _form(path, read) if path else read or "csv"
-    named = SUFFIXES.get(target.suffix.lower()) if target else None
-    return Job(path, target, form, written or named or form)
+    form = _form_of(path, read) if path else read or "csv"
+    named = _form(target) if target else None
+    compressed = path is not None and _is_compressed(path)
+    return Job(path, target, form, written or named or form, compressed)
 
 
-def _files(sources: Iterable[str], folder: Path, read: str | None) -> Iterator[tuple[Path, Path]]:
-    """Every file, and its name among the answers; answers of before are no tables to answer."""
-    for source in sources:
-        path = Path(source)
-        if source == STREAM:
-            raise Refused("standard input cannot be one of several files")
-        if not path.is_dir():
-            yield path, Path(path.name)
+def _refuse_collisions(jobs: Sequence[Job]) -> None:
+    """Raise Refused where two answers would be one file, or an answer would be a table read."""
+    sources = {_identity(job.source) for job in jobs if job.source is not None}
+    taken: dict[Path, Path | None] = {}
+    for job in jobs:
+        if job.target is None:
             continue
-        for inner in sorted(path.rglob("*")):
-            known = inner.suffix.lower() in SUFFIXES or (read and inner.suffix)
-            own = folder.resolve() in inner.resolve().parents
-            if inner.is_file() and known and not own and not inner.name.startswith("."):
-                yield inner, inner.relative_to(path)
+        place = job.target.resolve()
+        if place in taken:
+            raise Refused(f"{taken[place]} and {job.source} would both become {job.target}")
+        if place.exists() and _identity(place) in sources:
+            raise Refused(
+                f"the answer would be written over {job.target}, which is read: name another "
+                "file or folder with -o"
+            )
+        if job.target.suffix.lower() == COMPRESSED:
+            raise Refused(f"{job.target}: answers are not compressed: leave out {COMPRESSED}")
+        taken[place] = job.source
 
 
-def _form(path: Path, read: str | None) -> str:
-    form = read or SUFFIXES.get(path.suffix.lower())
+def _identity(path: Path) -> tuple[int, int]:
+    """The same for every name of a file."""
+    state = path.stat()
+    return state.st_dev, state.st_ino
+
+
+def _is_compressed(path: Path) -> bool:
+    return path.suffix.lower() == COMPRESSED
+
+
+def _form(path: Path) -> str | None:
+    """The format that a name says; only tables of text are read compressed."""
+    if not _is_compressed(path):
+        return SUFFIXES.get(path.suffix.lower())
+    inner = SUFFIXES.get(Path(path.stem).suffix.lower())
+    return inner if inner in TEXT else None
+
+
+def _form_of(path: Path, read: str | None) -> str:
+    form = read or _form(path)
     if form is None:
-        raise Refused(f"{path.name}: expected a name that ends in {', '.join(SUFFIXES)}, or --read")
+        raise Refused(f"{path.name}: expected {EXPECTED}, or --read")
+    if form not in TEXT and _is_compressed(path):
+        raise Refused(f"{path.name}: only {' and '.join(TEXT)} are read compressed: unpack it")
     return form
 
 
 def _renamed(name: Path, written: str | None) -> Path:
+    """The name of the answer to a file of this name."""
+    if _is_compressed(name):
+        name = name.with_suffix("")
     return name.with_suffix(FORMATS[written].suffix) if written else name

@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from models.flags import BIT, Flags, slugs_of, withheld
 from models.readings import Readings, read
 from models.relation import Array
+from service.formats.csv_records import cells_in
 from service.formats.errors import CellError, HeaderError, shown
 from service.formats.header import folded
 
@@ -172,7 +173,8 @@ def refuse_first(block: Block, answer: Answer, before: int = 0) -> None:
     line = None if block.batch is not None else int(block.lines[row])
     where: Any = {"line": line, "row": before + row + 1}
     if block.broken[row]:
-        raise CellError(_whole(block.header), shown(block.records[row]), **where)
+        expected, found = row_in_words(block, row)
+        raise CellError(expected, found, **where)
     for name, odd in block.unreadable.items():
         if odd[row]:
             raise CellError("a number", _shown_cell(block, name, row), column=name, **where)
@@ -185,14 +187,18 @@ def refuse_first(block: Block, answer: Answer, before: int = 0) -> None:
     raise CellError("a number", "none", column=name, mend="the model needs it", **where)
 
 
-def _whole(header: Header) -> str:
-    """What a row of the table should be."""
-    count = len(header.names)
-    return (
-        f"{count} cell{'s' if count != 1 else ''}, as many as the header has"
-        if (header.form == "csv")
-        else "a JSON object with each key once"
-    )
+def row_in_words(block: Block, row: int) -> tuple[str, str]:
+    """What a row that cannot be taken apart should be, and what it is."""
+    text: str = block.records[row]
+    if block.header.form != "csv":
+        return "a JSON object with each key once", shown(text)
+    cells = cells_in(text)
+    counted = f"{_cells(len(cells))}: " if cells else ""
+    return f"{_cells(len(block.header.names))}, as many as the header has", counted + shown(text)
+
+
+def _cells(count: int) -> str:
+    return f"{count} cell" if count == 1 else f"{count} cells"
 
 
 def _shown_cell(block: Block, name: str, row: int) -> str:

@@ -8,7 +8,7 @@ from numpy.typing import NDArray
 
 from models.relation import Array
 
-MISSING = ("", "nan", "na", "n/a", "null", "none", "inf", "-inf", "m", "-", "--", "---")
+MISSING = ("", "nan", "na", "n/a", "#n/a", "null", "none", "inf", "-inf", "m", "-", "--", "---")
 """What loggers write where there is no value, in any case and with blanks around it."""
 
 Marks = NDArray[np.bool_]

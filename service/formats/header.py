@@ -14,6 +14,11 @@ RECOGNISED = frozenset((*NUMBERS, *(f"{name}_u" for name in NOISE)))
 NEEDED = ("apparent_permittivity", "real_permittivity", "travel_time")
 """One of these makes a row a reading."""
 
+ESTIMATED_FROM = tuple(sorted(RECOGNISED - {"depth"}))
+"""Columns that an estimate may rest on."""
+LONGEST = 80
+"""Characters of a name that are compared."""
+
 FLAGS = "flags"
 MOST_COLUMNS = 1000
 
@@ -29,13 +34,20 @@ _DESCRIBES: Mapping[str, str] = MappingProxyType(
     }
 )
 _SYMBOLS = MappingProxyType({QUANTITIES[name].symbol.lower(): name for name in NUMBERS})
+_SYMBOL = MappingProxyType({name: QUANTITIES[name].symbol.casefold() for name in NUMBERS})
+_WIDTHS = ("_std", "_sd", "_stdev", "_stddev", "_sigma", "_se", "_err", "_error", "_unc",
+           "_uncertainty")  # fmt: skip
+"""Other endings of a column that holds a standard uncertainty."""
 _SAID = MappingProxyType(
     dict.fromkeys(
         ("permittivity", "dielectric_permittivity", "dielectric_constant", "epsilon", "dielectric"),
         "apparent_permittivity",
     )
-    | dict.fromkeys(("ec", "electrical_conductivity", "conductivity"), "bulk_conductivity")
-    | dict.fromkeys(("temp", "soil_temperature"), "temperature")
+    | dict.fromkeys(
+        ("ec", "bulk_ec", "ec_bulk", "electrical_conductivity", "conductivity"),
+        "bulk_conductivity",
+    )
+    | dict.fromkeys(("temp", "soil_temp", "soil_temperature"), "temperature")
 )
 """Other words for what is measured, where one of ours is most likely meant."""
 
@@ -74,6 +86,49 @@ def recognised(names: Sequence[str], appends: Collection[str], line: int) -> dic
         if name in RECOGNISED:
             found[name] = place
     return found
+
+
+def likely(name: str, known: Sequence[str]) -> list[str]:
+    """The known names that a name may stand for, most likely first; at most two."""
+    written = folded(name)
+    symbols = [other for other in known if _SYMBOL.get(other) == written]
+    other_words = {_SAID.get(written), _width(written)}
+    said = [other for other in known if other in other_words]
+    close = get_close_matches(written[:LONGEST], known, n=4, cutoff=0.65)
+    alike = [other for other in close if other.endswith("_u") == written.endswith("_u")]
+    begun = [other for other in known if len(written) > 3 and other.startswith(written)]
+    return list(dict.fromkeys(symbols or [*said, *alike] or begun[:1]))[:2]
+
+
+def _width(written: str) -> str | None:
+    """The name of the uncertainty that a column with another ending states."""
+    ending = next((word for word in _WIDTHS if written.endswith(word)), None)
+    if ending is None:
+        return None
+    stem = written.removesuffix(ending)
+    return f"{_SAID.get(stem, stem)}_u"
+
+
+def not_read(names: Iterable[str], read: Collection[str]) -> list[tuple[str, list[str]]]:
+    """Columns that pass through though one of ours is likely meant, each with what that may be.
+
+    names: as they stand in the table. read: names of the columns that are read.
+
+    What is read already cannot be meant as well, and a depth is of no consequence to an estimate.
+    """
+    found = []
+    for name in names:
+        if folded(name) not in read:
+            meant = likely(name, ESTIMATED_FROM)
+            if meant and meant[0] not in read:
+                found.append((name, [other for other in meant if other not in read]))
+    return found
+
+
+def alone(names: Collection[str]) -> list[str]:
+    """Uncertainties among some names whose quantity is not among them."""
+    about = ((name, name.removesuffix("_u")) for name in names if name in RECOGNISED)
+    return [name for name, stem in about if name != stem and stem not in names]
 
 
 def meant_by(name: str) -> str | None:
@@ -115,10 +170,26 @@ def check_permittivity(
         )  # fmt: skip
 
 
+def check_keys(names: Sequence[str], found: Iterable[str], line: int, text: str) -> None:
+    """As check_permittivity, for the keys on lines of NDJSON; text: of the first of them."""
+    begins = text.lstrip()[:1]
+    if not names and begins == "[":
+        raise HeaderError(
+            "a JSON object on each line", "a JSON array", line=line,
+            mend="send one object on each line without commas between them, or as application/json "
+            'an object with "readings"',
+        )  # fmt: skip
+    check_permittivity(names, found, line, "key" if names else "JSON object with a key")
+
+
 def _likely(names: Sequence[str], kind: str) -> str:
+    if kind == "column" and names and names[0].lstrip()[:1] in {"{", "["}:
+        return "this looks like JSON: send it as application/json, or line by line as NDJSON"
+    if kind == "key" and "readings" in names:
+        return "this looks like a whole request: send it as application/json"
     for written in names:
         name = folded(written)
-        meant = meant_by(name) or next(iter(get_close_matches(name[:80], NEEDED, n=1)), None)
+        meant = meant_by(name) or next(iter(get_close_matches(name[:LONGEST], NEEDED, n=1)), None)
         if meant in NEEDED:
             return f"is {shown(written)} the {meant}? then name it so"
     if any(name.strip()[:1].isdigit() for name in names):

@@ -8,10 +8,14 @@ from typing import Annotated, Any
 from fastapi import APIRouter, Path, Request, Response
 
 from models.advisories import ADVISORIES
+from models.calibration.advisories import CALIBRATION_ADVISORIES
 from models.conductivity import TEMPERATURE_COMPENSATIONS
+from models.decisions.advisories import DECISION_ADVISORIES
+from models.decisions.crops import CROPS
+from models.decisions.flags import DECISION_FLAGS
+from models.decisions.terms import WORDS
 from models.flags import FLAGS
 from models.mixing import MIXING_MODELS
-from models.quantity import QUANTITIES
 from models.reflection.sweep_flags import SWEEP_FLAGS
 from models.salinity import PORE_WATER_MODELS
 from models.soil import TEXTURES
@@ -59,9 +63,12 @@ CATALOGUES = (
     Catalogue("temperature-compensations", "Temperature compensations of conductivity",
               (TEMPERATURE_COMPENSATIONS,)),
     Catalogue("soil-textures", "Texture classes and what they stand for", (TEXTURES,)),
+    Catalogue("crops", "Crops: root depth, depletion fraction, salt threshold and slope",
+              (CROPS,)),
     Catalogue("flags", "Flags of rows and advisories of answers",
-              (FLAGS, SWEEP_FLAGS, SPECTRUM_FLAGS, ADVISORIES)),
-    Catalogue("quantities", "The vocabulary: names, units, gates", (QUANTITIES,)),
+              (FLAGS, SWEEP_FLAGS, SPECTRUM_FLAGS, DECISION_FLAGS, ADVISORIES,
+               CALIBRATION_ADVISORIES, DECISION_ADVISORIES)),
+    Catalogue("quantities", "The vocabulary: names, units, gates", (WORDS,)),
 )  # fmt: skip
 
 

@@ -4,18 +4,18 @@ from functools import lru_cache
 from typing import Any
 
 import anyio.to_thread
-import orjson
 from fastapi import APIRouter, Request
 from fastapi.responses import Response
 from starlette.requests import ClientDisconnect
 
 from service.answers import answer_document
 from service.answers.few import COSTLY, few_readings
-from service.errors import Malformed, Unprocessable, UnsupportedMediaType
+from service.errors import Unprocessable, UnsupportedMediaType
 from service.faults import Fault, nearest, shown
 from service.formats import MEDIA_TYPES, format_of
 from service.negotiate import choose
 from service.routes.estimates_description import DESCRIPTION
+from service.routes.json_object import object_of
 from service.routes.tables import answer_table, described
 
 router = APIRouter(tags=["estimates"])
@@ -96,20 +96,10 @@ def _refuse_query(request: Request) -> None:
 
 
 def _parsed(body: bytes) -> dict[str, Any]:
-    if not body.strip():
-        raise Malformed(f"the body is not JSON, but empty; expected an object such as {EXAMPLE}")
-    try:
-        document = orjson.loads(body)
-    except orjson.JSONDecodeError as error:
-        hint = ""
-        if any(word in body[max(0, error.pos - 2) : error.pos + 10] for word in (b"NaN", b"Inf")):
-            hint = "; JSON has no NaN and no Infinity: send null where there is no number"
-        raise Malformed(f"the body is not JSON: {error}{hint}") from None
-    if not isinstance(document, dict):
-        detail = f"expected an object such as {EXAMPLE}, found {shown(document)}"
-        raise Unprocessable(detail, [Fault(detail, "#")])
+    document = object_of(body, EXAMPLE, tables=True)
     if "readings" not in document:
         meant = nearest("readings", document)
-        detail = f"readings is missing{f': is {shown(meant)} meant?' if meant else ''}"
+        hint = f"is {shown(meant)} meant?" if meant else f"expected an object such as {EXAMPLE}"
+        detail = f"readings is missing: {hint}"
         raise Unprocessable(detail, [Fault(detail, "#/readings")])
     return document

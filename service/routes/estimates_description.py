@@ -2,6 +2,8 @@
 
 from typing import Any
 
+from models.mixing import MIXING_MODELS
+from models.salinity import PORE_WATER_MODELS
 from service.formats import MEDIA_TYPES
 from service.schemas.batch_query import ASIDE, PLACES, TEXTS, meaning
 from service.schemas.estimates_described import answer_schema, request_schema
@@ -19,8 +21,31 @@ _TABLES: dict[str, Any] = {
     for key, media_type in MEDIA_TYPES.items()
 }
 
+
+def _own_parameters() -> list[dict[str, Any]]:
+    """Parameters of single models, which the query takes where such a model is named."""
+    takers: dict[str, list[str]] = {}
+    told: dict[str, dict[str, Any]] = {}
+    for registry in (MIXING_MODELS, PORE_WATER_MODELS):
+        for model in registry.values():
+            for parameter in model.parameters:
+                if parameter.name in PLACES or parameter.name in ASIDE or parameter.supplied:
+                    continue
+                takers.setdefault(parameter.name, []).append(model.key)
+                kind: dict[str, Any] = {"type": "number"}
+                if parameter.choices:
+                    kind = {"type": "string", "enum": list(parameter.choices)}
+                told.setdefault(parameter.name, {"schema": kind, "meaning": parameter.meaning})
+    return [
+        {"name": name, "in": "query", "required": False, "schema": about["schema"],
+         "description": f"of {', '.join(dict.fromkeys(takers[name]))}: {about['meaning']}; "
+         f"its standard uncertainty is {name}_u"}
+        for name, about in told.items()
+    ]  # fmt: skip
+
+
 DESCRIPTION: dict[str, Any] = {
-    "parameters": [_parameter(name) for name in (*PLACES, *ASIDE)],
+    "parameters": [*map(_parameter, (*PLACES, *ASIDE)), *_own_parameters()],
     "requestBody": {
         "required": True,
         "description": "JSON says everything in its body. A table (CSV, NDJSON, Arrow, "
@@ -41,6 +66,19 @@ DESCRIPTION: dict[str, Any] = {
             "headers": {
                 "Row-Count": {"schema": {"type": "integer"}, "description": "rows of a table"},
                 "Flagged-Count": {"schema": {"type": "integer"}, "description": "with a flag"},
+                "Columns-Read": {
+                    "schema": {"type": "string"},
+                    "description": "columns of a table that were read; others passed through",
+                },
+                "Advisories": {
+                    "schema": {"type": "string"},
+                    "description": "codes of what a table must be read with; /v1/flags has texts",
+                },
+                "Remarks": {
+                    "schema": {"type": "string"},
+                    "description": "in words, of a table: columns that were not read and perhaps "
+                    "meant, rows and values that cannot be used, units that are suspected",
+                },
                 "Not-Estimated": {
                     "schema": {"type": "string"},
                     "description": "soils and probes that rows name and that cannot be used, each "

@@ -8,22 +8,36 @@ import anyio.to_thread
 from fastapi import FastAPI, Request
 from fastapi.responses import Response
 
+from models.errors import ModelError
 from service.answers.by_name import Grounds
+from service.answers.columns import APPENDED, wanted_columns
 from service.batch import Conversion, Spool, SpooledResponse, Stages, convert_stream, deadline
-from service.batch_estimates import APPENDED, TableEstimates, wanted_columns
-from service.errors import Problem, Stalled, TooLarge, Unavailable, Unprocessable
+from service.batch_estimates import TableEstimates
+from service.errors import Problem, Stalled, TooLarge, Unavailable, Unprocessable, as_problem
 from service.faults import Fault
 from service.formats import FORMATS, MEDIA_TYPES, Format
 from service.metrics import SPOOLED, TABLES
 from service.negotiate import VARY, choose
 from service.schemas.batch_query import document_of
 from service.schemas.query import settings_of
+from service.schemas.wording import QUERY, worded
 from service.settings import Settings
 from service.stations.documents import Shelf
 from service.stations.named import names_something, with_stored
 
 
 async def answer_table(request: Request, sent: Format) -> Response:
+    """The rows of the body with their estimates, in the format the client accepts."""
+    try:
+        return await _answered(request, sent)
+    except (ModelError, Unprocessable) as error:
+        problem = as_problem(error)
+        if not isinstance(problem, Unprocessable):
+            raise
+        raise worded(problem, QUERY) from None
+
+
+async def _answered(request: Request, sent: Format) -> Response:
     """The rows of the body with their estimates, in the format the client accepts."""
     limits: Settings = request.app.state.settings
     query = request.query_params

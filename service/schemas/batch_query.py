@@ -119,6 +119,9 @@ def _units(_: str, text: str) -> Mapping[str, str]:
                 f"units: expected quantity:unit pairs such as bulk_conductivity:mS/m, "
                 f"found {shown(pair)}"
             )
+        if name.strip() in units:
+            raise ValueError(f"units: {name.strip()} is given twice, as {units[name.strip()]} and "
+                             f"{code.strip()}: give it once")  # fmt: skip
         units[name.strip()] = code.strip()
     return units
 
@@ -129,11 +132,16 @@ def _stranger(name: str, known: Iterable[str]) -> Fault:
         return Fault(detail, f"?{name}")
     if name in READING or name.removesuffix("_u") in READING:
         return Fault(f"{name} is a column of the table, one value for each reading", f"?{name}")
+    if name in JSON_ONLY:
+        detail = f"{name} is answered in JSON alone: send the readings as application/json"
+        return Fault(detail, f"?{name}")
     meant = nearest(name, known)
     hint = f"did you mean {meant}?" if meant else "the description at /docs lists what is known"
     return Fault(f"unknown parameter {shown(name)}; {hint}", f"?{name[:80]}")
 
 
+JSON_ONLY = frozenset({"budget", "validate", "explain"})
+"""What a table has no room for."""
 NAMED = frozenset({"soil", "probe"})
 """Parameters that name what is stored, in place of the words that describe it."""
 

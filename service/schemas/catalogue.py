@@ -7,6 +7,8 @@ from math import isfinite
 from typing import Any
 
 from models.conductivity.family import TemperatureCompensation
+from models.decisions.crops import TABLE_4, TABLE_22, Crop
+from models.decisions.terms import TERMS
 from models.mixing.family import MixingModel
 from models.quantity import QUANTITIES, Quantity
 from models.relation import Parameter, Range, Relation
@@ -102,6 +104,33 @@ def _(value: Parameter) -> dict[str, Any]:
         "default_u": converted(value.default_u, f"{value.name}_u"),
         "supplied": value.supplied,
         "optional": value.optional,
+    }
+
+
+@shown.register
+def _(value: Crop) -> dict[str, Any]:
+    numbers = {
+        "depletion_fraction": value.readily_available,
+        "salt_threshold": value.threshold,
+        "salt_slope": value.slope,
+    }
+    told: dict[str, Any] = {"name": value.key, "title": value.title, "root_depth": None}
+    if value.root_depth is not None:
+        low, high = value.root_depth
+        told["root_depth"] = {"low": low, "high": high, "unit": "m"}
+    for name, known in numbers.items():
+        unit = UNITS[TERMS[name].unit]
+        pair = (None, None) if known is None else tuple(float(f"{unit.width_from_si(part):.12g}")
+                                                        for part in known)  # fmt: skip
+        told |= {name: pair[0], f"{name}_u": pair[1], f"{name}_unit": unit.code}
+    return {
+        **told,
+        "from_memory": [name.replace("slope_percent", "salt_slope") for name in value.from_memory],
+        "note": value.note or None,
+        "citations": {
+            "water": value.root_depth and shown(TABLE_22),
+            "salt": value.threshold and shown(TABLE_4),
+        },
     }
 
 

@@ -5,7 +5,7 @@ from collections.abc import Iterable, Mapping
 from typing import Any
 
 from models.advisories import Advice
-from models.conversion import Units, from_si
+from models.conversion import Units, code_of, from_si
 from models.estimate import Basis, Query
 from models.quantity import QUANTITIES
 from models.readings import quantity_of
@@ -108,7 +108,7 @@ def units_of_answer(names: Iterable[str], units: Units) -> dict[str, str]:
             if stem not in QUANTITIES:
                 stem = stem.removesuffix(suffix)
         if QUANTITIES[stem].unit:
-            answered[stem] = units.get(stem, QUANTITIES[stem].unit)
+            answered[stem] = code_of(stem, units)
     return answered
 
 

@@ -169,7 +169,8 @@ class EstimatesSettings(Body):
     assume: Assume = Assume()
     units: dict[str, str] = Field(
         default_factory=dict,
-        description="UCUM codes by quantity, where they differ from the API's own unit.",
+        description="UCUM codes by quantity, where they differ from the API's own unit; "
+        "conduction_correction and model_spread are told in that of water_content.",
         examples=[{"bulk_conductivity": "mS/m"}],
     )
 

@@ -7,6 +7,8 @@ from fastapi import FastAPI
 from fastapi.routing import APIRoute
 from pydantic import TypeAdapter
 
+from service.calibrations.bodies import CALIBRATIONS
+from service.decisions.adapters import BODIES as DECISIONS
 from service.errors import MEDIA_TYPE, PROBLEMS
 from service.examples import examples, show
 from service.schemas.estimates import SETTINGS
@@ -72,7 +74,7 @@ class Api(FastAPI):
             for unused in ("HTTPValidationError", "ValidationError"):
                 schemas.pop(unused, None)
             schemas["Problem"] = PROBLEM
-            for bodies in (*BODIES, *STORED.values()):
+            for bodies in (*BODIES, CALIBRATIONS, *DECISIONS, *STORED.values()):
                 schemas |= bodies.json_schema(ref_template=REFERENCE).get("$defs", {})
             document["components"]["securitySchemes"] = {
                 "key": {"type": "http", "scheme": "bearer",

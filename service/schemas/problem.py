@@ -25,9 +25,11 @@ class Problem(HTTPException):
         detail: object,
         errors: Sequence[Fault] = (),
         headers: Mapping[str, str] | None = None,
+        more: int = 0,
     ) -> None:
+        """more: how many items are wrong beside ``errors``."""
         super().__init__(self.status, str(detail) or self.title(), dict(headers or {}))
-        self.errors = tuple(errors)
+        self.errors, self.more = tuple(errors), more
 
     @classmethod
     def title(cls) -> str:
@@ -50,13 +52,14 @@ class Problem(HTTPException):
         }
         if self.errors:
             body["errors"] = [fault.as_json() for fault in self.errors[:MOST_FAULTS]]
-        if len(self.errors) > MOST_FAULTS:
-            body["errors_not_shown"] = len(self.errors) - MOST_FAULTS
+        hidden = len(self.errors[MOST_FAULTS:]) + self.more
+        if hidden:
+            body["errors_not_shown"] = hidden
         return body
 
     def _first(self) -> str:
         """The detail, or the first of the items where the detail does not tell it."""
         if not self.errors or self.errors[0].detail in self.detail:
             return self.detail
-        first, more = self.errors[0], len(self.errors) - 1
+        first, more = self.errors[0], len(self.errors) - 1 + self.more
         return f"{first.pointer}: {first.detail}" + (f"; and {more} more" if more else "")

@@ -53,7 +53,7 @@ def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis | Eve
     Raises ModelError, with the place of each complaint, when it cannot be settled.
     """
     units = settings.units
-    refuse_units(units)
+    _refuse_units(units)
     soil = soil_of(settings.soil, units)
     probe = to_si("probe", _stated(settings.probe), units)
     assumed = to_si("assume", _stated(settings.assume), units)
@@ -89,11 +89,24 @@ def basis_of(settings: EstimatesSettings, columns: Iterable[str]) -> Basis | Eve
 
 def refuse_unknown_names(settings: EstimatesSettings) -> None:
     """Raise ParameterError for units and models that are none, whatever soil they are meant for."""
-    refuse_units(settings.units)
+    _refuse_units(settings.units)
     model_of("mixing_model", MIXING_MODELS, settings.mixing_model, settings.units)
     model_of("pore_water_model", PORE_WATER_MODELS, settings.pore_water_model, settings.units)
     compensation = ("temperature_compensation",)
     named_in(TEMPERATURE_COMPENSATIONS, settings.temperature_compensation, compensation)
+
+
+def _refuse_units(units: Units) -> None:
+    """As refuse_units, with the quantity that is most likely meant by a name that is none."""
+    known = [name for name, quantity in QUANTITIES.items() if quantity.unit]
+    complaints = [
+        Complaint(name, f"{shown(name)} is no quantity with a unit{meant}", ("units", name))
+        for name in units
+        if name not in known and (meant := hint(name, known))
+    ]
+    if complaints:
+        raise ParameterError("units", complaints)
+    refuse_units(units)
 
 
 def named_in(registry: Registry[Any], name: str, place: tuple[str, ...]) -> Any:

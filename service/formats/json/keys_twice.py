@@ -6,10 +6,12 @@ RFC 8259 leaves open what a reader makes of it; parsers keep the last one and sa
 import json
 import re
 from collections.abc import Sequence
+from itertools import chain
 from typing import Any
 
 _NAMED = re.compile(rb'"\s*:')
 """The end of a key; now and then of a piece of text, which costs a second look."""
+_NESTED = {dict, list}
 
 
 class Twice(Exception):
@@ -18,12 +20,13 @@ class Twice(Exception):
     def __init__(self, key: str, pairs: Sequence[tuple[str, Any]]) -> None:
         super().__init__(key)
         self.key = key
+        self.values = [value for name, value in pairs if name == key]
         self.time = next((value for name, value in pairs if name == "time"), None)
 
 
 def found_twice(body: bytes, document: Any) -> Twice | None:
     """The first key that stands twice in an object of the body; document: what was read of it."""
-    if len(_NAMED.findall(body)) == _keys_in(document):
+    if _keys_written(body) == _keys_in(document):
         return None  # as many keys were read as stand in the body
     try:
         json.loads(body, object_pairs_hook=_once)
@@ -36,8 +39,8 @@ def found_twice(body: bytes, document: Any) -> Twice | None:
 
 def lines_with_keys_twice(lines: Sequence[bytes], rows: Sequence[Any]) -> list[int]:
     """Which lines, of those that are objects, say a key twice."""
-    if sum(line.count(b'":') for line in lines) == sum(map(len, rows)):
-        return []  # written without a space before the colon, and each key once
+    if _keys_written(b"\n".join(lines)) == sum(map(len, rows)):
+        return []  # each line has as many keys as were read of it
     return [
         place
         for place, (line, row) in enumerate(zip(lines, rows, strict=True))
@@ -45,15 +48,25 @@ def lines_with_keys_twice(lines: Sequence[bytes], rows: Sequence[Any]) -> list[i
     ]
 
 
+def _keys_written(text: bytes) -> int:
+    """How many keys JSON has, or more where the end of a key occurs in a piece of text."""
+    return len(_NAMED.findall(text))
+
+
 def _keys_in(document: Any) -> int:
-    """How many keys all objects of a document have."""
-    count, left = 0, [document]
+    """How many keys all objects of a document have; rows of numbers and text are not walked."""
+    count, left = 0, [document] if isinstance(document, dict | list) else []
     while left:
         each = left.pop()
         if isinstance(each, dict):
             count += len(each)
             left.extend(value for value in each.values() if isinstance(value, dict | list))
-        elif isinstance(each, list) and each and isinstance(each[0], dict | list):
+        elif set(map(type, each)) == {dict}:
+            count += sum(map(len, each))
+            values = chain.from_iterable(map(dict.values, each))
+            if _NESTED & set(map(type, values)):
+                left.extend(v for row in each for v in row.values() if isinstance(v, dict | list))
+        elif each and isinstance(each[0], dict | list):
             left.extend(value for value in each if isinstance(value, dict | list))
     return count
 

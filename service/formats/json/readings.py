@@ -23,7 +23,7 @@ KNOWN = frozenset((*TEXTS, *NUMBERS))
 NUMBER_TYPES = frozenset({float, int, type(None)})
 TEXT_TYPES = frozenset({str, type(None)})
 MOST = 40
-"""Faults that are collected before the search ends."""
+"""Faults that are told one by one; of the others only how many there are."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -110,6 +110,7 @@ def _typed(
     absent: Mapping[str, NDArray[np.bool_]],
 ) -> JsonReadings:
     faults: list[Fault] = []
+    wrong = 0
     numbers: dict[str, Array] = {}
     texts: dict[str, Sequence[str | None]] = {}
     for name, values in cells.items():
@@ -120,15 +121,14 @@ def _typed(
             else:
                 numbers[name] = np.array(values, dtype=np.float64)
             continue
-        for place, value in enumerate(values):
-            if type(value) not in allowed:
-                steps = (place, name) if shape == "rows" else (name, place)
-                detail = f"expected {expected} or null, found {shown(value)}"
-                faults.append(Fault(detail, pointer(("readings", *steps))))
-            if len(faults) >= MOST:
-                break
+        odd = [place for place, value in enumerate(values) if type(value) not in allowed]
+        wrong += len(odd)
+        for place in odd[: MOST - len(faults)]:
+            steps = (place, name) if shape == "rows" else (name, place)
+            detail = f"expected {expected} or null, found {shown(values[place])}"
+            faults.append(Fault(detail, pointer(("readings", *steps))))
     if faults:
-        _refuse(faults)
+        _refuse(faults, wrong - len(faults))
     gaps = {n: rows for n, rows in absent.items() if n in numbers}
     return JsonReadings(shape, count, numbers, texts, gaps)
 
@@ -147,5 +147,6 @@ def _refuse_count(count: int, most: int) -> None:
         _refuse([Fault(f"{detail}: send longer tables as text/csv or NDJSON", "#/readings")])
 
 
-def _refuse(faults: list[Fault]) -> None:
-    raise Unprocessable("the readings hold what cannot be used", faults)
+def _refuse(faults: list[Fault], more: int = 0) -> None:
+    """more: how many are wrong beside these."""
+    raise Unprocessable("the readings hold what cannot be used", faults, more=more)

@@ -12,7 +12,7 @@ from service.errors import NotFound, Unprocessable, UnsupportedMediaType
 from service.faults import Fault, hint, shortened
 from service.negotiate import VARY, choose
 from service.routes.etag import matches
-from service.routes.stored.json_body import loaded
+from service.routes.json_object import loaded
 from service.stations.bodies import BODIES, NAME, name_of
 from service.stations.changing import Wish, advisories_of, apply, checked
 from service.stations.documents import Documents, Shelf
@@ -145,7 +145,7 @@ async def _body(request: Request, kind: Kind) -> Mapping[str, Any]:
             f"expected a Content-Type of {JSON}, found {media_type[:80] or 'none'}",
             headers={"Accept": JSON},
         )
-    document = loaded(await request.body())
+    document = loaded(await request.body(), tables=False)
     if not isinstance(document, dict):
         raise Unprocessable("expected an object", [Fault("expected an object", "#")])
     added = {*ADDED, ADVISORIES}

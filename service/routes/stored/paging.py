@@ -7,7 +7,7 @@ from urllib.parse import urlencode
 import anyio.to_thread
 from fastapi import Request, Response
 
-from service.batch_estimates import APPENDED
+from service.answers.columns import APPENDED
 from service.errors import Unprocessable
 from service.faults import Fault, hint, shown
 from service.negotiate import VARY, choose

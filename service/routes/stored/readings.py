@@ -12,9 +12,9 @@ from service.errors import Unprocessable, UnsupportedMediaType
 from service.faults import Fault
 from service.formats import FORMATS, Format, format_of
 from service.negotiate import VARY, choose
+from service.routes.json_object import loaded
 from service.routes.stored.documents import Name, absent
 from service.routes.stored.estimates import RANGE, described
-from service.routes.stored.json_body import loaded
 from service.routes.stored.paging import answered
 from service.schemas.batch_query import document_of
 from service.stations.ask.asked import asked_of, now

@@ -62,7 +62,7 @@ class Estimated:
     """Why rows could not be estimated."""
     columns: dict[str, Array] = field(default_factory=dict)
     grounds: list[Ground] = field(default_factory=list)
-    remarks: Remarks = field(default_factory=Remarks)
+    remarks: Remarks = field(default_factory=lambda: Remarks(as_sent=False))
 
     def echo(self) -> list[dict[str, Any]]:
         """Every constant that was used, ground by ground."""

@@ -3,7 +3,6 @@
 import time
 from collections.abc import Callable, Container, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
-from difflib import get_close_matches
 from typing import Any
 
 from models.numerics.digits import without_rounding
@@ -11,6 +10,7 @@ from models.quantity import QUANTITIES
 from models.readings import quantity_of
 from models.units import UNITS
 from service.faults import shown
+from service.formats.header import likely as likely_names
 from service.stations.documents import Documents
 from service.stations.station import Station
 from service.stations.times import SECOND, rfc3339
@@ -22,7 +22,6 @@ RAW_RECORDS = ("waveform", "reflection", "scattering", "spectrum")
 """Keys of a reading that hold its raw record."""
 KNOWN = (*VALUES, *RAW_RECORDS, "time", "probe")
 """Names that a reading may hold something under."""
-_SYMBOLS = {n: QUANTITIES[n].symbol.casefold() for n in VALUES if n in QUANTITIES}
 DEPTH_GATE = QUANTITIES["depth"].gate_si
 
 Values = Mapping[str, Sequence[float | bytes | None]]
@@ -30,12 +29,7 @@ Values = Mapping[str, Sequence[float | bytes | None]]
 
 def likely(name: str) -> str:
     """The known names that a name may stand for, as the middle of a sentence; empty: none."""
-    written = name.strip().casefold()
-    symbols = [known for known in VALUES if _SYMBOLS.get(known) == written]
-    close = get_close_matches(written[:80], KNOWN, n=4, cutoff=0.65)
-    alike = [known for known in close if known.endswith("_u") == written.endswith("_u")]
-    begun = [known for known in KNOWN if len(written) > 3 and known.startswith(written)]
-    return " or ".join((symbols or alike or begun[:1])[:2])
+    return " or ".join(likely_names(name, KNOWN))
 
 
 def nothing_known(names: Iterable[str]) -> str:

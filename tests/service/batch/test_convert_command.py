@@ -88,7 +88,10 @@ def test_a_file_that_is_refused_does_not_stop_the_others(folder):
         (["{in}"], "several files need a folder"),
         (["{in}/a.csv", "-", "-o", "{out}"], "standard input cannot be one of several files"),
         (["{in}/a.csv", "{in}/a.csv", "-o", "{out}"], "would both become"),
-        (["{in}/notes.txt"], "expected a name that ends in .csv, .ndjson, .arrows, .parquet"),
+        (
+            ["{in}/notes.txt"],
+            "expected a name that ends in .csv, .ndjson, .arrows, .parquet, .arrow",
+        ),
         (["{in}/a.csv", "--columns", "water"], 'no answer has a column "water"'),
         (["{in}/a.csv", "--parameter", "x"], "expected NAME=VALUE"),
     ],
@@ -104,7 +107,7 @@ def test_an_answer_that_is_not_complete_is_not_there(folder):
     (folder / "in" / "a.csv").write_bytes(HEAD + b"17,14\nwarm,14\n")
     target = folder / "a_out.csv"
     target.write_bytes(b"of yesterday")
-    code, _, told = convert(folder / "in" / "a.csv", "-o", target, "--strict")
+    code, _, told = convert(folder / "in" / "a.csv", "-o", target, "--strict", "--overwrite")
     assert code == 2
     assert "line 3 (row 2), column apparent_permittivity: expected a number, found 'warm'" in told
     assert target.read_bytes() == b"of yesterday"

@@ -6,8 +6,9 @@ import pytest
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
+from service.answers.columns import APPENDED
 from service.batch import Conversion
-from service.batch_estimates import APPENDED, TableEstimates
+from service.batch_estimates import TableEstimates
 from service.formats import FORMATS
 from service.formats.errors import FormatError
 from service.schemas.batch_query import document_of

@@ -71,7 +71,7 @@ def test_a_method_of_propagation_may_stand_alone(server, method):
 
 def test_a_row_is_told_by_its_line_and_its_number(server):
     assert told(server, CSV, "text/csv", "?strict=true") == (
-        "line 3 (row 2): expected 2 cells, as many as the header has, found '17'"
+        "line 3 (row 2): expected 2 cells, as many as the header has, found 1 cell: '17'"
     )
     blank = CSV.replace(b"17\n18", b"\n\n18")
     assert "line 5 (row 2), column temperature" in told(server, blank, "text/csv", "?strict=true")

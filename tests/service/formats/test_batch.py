@@ -78,7 +78,8 @@ def test_an_answer_begins_where_the_spool_stands():
     [
         ("1,14\n2,warm\n", "line 3 (row 2), column temperature: expected a number, found 'warm'"),
         ('"1","x\ny"\nz,', "line 2 (row 1), column temperature: expected a number, found 'x\\ny'"),
-        ("1,2,3\n", "line 2 (row 1): expected 2 cells, as many as the header has, found '1,2,3'"),
+        ("1,2,3\n", "line 2 (row 1): expected 2 cells, as many as the header has, found 3 cells: "
+         "'1,2,3'"),
         ("1,\n,14\n", "line 3 (row 2), column apparent_permittivity: expected a number, found "
          "none: the model needs it"),
     ],

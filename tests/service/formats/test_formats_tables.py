@@ -188,7 +188,7 @@ def test_a_block_becomes_readings_in_si():
     assert readings.flags.tolist() == [
         0,
         int(BIT["out-of-gate:apparent_permittivity"] | BIT["unreadable:frequency"]
-            | BIT["out-of-gate:temperature"]),
+            | BIT["unusable-uncertainty"]),
         int(BIT["unreadable-row"]),
     ]  # fmt: skip
 

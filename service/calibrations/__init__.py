@@ -1,0 +1,1 @@
+"""POST /v1/calibrations: pairs checked and brought to SI, the answer laid out."""
