@@ -104,8 +104,9 @@ ADVISORIES: Registry[Advisory] = Registry(
              "would be possible in a unit often sent by mistake.",
              text="{count} values of {name} are impossible in {unit} and possible in {other}, "
              'such as {value}: name the unit, for example "units": {{"{name}": "{other}"}}.'),
-    Advisory(key="bulk-unit-doubted", condition="A bulk conductivity is possible and above 5 dS/m, "
-             "and its unit was not named.",
+    Advisory(key="bulk-unit-doubted",
+             condition="A bulk conductivity is possible and above 5 dS/m, and its unit was not "
+             "named.",
              text="{count} values of {name} are above 5 dS/m, up to {value}, which few soils reach: "
              'were they in {other}? Then name the unit: "units": {{"{name}": "{other}"}}.'),
     Advisory(key="travel-time-impossible", condition="A travel time is shorter than that of light "

@@ -110,7 +110,9 @@ def _simpler(form: Form) -> str:
 
 def _faults(pairs: Pairs) -> Iterator[Complaint]:
     x, u = pairs.permittivity, pairs.permittivity_u
-    if pairs.count and np.ptp(x) == 0.0:
+    if not pairs.count:
+        return  # every form says how many it needs
+    if np.ptp(x) == 0.0 and pairs.count > 1:
         detail = (
             f"all {pairs.count} pairs have the same permittivity, {x[0]:g}: a curve needs pairs "
             "from dry to wet"
@@ -125,7 +127,7 @@ def _faults(pairs: Pairs) -> Iterator[Complaint]:
         )
         yield Complaint("pairs", detail, ("pairs",))
     noise = float(np.mean(np.square(u)))
-    if pairs.count and float(np.var(x)) < DISTINCT * noise:
+    if float(np.var(x)) < DISTINCT * noise:
         detail = (
             f"permittivities from {x.min():g} to {x.max():g} cannot be told apart with a standard "
             f"uncertainty of {np.sqrt(noise):.3g}: give pairs further apart, or a smaller "

@@ -1,8 +1,8 @@
 """How well the variance of the pairs about their curve is known, and what band that makes.
 
 Where no uncertainty was stated that variance is open, and what follows is Student's distribution.
-Stated uncertainties are the least that it can be: it is that, or more by up to a hundred, every
-ratio alike, and chi-square says how likely each is (Box and Tiao, 1973, have the distribution of a
+Stated uncertainties are the least that it can be: it is that, or more, every ratio alike, and
+chi-square says how likely each is (Box and Tiao, 1973, have the distribution of a
 variance that is known not to be smaller).
 """
 
@@ -17,7 +17,10 @@ from models.uncertainty.coverage import coverage_factor
 NODES = 96
 """Values by which the factor's distribution is represented."""
 LARGEST = 100.0
-"""Factor of the variances: uncertainties a tenth of what they should be."""
+"""Factor of the variances, uncertainties a tenth of what they should be: what is thought of
+beforehand, every ratio alike; chi-square may say that it is more."""
+NOTHING = 1e-12
+"""Share of the variance that is stated, where next to nothing is."""
 BELIEVED = 0.1
 """Probability beforehand that stated uncertainties are right: with it simulated bands hold 93 % of
 new truths or more whatever the soil adds to them, and nearly all where it adds nothing."""
@@ -60,21 +63,21 @@ class Scatter:
         """Factors and their probabilities."""
         half = 0.5 * self.degrees_of_freedom
         if not self.stated:
-            return self._between(half, 0.0, 1.0), np.full(NODES, 1.0 / NODES)
-        squares = max(0.5 * self.chi_square / self.least, 1e-9)
-        low, high = (float(gammainc(half, squares / top)) for top in (LARGEST, 1.0))
+            return self._between(half, 1.0), np.full(NODES, 1.0 / NODES)
+        least = max(self.least, NOTHING)
+        squares = max(0.5 * self.chi_square / least, 1e-9)
+        high = float(gammainc(half, squares))
         right = np.log(BELIEVED) - squares
-        mass = max(high - low, 1e-300)
-        more = (np.log((1.0 - BELIEVED) / np.log(LARGEST)) + gammaln(half) + np.log(mass)
+        more = (np.log((1.0 - BELIEVED) / np.log(LARGEST)) + gammaln(half) + np.log(max(high, TINY))
                 - half * np.log(squares))  # fmt: skip
         share = 1.0 / (1.0 + np.exp(np.clip(more - right, -700.0, 700.0)))
-        factors = np.concatenate(([self.least], self._between(half, low, high)))
+        factors = np.concatenate(([least], self._between(half, high)))
         shares = np.concatenate(([share], np.full(NODES, (1.0 - share) / NODES)))
         return factors, shares
 
-    def _between(self, half: float, low: float, high: float) -> Array:
-        """Factors at equal steps of the probability of chi-square between two ends."""
-        steps = low + (high - low) * (np.arange(NODES) + 0.5) / NODES
+    def _between(self, half: float, high: float) -> Array:
+        """Factors at equal steps of the probability of chi-square, up to where it is ``high``."""
+        steps = high * (np.arange(NODES) + 0.5) / NODES
         return 0.5 * self.chi_square / np.maximum(column(gammaincinv(half, steps)), 1e-12)
 
 

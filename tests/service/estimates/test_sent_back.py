@@ -9,8 +9,9 @@ READING = {
 }  # fmt: skip
 
 
-@pytest.mark.parametrize("soil", [{"texture": "loam"}, {"texture": "sandy-loam", "bulk_density": 1.3}],
-                         ids=str)  # fmt: skip
+@pytest.mark.parametrize("soil", [
+    {"texture": "loam"}, {"texture": "sandy-loam", "bulk_density": 1.3},
+], ids=str)  # fmt: skip
 @pytest.mark.parametrize("mixing", ["crim", "topp-1980", "maxwell-garnett", "complex-refractive"])
 @pytest.mark.parametrize("pore_water", ["archie-1942", "hilhorst-2000", "rhoades-1976",
                                         "rhoades-1989", "complex-refractive"])  # fmt: skip
