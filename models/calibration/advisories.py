@@ -8,7 +8,8 @@ CALIBRATION_ADVISORIES: Registry[Advisory] = Registry(
     Advisory(key="calibration-scope", condition="Always, in an answer of a calibration.",
              text="The curve holds for this soil as its pairs were: density, temperature, salinity "
              "and probe. It was fitted from permittivity {low} to {high}; estimates made with it "
-             "do not know this range, so look at it where readings leave it."),
+             "do not know this range, so look at it where readings leave it. They add what "
+             "temperature may do to readings away from 20 Cel, or without a temperature."),
     Advisory(key="calibration-standard-error", condition="The answer holds a mixing_model.",
              text="In mixing_model, standard_error (and slope_u or linear_u where it is there) "
              "stands for all that a new reading needs beside the error of its own permittivity: "
@@ -53,6 +54,10 @@ CALIBRATION_ADVISORIES: Registry[Advisory] = Registry(
              text="{form} was taken: of the forms that can be used as mixing_model, that with the "
              "fewest coefficients within 2 of the smallest corrected Akaike criterion; forms "
              "holds all of them, each with its leave-one-out error."),
+    Advisory(key="calibration-other-form", condition="A form was asked for, and the corrected "
+             "Akaike criterion of the one that the pairs would choose is smaller by more than 10.",
+             text="{other} goes through these pairs much better than {form}: leave-one-out error "
+             "{other_error} m3/m3, not {error}. Leave form out to have it taken."),
     Advisory(key="calibration-design", condition="There are fewer than 10 pairs, fewer than 5 "
              "levels or 3 replicates at one of them, no level is told, or the water contents span "
              "less than 0.15.",

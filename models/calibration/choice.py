@@ -1,4 +1,7 @@
-"""Which form the pairs ask for: the corrected criterion of Akaike (Hurvich and Tsai, 1989)."""
+"""Which form the pairs ask for: the corrected criterion of Akaike (Hurvich and Tsai, 1989).
+
+The formula is from memory.
+"""
 
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -12,6 +15,9 @@ from models.errors import ParameterError
 
 ENOUGH = 2.0
 """Difference of the criterion below which the form with fewer coefficients is taken."""
+
+CLEARLY = 10.0
+"""Difference of the criterion that leaves the worse form next to no support."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -51,6 +57,14 @@ def choose_form(pairs: Pairs) -> tuple[Candidate, Sequence[Candidate]]:
     best = min(one.criterion for one in usable)
     near = [one for one in usable if one.criterion <= best + ENOUGH]
     return min(near, key=lambda one: (one.calibration.form.size, one.criterion)), candidates
+
+
+def better_form(found: Calibration) -> Calibration | None:
+    """The form that the pairs would have chosen, where they speak clearly against this one."""
+    chosen, _ = choose_form(found.pairs)
+    if criterion(found) - chosen.criterion > CLEARLY and not chosen.unusable:
+        return chosen.calibration
+    return None
 
 
 def criterion(found: Calibration) -> float:

@@ -12,6 +12,8 @@ from models.relation import Array
 
 SPARE = 2
 """Pairs beyond the coefficients that the scatter takes at least."""
+FEWEST = 4
+"""Pairs that a line takes."""
 DISTINCT = 2.0
 """Variance of the permittivities over that of their errors, below which nothing is to be seen."""
 
@@ -110,9 +112,9 @@ def _simpler(form: Form) -> str:
 
 def _faults(pairs: Pairs) -> Iterator[Complaint]:
     x, u = pairs.permittivity, pairs.permittivity_u
-    if not pairs.count:
+    if pairs.count < FEWEST:
         return  # every form says how many it needs
-    if np.ptp(x) == 0.0 and pairs.count > 1:
+    if np.ptp(x) == 0.0:
         detail = (
             f"all {pairs.count} pairs have the same permittivity, {x[0]:g}: a curve needs pairs "
             "from dry to wet"

@@ -3,6 +3,7 @@
 Generic in form by linearisation: for a straight line it is their solution, adjusted points and
 covariance included; for a curve the orthogonal distance fit of Gauss and Newton, the adjusted
 permittivities eliminated point by point. Without uncertainties it is ordinary least squares.
+The printed examples it is held to were read in secondary copies.
 """
 
 from dataclasses import dataclass

@@ -3,7 +3,7 @@
 Where no uncertainty was stated that variance is open, and what follows is Student's distribution.
 Stated uncertainties are the least that it can be: it is that, or more, every ratio alike, and
 chi-square says how likely each is (Box and Tiao, 1973, have the distribution of a
-variance that is known not to be smaller).
+variance that is known not to be smaller; cited from memory).
 """
 
 from dataclasses import dataclass

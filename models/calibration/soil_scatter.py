@@ -2,7 +2,7 @@
 
 It is the soil's own, of water content about its curve, and the same for every pair. Taking it for
 a common factor of all uncertainties instead would lay it on the permittivities too, and turn the
-curve away from the pairs.
+curve away from the pairs. The rule is cited from memory.
 """
 
 from dataclasses import dataclass

@@ -11,6 +11,7 @@ from models.calibration import (
     Calibration,
     Candidate,
     advice_of,
+    better_form,
     calibrate,
     choose_form,
     largest_residual,
@@ -166,6 +167,10 @@ def _of_request(
     said = []
     if candidates:
         said.append(advise("calibration-form", form=found.form.key))
+    elif (other := better_form(found)) is not None:
+        said.append(advise("calibration-other-form", other=other.form.key, form=found.form.key,
+                           other_error=f"{other.left_out.error:.2g}",
+                           error=f"{found.left_out.error:.2g}"))  # fmt: skip
     if outside:
         said.append(advise("calibration-extrapolated", count=outside,
                            low=f"{found.range.low:g}", high=f"{found.range.high:g}"))  # fmt: skip

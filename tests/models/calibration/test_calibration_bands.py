@@ -89,6 +89,19 @@ def test_stated_uncertainties_are_never_made_smaller():
     assert found.soil_scatter == 0.0
 
 
+def test_next_to_no_stated_uncertainty_is_as_good_as_none():
+    draw = np.random.default_rng(8)
+    bare = measured(root_law, 10, (0.0, 0.0, 0.02), draw)
+    tiny = Pairs(bare.permittivity, bare.permittivity_u, bare.water_content, np.full(10, 1e-7))
+    none, some = (calibrate(pairs, FORMS["square-root"]) for pairs in (bare, tiny))
+    at = np.array([6.0, 25.0])
+    widths = [one.band(at, np.zeros(2), 0.95).prediction_half_width for one in (none, some)]
+
+    assert some.coefficients == pytest.approx(none.coefficients)
+    assert some.covariance == pytest.approx(none.covariance, rel=2e-3)
+    assert widths[1] == pytest.approx(widths[0], rel=0.01)
+
+
 def test_scatter_beyond_what_is_stated_is_found():
     draw = np.random.default_rng(11)
     found = [

@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 import uncertainties
 
-from models.calibration import FORMS, Pairs, advice_of, calibrate, choose_form, reuse
+from models.calibration import FORMS, Pairs, advice_of, better_form, calibrate, choose_form, reuse
 from models.calibration.water import Waters, volumetric
 from models.errors import ParameterError
 from tests.models.calibration.soils import cubic_law, exact, measured, root_law
@@ -142,6 +142,13 @@ def test_more_coefficients_are_not_taken_for_noise():
         for _ in range(40)
     ]
     assert np.mean(np.array(taken) == 2) > 0.85
+
+
+def test_a_much_better_form_is_named():
+    draw = np.random.default_rng(15)
+    pairs = measured(root_law, 14, (0.1, 0.005, 0.0), draw)
+    assert better_form(calibrate(pairs, FORMS["polynomial-1"])).form is ROOT
+    assert better_form(calibrate(pairs, ROOT)) is None
 
 
 def test_a_form_that_estimates_would_refuse_is_not_chosen():

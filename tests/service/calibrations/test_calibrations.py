@@ -171,6 +171,13 @@ def test_the_form_is_chosen_and_said(server):
     assert "forms" not in asked_for
 
 
+def test_a_form_that_fits_badly_is_answered_and_a_better_one_named(server):
+    answer = asked(server, {**COLUMNS, "form": "polynomial"})
+    assert answer["form"]["degree"] == 1
+    said = [a["text"] for a in answer["advisories"] if a["code"] == "calibration-other-form"]
+    assert said[0].startswith("square-root goes through these pairs much better than polynomial-1")
+
+
 def test_a_curve_that_turns_before_water_makes_no_mixing_model(server):
     answer = asked(server, {**COLUMNS, "form": "polynomial", "degree": 2})
     assert answer["mixing_model"] is None

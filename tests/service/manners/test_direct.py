@@ -19,12 +19,13 @@ ASKED = {"mixing_model": "topp-1980", "readings": [{"apparent_permittivity": 17.
 def both(tmp_path_factory):
     """A client of each: all layers with the shortest way among them, and the routes alone."""
     settings = [Settings(data=tmp_path_factory.mktemp(name)) for name in ("direct", "routes")]
-    layered = surrounded(create_api(settings[0]), settings[0])
+    apps = [surrounded(create_api(settings[0]), settings[0]), create_api(settings[1])]
     with ExitStack() as stack:
-        served = [stack.enter_context(running(app)) for app in (layered, create_api(settings[1]))]
-        clients = [stack.enter_context(httpx2.Client(base_url=url)) for url in served]
-        for client in clients:
-            furnish(client)
+        clients = []
+        for app in apps:  # one after the other: warnings are filtered for a whole process
+            url = stack.enter_context(running(app))
+            clients.append(stack.enter_context(httpx2.Client(base_url=url, timeout=20)))
+            furnish(clients[-1])
         yield clients
 
 
