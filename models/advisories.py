@@ -107,7 +107,7 @@ ADVISORIES: Registry[Advisory] = Registry(
     Advisory(key="bulk-unit-doubted",
              condition="A bulk conductivity is possible and above 5 dS/m, and its unit was not "
              "named.",
-             text="{count} values of {name} are above 5 dS/m, up to {value}, which few soils reach: "
+             text="{count} values of {name} are above 5 dS/m, up to {value}, as in few soils: "
              'were they in {other}? Then name the unit: "units": {{"{name}": "{other}"}}.'),
     Advisory(key="travel-time-impossible", condition="A travel time is shorter than that of light "
              "along the rods, or longer than a permittivity of 200 makes it.",
