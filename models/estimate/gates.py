@@ -103,6 +103,12 @@ def _flag_impossible(content: WaterContent, flags: Flags) -> None:
     flags[rows[wet[rows] & ~astray]] |= BIT["wetter-than-pores"]
 
 
+def flag_meaningless(pore: PoreWater, flags: Flags) -> None:
+    """Flag where the pore-water model means nothing: no salt is worked out there."""
+    for slug, where in pore.gates().items():
+        _set(flags, where, slug)
+
+
 def flag_pore_water(
     pore: PoreWater,
     salt: Conductivities,
@@ -110,9 +116,7 @@ def flag_pore_water(
     basis: Basis,
     flags: Flags,
 ) -> None:
-    """Flag where the pore-water model means nothing, has no answer, or is outside its range."""
-    for slug, where in pore.gates().items():
-        _set(flags, where, slug)
+    """Flag where the pore-water model has no answer, or is outside its range."""
     bulk = pore.inputs["bulk_conductivity"]
     value = salt.columns["pore_water_conductivity"]
     asked = ~np.isnan(content.computed) & ~(np.isnan(bulk) & (not pore.by_loss))

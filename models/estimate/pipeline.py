@@ -7,7 +7,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
-from models.estimate.gates import flag_inputs, flag_pore_water, flag_results
+from models.estimate.gates import (
+    flag_inputs,
+    flag_meaningless,
+    flag_pore_water,
+    flag_results,
+)
 from models.estimate.permittivity import Permittivity, permittivity_of
 from models.estimate.salt.conductivities import conductivities_of
 from models.estimate.salt.pore_water import PoreWater
@@ -124,7 +129,8 @@ def _estimate_block(readings: Readings, basis: Basis) -> Estimates:
     columns = _without(columns, withheld(flags) | unknown)
     pore = pore_water_of(worked, basis)
     if pore is not None:
-        answer = conductivities_of(pore, found, worked.water, basis)
+        flag_meaningless(pore, flags)
+        answer = conductivities_of(pore, found, worked.water, basis, without_pore_water(flags))
         salt = answer.columns
         flag_pore_water(pore, answer, content, basis, flags)
         bulk = {n: v for n, v in salt.items() if n.startswith(BULK_25)}

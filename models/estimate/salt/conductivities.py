@@ -8,6 +8,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from models.estimate.basis import Basis
 from models.estimate.derived import sources_of
@@ -46,14 +47,19 @@ class Conductivities:
 
 
 def conductivities_of(
-    pore: PoreWater, found: Permittivity, water: Mapping[str, Input], basis: Basis
+    pore: PoreWater,
+    found: Permittivity,
+    water: Mapping[str, Input],
+    basis: Basis,
+    nothing: NDArray[np.bool_],
 ) -> Conductivities:
     """All three conductivities of a block.
 
-    found, water: the permittivity and the water that the water content came from.
+    found, water: the permittivity and the water that the water content came from. nothing: rows
+        whose flags say that there is no pore water to tell; they cost no draws.
     """
     value, content = pore.at_25(), pore.content
-    value = np.where(value < PUREST, np.nan, value)
+    value = np.where((value < PUREST) | nothing, np.nan, value)
     own = pore.own_uncertainty(value)
     through = Through(
         of_water_content(found, water, content), bends_of_water_content(found, water, content)
