@@ -1,5 +1,7 @@
 """What stands between a late level and the conductivity: probe constant, cable, open level."""
 
+from functools import lru_cache
+
 import numpy as np
 
 from models.reflection.tdr.agreement import first_edge
@@ -90,8 +92,9 @@ def early_level_u(from_time: float, arrival: float) -> float:
     return EARLY_LEVEL_U if from_time - arrival < EARLY else 0.0
 
 
+@lru_cache(maxsize=8)
 def _is_early(record: Record) -> bool:
-    """Whether a record ends before its cable has settled."""
+    """Whether a record ends before its cable has settled; kept, for every level of a bench asks."""
     settled = record.settled
     arrival = float(np.nan_to_num(np.mean(first_edge(record.trace).steepest)))
     return settled.end - arrival < EARLY
