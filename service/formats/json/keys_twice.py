@@ -55,19 +55,20 @@ def _keys_written(text: bytes) -> int:
 
 def _keys_in(document: Any) -> int:
     """How many keys all objects of a document have; rows of numbers and text are not walked."""
-    count, left = 0, [document] if isinstance(document, dict | list) else []
+    count, left = 0, [document] if type(document) in _NESTED else []
     while left:
         each = left.pop()
-        if isinstance(each, dict):
+        if type(each) is dict:
             count += len(each)
-            left.extend(value for value in each.values() if isinstance(value, dict | list))
-        elif set(map(type, each)) == {dict}:
+            left += [value for value in each.values() if type(value) in _NESTED]
+        elif len(each) == 1 or set(map(type, each)) != {dict}:
+            if each and type(each[0]) in _NESTED:
+                left += [value for value in each if type(value) in _NESTED]
+        else:
             count += sum(map(len, each))
             values = chain.from_iterable(map(dict.values, each))
             if _NESTED & set(map(type, values)):
-                left.extend(v for row in each for v in row.values() if isinstance(v, dict | list))
-        elif each and isinstance(each[0], dict | list):
-            left.extend(value for value in each if isinstance(value, dict | list))
+                left += [v for row in each for v in row.values() if type(v) in _NESTED]
     return count
 
 
