@@ -28,8 +28,9 @@ from models.uncertainty.quantiles.through import SumThrough
 APART = 0.2
 """In half-widths, of measurand and sum of curves at an end: beyond, the row is not settled."""
 
-TURNED = 0.2
-"""Likewise, of the curvature across the way: it is a second order, and no more."""
+TURNED = 0.15
+"""In half-widths, of the curvature across the way: it is a second order, and of more than that
+nothing is known. Such an end is better without."""
 
 MOST_LEFT_OUT = 0.1
 """Probability beyond the ends of curves, from which the other end feels it as well."""
@@ -77,17 +78,23 @@ def ends(
     at_upper = measurand(above.point) + above.straight
     # What the inputs do together shows along the way; half of its square is missing across it.
     off_below, off_above = at_lower - below.value, at_upper - above.value
-    lower = at_lower + below.curvature - off_below / z**2
-    upper = at_upper + above.curvature - off_above / z**2
+    both, one = 0.5 * (at_upper - at_lower), np.fmax(value - at_lower, at_upper - value)
+    way = TURNED * np.where(np.isfinite(both), both, one)
+    lower = at_lower + _damped(below.curvature, way) - off_below / z**2
+    upper = at_upper + _damped(above.curvature, way) - off_above / z**2
     unbounded = low > tail, high > tail
     lower, upper = np.where(unbounded[0], -np.inf, lower), np.where(unbounded[1], np.inf, upper)
     off = _larger(off_below, off_above, unbounded)
-    turned = _larger(below.curvature, above.curvature, unbounded)
     half = np.minimum(0.5 * (upper - lower), np.maximum(value - lower, upper - value))
     half = np.where(np.isinf(half), np.minimum(value - lower, upper - value), half)
-    settled = sums.sound & (off <= within * half) & (turned <= TURNED * half)
+    settled = sums.sound & (off <= within * half)
     settled &= (lower <= value) & (value <= upper) & (np.maximum(low, high) <= MOST_LEFT_OUT)
     return Ends(np.where(settled, lower, np.nan), np.where(settled, upper, np.nan), settled)
+
+
+def _damped(curvature: Array, way: Array) -> Array:
+    """The same where it is little beside the way, next to nothing where it is more."""
+    return curvature / (1.0 + np.square(np.square(curvature / way)))
 
 
 def _larger(
