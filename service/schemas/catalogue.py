@@ -9,6 +9,7 @@ from typing import Any
 from models.conductivity.family import TemperatureCompensation
 from models.decisions.crops import TABLE_4, TABLE_22, Crop
 from models.decisions.terms import TERMS
+from models.estimate.own.discrepancy import growth
 from models.mixing.family import MixingModel
 from models.quantity import QUANTITIES, Quantity
 from models.relation import Parameter, Range, Relation
@@ -35,6 +36,10 @@ def entry_of(declaration: Any) -> dict[str, Any]:
     if isinstance(declaration, Relation):
         needed = [p.name for p in declaration.parameters if _must_be_given(p)]
         entry["inputs"] = [*measured(declaration), *needed]
+    if isinstance(declaration, MixingModel):
+        entry["default_model_uncertainty"]["grows"] = list(growth(declaration))
+    if isinstance(declaration, PoreWaterModel):
+        entry["default_model_uncertainty"]["floor_unit"] = "S/m"
     units = {name: unit.code for name in entry if (unit := unit_of(name))}
     return {**entry, "units": units} if units else entry
 

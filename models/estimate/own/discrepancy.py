@@ -157,3 +157,41 @@ def _degrees_off(at: Setting) -> Array | float:
         return UNKNOWN_TEMPERATURE**2
     off = np.square(at.temperature - REFERENCE_TEMPERATURE) + np.square(at.temperature_u)
     return np.where(np.isnan(off), UNKNOWN_TEMPERATURE**2, off)
+
+
+def growth(model: MixingModel) -> tuple[str, ...]:
+    """What ``model_uncertainty`` and ``lean_down`` add in quadrature for this model, in words."""
+    takes = {parameter.name for parameter in model.parameters}
+    known = model.validity.get(f"{model.permittivity}_permittivity")
+    said = []
+    if known is not None:
+        said.append(f"{DISTANCE:g} m3/m3 per width of the range of permittivity below it, "
+                    f"{RUNAWAY:g} above it")  # fmt: skip
+    if "frequency" in model.validity:
+        said.append(f"up to {SLOW:g} from a fifth of a decade outside the range of frequencies")
+    if not model.fitted_by_caller:
+        said += _growth_by_soil(model, takes)
+    if "loss" not in takes and not model.conducting:
+        said.append(f"up to {SALINE:g} from 0.15 to 0.25 S/m of bulk conductivity that was not "
+                    "corrected for, and half of a correction that was made")  # fmt: skip
+    if model.water is None:
+        said.append(
+            f"{WARMING:g} per K from {REFERENCE_TEMPERATURE:g} Cel, times the water content"
+        )
+    if model.conducting:
+        said.append("downward alone, half of what correcting for conduction would be")
+    return tuple(said)
+
+
+def _growth_by_soil(model: MixingModel, takes: set[str]) -> list[str]:
+    said = []
+    if "clay" not in takes and model.soils != "organic":
+        said.append(f"up to {CLAY:g} from 25 to 35 % clay")
+    if "organic_matter" not in takes:
+        far = {"mineral": f"up to {ORGANIC:g} from 5 to 12 % organic matter, {PEAT:g} more to 30 %",
+               "any": f"up to {ORGANIC:g} from 12 to 30 % organic matter",
+               "organic": f"up to {ORGANIC:g} below 15 to 5 % organic matter"}  # fmt: skip
+        said.append(far[model.soils])
+    said.append(f"downward alone, {LEAN:g} per decade below 0.3 GHz in soil of 15 % clay or more, "
+                "less from 5 % on")  # fmt: skip
+    return said

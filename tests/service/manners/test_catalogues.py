@@ -113,3 +113,17 @@ def test_no_mixing_model_has_lost_a_field():
     assert entry["name"] == "topp-1980"
     assert entry["citation"]["year"] == 1980
     assert not any("to_" in name for name in entry)
+
+
+def test_a_mixing_model_tells_how_its_own_error_grows(server):
+    """The terms are those of the band: clay that a model does not take, and no others."""
+    entries = {e["name"]: e for e in listed(server, "/v1/mixing-models")}
+    grows = {name: " ".join(e["default_model_uncertainty"]["grows"]) for name, e in entries.items()}
+    assert all(grows.values())
+    assert "clay" in grows["topp-1980"]
+    assert "25 to 35 % clay" not in grows["mironov-2009"]
+    assert "correcting for conduction would be" in grows["mironov-2009"]
+    assert "per K" in grows["topp-1980"]
+    assert "per K" not in grows["crim"]
+    (entries,) = server.client.get("/v1/pore-water-models").json().values()
+    assert {e["default_model_uncertainty"]["floor_unit"] for e in entries} == {"S/m"}
