@@ -96,6 +96,12 @@ ADVISORIES: Registry[Advisory] = Registry(
              "contradict by more than 0.05.",
              text="porosity {porosity} and 1 - bulk_density/particle_density = {derived} "
              "contradict; the porosity as given was used."),
+    Advisory(key="own-curve-corrected",
+             condition="Readings that tell their conduction meet a curve of the caller's own "
+             "coefficients.",
+             text="The readings are corrected for conduction before {model} sees them: that is "
+             "right where the curve was fitted to corrected permittivities. For one that was "
+             "fitted to them as read, leave out bulk_conductivity or the frequency."),
     Advisory(key="texture-disagrees", condition="A content of clay or sand is given that the named "
              "texture class cannot have.",
              text="{name} {value} is not that of the texture class {texture} (about {mean}): the "

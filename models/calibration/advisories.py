@@ -8,8 +8,10 @@ CALIBRATION_ADVISORIES: Registry[Advisory] = Registry(
     Advisory(key="calibration-scope", condition="Always, in an answer of a calibration.",
              text="The curve holds for this soil as its pairs were: density, temperature, salinity "
              "and probe. It was fitted from permittivity {low} to {high}; estimates made with it "
-             "do not know this range, so look at it where readings leave it. They add what "
-             "temperature may do to readings away from 20 Cel, or without a temperature."),
+             "do not know this range, so look at it where readings leave it. They add nothing for "
+             "another temperature than that of the pairs, and they take out the conduction of "
+             "readings that hold bulk_conductivity and a frequency: pairs as they were read go "
+             "with readings without these."),
     Advisory(key="calibration-standard-error", condition="The answer holds a mixing_model.",
              text="In mixing_model, standard_error (and slope_u or linear_u where it is there) "
              "stands for all that a new reading needs beside the error of its own permittivity: "

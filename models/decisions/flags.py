@@ -53,6 +53,19 @@ DECISION_FLAGS: Registry[Flag] = Registry(
          "high-frequency: twice) or less is that of the water, or the share would be 1 or more.",
          text="The water is too saline for this target: no share of it would keep the extract "
          "there.", reason="A requirement of 1 or more is no requirement.", keeps_number=False),
+    Flag(key="water-perhaps-too-saline", condition="Within the interval the water is too saline "
+         "for the target.", text="Nothing rules out that no share of this water would do: there is "
+         "no upper end.", reason="The errors of water and target reach beyond what can be leached.",
+         keeps_number=True),
+    Flag(key="more-than-the-volume", condition="Solids of 2.65 g/cm3 (mineral soil, common "
+         "practice) and the water would take more than all of the volume.",
+         text="So dense a soil would have no room for this water.",
+         reason="Coefficients of another soil, a wrong total density of the mould, or a wrong "
+         "reading.", keeps_number=True),
+    Flag(key="frozen-place", condition="The temperature of the place is at or below 0 Cel.",
+         text="Only unfrozen water was read: neither water content nor density is that of the "
+         "place.", reason="Ice is water that a dielectric reading does not show.",
+         keeps_number=True),
     Flag(key="water-exceeds-pores", condition="Water content is above porosity.",
          text="More water than pores: water content, bulk density or particle density is wrong.",
          reason="Nothing was cut: a saturation above 1 shows by how much they contradict.",

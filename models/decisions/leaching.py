@@ -11,7 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from models.decisions.outcome import Known, Outcome, carried, outcome
+from models.decisions.outcome import Known, Outcome, carried, outcome_by_draws
 from models.decisions.yield_response import conductivity_at
 from models.relation import Array, Citation, column
 
@@ -89,7 +89,7 @@ def require_leaching(
     def share(water: Array, extract: Array) -> Array:
         return requirement(water, extract, method=method)
 
-    found = outcome(share, given, low=0.0, high=1.0, probability=probability)
+    found = outcome_by_draws(share, given, low=0.0, high=1.0, probability=probability)
     water, extract = (
         column(known[0] if isinstance(known, tuple) else known) for known in given.values()
     )
@@ -102,7 +102,7 @@ def applied_water(
 ) -> Outcome:
     """Water to apply so that the crop has its own and the rest leaches (Eq. 7), elementwise, m."""
     given = {"used": evapotranspiration, "share": leaching_requirement}
-    return outcome(_applied, given, low=0.0, probability=probability)
+    return outcome_by_draws(_applied, given, low=0.0, probability=probability)
 
 
 def water_for(
@@ -123,7 +123,7 @@ def water_for(
     def applied(used: Array, water: Array, extract: Array) -> Array:
         return _applied(used, requirement(water, extract, method=method))
 
-    return outcome(applied, given, low=0.0, probability=probability)
+    return outcome_by_draws(applied, given, low=0.0, probability=probability)
 
 
 def _applied(used: Array, share: Array) -> Array:
@@ -163,9 +163,10 @@ def after_long_use(
     def told(measurand: Callable[[Array, Array], Array]) -> Outcome:
         def of_share(water: Array, extract: Array, share: Array) -> Array:
             needed = requirement(water, extract, method=method)
-            return measurand(water, np.where(np.isnan(share), needed, share))
+            passing = np.where(np.isnan(share), needed, share)
+            return measurand(water, np.where(passing > 0.0, passing, np.nan))
 
-        return outcome(of_share, given, low=0.0, probability=probability)
+        return outcome_by_draws(of_share, given, low=0.0, probability=probability)
 
     def node(place: int) -> Outcome:
         return told(lambda water, share: root_zone_profile(water, share)[..., place])

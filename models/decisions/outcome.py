@@ -6,7 +6,7 @@ is that end. Quantiles go through such a definition as they are: the interval ke
 """
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -14,8 +14,14 @@ from scipy.special import ndtr
 
 from models.relation import Array, column
 from models.uncertainty.coverage import coverage_factor
+from models.uncertainty.distributions import Distribution, Normal
+from models.uncertainty.draws import Draws
 from models.uncertainty.first_order import Input, propagate
+from models.uncertainty.monte_carlo import simulate
 
+DRAWS = Draws(4096)
+ABOVE_ALL = 1e30
+"""In place of a number that there is not."""
 Known = ArrayLike | tuple[ArrayLike, ArrayLike]
 """An exact value, or a value and its standard uncertainty (k = 1)."""
 
@@ -47,6 +53,38 @@ def outcome(
     """
     value, u = carried(measurand, given)
     return within(value, u, low=low, high=high, probability=probability)
+
+
+def outcome_by_draws(
+    measurand: Callable[..., Array],
+    given: Mapping[str, Known],
+    *,
+    low: ArrayLike = -np.inf,
+    high: ArrayLike = np.inf,
+    probability: float = 0.95,
+) -> Outcome:
+    """The same where the measurand bends far: ends of shared draws, value and u as before.
+
+    An error without an answer is above all others; where that many of them are that the upper end
+    is among them, it is NaN.
+    """
+    plain = outcome(measurand, given, low=low, high=high, probability=probability)
+    inputs: dict[str, Distribution] = {}
+    for name, known in given.items():
+        value, u = known if isinstance(known, tuple) else (known, 0.0)
+        inputs[name] = Normal(*(np.broadcast_to(column(each), plain.value.shape)
+                                for each in (value, np.nan_to_num(u))))  # fmt: skip
+
+    def told(**at: Array) -> Array:
+        found = measurand(**at)
+        return np.where(np.isfinite(found), found, ABOVE_ALL)
+
+    drawn = simulate(told, inputs, draws=DRAWS, probability=probability)
+    lost, ends = np.isnan(plain.value), (column(low), column(high))
+    lower = np.minimum(np.clip(drawn.lower, *ends), plain.value)
+    upper = np.maximum(np.clip(drawn.upper, *ends), plain.value)
+    upper = np.where(lost | (drawn.upper >= ABOVE_ALL), np.nan, upper)
+    return replace(plain, lower=np.where(lost, np.nan, lower), upper=upper)
 
 
 def carried(measurand: Callable[..., Array], given: Mapping[str, Known]) -> tuple[Array, Array]:

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from models.decisions.outcome import Outcome, within
+from models.errors import Complaint, ParameterError
 from models.relation import Array, column
 from models.series.storage import layers_of
 from models.uncertainty.aggregation import weighted_sum
@@ -82,6 +83,12 @@ def profile_of(sensors: Sensors, root_depth: float, *, rule: str, extended: bool
     order = np.argsort(sensors.depth)
     ordered = Sensors(**{name: getattr(sensors, name)[order] for name in Sensors.__slots__})
     thickness = layers_of(ordered.depth, to_depth=root_depth, rule=rule)
+    if ordered.depth[0] > root_depth:
+        detail = (
+            f"the shallowest sensor is at {ordered.depth[0]:g} m, below the root zone of "
+            f"{root_depth:g} m: give a sensor in it, or depths in m"
+        )
+        raise ParameterError("profile", [Complaint("depth", detail)])
     deepest = float(ordered.depth[-1])
     if extended and deepest < root_depth:
         thickness[-1] += root_depth - deepest

@@ -168,6 +168,8 @@ def _of_soil(basis: Basis) -> Iterator[Advice]:
     outside = [*basis.outside, *_outside_frequency(basis)]
     if outside:
         yield advise("model-range", model=basis.model.key, names=", ".join(outside))
+    if basis.model.fitted_by_caller and basis.tells_correction:
+        yield advise("own-curve-corrected", model=basis.model.key)
     yield from _contradiction(soil)
 
 
@@ -204,6 +206,8 @@ def _unstated(basis: Basis) -> list[str]:
     if not basis.needs_temperature and "temperature" in came:
         came.remove("temperature")
     exact = [n for n, u in basis.uncertainties.items() if u == 0.0 and basis.origins[n] == "given"]
+    if basis.model.fitted_by_caller and query.standard_error is not None:
+        exact = []  # an error of the curve that was fitted holds that of its coefficients
     soil = query.soil
     through = soil.origins.get("porosity", "").startswith("1 - bulk_density")
     if through and "porosity" in basis.values and soil.uncertainties["bulk_density"] == 0.0:

@@ -11,6 +11,7 @@ from models.decisions.advisories import say
 from models.decisions.in_place_density import InPlace, OneStep, compaction_of, one_step, two_step
 from models.decisions.outcome import Outcome
 from models.decisions.terms import WORDS
+from models.soil.description import PARTICLE_DENSITY
 from service.decisions.in_place.bodies import NOUN, PlacesBody
 from service.decisions.in_place.question import (
     ADJUSTED,
@@ -25,6 +26,7 @@ from service.decisions.in_place.question import (
 from service.decisions.rows import Row, in_shape, known, labels, used, without_uncertainty
 from service.decisions.told import advice_told, banded, exact_values, number, units_told
 
+WARMTH = "temperature"
 SURE = (KA, "total_density", CONDUCTIVITY, LARGEST)
 
 
@@ -115,7 +117,15 @@ def _flags(question: Question, found: InPlace, step: OneStep | None, k: int) -> 
         return ["outside-temperature-adjustment"]
     if step is not None and step.too_alike[k if step.too_alike.size > 1 else 0]:
         return ["ill-conditioned"]
-    return ["no-physical-answer"] if np.isnan(found.dry_density.value[k]) else []
+    dense, wet = (each.value[k] for each in (found.dry_density, found.water_content))
+    if np.isnan(dense) or np.isnan(wet):
+        return ["no-physical-answer"]
+    said = ["frozen-place"] if _frozen(question.rows[k]) else []
+    return said + ["more-than-the-volume"] * bool(dense / PARTICLE_DENSITY + wet > 1.0)
+
+
+def _frozen(row: Row) -> bool:
+    return row.has(WARMTH) and bool(row.values[WARMTH] <= 0.0)
 
 
 def _advice(question: Question, body: PlacesBody) -> list[Advice]:

@@ -141,8 +141,12 @@ def _edges(scheme: Scheme, key: str, units: Units) -> list[float]:
 
 
 def _flags(found: Found, row: Row, k: int) -> list[str]:
-    asked = row.has(WATER, TARGET)
-    return ["water-too-saline"] if asked and found.leaching.too_saline[k] else []
+    if not row.has(WATER, TARGET):
+        return []
+    if found.leaching.too_saline[k]:
+        return ["water-too-saline"]
+    open_ended = np.isnan(found.leaching.requirement.upper[k])
+    return ["water-perhaps-too-saline"] if open_ended else []
 
 
 def _advice(rows: Sequence[Row], bodies: Sequence[Any], scheme: Scheme) -> list[Advice]:
