@@ -101,7 +101,7 @@ def _fault(
     low, high = float(unit.from_si(gate.low)), float(unit.from_si(gate.high))
     said = f"expected {quantity.name} from {low:g} to {high:g} {unit.code}, found {value:g}"
     other = quantity.likely_unit(si, unit.code)
-    if other is None:
+    if other is None or (other == "%" and value <= 1.0):  # 0.99 is meant as it stands
         return said + quantity.aside(si)
     meant = float(unit.from_si(UNITS[other].to_si(value)))
     return (
