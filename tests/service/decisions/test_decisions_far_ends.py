@@ -91,8 +91,9 @@ def test_an_own_curve_says_what_is_corrected_before_it(server):
 
 
 def test_a_share_below_one_is_not_taken_for_percent(server):
-    zone = {"water_content": 0.2, "field_capacity": 0.32, "wilting_point": 0.12, "root_depth": 0.8,
-            "depletion_fraction": 0.4, "efficiency": 0.75, "leaching_requirement": 0.99}  # fmt: skip
+    zone = {"water_content": 0.2, "field_capacity": 0.32, "wilting_point": 0.12,
+            "root_depth": 0.8, "depletion_fraction": 0.4, "efficiency": 0.75,
+            "leaching_requirement": 0.99}  # fmt: skip
     answer = server.client.post("/v1/root-zone", json={"root_zones": zone})
     assert answer.status_code == 422
     assert "looks like %" not in answer.json()["errors"][0]["detail"]
