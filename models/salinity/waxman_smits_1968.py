@@ -57,14 +57,16 @@ def charge_of_pores(
 def to_pore_water(bulk_conductivity: ArrayLike, /, **soil: Any) -> Array:
     """Conductivity of the pore water at 25 Cel, elementwise, S/m; soil as in ``to_bulk``.
 
-    NaN where the charges alone would conduct better than the soil does.
+    Below zero where the charges alone would conduct better than the soil does: what is left then.
     """
     clay = _shaly(**soil)
     in_pores = column(bulk_conductivity) / clay.share
     in_pores, charge = np.broadcast_arrays(in_pores, clay.charge)
-    return increasing_inverse(
+    found = increasing_inverse(
         lambda sigma: sigma + charge * equivalent_conductance(sigma), in_pores, 0.0, in_pores
     )
+    left = in_pores - charge * equivalent_conductance(0.0)
+    return np.where(left < 0.0, left, found)
 
 
 @np.errstate(all="ignore")

@@ -177,7 +177,8 @@ def test_waxman_smits_1968_without_clay_is_archie_1942():
 def test_waxman_smits_1968_has_no_water_where_the_charges_alone_conduct_better():
     model, soil = PORE_WATER_MODELS["waxman-smits-1968"], loam("waxman-smits-1968")
     alone = model.to_bulk(0.0, **soil)
-    assert np.isnan(model.to_pore_water(alone * 0.999, **soil))
+    short = model.to_pore_water(alone * 0.999, **soil)
+    assert -1e-3 < short < 0, "as much as is lacking, as of every other model with surfaces"
     assert_allclose(model.to_pore_water(alone * 1.001, **soil), 0.0, atol=1e-3)
     marked = model.gates(alone * np.array([0.999, 1.001]), **soil)["below-surface-conduction"]
     assert list(marked) == [True, False]
